@@ -1,0 +1,14 @@
+import { fileURLToPath } from "node:url";
+import { defineConfig } from "vitest/config";
+
+export default defineConfig({
+  root: fileURLToPath(new URL("..", import.meta.url)),
+  test: {
+    include: ["test/**/*.test.ts"],
+    benchmark: { include: ["test/**/*.bench.ts"] },
+    setupFiles: ["test/support/setup.ts"],
+    reporters: ["default", "./test/support/summary-reporter.ts"],
+    testTimeout: 60_000,
+    hookTimeout: 60_000,
+  },
+});
