@@ -66,5 +66,6 @@ function turn(radians: number): number {
   const rest = radians % (2 * Math.PI);
   if (rest >= 0) return rest;
   const positive = rest + 2 * Math.PI;
-  return positive < 2 * Math.PI ? positive : 0;
+  // A tiny negative angle rounds up to a whole turn.
+  return positive === 2 * Math.PI ? 0 : positive;
 }
