@@ -1,0 +1,166 @@
+/** One AN table as it stands in the file: numbers, names, positions, Earth orientation. */
+import { mjdFromDate, SECONDS_PER_DAY } from "../../util/dates.ts";
+import type { Hdu } from "../fits/hdus.ts";
+import type { Cursor } from "../fits/source.ts";
+import { type Column, findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
+import { readTable, type Table } from "../fits/table-rows.ts";
+import type { Notes } from "../notes.ts";
+
+export type Position = readonly [number, number, number];
+
+export interface TableAntenna {
+  readonly number: number;
+  readonly name: string;
+  /** STABXYZ as stored, metres; null where it is not finite or missing */
+  readonly offset: Position | null;
+  readonly diameter: number | null;
+}
+
+export interface AntennaTable {
+  readonly subarray: number;
+  readonly part: string;
+  readonly antennas: readonly TableAntenna[];
+  readonly arrayName: string;
+  /** ARRAYX, ARRAYY, ARRAYZ, metres */
+  readonly origin: Position;
+  /** FRAME and XYZHAND, upper case, empty when missing */
+  readonly frame: string;
+  readonly hand: string;
+  /** degrees; null when missing */
+  readonly siderealTime: number | null;
+  readonly degreesPerDay: number | null;
+  /** MJD of RDATE; null when missing or no date */
+  readonly referenceDay: number | null;
+  readonly ut1MinusUtc: number;
+  readonly timeSystem: string;
+  /** the file's time - UTC, days */
+  readonly timeOffset: number;
+  /** FREQ, Hz; null when missing */
+  readonly frequency: number | null;
+}
+
+/** The largest BASELINE code names 2047 antennas; ANTENNA1 and ANTENNA2 may go on to this. */
+const MOST_ANTENNAS = 65_535;
+
+/** @throws InputError when the table is malformed */
+export async function readAntennaTable(cursor: Cursor, hdu: Hdu, notes: Notes): Promise<AntennaTable> {
+  const { header } = hdu;
+  const layout = tableLayout(hdu);
+  if (layout.rows > MOST_ANTENNAS) {
+    throw header.error(`the AN table has ${layout.rows} rows: expected at most ${MOST_ANTENNAS}`, "NAXIS2");
+  }
+  const table = await readTable(cursor, layout);
+  const part = header.place.part!;
+  const rdate = header.shown("RDATE");
+  const referenceDay = rdate === undefined ? Number.NaN : mjdFromDate(rdate);
+  if (rdate !== undefined && Number.isNaN(referenceDay)) {
+    notes.fault("odd-date", `${part}: RDATE is "${rdate}", which is no date`);
+  }
+  const degreesPerDay = header.looseNumber("DEGPDY");
+  return {
+    subarray: hdu.version,
+    part,
+    antennas: readAntennas(table, part, notes),
+    arrayName: (header.shown("ARRNAM") ?? "").trim(),
+    origin: [
+      header.looseNumber("ARRAYX") ?? 0,
+      header.looseNumber("ARRAYY") ?? 0,
+      header.looseNumber("ARRAYZ") ?? 0,
+    ],
+    frame: (header.shown("FRAME") ?? "").trim().toUpperCase(),
+    hand: (header.shown("XYZHAND") ?? "").trim().toUpperCase(),
+    siderealTime: header.looseNumber("GSTIA0") ?? null,
+    degreesPerDay: degreesPerDay !== undefined && Math.abs(degreesPerDay - 361) < 1 ? degreesPerDay : null,
+    referenceDay: Number.isNaN(referenceDay) ? null : referenceDay,
+    ut1MinusUtc: header.looseNumber("UT1UTC") ?? 0,
+    ...readTimeSystem(hdu, part, notes),
+    frequency: header.looseNumber("FREQ") ?? null,
+  };
+}
+
+function readAntennas(table: Table, part: string, notes: Notes): TableAntenna[] {
+  const { layout } = table;
+  const name = findColumn(layout, "ANNAME");
+  const position = [findColumn(layout, "STABXYZ")].find((column) => (column?.repeat ?? 0) >= 3);
+  const number = findColumn(layout, "NOSTA");
+  const diameter = findColumn(layout, "DIAMETER");
+  if (number === undefined) {
+    const text = `${part} has no column NOSTA: antennas are numbered by their rows`;
+    notes.note("missing-antenna-numbers", text);
+  }
+  if (name === undefined && position === undefined) requireColumn(layout, "STABXYZ");
+  const found = new Map<number, TableAntenna>();
+  const twice: number[] = [];
+  for (let row = 0; row < table.rows; row++) {
+    const id = number === undefined ? row + 1 : table.number(row, number);
+    if (!Number.isInteger(id) || id < 0 || id > MOST_ANTENNAS) {
+      throw layout.hdu.header.error(
+        `row ${row + 1}: NOSTA is ${id}: expected a whole number from 0 to ${MOST_ANTENNAS}`,
+      );
+    }
+    if (found.has(id)) {
+      twice.push(id);
+      continue;
+    }
+    const text = name === undefined ? "" : table.text(row, name).trim();
+    found.set(id, {
+      number: id,
+      name: text === "" ? String(id) : text,
+      offset: position === undefined ? null : positionOf(table, row, position),
+      diameter: diameterOf(table, row, diameter),
+    });
+  }
+  noteOdd([...found.values()], twice, position, part, notes);
+  return [...found.values()];
+}
+
+function positionOf(table: Table, row: number, column: Column): Position | null {
+  const [x, y, z] = table.numbers(row, column);
+  return Number.isFinite(x! + y! + z!) ? [x!, y!, z!] : null;
+}
+
+function diameterOf(table: Table, row: number, column: Column | undefined): number | null {
+  if (column === undefined) return null;
+  const metres = table.number(row, column);
+  return metres > 0 && Number.isFinite(metres) ? metres : null;
+}
+
+function noteOdd(
+  antennas: readonly TableAntenna[],
+  twice: readonly number[],
+  position: Column | undefined,
+  part: string,
+  notes: Notes,
+): void {
+  if (twice.length > 0) {
+    const text = `${part} has more than one row for antenna ${twice.slice(0, 10).join(", ")}: the first counts`;
+    notes.fault("antenna-twice", text);
+  }
+  const lost = antennas.filter(({ offset }) => offset === null).map(({ number }) => number);
+  if (lost.length === 0) return;
+  if (position === undefined) {
+    const text = `${part} has no column STABXYZ: the positions of the antennas are unknown`;
+    notes.note("missing-antenna-positions", text);
+  } else {
+    const text = `${part}: STABXYZ is not finite for antenna ${lost.slice(0, 10).join(", ")}`;
+    notes.fault("table-value-not-finite", text);
+  }
+}
+
+/** TIMSYS or TIMESYS; DATUTC or IATUTC is what the file's time is ahead of UTC when it is not UTC. */
+function readTimeSystem(
+  { header }: Hdu,
+  part: string,
+  notes: Notes,
+): { timeSystem: string; timeOffset: number } {
+  const timeSystem = (header.shown("TIMSYS") ?? header.shown("TIMESYS") ?? "UTC").trim().toUpperCase();
+  if (timeSystem === "UTC" || timeSystem === "") return { timeSystem: "UTC", timeOffset: 0 };
+  const ahead = ["DATUTC", "IATUTC"]
+    .map((key) => header.looseNumber(key))
+    .find((value) => (value ?? 0) !== 0);
+  if (ahead === undefined) {
+    const text = `${part}: times are ${timeSystem} and no offset from UTC is given; they are taken as UTC`;
+    notes.fault("missing-time-offset", text);
+  }
+  return { timeSystem, timeOffset: (ahead ?? 0) / SECONDS_PER_DAY };
+}

@@ -1,0 +1,197 @@
+/** From the parameters of groups to the columns of rows: one pass a column, so that each loop is short and plain. */
+import { InputError, type Place } from "../../util/errors.ts";
+import type { SampleBlock } from "../dataset.ts";
+import { readStored } from "../fits/stored.ts";
+import { type BaselineCode, decodeBaseline } from "./baselines.ts";
+import type { RowColumns, Sum } from "./parameters.ts";
+
+/** Where the rows are: in memory and, for messages, in the file. */
+export interface RawRows {
+  readonly view: DataView;
+  readonly rows: number;
+  /** bytes from one row to the next in `view` */
+  readonly stride: number;
+  readonly bitpix: number;
+  readonly firstRow: number;
+  readonly place: Place;
+  /** byte of the first row in the file, and from one row to the next */
+  readonly byte: number;
+  readonly groupBytes: number;
+}
+
+/** What the numbers in rows refer to. */
+export interface RowContext {
+  readonly columns: RowColumns;
+  /** FREQSEL to the index of its setup */
+  readonly setupIndex: ReadonlyMap<number, number>;
+  /** the setup of rows whose FREQSEL is not in the table; undefined: refuse them */
+  readonly fallbackSetup: number | undefined;
+  /** FREQSEL numbers met that are not in the table, for a note */
+  readonly strangeSetups: Set<number>;
+  /** of rows without a SOURCE parameter */
+  readonly onlyField: number;
+  /** file's time - UTC, days, by sub-array number; `timeOffset[0]` for those without a table */
+  readonly timeOffset: Float64Array;
+}
+
+const MOST_STRANGE = 100;
+/** Antenna numbers above this are damage, not antennas: the code itself reaches 2047. */
+const MOST_ANTENNA = 65_535;
+
+/**
+ * Fill the row columns of `block`.
+ *
+ * @param scratch (rows) working space
+ * @throws InputError at the group whose baseline, source or frequency setup is none
+ */
+export function fillRows(raw: RawRows, context: RowContext, scratch: Float64Array, block: SampleBlock): void {
+  const { columns } = context;
+  fillSum(raw, columns.u, block.u);
+  fillSum(raw, columns.v, block.v);
+  if (columns.w === undefined) block.w.fill(0, 0, raw.rows);
+  else fillSum(raw, columns.w, block.w);
+  fillAntennas(raw, columns, scratch, block);
+  fillTimes(raw, context, block);
+  if (columns.integration === undefined) block.integration.fill(Number.NaN, 0, raw.rows);
+  else fillIntegrations(raw, columns.integration, scratch, block.integration);
+  fillFields(raw, context, scratch, block.field);
+  fillSetups(raw, context, scratch, block.setup);
+}
+
+/** constant + sum of scale x stored, in float64. */
+export function fillSum(raw: RawRows, sum: Sum, out: Float64Array): void {
+  const { view, rows, stride, bitpix } = raw;
+  const { constant, terms } = sum;
+  const { offset, scale } = terms[0]!;
+  if (bitpix === -32) {
+    for (let row = 0; row < rows; row++) {
+      out[row] = constant + scale * view.getFloat32(row * stride + offset);
+    }
+  } else {
+    for (let row = 0; row < rows; row++) {
+      out[row] = constant + scale * readStored(view, bitpix, row * stride + offset);
+    }
+  }
+  for (let k = 1; k < terms.length; k++) {
+    const term = terms[k]!;
+    for (let row = 0; row < rows; row++) {
+      out[row]! += term.scale * readStored(view, bitpix, row * stride + term.offset);
+    }
+  }
+}
+
+/** Zero and less is "not given", not a length of time. */
+function fillIntegrations(raw: RawRows, sum: Sum, scratch: Float64Array, out: Float32Array): void {
+  fillSum(raw, sum, scratch);
+  for (let row = 0; row < raw.rows; row++) out[row] = scratch[row]! > 0 ? scratch[row]! : Number.NaN;
+}
+
+/**
+ * Whole days and fractions of a day come in any order: summed with the lost digits carried along (Neumaier 1974,
+ * ZAMM 54, 39), so that the fraction keeps its precision beside a Julian date.
+ */
+function fillTimes(raw: RawRows, context: RowContext, block: SampleBlock): void {
+  const { view, rows, stride, bitpix } = raw;
+  const { constant, terms } = context.columns.time;
+  const { timeOffset } = context;
+  const { time, subarray } = block;
+  for (let row = 0; row < rows; row++) {
+    let sum = constant;
+    let lost = 0;
+    for (let k = 0; k < terms.length; k++) {
+      const term = terms[k]!;
+      const value = term.scale * readStored(view, bitpix, row * stride + term.offset);
+      const next = sum + value;
+      lost += Math.abs(sum) >= Math.abs(value) ? sum - next + value : value - next + sum;
+      sum = next;
+    }
+    const array = subarray[row]!;
+    const mjd = sum + (lost - (array < timeOffset.length ? timeOffset[array]! : timeOffset[0]!));
+    time[row] = Number.isFinite(mjd) ? mjd : Number.NaN;
+  }
+}
+
+function fillAntennas(raw: RawRows, columns: RowColumns, scratch: Float64Array, block: SampleBlock): void {
+  if (columns.baseline !== undefined) fillCodes(raw, columns.baseline, scratch, block);
+  else {
+    fillNumbers(raw, columns.antenna1!, scratch, "ANTENNA1", MOST_ANTENNA, block.antenna1);
+    fillNumbers(raw, columns.antenna2!, scratch, "ANTENNA2", MOST_ANTENNA, block.antenna2);
+    block.subarray.fill(1, 0, raw.rows);
+  }
+  if (columns.subarray === undefined) return;
+  fillNumbers(raw, columns.subarray, scratch, "SUBARRAY", 9999, block.subarray);
+}
+
+function fillCodes(raw: RawRows, sum: Sum, scratch: Float64Array, block: SampleBlock): void {
+  const { antenna1, antenna2, subarray } = block;
+  const code: BaselineCode = { antenna1: 0, antenna2: 0, subarray: 1 };
+  fillSum(raw, sum, scratch);
+  for (let row = 0; row < raw.rows; row++) {
+    if (!decodeBaseline(scratch[row]!, code)) {
+      throw badRow(
+        raw,
+        row,
+        `BASELINE is ${scratch[row]}`,
+        "256 x antenna 1 + antenna 2, or 65536 + 2048 x antenna 1 + antenna 2",
+      );
+    }
+    antenna1[row] = code.antenna1;
+    antenna2[row] = code.antenna2;
+    subarray[row] = code.subarray;
+  }
+}
+
+/** Whole numbers from 0 to `most`; a stored 1.0001 is 1. */
+function fillNumbers(
+  raw: RawRows,
+  sum: Sum,
+  scratch: Float64Array,
+  name: string,
+  most: number,
+  out: Int32Array,
+): void {
+  fillSum(raw, sum, scratch);
+  for (let row = 0; row < raw.rows; row++) {
+    const value = Math.round(scratch[row]!);
+    if (!(value >= 0 && value <= most)) {
+      throw badRow(raw, row, `${name} is ${scratch[row]}`, `a whole number from 0 to ${most}`);
+    }
+    out[row] = value;
+  }
+}
+
+function fillFields(raw: RawRows, context: RowContext, scratch: Float64Array, out: Int32Array): void {
+  const { source } = context.columns;
+  if (source === undefined) out.fill(context.onlyField, 0, raw.rows);
+  else fillNumbers(raw, source, scratch, "SOURCE", 2 ** 31 - 1, out);
+}
+
+function fillSetups(raw: RawRows, context: RowContext, scratch: Float64Array, out: Int32Array): void {
+  const { columns, setupIndex, fallbackSetup, strangeSetups } = context;
+  if (columns.setup === undefined) {
+    out.fill(setupIndex.get(1) ?? 0, 0, raw.rows);
+    return;
+  }
+  fillSum(raw, columns.setup, scratch);
+  for (let row = 0; row < raw.rows; row++) {
+    const id = Math.round(scratch[row]!);
+    let index = setupIndex.get(id);
+    if (index === undefined) {
+      index = fallbackSetup;
+      if (index === undefined) {
+        const known = [...setupIndex.keys()].slice(0, 20).join(", ");
+        throw badRow(raw, row, `FREQSEL is ${scratch[row]}`, `one of the FQ table: ${known}`);
+      }
+      if (strangeSetups.size < MOST_STRANGE) strangeSetups.add(id);
+    }
+    out[row] = index;
+  }
+}
+
+function badRow(raw: RawRows, row: number, found: string, expected: string): InputError {
+  return new InputError(
+    `group ${raw.firstRow + row + 1}: ${found}: expected ${expected}`,
+    { ...raw.place, byte: raw.byte + row * raw.groupBytes },
+    "The data are damaged there",
+  );
+}

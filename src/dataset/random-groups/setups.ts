@@ -1,0 +1,183 @@
+/** Frequencies: the FREQ axis, and the FQ table's sub-bands around it. */
+import type { Setup } from "../dataset.ts";
+import type { Hdu } from "../fits/hdus.ts";
+import type { Cursor } from "../fits/source.ts";
+import { type Column, findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
+import { readTable, type Table } from "../fits/table-rows.ts";
+import type { Notes } from "../notes.ts";
+import { axisValue, type GroupAxis, type GroupLayout } from "./layout.ts";
+
+/** Above any radio or submillimetre band: 30 um. */
+const HIGHEST_FREQUENCY = 1e13;
+/** Channel centres of all setups that are held: 128 MB. */
+const MOST_FREQUENCIES = 1 << 24;
+/** Steps that differ by less are the same number in single precision. */
+const SAME_STEP = 1e-3;
+
+/** One sub-band as the FQ table has it. */
+interface Subband {
+  /** Hz from the FREQ axis */
+  readonly offset: number;
+  /** CH WIDTH and TOTAL BANDWIDTH, Hz; NaN when missing */
+  readonly width: number;
+  readonly bandwidth: number;
+  /** SIDEBAND; NaN when missing */
+  readonly sideband: number;
+}
+
+/**
+ * @param reference Hz, CRVAL of the FREQ axis
+ * @throws InputError when the FQ table does not go with the group's axes
+ */
+export async function readSetups(
+  cursor: Cursor,
+  hdu: Hdu | undefined,
+  layout: GroupLayout,
+  reference: number,
+  notes: Notes,
+): Promise<Setup[]> {
+  const { frequency: axis, subband } = layout;
+  let rows: { id: number; subbands: Subband[] }[];
+  if (hdu === undefined) {
+    if (subband.length > 1) {
+      throw layout.hdu.header.error(
+        `${subband.length} sub-bands (IF axis) and no frequency table (FQ): expected one with their frequencies`,
+        `NAXIS${subband.number}`,
+      );
+    }
+    const text = "no frequency table (FQ): frequencies are those of the FREQ axis";
+    notes.note("missing-frequency-table", text);
+    rows = [
+      { id: 1, subbands: [{ offset: 0, width: Number.NaN, bandwidth: Number.NaN, sideband: Number.NaN }] },
+    ];
+  } else rows = await readTableRows(cursor, hdu, layout, notes);
+  if (rows.length * subband.length * axis.length > MOST_FREQUENCIES) {
+    throw layout.hdu.header.error(
+      `${rows.length} frequency setups of ${subband.length} sub-bands of ${axis.length} channels: expected at most ` +
+        `${MOST_FREQUENCIES} channels in all`,
+    );
+  }
+  noteDisagreements(rows[0]!.subbands, axis, notes);
+  const setups = rows.map(({ id, subbands }) => setupOf(id, subbands, { ...axis, value: reference }));
+  noteImpossible(setups, notes);
+  return setups;
+}
+
+async function readTableRows(
+  cursor: Cursor,
+  hdu: Hdu,
+  layout: GroupLayout,
+  notes: Notes,
+): Promise<{ id: number; subbands: Subband[] }[]> {
+  const table = await readTable(cursor, tableLayout(hdu));
+  if (table.rows === 0) throw hdu.header.error("the frequency table has no rows", "NAXIS2");
+  const id = findColumn(table.layout, "FRQSEL", "FREQID");
+  const offset = requireColumn(table.layout, "IF FREQ", "IF_FREQ", "BANDFREQ");
+  const width = findColumn(table.layout, "CH WIDTH", "CH_WIDTH");
+  const bandwidth = findColumn(table.layout, "TOTAL BANDWIDTH", "TOTAL_BANDWIDTH");
+  const sideband = findColumn(table.layout, "SIDEBAND");
+  const expected = layout.subband.length;
+  const rows = new Map<number, Subband[]>();
+  for (let row = 0; row < table.rows; row++) {
+    const found = table.count(row, offset);
+    if (found < expected) {
+      throw hdu.header.error(
+        `row ${row + 1} gives ${found} sub-bands, the groups have ${expected}: expected as many`,
+      );
+    }
+    if (found > expected && row === 0) {
+      const text = `the frequency table gives ${found} sub-bands, the groups have ${expected}: the first ones are used`;
+      notes.fault("subbands-disagree", text);
+    }
+    const number = id === undefined ? row + 1 : table.number(row, id);
+    if (rows.has(number)) {
+      const text = `the frequency table has FRQSEL ${number} more than once: the first counts`;
+      notes.fault("setup-twice", text);
+      continue;
+    }
+    const get = (column: Column | undefined, k: number) => valueAt(table, row, column, k);
+    rows.set(
+      number,
+      Array.from({ length: expected }, (_, k) => ({
+        offset: get(offset, k),
+        width: get(width, k),
+        bandwidth: get(bandwidth, k),
+        sideband: get(sideband, k),
+      })),
+    );
+  }
+  return [...rows].map(([number, subbands]) => ({ id: number, subbands }));
+}
+
+/** A column of one value for all sub-bands is met; it holds for each. */
+function valueAt(table: Table, row: number, column: Column | undefined, k: number): number {
+  if (column === undefined) return Number.NaN;
+  return table.number(row, column, table.count(row, column) === 1 ? 0 : k);
+}
+
+/**
+ * nu(channel) = reference + offset + (channel - CRPIX) x |width| x direction. The step's sign may stand in CDELT, in
+ * CH WIDTH and in SIDEBAND: frequency falls when any of them says so, and is never turned twice.
+ */
+function setupOf(id: number, subbands: readonly Subband[], axis: GroupAxis): Setup {
+  const frequencies = new Float64Array(subbands.length * axis.length);
+  const channelWidths = new Float64Array(subbands.length);
+  subbands.forEach((subband, k) => {
+    const width = widthOf(subband, axis);
+    const falls = axis.step < 0 || subband.width < 0 || subband.sideband < 0;
+    const step = Number.isNaN(width) ? 0 : falls ? -width : width;
+    channelWidths[k] = width;
+    for (let channel = 0; channel < axis.length; channel++) {
+      frequencies[k * axis.length + channel] =
+        axisValue({ ...axis, step: 0 }, channel) + subband.offset + (channel + 1 - axis.pixel) * step;
+    }
+  });
+  return { id, frequencies, channelWidths };
+}
+
+/** Hz, positive: CH WIDTH, else CDELT, else the sub-band over its channels; NaN when the file has none of them. */
+function widthOf({ width, bandwidth }: Subband, axis: GroupAxis): number {
+  if (width !== 0 && Number.isFinite(width)) return Math.abs(width);
+  if (axis.step !== 0) return Math.abs(axis.step);
+  const share = Math.abs(bandwidth) / axis.length;
+  return share > 0 && Number.isFinite(share) ? share : Number.NaN;
+}
+
+function noteDisagreements(subbands: readonly Subband[], axis: GroupAxis, notes: Notes): void {
+  const { step } = axis;
+  const stepSign = Math.sign(step);
+  const sized = subbands.filter(({ width }) => width !== 0 && Number.isFinite(width));
+  const wider = sized.find(({ width }) => step !== 0 && Math.abs(Math.abs(width / step) - 1) > SAME_STEP);
+  if (wider !== undefined) {
+    const text = `the channel width is ${Math.abs(step)} Hz by CDELT${axis.number} and ${Math.abs(wider.width)} Hz by the frequency table, which counts`;
+    notes.fault("channel-width-disagrees", text);
+  }
+  const turned = sized.find(
+    ({ width, sideband }) =>
+      (stepSign !== 0 && Math.sign(width) !== stepSign) || (Math.min(step, width) < 0 && sideband > 0),
+  );
+  if (turned !== undefined && axis.length > 1) {
+    const text =
+      `the direction of frequency differs: CDELT${axis.number} ${signText(step)}, CH WIDTH ${signText(turned.width)}, ` +
+      `SIDEBAND ${signText(turned.sideband)}; channels are taken to fall in frequency`;
+    notes.fault("frequency-order-disagrees", text);
+  }
+}
+
+function signText(value: number): string {
+  return value > 0 ? "positive" : value < 0 ? "negative" : "missing";
+}
+
+function noteImpossible(setups: readonly Setup[], notes: Notes): void {
+  for (const { id, frequencies, channelWidths } of setups) {
+    const bad = frequencies.find((hertz) => !(hertz > 0 && hertz <= HIGHEST_FREQUENCY));
+    if (bad !== undefined) {
+      const text = `frequency setup ${id} has a channel at ${bad} Hz: expected more than 0 and at most ${HIGHEST_FREQUENCY}`;
+      notes.fault("impossible-frequency", text);
+    }
+    if (channelWidths.some((width) => Number.isNaN(width))) {
+      const text = `frequency setup ${id} has no channel width: neither CDELT nor the frequency table gives one`;
+      notes.fault("missing-channel-width", text);
+    }
+  }
+}
