@@ -1,0 +1,126 @@
+/** From rows past a rule's limits to a finding in words. */
+import type { Plan } from "../imaging/plan.ts";
+import type { Measure, Measures } from "../measure/table.ts";
+import type { Expression } from "./expression.ts";
+import type { Finding } from "./finding.ts";
+import type { FilledHit } from "./hit.ts";
+import { isPlanKey, type PlanKeyName, planWords } from "./plan-values.ts";
+import { formatQuantity } from "./quantity.ts";
+import type { Rule } from "./rule.ts";
+import { findingScope, scopeWords, unionScope } from "./scope.ts";
+import { verdictOf } from "./severity.ts";
+import { fillTemplate, templateExpressions } from "./template.ts";
+
+/** How many rows a finding about many names as evidence. */
+const MOST_NAMED = 5;
+
+/**
+ * @param hits the rows it speaks of, one or more; the worst of them gives its value, limits and consequence
+ * @param judged how many rows the rule looked at
+ */
+export function findingOf(
+  rule: Rule,
+  hits: readonly FilledHit[],
+  judged: number,
+  plan: Plan,
+  measures: Measures,
+): Finding {
+  const ordered = [...hits].sort(bySeverity);
+  const { hit, values } = ordered[0]!;
+  const scope = unionScope(hits.map((one) => one.hit.scope));
+  const show = (value: number) => formatQuantity(value, rule.unit);
+  const consequence = fillTemplate(rule.consequence, {
+    bare: {
+      value: show(hit.value),
+      caution: show(hit.caution),
+      hold: show(hit.hold),
+      scope: scopeWords(scope),
+      count: String(hits.length),
+    },
+    value: hit.value,
+    valueUnit: rule.unit,
+    values,
+    unitOf: (source, name) => unitOf(source === "d" ? hit.measure : measures.get("dataset"), name),
+  });
+  return {
+    rule: rule.id,
+    family: rule.family,
+    verdict: verdictOf(hit.severity),
+    severity: hit.severity,
+    title: rule.title,
+    scope: findingScope(scope),
+    measured: { value: hit.value, unit: rule.unit },
+    limits: { caution: hit.caution, hold: hit.hold, unit: rule.unit, from: limitsFrom(rule, plan) },
+    mendedByFlags: false,
+    consequence,
+    evidence: evidenceOf(rule, ordered, judged, show),
+    suggests: rule.suggests,
+    flags: [],
+  };
+}
+
+/** The worst first: by severity, then by how far past the hold limit, then by row. */
+function bySeverity(a: FilledHit, b: FilledHit): number {
+  const beyond = ({ hit }: FilledHit) => (hit.hold > hit.caution ? hit.value : -hit.value);
+  return b.hit.severity - a.hit.severity || beyond(b) - beyond(a) || a.hit.row - b.hit.row;
+}
+
+function unitOf(measure: Measure | undefined, name: string): string {
+  return measure?.columns.find((column) => column.name === name)?.unit ?? "";
+}
+
+/** Which plan values set the limits, else the source that does. */
+function limitsFrom(rule: Rule, plan: Plan): string {
+  const expressions: Expression[] = [
+    rule.limits.caution,
+    rule.limits.hold,
+    rule.value,
+    ...templateExpressions(rule.consequence),
+    ...(rule.where === null ? [] : [rule.where]),
+  ];
+  const keys = new Set<PlanKeyName>();
+  for (const { source, name } of expressions.flatMap((expression) => expression.names)) {
+    if (source === "plan" && isPlanKey(name)) keys.add(name);
+  }
+  return [...[...keys].map((key) => planWords(plan, key)), rule.sources[0]!].join("; ");
+}
+
+function evidenceOf(
+  rule: Rule,
+  ordered: readonly FilledHit[],
+  judged: number,
+  show: (value: number) => string,
+): string[] {
+  const { hit } = ordered[0]!;
+  const what = meaningOf(rule, hit.measure);
+  const limits = `caution from ${show(hit.caution)}, hold from ${show(hit.hold)}`;
+  const told = (one: FilledHit): string | null => {
+    if (!hit.measure.table.columnNames().includes("evidence")) return null;
+    const text: unknown = hit.measure.table.get("evidence", one.hit.row);
+    return typeof text === "string" && text !== "" ? text : null;
+  };
+  const sentences: string[] = [];
+  if (ordered.length === 1) {
+    sentences.push(`${what}: ${show(hit.value)} for ${scopeWords(hit.scope)} (${limits}).`);
+  } else {
+    const named = ordered
+      .slice(0, MOST_NAMED)
+      .map((one) => `${scopeWords(one.hit.scope)} (${show(one.hit.value)})`);
+    const more = ordered.length > MOST_NAMED ? `, and ${ordered.length - MOST_NAMED} more` : "";
+    sentences.push(`${ordered.length} of ${judged} are past the caution limit (${limits}).`);
+    sentences.push(`${what}, worst first: ${named.join("; ")}${more}.`);
+  }
+  for (const one of ordered.slice(0, MOST_NAMED)) {
+    const text = told(one);
+    if (text !== null) sentences.push(text);
+  }
+  return sentences;
+}
+
+/** What the value is: the meaning of its column, or the rule's title where it is computed. */
+function meaningOf(rule: Rule, measure: Measure): string {
+  const { root } = rule.value;
+  const column = root.kind === "name" ? measure.columns.find(({ name }) => name === root.name) : undefined;
+  const words = column?.meaning ?? rule.title;
+  return words.charAt(0).toUpperCase() + words.slice(1);
+}
