@@ -4,9 +4,10 @@
  */
 import { z } from "zod";
 import { POLARIZATIONS } from "../dataset/dataset.ts";
-import { InputError } from "../util/errors.ts";
+import { InputError, nearest } from "../util/errors.ts";
 import { faultSchema } from "./faults/schema.ts";
 import { angle, declination, duration, flux, frequency, length, rightAscension } from "./quantities.ts";
+import { schemaWords } from "./scenario-words.ts";
 
 const positive = (schema: z.ZodType<number, string | 0>) =>
   schema.refine((value) => value > 0, "must be greater than zero");
@@ -202,9 +203,10 @@ export type Gains = Scenario["gains"];
 export type Atmosphere = NonNullable<Scenario["atmosphere"]>;
 export type Layout = Scenario["array"]["layout"];
 
-/** Something wrong in a scenario: keys and indices down to it. */
+/** Something wrong in a scenario: keys and indices down to it, and the key when the key itself is wrong. */
 export interface ScenarioIssue {
   readonly path: readonly (string | number)[];
+  readonly key?: string;
   readonly message: string;
 }
 
@@ -214,12 +216,40 @@ export function checkScenario(
 ): { scenario: Scenario } | { issues: readonly ScenarioIssue[] } {
   const result = scenarioSchema.safeParse(written);
   if (result.success) return { scenario: result.data };
-  return {
-    issues: result.error.issues.map((issue) => ({
-      path: issue.path.map((part) => (typeof part === "number" ? part : String(part))),
-      message: issue.message,
-    })),
-  };
+  return { issues: result.error.issues.flatMap((issue) => explain(issue, written)) };
+}
+
+const { keys: KEYS, words: WORDS } = schemaWords(scenarioSchema);
+
+function explain(issue: z.core.$ZodIssue, written: unknown): ScenarioIssue[] {
+  const path = issue.path.map((part) => (typeof part === "number" ? part : String(part)));
+  if (issue.code === "unrecognized_keys") {
+    return issue.keys.map((key) => ({ path, key, message: `unknown key "${key}"${didYouMean(key, KEYS)}` }));
+  }
+  const found = path.reduce<unknown>(
+    (value, step) => (value as Record<string, unknown> | undefined)?.[step],
+    written,
+  );
+  if (found === undefined) return [{ path, message: "a value is missing here" }];
+  if (issue.code === "invalid_union" && issue.discriminator !== undefined) {
+    const kind = String(found);
+    return [{ path, message: `unknown ${issue.discriminator} "${kind}"${didYouMean(kind, WORDS)}` }];
+  }
+  if (issue.code === "invalid_value") {
+    const choices = issue.values.map(String);
+    return [
+      {
+        path,
+        message: `"${String(found)}" is not one of ${choices.join(", ")}${didYouMean(String(found), choices)}`,
+      },
+    ];
+  }
+  return [{ path, message: issue.message }];
+}
+
+function didYouMean(word: string, known: Iterable<string>): string {
+  const near = nearest(word, known);
+  return near === undefined || near === word ? "" : `: did you mean "${near}"?`;
 }
 
 /** A scenario written in code. @throws InputError naming the first thing wrong */

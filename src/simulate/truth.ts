@@ -21,6 +21,7 @@ export interface TrueFault {
 export class Truth {
   readonly faults: readonly TrueFault[];
   readonly observation: Observation;
+  readonly rows: number;
   private readonly compiled: readonly CompiledFault[];
   private readonly dataset: Dataset;
   private readonly schedule: Schedule;
@@ -30,6 +31,7 @@ export class Truth {
     this.compiled = compiled;
     this.dataset = dataset;
     this.schedule = new Schedule(observation);
+    this.rows = this.schedule.rows;
     this.faults = compiled.map(({ kind, cause, selection, size, unit, spoils }) => ({
       kind,
       cause,
