@@ -1,0 +1,198 @@
+/** `report.json` and `flags.json`: the contracts for other programs. Units are in the keys; see the schemas beside. */
+import { basename } from "node:path";
+import type { Dataset } from "../dataset/dataset.ts";
+import type { FlagEntry, FlagFile } from "../flags/entry.ts";
+import type { ImageForecast } from "../imaging/image.ts";
+import type { Plan } from "../imaging/plan.ts";
+import type { Measure } from "../measure/table.ts";
+import type { Finding } from "../rules/finding.ts";
+import { frequencyRange } from "./dataset-facts.ts";
+import { sensitivityCost } from "./numbers.ts";
+import type { Check } from "./report.ts";
+import { tool } from "./tool.ts";
+import { exactly, jsonText } from "./trim.ts";
+
+/** The whole check as `report.json` holds it, ending in a line end. */
+export function reportJson(check: Check): string {
+  const { weightings, wTerm, smearing, coverage, limits, advice } = check.image;
+  return jsonText({
+    format: "visvet-report",
+    version: 1,
+    tool: tool(),
+    dataset: datasetPart(check),
+    plan: planPart(check.plan),
+    score: Math.round(check.before.score),
+    scoreAfterFlags: Math.round(check.after.score),
+    verdict: check.verdict,
+    findings: check.findings.map(findingPart),
+    flags: flagsPart(check),
+    image: { weightings, wTerm, smearing, coverage, limits } satisfies Omit<ImageForecast, "advice">,
+    settings: advice,
+    measures: Object.fromEntries([...check.measures].map(([name, measure]) => [name, measurePart(measure)])),
+    provenance: provenancePart(check),
+  });
+}
+
+/** The suggested flags as `flags.json` holds them, ending in a line end. */
+export function flagsJson(check: Check): string {
+  return jsonText({
+    format: "visvet-flags",
+    version: 1,
+    dataset: check.dataset.name,
+    entries: check.flags.map(flagPart),
+  } satisfies Record<keyof FlagFile, unknown>);
+}
+
+function datasetPart(check: Check): object {
+  const { dataset, survey } = check;
+  const { totals, times } = survey;
+  const [lowest, highest] = frequencyRange(dataset);
+  return {
+    name: dataset.name,
+    format: dataset.format,
+    array: dataset.array.name,
+    unit: dataset.unit,
+    rows: totals.rows,
+    samples: totals.samples,
+    usable: totals.usable,
+    flagged: totals.flagged,
+    bad: totals.bad,
+    zero: totals.zero,
+    autocorrelationRows: totals.autocorrelationRows,
+    duplicateRows: totals.duplicateRows,
+    outOfOrderRows: totals.outOfOrderRows,
+    badTimeRows: totals.badTimeRows,
+    badUvwRows: totals.badUvwRows,
+    antennas: survey.antennasWithData.length,
+    baselines: survey.baselines.length,
+    integrations: times.length,
+    channels: dataset.shape.channels,
+    subbands: dataset.shape.subbands,
+    polarizations: dataset.shape.polarizations,
+    fields: dataset.fields.length,
+    time: times.length === 0 ? null : exactly([times[0]!, times[times.length - 1]!]),
+    integrationSeconds: survey.integration,
+    lowestFrequencyHz: exactly(lowest),
+    highestFrequencyHz: exactly(highest),
+    polarizationNames: dataset.polarizations,
+    antennaList: antennaList(dataset, new Set(survey.antennasWithData)),
+    fieldList: dataset.fields.map(({ id, name, rightAscension, declination, equinox }) => ({
+      id,
+      name,
+      rightAscensionRad: exactly(rightAscension),
+      declinationRad: exactly(declination),
+      equinox,
+    })),
+    notes: dataset.notes.map(({ kind, code, text }) => ({ kind, code, text })),
+  };
+}
+
+function antennaList(dataset: Dataset, withData: ReadonlySet<number>): object[] {
+  return dataset.array.antennas.map(({ number, name, position, diameter }) => ({
+    number,
+    name,
+    hasData: withData.has(number),
+    positionMetres: exactly(position),
+    diameterMetres: diameter,
+  }));
+}
+
+function planPart(plan: Plan): Readonly<Record<string, Plan[keyof Plan]>> {
+  return {
+    fieldOfViewRad: plan.fieldOfView,
+    resolutionRad: plan.resolution,
+    largestScaleRad: plan.largestScale,
+    targetRmsJy: plan.targetRms,
+    dynamicRangeRatio: plan.dynamicRange,
+    dishDiameterMetres: plan.dishDiameter,
+    weighting: plan.weighting,
+    correctsW: plan.correctsW,
+    purpose: plan.purpose,
+    lineChannels: plan.lineChannels,
+    expectedSefdJy: plan.expectedSefd,
+  };
+}
+
+function flagsPart(check: Check): object {
+  return {
+    file: "flags.json",
+    sensitivityLossFraction: check.flags.length === 0 ? 0 : sensitivityCost(check.image),
+    entries: check.flags.map(flagPart),
+  };
+}
+
+/** Keys in the order of the contract, whatever the order they were made in; times to the last bit. */
+function flagPart(flag: FlagEntry): object {
+  const { id, rule, reason, antennas, baselines, time, subbands, channels, polarizations, fields } = flag;
+  const { samples, fraction, confidence, cost } = flag;
+  return {
+    id,
+    rule,
+    reason,
+    antennas,
+    baselines,
+    time: exactly(time),
+    subbands,
+    channels,
+    polarizations,
+    fields,
+    samples,
+    fraction,
+    confidence,
+    cost,
+  };
+}
+
+function findingPart(finding: Finding): object {
+  const { rule, family, verdict, severity, title, scope, measured, limits, mendedByFlags } = finding;
+  const { antennas, baselines, time, subbands, channels, polarizations, fields } = scope;
+  const { consequence, evidence, suggests, flags } = finding;
+  return {
+    rule,
+    family,
+    verdict,
+    severity,
+    title,
+    scope: { antennas, baselines, time: exactly(time), subbands, channels, polarizations, fields },
+    measured: { value: measured.value, unit: measured.unit },
+    limits: { caution: limits.caution, hold: limits.hold, unit: limits.unit, from: limits.from },
+    mendedByFlags,
+    consequence: { text: consequence.text, value: consequence.value, unit: consequence.unit },
+    evidence,
+    suggests,
+    flags,
+  };
+}
+
+/** A measure by columns: numbers that are unknown are null. */
+function measurePart(measure: Measure): object {
+  const names = new Set(measure.table.columnNames());
+  return {
+    title: measure.title,
+    each: measure.each,
+    rows: measure.table.numRows(),
+    columns: measure.columns
+      .filter(({ name }) => names.has(name))
+      .map(({ name, unit, meaning }) => ({ name, unit, meaning, values: valuesOf(measure, name, unit) })),
+  };
+}
+
+function valuesOf(measure: Measure, name: string, unit: string): unknown {
+  const values = measure.table.array(name);
+  return unit === "d" ? exactly(values) : values;
+}
+
+function provenancePart(check: Check): object {
+  const { dataset } = check;
+  return {
+    // Names without folders: the same data checked elsewhere give the same report.
+    files: dataset.files.map((file) => basename(file)),
+    bytes: dataset.bytes,
+    header: dataset.header,
+    rules: check.rulesFrom,
+    pointsTaken: check.before.taken,
+    pointsTakenAfterFlags: check.after.taken,
+    notJudged: check.before.notJudged,
+    blindSpots: check.blindSpots,
+  };
+}

@@ -1,0 +1,32 @@
+/** What limits the image, worst first. */
+import { formatRatio } from "../quantity.ts";
+import type { Check } from "../report.ts";
+import type { Paper } from "./paper.ts";
+
+export function limitsSection(paper: Paper, check: Check): void {
+  const { limits } = check.image;
+  const planned = check.plan.dynamicRange.value;
+  paper.heading("What limits this image");
+  if (limits.length === 0) {
+    paper.prose("No cause that limits the dynamic range was found.");
+    return;
+  }
+  paper.prose(
+    `Dynamic range, peak over rms, that each cause alone allows. Planned: ${formatRatio(planned)}.`,
+  );
+  paper.table(
+    [
+      { head: "Rank", numeric: true },
+      { head: "Allows", numeric: true, ink: paper.ink.strong },
+      { head: "Cause", numeric: false },
+    ],
+    limits.map((limit, i) => {
+      const enough = limit.dynamicRangeFraction >= planned ? " Enough for the plan." : "";
+      return [String(i + 1), formatRatio(limit.dynamicRangeFraction), sentence(limit.text) + enough];
+    }),
+  );
+}
+
+function sentence(text: string): string {
+  return /[.!?]$/.test(text) ? text : `${text}.`;
+}

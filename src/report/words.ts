@@ -1,0 +1,84 @@
+/** What verdicts, findings and suggestions are called and what they ask of the reader: one wording for every report. */
+import type { Finding, Suggestion, Verdict } from "../rules/finding.ts";
+import { formatQuantity } from "../rules/quantity.ts";
+import type { Check } from "./report.ts";
+
+export const VERDICT_NAME: Readonly<Record<Verdict, string>> = {
+  ready: "Ready",
+  caution: "Caution",
+  hold: "Hold",
+};
+
+/** What the verdict on a dataset tells its reader to do. */
+export const VERDICT_ADVICE: Readonly<Record<Verdict, string>> = {
+  ready: "Image it as it is.",
+  caution: "Image it after the suggested flags, or within the limits stated.",
+  hold:
+    "Do not image it yet: even after the suggested flags the planned image is out of reach, " +
+    "or something is wrong that flags do not mend.",
+};
+
+export const PROPOSALS =
+  "The flags are proposals for a person to accept or refuse. Nothing has been flagged and the dataset has not been changed.";
+
+/** What the report's owner does with a finding that flags do not settle. */
+const TO_DO: Readonly<Record<Suggestion, string>> = {
+  flag: "Look at these samples; no flag is proposed for them.",
+  calibrate: "Calibrate it out: good data are worth more than flagged data.",
+  "correct-w": "Have the imager correct the w term, or plan a smaller field.",
+  "narrow-field": "Plan a smaller field.",
+  "more-data":
+    "Observe more, or plan an image that does not need what is missing: no flag and no calibration fills it.",
+  "average-less": "Use data averaged less in frequency and time, if they are still there.",
+  "fix-metadata": "Mend the tables or the header of the file, then check it again.",
+  reweight: "Compute the weights anew from the scatter of the data before imaging.",
+  none: "Nothing to do; know it when you judge the image.",
+};
+
+export function toDo(finding: Finding): string {
+  const { flags, suggests } = finding;
+  if (flags.length === 0) return TO_DO[suggests];
+  const named =
+    flags.length <= 6 ? flags.join(", ") : `${flags.slice(0, 5).join(", ")} and ${flags.length - 5} more`;
+  const word = flags.length === 1 ? "flag" : "flags";
+  if (suggests === "flag") {
+    const mended = finding.mendedByFlags ? " As the data are it is past its hold limit; with the suggested flags it is not." : "";
+    return `Accept suggested ${word} ${named}.${mended}`;
+  }
+  if (suggests === "none") return `Suggested ${word} ${named} would remove it.`;
+  return `${TO_DO[suggests]} Until then, suggested ${word} ${named} would remove it.`;
+}
+
+/** `42.1 deg`, and the limits it is held against: `caution above 10 deg, hold above 30 deg`. */
+export function limitsText(finding: Finding): { measured: string; limits: string } {
+  const { caution, hold, unit } = finding.limits;
+  const side = hold >= caution ? "above" : "below";
+  return {
+    measured: formatQuantity(finding.measured.value, finding.measured.unit),
+    limits: `caution ${side} ${formatQuantity(caution, unit)}, hold ${side} ${formatQuantity(hold, unit)}`,
+  };
+}
+
+/** `41`, rounded here and nowhere else. */
+export function scoreText(score: number): string {
+  return Number.isFinite(score) ? String(Math.round(Math.min(100, Math.max(0, score)))) : "unknown";
+}
+
+/** `Score 41 of 100; 78 with the suggested flags.` */
+export function scoreSentence(check: Check): string {
+  const before = `Score ${scoreText(check.before.score)} of 100`;
+  return check.flags.length === 0
+    ? `${before}; no flags are suggested.`
+    : `${before}; ${scoreText(check.after.score)} of 100 with the suggested flags applied.`;
+}
+
+/** `1 hold, 2 cautions` */
+export function findingCounts(findings: readonly Finding[]): string {
+  const count = (verdict: Verdict) => findings.filter((finding) => finding.verdict === verdict).length;
+  const holds = count("hold");
+  const cautions = count("caution");
+  const parts: string[] = [];
+  if (holds > 0) parts.push(`${holds} ${holds === 1 ? "hold" : "holds"}`);
+  if (cautions > 0) parts.push(`${cautions} ${cautions === 1 ? "caution" : "cautions"}`);
+  return parts.length === 0 ? "nothing that cautions or holds" : parts.join(", ");
+}

@@ -1,0 +1,53 @@
+/** Text files written beside their final name and renamed into place: a killed run leaves the old file or the new. */
+import { open, rename, rm } from "node:fs/promises";
+import { InputError } from "./errors.ts";
+
+/** Apart from the process number, so that two writers in one process never share a name. */
+let written = 0;
+
+/**
+ * Replace the file at `path`, or make it. Its folder must exist. On an error nothing is left behind and a file that
+ * was there stays as it was.
+ *
+ * @throws InputError when it cannot be written, or the disk is full
+ */
+export async function writeTextFile(path: string, text: string): Promise<void> {
+  written += 1;
+  const beside = `${path}.${process.pid}-${written}.tmp`;
+  try {
+    // "wx": never write through a link or into a file that somebody else put there.
+    const handle = await open(beside, "wx");
+    try {
+      await handle.writeFile(text, "utf8");
+      // Some file systems tell of a full disk only here; after the rename it would be too late.
+      await handle.sync();
+    } finally {
+      await handle.close();
+    }
+    await rename(beside, path);
+  } catch (cause) {
+    const code = (cause as NodeJS.ErrnoException).code ?? "";
+    if (code !== "EEXIST") await rm(beside, { force: true });
+    throw new InputError(
+      `the file cannot be written${code === "" ? "" : ` (${code})`}`,
+      { file: path },
+      adviceFor(code),
+      {
+        cause,
+      },
+    );
+  }
+}
+
+/** What to do about an error of the file system, a sentence without its full stop. */
+export function adviceFor(code: string): string {
+  if (code === "ENOSPC" || code === "EDQUOT")
+    return "The disk or your quota is full: free some space and run it again";
+  if (code === "EACCES" || code === "EPERM" || code === "EROFS") {
+    return "You may not write there: choose another folder with --out";
+  }
+  if (code === "EISDIR" || code === "ENOTDIR" || code === "EEXIST") {
+    return "Something else has that name: move it away or choose another folder with --out";
+  }
+  return "Check that the folder exists and can be written";
+}
