@@ -1,0 +1,203 @@
+/**
+ * Which spacings and directions a set of samples covers: counts in fine bins of log radius, and of direction within
+ * annuli. Counts add and subtract exactly, so the coverage that a selection leaves is the difference of two tallies.
+ */
+
+const RADIAL_BINS = 4096;
+/** Bins of direction over half a turn: a quarter of a degree each. */
+const DIRECTION_BINS = 720;
+/** An annulus is an octave of spacing, or a little less. */
+const MOST_ANNULI = 24;
+
+export interface CoverageForm {
+  /** wavelengths: no sample is below or above */
+  readonly shortest: number;
+  readonly longest: number;
+  /** wavelengths: the plan's scales, between which annuli are made */
+  readonly from: number;
+  readonly to: number;
+}
+
+export interface RadialGap {
+  /** wavelengths */
+  readonly from: number;
+  readonly to: number;
+}
+
+export interface Annulus {
+  /** wavelengths */
+  readonly from: number;
+  readonly to: number;
+  readonly empty: boolean;
+  /** widest range without a sample, radians of half a turn; its middle, north through east, 0..pi */
+  readonly gap: number;
+  readonly at: number;
+}
+
+export class CoverageTally {
+  readonly form: CoverageForm;
+  private readonly low: number;
+  private readonly binsPerLog: number;
+  /** (RADIAL_BINS + 1) differences of the counts from bin to bin */
+  private readonly radial = new Int32Array(RADIAL_BINS + 1);
+  /** (RADIAL_BINS) smallest and largest log radius of an end of a sample's range in the bin */
+  private readonly least = new Float64Array(RADIAL_BINS).fill(Number.POSITIVE_INFINITY);
+  private readonly most = new Float64Array(RADIAL_BINS).fill(Number.NEGATIVE_INFINITY);
+  private readonly annuli: number;
+  private readonly annulusLow: number;
+  private readonly annuliPerLog: number;
+  private readonly directions: Int32Array;
+
+  constructor(form: CoverageForm) {
+    this.form = form;
+    const margin = Math.log(1.001);
+    this.low = Math.log(form.shortest) - margin;
+    const range = Math.log(form.longest) + margin - this.low;
+    this.binsPerLog = RADIAL_BINS / range;
+    const planned = Math.log(form.to / form.from);
+    this.annuli = planned > 0 ? Math.min(MOST_ANNULI, Math.ceil(planned / Math.LN2)) : 0;
+    this.annulusLow = Math.log(form.from);
+    this.annuliPerLog = this.annuli / planned;
+    this.directions = new Int32Array(Math.max(0, this.annuli) * DIRECTION_BINS);
+  }
+
+  /**
+   * Count (or with -1 take out) samples of one row: a range of radii in one direction.
+   *
+   * @param low,high natural log of the radii in wavelengths, low <= high
+   * @param direction of (u, v), north (v) through east (u), radians
+   */
+  add(low: number, high: number, direction: number, count = 1): void {
+    if (!(low > Number.NEGATIVE_INFINITY && high < Number.POSITIVE_INFINITY)) return;
+    this.addRadial(low, high, count);
+    const first = Math.max(0, Math.floor((low - this.annulusLow) * this.annuliPerLog));
+    const last = Math.min(this.annuli - 1, Math.floor((high - this.annulusLow) * this.annuliPerLog));
+    if (first > last || high < this.annulusLow) return;
+    const turn = direction / Math.PI;
+    const bin = Math.min(DIRECTION_BINS - 1, Math.floor((turn - Math.floor(turn)) * DIRECTION_BINS));
+    for (let annulus = first; annulus <= last; annulus++)
+      this.directions[annulus * DIRECTION_BINS + bin]! += count;
+  }
+
+  private addRadial(low: number, high: number, count: number): void {
+    const first = this.bin(low);
+    const last = this.bin(high);
+    this.radial[first]! += count;
+    this.radial[last + 1]! -= count;
+    if (count < 0) return;
+    if (low < this.least[first]!) this.least[first] = low;
+    if (first === last) {
+      if (high > this.most[first]!) this.most[first] = high;
+      return;
+    }
+    this.most[first] = Number.POSITIVE_INFINITY;
+    this.least[last] = Number.NEGATIVE_INFINITY;
+    if (high > this.most[last]!) this.most[last] = high;
+  }
+
+  private bin(log: number): number {
+    return Math.min(RADIAL_BINS - 1, Math.max(0, Math.floor((log - this.low) * this.binsPerLog)));
+  }
+
+  /** The tally with the samples of `other` taken out; both of one form. Edges of gaps are then those of bins. */
+  without(other: CoverageTally): CoverageTally {
+    const left = new CoverageTally(this.form);
+    for (let i = 0; i < left.radial.length; i++) left.radial[i] = this.radial[i]! - other.radial[i]!;
+    for (let i = 0; i < left.directions.length; i++) {
+      left.directions[i] = this.directions[i]! - other.directions[i]!;
+    }
+    return left;
+  }
+
+  /** (RADIAL_BINS) whether a sample is there. */
+  private covered(): Uint8Array {
+    const covered = new Uint8Array(RADIAL_BINS);
+    let count = 0;
+    for (let i = 0; i < RADIAL_BINS; i++) {
+      count += this.radial[i]!;
+      covered[i] = count > 0 ? 1 : 0;
+    }
+    return covered;
+  }
+
+  /** Shortest and longest covered radius, wavelengths; NaN when nothing is. */
+  extent(): { readonly shortest: number; readonly longest: number } {
+    const covered = this.covered();
+    const first = covered.indexOf(1);
+    if (first < 0) return { shortest: Number.NaN, longest: Number.NaN };
+    const last = covered.lastIndexOf(1);
+    return { shortest: Math.exp(this.lowEdge(first)), longest: Math.exp(this.highEdge(last)) };
+  }
+
+  private lowEdge(bin: number): number {
+    return Math.max(this.low + bin / this.binsPerLog, finite(this.least[bin]!, Number.NEGATIVE_INFINITY));
+  }
+
+  private highEdge(bin: number): number {
+    return Math.min(
+      this.low + (bin + 1) / this.binsPerLog,
+      finite(this.most[bin]!, Number.POSITIVE_INFINITY),
+    );
+  }
+
+  /** Ranges without samples between the shortest and the longest, wider than `least` wavelengths. */
+  radialGaps(least: number): RadialGap[] {
+    const covered = this.covered();
+    const gaps: RadialGap[] = [];
+    let before = -1;
+    for (let bin = 0; bin < RADIAL_BINS; bin++) {
+      if (covered[bin] === 0) continue;
+      if (before >= 0) {
+        const from = Math.exp(this.highEdge(before));
+        const to = Math.exp(this.lowEdge(bin));
+        if (to - from > least) gaps.push({ from, to });
+      }
+      before = bin;
+    }
+    return gaps;
+  }
+
+  /** The annuli between the plan's scales, each with its widest gap that is longer than `least` wavelengths. */
+  azimuthalGaps(least: number): Annulus[] {
+    return Array.from({ length: this.annuli }, (_, annulus) => {
+      const from = Math.exp(this.annulusLow + annulus / this.annuliPerLog);
+      const to = Math.exp(this.annulusLow + (annulus + 1) / this.annuliPerLog);
+      const counts = this.directions.subarray(annulus * DIRECTION_BINS, (annulus + 1) * DIRECTION_BINS);
+      const { width, middle } = widestGap(counts);
+      const gap = (width * Math.PI) / DIRECTION_BINS;
+      const long = gap * Math.sqrt(from * to) > least;
+      return {
+        from,
+        to,
+        empty: width === DIRECTION_BINS,
+        gap: long ? gap : 0,
+        at: long ? (middle * Math.PI) / DIRECTION_BINS : Number.NaN,
+      };
+    });
+  }
+}
+
+function finite(value: number, otherwise: number): number {
+  return Number.isFinite(value) ? value : otherwise;
+}
+
+/** Longest run of empty bins on the circle: its width less the half bin that each neighbour may reach into it. */
+function widestGap(counts: Int32Array): { width: number; middle: number } {
+  const size = counts.length;
+  const start = counts.findIndex((count) => count > 0);
+  if (start < 0) return { width: size, middle: size / 2 };
+  let best = 0;
+  let middle = Number.NaN;
+  let run = 0;
+  for (let step = 1; step <= size; step++) {
+    if (counts[(start + step) % size]! > 0) {
+      if (run > best) {
+        best = run;
+        middle = (start + step - run / 2) % size;
+      }
+      run = 0;
+    } else run += 1;
+  }
+  // Samples stand on average in the middle of their bins.
+  return { width: best === 0 ? 0 : best + 1, middle };
+}

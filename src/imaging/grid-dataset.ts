@@ -1,0 +1,154 @@
+/**
+ * The pass over a dataset's weights that fills uv grids: every usable sample at the (u, v) of its own channel.
+ */
+import type { SampleBlock } from "../dataset/dataset.ts";
+import type { Selection } from "../dataset/selection.ts";
+import { compileSelections } from "../dataset/selection-matcher.ts";
+import type { CoverageTally } from "./coverage-tally.ts";
+import { type CellIndex, type GridForm, MomentGrid } from "./moment-grid.ts";
+import { RowDeposit } from "./row-deposit.ts";
+import { RowWeights } from "./row-weights.ts";
+import type { Sampling } from "./sampling.ts";
+
+/** Moments kept of all the data: beams to 4e-4 of a cell's share at the very edge of the field. */
+export const FULL_ORDER = 5;
+/** Moments kept of each selection, whose share of the beam is small. */
+export const SELECTION_ORDER = 3;
+
+/** Which rows an image uses, and where their baseline's noise is kept. */
+class RowChooser {
+  private readonly field: number;
+  private readonly offsets = new Map<number, number>();
+  private readonly rowSamples: number;
+
+  constructor(sampling: Sampling) {
+    const { survey } = sampling;
+    const { subbands, channels, polarizations } = survey.dataset.shape;
+    this.field = sampling.field.id;
+    this.rowSamples = subbands * channels * polarizations;
+    survey.baselines.forEach(({ antenna1, antenna2 }, index) => {
+      this.offsets.set(pairKey(antenna1, antenna2), index * this.rowSamples);
+    });
+  }
+
+  /** First sample of the row's baseline in the levels, or -1 when the image does not use the row. */
+  offset(block: SampleBlock, row: number): number {
+    const antenna1 = block.antenna1[row]!;
+    const antenna2 = block.antenna2[row]!;
+    if (antenna1 === antenna2 || block.field[row] !== this.field) return -1;
+    if (!Number.isFinite(block.u[row]! + block.v[row]!)) return -1;
+    return this.offsets.get(pairKey(antenna1, antenna2)) ?? -1;
+  }
+}
+
+function pairKey(antenna1: number, antenna2: number): number {
+  return antenna1 < antenna2 ? antenna1 * 65536 + antenna2 : antenna2 * 65536 + antenna1;
+}
+
+export interface Gridded {
+  readonly grid: MomentGrid;
+  readonly coverage: CoverageTally;
+}
+
+/** What the pass needs besides the dataset. */
+export interface GridRequest {
+  readonly sampling: Sampling;
+  /** (baselines x subbands x channels x polarizations) weight x variance of a sample; NaN unknown */
+  readonly variance: Float64Array;
+  readonly form: GridForm;
+  readonly coverage: () => CoverageTally;
+  /** told the share of the rows that is done */
+  readonly onProgress?: ((share: number) => void) | undefined;
+}
+
+/** Grid every usable sample of the image. */
+export async function gridDataset(request: GridRequest): Promise<Gridded> {
+  const { sampling, variance, form } = request;
+  const { dataset } = sampling.survey;
+  const grid = new MomentGrid(form);
+  const coverage = request.coverage();
+  const row = new RowWeights(dataset, sampling.products);
+  const deposit = new RowDeposit(dataset, form.order);
+  await eachRow(request, (block, at, rowFrom, levelFrom) => {
+    row.fill(block.weight, rowFrom, variance, levelFrom);
+    deposit.place(block, at);
+    deposit.addTo(grid, row);
+    deposit.cover(coverage, row, 1);
+  });
+  return { grid, coverage };
+}
+
+/** One selection's own samples, on the index of the grid of all. */
+export interface SelectionGrid {
+  readonly grid: MomentGrid;
+  /** the coverage that the data lose with it */
+  readonly lost: CoverageTally;
+}
+
+/** Grid the usable samples of each selection, in one pass. */
+export async function gridSelections(
+  request: GridRequest,
+  selections: readonly Selection[],
+  index: CellIndex,
+): Promise<SelectionGrid[]> {
+  const { sampling, variance } = request;
+  const { dataset } = sampling.survey;
+  const form = { ...request.form, order: SELECTION_ORDER };
+  const grids = selections.map(() => ({ grid: new MomentGrid(form, index), lost: request.coverage() }));
+  const matcher = compileSelections(dataset, selections);
+  const { subbands, channels, polarizations } = dataset.shape;
+  const rowSamples = subbands * channels * polarizations;
+  const taken = new Float32Array(rowSamples);
+  const kept = new Float32Array(rowSamples);
+  const row = new RowWeights(dataset, sampling.products);
+  const deposit = new RowDeposit(dataset, form.order);
+  await eachRow(request, (block, at, rowFrom, levelFrom) => {
+    const count = matcher.matchRow(block, at);
+    for (let i = 0; i < count; i++) {
+      const s = matcher.matched[i]!;
+      const { grid, lost } = grids[s]!;
+      const weights = block.weight.subarray(rowFrom, rowFrom + rowSamples);
+      split(weights, matcher.runs[s]!, taken, kept);
+      deposit.place(block, at);
+      row.fill(taken, 0, variance, levelFrom);
+      deposit.addTo(grid, row);
+      // A row loses what it covered with everything, less what it still covers.
+      row.fill(weights, 0, variance, levelFrom);
+      deposit.cover(lost, row, 1);
+      row.fill(kept, 0, variance, levelFrom);
+      deposit.cover(lost, row, -1);
+    }
+  });
+  return grids;
+}
+
+/** The weights of a row inside and outside the [start, end) pairs of `bounds`. */
+function split(weights: Float32Array, bounds: Int32Array, taken: Float32Array, kept: Float32Array): void {
+  taken.fill(0);
+  kept.set(weights);
+  for (let b = 0; b < bounds.length; b += 2) {
+    const start = bounds[b]!;
+    const end = bounds[b + 1]!;
+    taken.set(weights.subarray(start, end), start);
+    kept.fill(0, start, end);
+  }
+}
+
+/** Visit the rows of the image with the offsets of their samples in the block and in the levels. */
+async function eachRow(
+  request: GridRequest,
+  visit: (block: SampleBlock, row: number, rowFrom: number, levelFrom: number) => void,
+): Promise<void> {
+  const { sampling, onProgress } = request;
+  const { dataset } = sampling.survey;
+  const { subbands, channels, polarizations } = dataset.shape;
+  const rowSamples = subbands * channels * polarizations;
+  const chooser = new RowChooser(sampling);
+  for await (const block of dataset.blocks({ want: "weights" })) {
+    for (let row = 0; row < block.rows; row++) {
+      const levelFrom = chooser.offset(block, row);
+      if (levelFrom >= 0) visit(block, row, row * rowSamples, levelFrom);
+    }
+    onProgress?.(dataset.rows === 0 ? 1 : (block.firstRow + block.rows) / dataset.rows);
+  }
+}

@@ -1,0 +1,192 @@
+/**
+ * What of a survey an image is made from: the field, the products that carry total intensity, the frequencies,
+ * the weights and the noise. Later stages ask here and not the survey, so that they agree on what counts.
+ */
+import type { Dataset, Field, Polarization } from "../dataset/dataset.ts";
+import type { Survey, Tracks } from "../measure/survey-result.ts";
+
+export interface Sampling {
+  readonly survey: Survey;
+  /** the field imaged: the one with the largest usable weight */
+  readonly field: Field;
+  /** indices into Dataset.polarizations of the products that the image adds */
+  readonly products: Int32Array;
+  /** (subbands x channels) 1 where any baseline has a usable sample of those products */
+  readonly channelUsed: Uint8Array;
+  /** Hz, mean of the used channels over the setups */
+  readonly meanFrequency: number;
+  /** sum of the usable weights of the field and products */
+  readonly totalWeight: number;
+  /** spacings of usable samples, wavelengths; NaN without any. Exact zeros (antennas at one place) are left out. */
+  readonly shortest: number;
+  readonly longest: number;
+  /** largest |u| or |v|, wavelengths */
+  readonly extent: number;
+}
+
+/** Spacings below this share of the longest are of antennas at one place, not of a baseline. */
+const SAME_PLACE = 1e-6;
+
+/** Products that add up to total intensity, by what the dataset has. */
+const TOTAL_INTENSITY: readonly (readonly Polarization[])[] = [["I"], ["RR", "LL"], ["XX", "YY"]];
+
+export function samplingOf(survey: Survey): Sampling {
+  const { dataset } = survey;
+  const products = intensityProducts(dataset);
+  const field = mainField(survey, products);
+  const channelUsed = usedChannels(survey, products);
+  const range = frequencyRange(dataset, channelUsed);
+  return {
+    survey,
+    field,
+    products,
+    channelUsed,
+    meanFrequency: range.mean,
+    totalWeight: weightOf(survey.tracks, dataset, products, field.id),
+    ...spacings(survey, products, field.id, range),
+  };
+}
+
+/**
+ * I, or the two parallel hands; whichever of them the dataset has. A dataset of other products alone is imaged from
+ * what it has.
+ */
+export function intensityProducts(dataset: Dataset): Int32Array {
+  for (const names of TOTAL_INTENSITY) {
+    const found = dataset.polarizations.flatMap((name, index) => (names.includes(name) ? [index] : []));
+    if (found.length > 0) return Int32Array.from(found);
+  }
+  return Int32Array.from(dataset.polarizations.keys());
+}
+
+/** (cells x subbands x polarizations) offset of the first polarization. */
+export function trackOffset(dataset: Dataset, cell: number, subband: number): number {
+  return (cell * dataset.shape.subbands + subband) * dataset.shape.polarizations;
+}
+
+/** Usable weight of the image's products in one sub-band of a track cell. */
+export function trackWeight(tracks: Tracks, offset: number, products: Int32Array): number {
+  let sum = 0;
+  for (let i = 0; i < products.length; i++) {
+    const at = offset + products[i]!;
+    const weight = tracks.weight[at]!;
+    if (tracks.usable[at]! > 0 && weight > 0 && weight < Number.POSITIVE_INFINITY) sum += weight;
+  }
+  return sum;
+}
+
+function weightOf(tracks: Tracks, dataset: Dataset, products: Int32Array, field: number): number {
+  let sum = 0;
+  for (let cell = 0; cell < tracks.cells; cell++) {
+    if (tracks.field[cell] !== field) continue;
+    for (let s = 0; s < dataset.shape.subbands; s++) {
+      sum += trackWeight(tracks, trackOffset(dataset, cell, s), products);
+    }
+  }
+  return sum;
+}
+
+function mainField(survey: Survey, products: Int32Array): Field {
+  const { dataset, tracks } = survey;
+  let best = dataset.fields[0] ?? NO_FIELD;
+  let most = -1;
+  for (const field of dataset.fields) {
+    const weight = weightOf(tracks, dataset, products, field.id);
+    if (weight > most) {
+      best = field;
+      most = weight;
+    }
+  }
+  return best;
+}
+
+const NO_FIELD: Field = {
+  id: 1,
+  name: "",
+  rightAscension: Number.NaN,
+  declination: Number.NaN,
+  equinox: Number.NaN,
+};
+
+function usedChannels(survey: Survey, products: Int32Array): Uint8Array {
+  const { subbands, channels, polarizations } = survey.dataset.shape;
+  const used = new Uint8Array(subbands * channels);
+  const { count } = survey.levels;
+  for (let b = 0; b < survey.baselines.length; b++) {
+    for (let c = 0; c < used.length; c++) {
+      const offset = (b * used.length + c) * polarizations;
+      for (let i = 0; i < products.length; i++) if (count[offset + products[i]!]! > 0) used[c] = 1;
+    }
+  }
+  return used;
+}
+
+/** Of the used channels, by sub-band and setup. */
+export interface FrequencyRange {
+  /** (setups x subbands) Hz; NaN where no channel of the sub-band is used */
+  readonly low: Float64Array;
+  readonly high: Float64Array;
+  readonly mean: number;
+}
+
+export function frequencyRange(dataset: Dataset, channelUsed: Uint8Array): FrequencyRange {
+  const { subbands, channels } = dataset.shape;
+  const low = new Float64Array(dataset.setups.length * subbands).fill(Number.NaN);
+  const high = new Float64Array(dataset.setups.length * subbands).fill(Number.NaN);
+  let sum = 0;
+  let used = 0;
+  dataset.setups.forEach((setup, index) => {
+    for (let s = 0; s < subbands; s++) {
+      const at = index * subbands + s;
+      for (let c = s * channels; c < (s + 1) * channels; c++) {
+        if (channelUsed[c] !== 1) continue;
+        const frequency = setup.frequencies[c]!;
+        if (!(low[at]! <= frequency)) low[at] = frequency;
+        if (!(high[at]! >= frequency)) high[at] = frequency;
+        sum += frequency;
+        used += 1;
+      }
+    }
+  });
+  return { low, high, mean: used === 0 ? meanOf(dataset) : sum / used };
+}
+
+function meanOf(dataset: Dataset): number {
+  const all = dataset.setups.flatMap((setup) => [...setup.frequencies]);
+  return all.reduce((sum, frequency) => sum + frequency, 0) / all.length;
+}
+
+function spacings(
+  survey: Survey,
+  products: Int32Array,
+  field: number,
+  range: FrequencyRange,
+): { shortest: number; longest: number; extent: number } {
+  const { dataset, tracks } = survey;
+  const { subbands } = dataset.shape;
+  let longest = Number.NaN;
+  let extent = Number.NaN;
+  const each = (visit: (low: number, high: number, size: number) => void) => {
+    for (let cell = 0; cell < tracks.cells; cell++) {
+      if (tracks.field[cell] !== field) continue;
+      const u = Math.abs(tracks.u[cell]!);
+      const v = Math.abs(tracks.v[cell]!);
+      const radius = Math.hypot(u, v);
+      if (!Number.isFinite(radius)) continue;
+      for (let s = 0; s < subbands; s++) {
+        if (trackWeight(tracks, trackOffset(dataset, cell, s), products) === 0) continue;
+        const at = tracks.setup[cell]! * subbands + s;
+        visit(radius * range.low[at]!, radius * range.high[at]!, Math.max(u, v) * range.high[at]!);
+      }
+    }
+  };
+  each((_, high, size) => {
+    if (!(longest >= high)) longest = high;
+    if (!(extent >= size)) extent = size;
+  });
+  let shortest = Number.NaN;
+  each((low) => {
+    if (low > longest * SAME_PLACE && !(shortest <= low)) shortest = low;
+  });
+  return { shortest, longest, extent };
+}
