@@ -2,7 +2,7 @@
 import { createProgress } from "../report/progress.ts";
 import { simulateFile } from "../simulate/simulate-file.ts";
 import { plainText } from "../util/terminal.ts";
-import { formatSize } from "../util/units.ts";
+import { formatBytes } from "../util/units.ts";
 
 export async function runSimulate(scenario: string, out: string): Promise<void> {
   const progress = createProgress(process.stderr);
@@ -10,7 +10,7 @@ export async function runSimulate(scenario: string, out: string): Promise<void> 
   const file = await simulateFile(scenario, out, { onRows }).finally(progress.end);
   const { rows, samples, bytes, faults, path, truthPath } = file;
   process.stdout.write(
-    `Wrote ${plainText(path)}: ${rows} rows, ${samples} samples, ${formatSize(bytes)}\n` +
+    `Wrote ${plainText(path)}: ${rows} rows, ${samples} samples, ${formatBytes(bytes)}\n` +
       `Wrote ${plainText(truthPath)}: ${faults} ${faults === 1 ? "fault" : "faults"}\n`,
   );
 }

@@ -122,8 +122,11 @@ function startOf({ time }: Scenario): number {
 
 function arrayOf(scenario: Scenario, referenceDay: number): { array: ArrayInfo; stations: Station[] } {
   const { array } = scenario;
-  const offsets = antennaOffsets(array.layout, scenario.seed);
-  const numbers = array.numbers ?? offsets.map((_, i) => i + 1);
+  const level = antennaOffsets(array.layout, scenario.seed);
+  const numbers = array.numbers ?? level.map((_, i) => i + 1);
+  const offsets = level.map(([east, north, up], i): Vector3 => {
+    return [east, north, up + (array.heights[String(numbers[i])] ?? 0)];
+  });
   if (numbers.length !== offsets.length || new Set(numbers).size !== numbers.length) {
     throw new InputError(
       `${numbers.length} antenna numbers for ${offsets.length} antennas: expected one each`,

@@ -71,6 +71,8 @@ const array = z.strictObject({
   sefd: positive(flux).default(400),
   /** of antennas that differ, by number */
   sefds: z.record(z.string().regex(/^\d+$/, "keys are antenna numbers"), positive(flux)).default({}),
+  /** of antennas that stand above (or below) their layout, by number: metres up */
+  heights: z.record(z.string().regex(/^\d+$/, "keys are antenna numbers"), length).default({}),
   /** 0 < efficiency <= 1 of the correlation */
   efficiency: z.number().gt(0).max(1).default(1),
   /** frame of the written positions */
