@@ -20,6 +20,16 @@ export class Random {
     return random;
   }
 
+  /** The generator in a state of its authors' notation, four 32-bit words not all zero. */
+  static ofState(s0: number, s1: number, s2: number, s3: number): Random {
+    const random = new Random();
+    random.s0 = s0;
+    random.s1 = s1;
+    random.s2 = s2;
+    random.s3 = s3;
+    return random;
+  }
+
   /** Begin the stream of this seed and these keys, as `of` does, without making an object. */
   restart(seed: number, a: number, b = 0, c = 0, d = 0): void {
     // Seeds above 32 bits keep their high word.
