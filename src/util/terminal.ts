@@ -19,5 +19,5 @@ export function plainText(text: string): string {
 export function plainTextWithin(text: string, columns: number): string {
   const characters = Array.from(plainText(text));
   if (characters.length <= columns) return characters.join("");
-  return `${characters.slice(0, Math.max(0, columns - 1)).join("")}…`;
+  return columns < 1 ? "" : `${characters.slice(0, columns - 1).join("")}…`;
 }

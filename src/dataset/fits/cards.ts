@@ -26,17 +26,16 @@ export interface Card {
 
 const NUMBER = /^[+-]?(?:\d+\.?\d*|\.\d+)(?:[EDed][+-]?\d+)?$/;
 
+/** No value whatever stands in columns 9 and 10 (section 4.4.2.4). */
+const COMMENTARY = ["", "COMMENT", "HISTORY"];
+
 /** @param text 80 characters, one a byte */
 export function parseCard(text: string): Card {
   const keyword = text.slice(0, 8).replaceAll("\0", " ").trim().toUpperCase();
-  const continues = keyword === "CONTINUE" && /^ *'/.test(text.slice(8));
-  if (!continues && text.slice(8, 10) !== "= ") {
-    // "KEYWORD =value" without the space after the sign is met; a comment that begins with "=" is not.
-    const bare = text[8] === "=" && keyword !== "" && keyword !== "COMMENT" && keyword !== "HISTORY";
-    if (!bare) return { keyword, value: undefined, comment: text.slice(8).trimEnd() };
-    return { keyword, ...parseValue(text.slice(9)) };
-  }
-  return { keyword, ...parseValue(text.slice(continues ? 8 : 10)) };
+  if (keyword === "CONTINUE" && /^ *'/.test(text.slice(8))) return { keyword, ...parseValue(text.slice(8)) };
+  // The blank after the sign belongs there; "KEYWORD =value" is met.
+  if (text[8] === "=" && !COMMENTARY.includes(keyword)) return { keyword, ...parseValue(text.slice(9)) };
+  return { keyword, value: undefined, comment: text.slice(8).trimEnd() };
 }
 
 function parseValue(field: string): { value: CardValue; comment: string } {
