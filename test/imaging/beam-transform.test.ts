@@ -23,7 +23,8 @@ function gridded(samples: Samples, field: number, extent: number): FilledCells {
   const total = samples.weight.reduce((sum, weight) => sum + weight, 0);
   const half = Math.ceil(extent * field) + 1;
   const grid = new MomentGrid({ field, half, order: 5, weightBound: total * 2, noiseBound: total * 2 });
-  samples.u.forEach((u, k) => grid.add(u, samples.v[k]!, samples.weight[k]!, samples.weight[k]!));
+  for (const [k, u] of samples.u.entries())
+    grid.add(u, samples.v[k]!, samples.weight[k]!, samples.weight[k]!);
   expect(grid.outside).toBe(0);
   return grid.cells();
 }
