@@ -1,4 +1,5 @@
 /** One rule applied to its measure: the rows past its limits, and what could not be judged. */
+import { EVERYTHING, type Selection } from "../dataset/selection.ts";
 import type { Plan } from "../imaging/plan.ts";
 import type { Measure, Measures } from "../measure/table.ts";
 import { NotJudgeable, RuleColumns } from "./evaluate.ts";
@@ -17,6 +18,8 @@ export interface Applied {
   readonly judged: number;
   /** why some or all rows could not be judged; null when all could */
   readonly notJudged: string | null;
+  /** scopes of those rows; everything when there are no rows to tell apart */
+  readonly unjudged: readonly Selection[];
 }
 
 /** What happened: where nothing did, there are no rows, and that is an answer. */
@@ -40,7 +43,7 @@ export function applyRule(rule: Rule, measures: Measures, plan: Plan): Applied {
 }
 
 function nothing(why: string): Applied {
-  return { hits: [], fillings: [], judged: 0, notJudged: why };
+  return { hits: [], fillings: [], judged: 0, notJudged: why, unjudged: [EVERYTHING] };
 }
 
 function applyTo(rule: Rule, measure: Measure, measures: Measures, plan: Plan): Applied {
@@ -86,6 +89,7 @@ function applyTo(rule: Rule, measure: Measure, measures: Measures, plan: Plan): 
     judged,
     notJudged:
       unjudged.length === 0 ? null : whyNot(unjudged, columns.rows, scopeOf, values, cautions, holds),
+    unjudged: unjudged.map(scopeOf),
   };
 }
 
@@ -96,7 +100,7 @@ function asksForUnknown(expression: Expression): boolean {
 function whyNot(
   rows: readonly number[],
   of: number,
-  scopeOf: (row: number) => Parameters<typeof scopeWords>[0],
+  scopeOf: (row: number) => Selection,
   values: readonly number[],
   cautions: readonly number[],
   holds: readonly number[],

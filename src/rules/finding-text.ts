@@ -62,7 +62,9 @@ export function findingOf(
 /** The worst first: by severity, then by how far past the hold limit, then by row. */
 function bySeverity(a: FilledHit, b: FilledHit): number {
   const beyond = ({ hit }: FilledHit) => (hit.hold > hit.caution ? hit.value : -hit.value);
-  return b.hit.severity - a.hit.severity || beyond(b) - beyond(a) || a.hit.row - b.hit.row;
+  const [past, other] = [beyond(a), beyond(b)];
+  if (a.hit.severity === b.hit.severity && past !== other) return past > other ? -1 : 1;
+  return b.hit.severity - a.hit.severity || a.hit.row - b.hit.row;
 }
 
 function unitOf(measure: Measure | undefined, name: string): string {

@@ -27,4 +27,6 @@ export interface FilledHit {
 export interface Judged extends Judgement {
   /** by rule in the order of the set, then row */
   readonly hits: readonly Hit[];
+  /** what rules could not judge: behind `notJudged` */
+  readonly unjudged: readonly { readonly rule: string; readonly scope: Selection }[];
 }

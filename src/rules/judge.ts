@@ -1,4 +1,5 @@
 /** The judgement of a set of measures by a set of rules. */
+import type { Selection } from "../dataset/selection.ts";
 import type { Plan } from "../imaging/plan.ts";
 import type { Measures, RowKind } from "../measure/table.ts";
 import { type Applied, applyRule } from "./apply-rule.ts";
@@ -22,10 +23,12 @@ export function judge(rules: RuleSet, measures: Measures, plan: Plan): Judged {
   const findings: Finding[] = [];
   const taken: { rule: string; points: number }[] = [];
   const notJudged: { rule: string; why: string }[] = [];
+  const unjudged: { rule: string; scope: Selection }[] = [];
   const worst: { weight: number; severity: number }[] = [];
   for (const rule of rules.rules) {
     const applied = applyRule(rule, measures, plan);
     if (applied.notJudged !== null) notJudged.push({ rule: rule.id, why: applied.notJudged });
+    unjudged.push(...applied.unjudged.map((scope) => ({ rule: rule.id, scope })));
     if (applied.hits.length === 0) continue;
     hits.push(...applied.hits);
     const severity = Math.max(...applied.hits.map((hit) => hit.severity));
@@ -44,6 +47,7 @@ export function judge(rules: RuleSet, measures: Measures, plan: Plan): Judged {
     taken: taken.sort((a, b) => b.points - a.points || (a.rule < b.rule ? -1 : 1)),
     notJudged,
     hits,
+    unjudged,
   };
 }
 
@@ -90,6 +94,11 @@ function beyond({ limits, measured }: Finding): number {
   return limits.hold > limits.caution ? measured.value - limits.hold : limits.hold - measured.value;
 }
 
+/** Infinities are equal to themselves, which their difference is not. */
+function descending(a: number, b: number): number {
+  return a > b ? -1 : a < b ? 1 : 0;
+}
+
 /** Holds before cautions, then what costs the score most, then by family and rule; equals stay in row order. */
 export function worstFirst(findings: readonly Finding[], rules: RuleSet): Finding[] {
   const weights = new Map(rules.rules.map((rule) => [rule.id, rule.weight]));
@@ -99,6 +108,6 @@ export function worstFirst(findings: readonly Finding[], rules: RuleSet): Findin
       VERDICTS[a.verdict] - VERDICTS[b.verdict] ||
       points(b) - points(a) ||
       FAMILIES.indexOf(a.family) - FAMILIES.indexOf(b.family) ||
-      (a.rule < b.rule ? -1 : a.rule > b.rule ? 1 : beyond(b) - beyond(a)),
+      (a.rule < b.rule ? -1 : a.rule > b.rule ? 1 : descending(beyond(a), beyond(b))),
   );
 }
