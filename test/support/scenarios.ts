@@ -54,7 +54,11 @@ export function simulated(changes: Changes = {}): Simulated {
 
 /** The default dataset with one or more faults. */
 export function withFaults(faults: readonly FaultInput[], changes: Changes = {}): Simulated {
-  return simulated({ name: faults.map(({ kind }) => kind).join(" "), ...changes, faults: [...faults] });
+  return simulated({
+    name: faults.length === 0 ? "clean" : faults.map(({ kind }) => kind).join(" "),
+    ...changes,
+    faults: [...faults],
+  });
 }
 
 function spiral(antennas: number, radius = "1km") {
