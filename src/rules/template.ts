@@ -121,7 +121,8 @@ export function fillTemplate(template: Template, filling: Filling): FilledText {
       const value = filling.values[next++];
       const unit = part.unit ?? ownUnit(part.expression, filling);
       text += typeof value === "number" ? formatQuantity(value, unit) : String(value ?? "unknown");
-      if (typeof value === "number") first ??= { value, unit };
+      // Shown in degrees, a phase is still a number of radians.
+      if (typeof value === "number") first ??= { value, unit: unit === "phase" ? "rad" : unit };
     }
   }
   return { text, ...first };
