@@ -82,6 +82,7 @@ export function observe(scenario: Scenario): Observation {
   const channels = scenario.frequency.subbands * scenario.frequency.channels;
   const polarizations = scenario.polarizations;
   requireKnownHands(scenario);
+  requireModestSize(scenario, stations.length, times.length);
   return {
     scenario,
     array,
@@ -127,6 +128,11 @@ function arrayOf(scenario: Scenario, referenceDay: number): { array: ArrayInfo; 
   const offsets = level.map(([east, north, up], i): Vector3 => {
     return [east, north, up + (array.heights[String(numbers[i])] ?? 0)];
   });
+  for (const key of ["sefds", "heights"] as const) {
+    const stranger = Object.keys(array[key]).find((number) => !numbers.includes(Number(number)));
+    if (stranger === undefined) continue;
+    throw new InputError(`there is no antenna ${stranger}`, { part: `scenario, array.${key}.${stranger}` });
+  }
   if (numbers.length !== offsets.length || new Set(numbers).size !== numbers.length) {
     throw new InputError(
       `${numbers.length} antenna numbers for ${offsets.length} antennas: expected one each`,
@@ -185,9 +191,34 @@ function add(a: Vector3, b: Vector3): Vector3 {
   return [a[0] + b[0], a[1] + b[1], a[2] + b[2]];
 }
 
+/** What is held in memory while rows are made: 2^21 samples of a row take 170 MB, 2^23 gains or delays 200 MB. */
+const MOST_INTEGRATIONS = 1 << 20;
+const MOST_ROW_SAMPLES = 1 << 21;
+const MOST_IN_TABLE = 1 << 23;
+
+function requireModestSize(scenario: Scenario, antennas: number, integrations: number): void {
+  const channels = scenario.frequency.subbands * scenario.frequency.channels;
+  const sizes = [
+    ["samples in a row", channels * scenario.polarizations.length, MOST_ROW_SAMPLES, "frequency"],
+    ["antennas x channels", 2 * antennas * channels, MOST_IN_TABLE, "frequency"],
+    ["antennas x integrations", antennas * integrations, MOST_IN_TABLE, "time"],
+  ] as const;
+  for (const [what, size, most, key] of sizes) {
+    if (size <= most) continue;
+    throw new InputError(`${size} ${what}: expected at most ${most}`, { part: `scenario, ${key}` });
+  }
+}
+
 /** Centres of the integrations that fit into the scans, and the field each looks at. */
 function timesOf(scenario: Scenario, start: number): { times: Float64Array; fieldAt: Int32Array } {
   const { duration, integration, gap } = scenario.time;
+  if (duration / integration > MOST_INTEGRATIONS) {
+    throw new InputError(
+      `more than ${MOST_INTEGRATIONS} integrations of ${integration} s`,
+      { part: "scenario, time" },
+      "Give a shorter duration or a longer integration",
+    );
+  }
   const scan = Math.min(scenario.time.scan ?? duration, duration);
   const perScan = Math.floor(scan / integration + 1e-9);
   const times: number[] = [];

@@ -57,7 +57,10 @@ export const strength = z
     const match = /^(\d+(?:\.\d+)?)\s*sigma$/.exec(text.trim());
     if (match !== null) return { value: Number(match[1]), unit: "sigma" };
     try {
-      return { value: parseFlux(text), unit: "Jy" };
+      const value = parseFlux(text);
+      if (value > 0) return { value, unit: "Jy" };
+      context.addIssue({ code: "custom", message: "must be greater than zero" });
+      return z.NEVER;
     } catch (error) {
       if (!(error instanceof InputError)) throw error;
       context.addIssue({ code: "custom", message: `${error.line}; or in noise, such as "8 sigma"` });

@@ -12,6 +12,9 @@ import { schemaWords } from "./scenario-words.ts";
 const positive = (schema: z.ZodType<number, string | 0>) =>
   schema.refine((value) => value > 0, "must be greater than zero");
 
+const notNegative = (schema: z.ZodType<number, string | 0>) =>
+  schema.refine((value) => value >= 0, "must not be less than zero");
+
 const offsets = z.tuple([length, length, length]);
 
 /** Where the antennas stand, east, north and up from the array's centre. */
@@ -27,13 +30,13 @@ const layout = z.discriminatedUnion("kind", [
     /** turns an arm makes from the inner to the outer radius */
     turns: z.number().min(0).max(10).default(0.6),
     /** rms height of the ground */
-    relief: length.default(0),
+    relief: notNegative(length).default(0),
   }),
   z.strictObject({
     kind: z.literal("ring"),
     antennas: z.int().min(3).max(260),
     radius: positive(length),
-    relief: length.default(0),
+    relief: notNegative(length).default(0),
   }),
   z.strictObject({
     kind: z.literal("random"),
@@ -41,7 +44,7 @@ const layout = z.discriminatedUnion("kind", [
     radius: positive(length),
     /** no two antennas stand closer */
     apart: positive(length).default(20),
-    relief: length.default(0),
+    relief: notNegative(length).default(0),
   }),
   z.strictObject({
     kind: z.literal("line"),
@@ -52,7 +55,7 @@ const layout = z.discriminatedUnion("kind", [
     azimuth: angle.default(Math.PI / 2),
     /** 1: evenly spaced; above: closer at the start */
     crowding: z.number().min(0.2).max(5).default(1),
-    relief: length.default(0),
+    relief: notNegative(length).default(0),
   }),
   z.strictObject({ kind: z.literal("positions"), positions: z.array(offsets).min(3).max(260) }),
 ]);
@@ -87,7 +90,7 @@ const time = z.strictObject({
   integration: positive(duration).default(10),
   /** scans of this length with this gap after each; default one scan */
   scan: positive(duration).optional(),
-  gap: duration.default(0),
+  gap: notNegative(duration).default(0),
 });
 
 const frequencies = z.strictObject({
@@ -108,32 +111,37 @@ const field = z.strictObject({
   dec: declination.refine((value) => Math.abs(value) <= Math.PI / 2, "lies between -90deg and 90deg"),
 });
 
-const source = z.strictObject({
-  /** at the reference frequency; Stokes I */
-  flux: flux.default(0),
-  /** offset from the phase centre, direction cosines of these angles: l east, m north */
-  east: angle.default(0),
-  north: angle.default(0),
-  /** Gaussian, full widths at half maximum; 0 a point */
-  major: angle.default(0),
-  minor: angle.optional(),
-  /** position angle of the major axis, from north through east */
-  angle: angle.default(0),
-  /** flux ~ frequency ** index */
-  spectral_index: z.number().min(-10).max(10).default(0),
-  /** default the middle of the band */
-  reference: positive(frequency).optional(),
-  /** fractions of Stokes I */
-  q: z.number().min(-1).max(1).default(0),
-  u: z.number().min(-1).max(1).default(0),
-  v: z.number().min(-1).max(1).default(0),
-  /** a spectral line, Gaussian in frequency */
-  line: z.strictObject({ centre: positive(frequency), width: positive(frequency), flux }).optional(),
-  /** brightness as it passes through a beam: Gaussian in time, greatest at `at` after the start */
-  transit: z.strictObject({ at: duration, width: positive(duration) }).optional(),
-  /** Field numbers from 1 in which it is seen; default all */
-  fields: z.array(z.int().min(1)).optional(),
-});
+const source = z
+  .strictObject({
+    /** at the reference frequency; Stokes I */
+    flux: flux.default(0),
+    /** offset from the phase centre, direction cosines of these angles: l east, m north */
+    east: angle.default(0),
+    north: angle.default(0),
+    /** Gaussian, full widths at half maximum; 0 a point */
+    major: notNegative(angle).default(0),
+    minor: notNegative(angle).optional(),
+    /** position angle of the major axis, from north through east */
+    angle: angle.default(0),
+    /** flux ~ frequency ** index */
+    spectral_index: z.number().min(-10).max(10).default(0),
+    /** default the middle of the band */
+    reference: positive(frequency).optional(),
+    /** fractions of Stokes I */
+    q: z.number().min(-1).max(1).default(0),
+    u: z.number().min(-1).max(1).default(0),
+    v: z.number().min(-1).max(1).default(0),
+    /** a spectral line, Gaussian in frequency */
+    line: z.strictObject({ centre: positive(frequency), width: positive(frequency), flux }).optional(),
+    /** brightness as it passes through a beam: Gaussian in time, greatest at `at` after the start */
+    transit: z.strictObject({ at: duration, width: positive(duration) }).optional(),
+    /** Field numbers from 1 in which it is seen; default all */
+    fields: z.array(z.int().min(1)).optional(),
+  })
+  .refine(
+    ({ east, north }) => Math.sin(east) ** 2 + Math.sin(north) ** 2 < 1,
+    "the source lies beyond the sky",
+  );
 
 const gains = z.strictObject({
   /** rms of the natural logarithm of an antenna's and hand's amplitude */
@@ -218,7 +226,14 @@ export function checkScenario(
 ): { scenario: Scenario } | { issues: readonly ScenarioIssue[] } {
   const result = scenarioSchema.safeParse(written);
   if (result.success) return { scenario: result.data };
-  return { issues: result.error.issues.flatMap((issue) => explain(issue, written)) };
+  const issues = result.error.issues.flatMap((issue) => explain(issue, written));
+  // A misspelt key is why another is missing: it comes first.
+  return {
+    issues: [
+      ...issues.filter(({ key }) => key !== undefined),
+      ...issues.filter(({ key }) => key === undefined),
+    ],
+  };
 }
 
 const { keys: KEYS, words: WORDS } = schemaWords(scenarioSchema);

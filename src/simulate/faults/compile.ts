@@ -59,7 +59,7 @@ function compile(fault: Fault, index: number, observation: Observation): Compile
     case "missing-rows":
     case "duplicate-rows":
     case "reversed-rows": {
-      const scope = scopeOf(fault, observation, placeOf(index, fault));
+      const scope = scopeOf(fault, observation, placeOf(index));
       return {
         kind: fault.kind,
         cause: "tables",
@@ -79,7 +79,7 @@ export function rowFaults(observation: Observation): RowFault[] {
     if (fault.kind !== "missing-rows" && fault.kind !== "duplicate-rows" && fault.kind !== "reversed-rows") {
       return [];
     }
-    const { times, baselines } = scopeOf(fault, observation, placeOf(index, fault));
+    const { times, baselines } = scopeOf(fault, observation, placeOf(index));
     return [{ kind: fault.kind, times, baselines }];
   });
 }

@@ -12,7 +12,7 @@ export function compileHeaderFault(
   index: number,
   observation: Observation,
 ): CompiledFault {
-  const scope = scopeOf(fault, observation, placeOf(index, fault));
+  const scope = scopeOf(fault, observation, placeOf(index));
   const { header, size, unit } = changeOf(fault, observation);
   return {
     kind: fault.kind,
@@ -73,7 +73,7 @@ export function compilePosition(
   index: number,
   observation: Observation,
 ): CompiledFault {
-  const scope = antennaScope({ antenna: fault.antenna }, observation, placeOf(index, fault));
+  const scope = antennaScope({ antenna: fault.antenna }, observation, placeOf(index));
   return {
     kind: fault.kind,
     cause: fault.of === "uvw" ? "antenna" : "tables",

@@ -27,7 +27,7 @@ export function compileInterference(
   index: number,
   observation: Observation,
 ): CompiledFault {
-  const place = placeOf(index, fault);
+  const place = placeOf(index);
   const drifting = fault.kind === "drifting-line" ? fault : null;
   const channels = drifting === null ? fault.channels : [driftRange(drifting, observation.shape.channels)];
   const scope = scopeOf({ ...fault, channels }, observation, place);

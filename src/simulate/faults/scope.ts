@@ -4,7 +4,6 @@ import { SECONDS_PER_DAY } from "../../util/dates.ts";
 import { InputError } from "../../util/errors.ts";
 import type { Observation } from "../observation.ts";
 import { type Hand, handIndex } from "../products.ts";
-import type { Fault } from "./schema.ts";
 
 /** The keys of a fault that say which samples; every one optional. */
 export interface Where {
@@ -187,6 +186,6 @@ function samplesOf(where: Where, observation: Observation, place: string): Int32
 }
 
 /** Where in the scenario a fault stands. */
-export function placeOf(index: number, fault: Fault): string {
-  return `faults.${index} (${fault.kind})`;
+export function placeOf(index: number): string {
+  return `faults.${index}`;
 }

@@ -112,7 +112,7 @@ export function compileAntennaFault(
   index: number,
   observation: Observation,
 ): CompiledFault {
-  const place = placeOf(index, fault);
+  const place = placeOf(index);
   const station = stationIndex(observation, fault.antenna, place);
   const scope = antennaScope(fault, observation, place);
   const factor = factorOf(fault, index, observation);
@@ -203,7 +203,7 @@ export function compileBaselineFault(
   index: number,
   observation: Observation,
 ): CompiledFault {
-  const place = placeOf(index, fault);
+  const place = placeOf(index);
   const scope = scopeOf({ ...fault, baselines: [fault.baseline] }, observation, place);
   const seen = productsWithSignal(observation);
   const withNoise = fault.kind === "baseline-gain";
@@ -240,7 +240,7 @@ export function compileExchange(
   index: number,
   observation: Observation,
 ): CompiledFault {
-  const place = placeOf(index, fault);
+  const place = placeOf(index);
   const station = stationIndex(observation, fault.antenna, place);
   const scope = antennaScope(fault, observation, place);
   return {
@@ -270,7 +270,7 @@ export function compileNoisy(
   index: number,
   observation: Observation,
 ): CompiledFault {
-  const place = placeOf(index, fault);
+  const place = placeOf(index);
   const station = stationIndex(observation, fault.antenna, place);
   const scope = antennaScope(fault, observation, place);
   const { hand } = fault;

@@ -13,7 +13,7 @@ export function compileSampleFault(
   index: number,
   observation: Observation,
 ): CompiledFault {
-  const scope = scopeOf(fault, observation, placeOf(index, fault));
+  const scope = scopeOf(fault, observation, placeOf(index));
   const share = "share" in fault ? fault.share : 1;
   const visit = visitor(scope.samples, share, index, observation.scenario.seed);
   const effect: Effect = {
