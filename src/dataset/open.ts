@@ -34,7 +34,7 @@ export async function openDataset(path: string, known?: RowSummary): Promise<Ran
   throw new InputError(
     `no visibilities: expected random groups (NAXIS1 = 0 and GROUPS = T), found ${contents(file)}`,
     place,
-    primary.header.shown("GROUPS") === "T"
+    primary.header.shown("GROUPS") === "T" && primary.header.has("NAXIS1")
       ? "The header says GROUPS = T, but NAXIS1 is not 0: the file is damaged or of another kind"
       : "Name the file of visibilities, not an image or a table made from them",
   );

@@ -2,6 +2,7 @@
 import { InputError } from "../../util/errors.ts";
 import type { BlockRequest, SampleBlock } from "../dataset.ts";
 import type { ByteSource, Cursor } from "../fits/source.ts";
+import type { TableFlags } from "../table-flags.ts";
 import type { GroupLayout } from "./layout.ts";
 import { type BlockRange, blockRange, planReads, type ReadPlan } from "./plan.ts";
 import { fillRows, fillSum, type RawRows, type RowContext } from "./rows.ts";
@@ -20,12 +21,14 @@ export async function* readBlocks(
   source: ByteSource,
   layout: GroupLayout,
   context: RowContext,
+  flags: TableFlags | undefined,
   request: BlockRequest,
 ): AsyncGenerator<SampleBlock> {
   const samples = sampleLayout(layout);
   const plan = planReads(layout, samples.shape, request);
   if (plan.firstRow === plan.endRow) return;
   const decode = blockDecoder(layout, samples, context, plan, request);
+  const laysFlags = request.want !== "rows" && flags !== undefined;
   const cursor = await source.cursor(blockRange(layout, plan, plan.firstRow).byte);
   const buffers = [newBuffer(plan), newBuffer(plan)];
   const read = (row: number, k: number) => {
@@ -41,7 +44,9 @@ export async function* readBlocks(
       const bytes = await pending;
       const range = blockRange(layout, plan, row);
       if (row + range.rows < plan.endRow) pending = read(row + range.rows, k + 1);
-      yield decode(bytes, range);
+      const block = decode(bytes, range);
+      if (laysFlags) flags.apply(block, samples.shape);
+      yield block;
     }
   } finally {
     await pending.catch(() => {});

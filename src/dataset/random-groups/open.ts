@@ -1,19 +1,22 @@
 /** A random-groups file as a Dataset: tables first, then one pass over the rows, then what only both together tell. */
-import type { BlockRequest, Dataset, Field, Setup } from "../dataset.ts";
+import type { BlockRequest, Dataset, Field, Setup, Shape } from "../dataset.ts";
 import type { FitsFile } from "../fits/hdus.ts";
 import { datasetName } from "../name.ts";
 import type { Notes } from "../notes.ts";
 import { type RowSummary, summarizeRows } from "../row-summary.ts";
+import { TableFlags } from "../table-flags.ts";
 import { type AntennaTable, readAntennaTable } from "./antenna-table.ts";
 import { arrayInfo } from "./array-info.ts";
 import { readBlocks } from "./blocks.ts";
 import { fieldsOfRows, noteImpossibleFields, readFieldTable } from "./fields.ts";
+import { readFlagTable } from "./flag-table.ts";
 import { headerFacts, noteDates, polarizationsOf, telescopeOf, unitOf } from "./header-facts.ts";
 import { type GroupLayout, groupLayout } from "./layout.ts";
 import { type RowColumns, rowColumns } from "./parameters.ts";
 import type { RowContext } from "./rows.ts";
+import { sampleLayout } from "./samples.ts";
 import { readSetups } from "./setups.ts";
-import { findTables, type TableHdus } from "./tables.ts";
+import { findTables } from "./tables.ts";
 
 /** A Dataset that has already looked at its rows. */
 export interface RandomGroupsDataset extends Dataset {
@@ -29,11 +32,12 @@ export async function openRandomGroups(file: FitsFile, known?: RowSummary): Prom
   const primary = file.hdus[0];
   const layout = groupLayout(primary, notes);
   const polarizations = polarizationsOf(layout);
-  const tables = await readTables(file, layout, findTables(file, notes), notes);
+  const shape = sampleLayout(layout).shape;
+  const tables = await readTables(file, layout, shape, notes);
   const columns = rowColumns(layout, tables.reference);
   noteParameters(columns, notes);
   const context = rowContext(columns, tables);
-  const blocks = (request: BlockRequest) => readBlocks(source, layout, context, request);
+  const blocks = (request: BlockRequest) => readBlocks(source, layout, context, tables.flags, request);
   const summary = known ?? (await summarizeRows({ rows: layout.groups, blocks }));
   noteRows(summary, context, notes);
   noteDates(primary.header, summary, notes);
@@ -50,11 +54,7 @@ export async function openRandomGroups(file: FitsFile, known?: RowSummary): Prom
     fields,
     setups: tables.setups,
     polarizations,
-    shape: {
-      subbands: layout.subband.length,
-      channels: layout.frequency.length,
-      polarizations: polarizations.length,
-    },
+    shape,
     unit: unitOf(primary.header),
     hasWeights: layout.complex.length === 3 || columns.weight !== undefined,
     rows: layout.groups,
@@ -70,14 +70,16 @@ interface TablesRead {
   readonly reference: number;
   readonly setups: readonly Setup[];
   readonly fields: readonly Field[] | undefined;
+  readonly flags: TableFlags | undefined;
 }
 
 async function readTables(
   file: FitsFile,
   layout: GroupLayout,
-  hdus: TableHdus,
+  shape: Shape,
   notes: Notes,
 ): Promise<TablesRead> {
+  const hdus = findTables(file, notes);
   const cursor = await file.source.cursor(layout.hdu.dataStart + layout.hdu.dataBytes);
   try {
     const antennas: AntennaTable[] = [];
@@ -85,7 +87,15 @@ async function readTables(
     const reference = referenceFrequency(layout, antennas, notes);
     const setups = await readSetups(cursor, hdus.frequencies, layout, reference, notes);
     const fields = hdus.sources === undefined ? undefined : await readFieldTable(cursor, hdus.sources, notes);
-    return { antennas, reference, setups, fields };
+    const flags =
+      hdus.flags === undefined ? [] : await readFlagTable(cursor, hdus.flags, antennas, setups, shape, notes);
+    return {
+      antennas,
+      reference,
+      setups,
+      fields,
+      flags: flags.length === 0 ? undefined : new TableFlags(flags),
+    };
   } finally {
     await cursor.close();
   }

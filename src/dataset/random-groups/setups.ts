@@ -145,23 +145,25 @@ function widthOf({ width, bandwidth }: Subband, axis: GroupAxis): number {
 
 function noteDisagreements(subbands: readonly Subband[], axis: GroupAxis, notes: Notes): void {
   const { step } = axis;
-  const stepSign = Math.sign(step);
   const sized = subbands.filter(({ width }) => width !== 0 && Number.isFinite(width));
   const wider = sized.find(({ width }) => step !== 0 && Math.abs(Math.abs(width / step) - 1) > SAME_STEP);
   if (wider !== undefined) {
-    const text = `the channel width is ${Math.abs(step)} Hz by CDELT${axis.number} and ${Math.abs(wider.width)} Hz by the frequency table, which counts`;
-    notes.fault("channel-width-disagrees", text);
-  }
-  const turned = sized.find(
-    ({ width, sideband }) =>
-      (stepSign !== 0 && Math.sign(width) !== stepSign) || (Math.min(step, width) < 0 && sideband > 0),
-  );
-  if (turned !== undefined && axis.length > 1) {
     const text =
-      `the direction of frequency differs: CDELT${axis.number} ${signText(step)}, CH WIDTH ${signText(turned.width)}, ` +
-      `SIDEBAND ${signText(turned.sideband)}; channels are taken to fall in frequency`;
-    notes.fault("frequency-order-disagrees", text);
+      `the channel width is ${Math.abs(step)} Hz by CDELT${axis.number} and ${Math.abs(wider.width)} Hz by the ` +
+      "frequency table, which counts";
+    // With one channel CDELT is often the bandwidth of the whole observation.
+    if (axis.length === 1) notes.note("channel-width-disagrees", text);
+    else notes.fault("channel-width-disagrees", text);
   }
+  if (axis.length === 1) return;
+  const directionText = ({ width, sideband }: Subband) =>
+    `the direction of frequency differs: CDELT${axis.number} ${signText(step)}, CH WIDTH ${signText(width)}, ` +
+    `SIDEBAND ${signText(sideband)}; channels are taken to fall in frequency`;
+  const turned = sized.find(({ width }) => step * width < 0);
+  const unsaid = sized.find(({ width, sideband }) => Math.min(step, width) < 0 && sideband > 0);
+  if (turned !== undefined) notes.fault("frequency-order-disagrees", directionText(turned));
+  // Writers that give the steps their sign often leave SIDEBAND at 1.
+  else if (unsaid !== undefined) notes.note("frequency-order-disagrees", directionText(unsaid));
 }
 
 function signText(value: number): string {
