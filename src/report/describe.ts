@@ -166,9 +166,9 @@ function subbandText(setup: Setup, subband: number, subbands: number, channels: 
   const last = setup.frequencies[(subband + 1) * channels - 1]!;
   const name = subbands === 1 ? "" : `${subband}: `;
   const width = setup.channelWidths[subband]!;
-  const wide = Number.isNaN(width) ? "of unknown width" : formatFrequency(width);
-  if (channels === 1) return `${name}${formatFrequency(first, 8)}, ${wide} wide`;
-  return `${name}${formatFrequency(first, 8)} to ${formatFrequency(last, 8)}, channels ${wide} wide`;
+  const wide = Number.isNaN(width) ? "of unknown width" : `${formatFrequency(width)} wide`;
+  if (channels === 1) return `${name}${formatFrequency(first, 8)}, ${wide}`;
+  return `${name}${formatFrequency(first, 8)} to ${formatFrequency(last, 8)}, channels ${wide}`;
 }
 
 function spacingText({ shortestSpacing, longestSpacing, rowsWithoutUvw, wAllZero }: RowSummary): string {

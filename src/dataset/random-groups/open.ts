@@ -39,7 +39,7 @@ export async function openRandomGroups(file: FitsFile, known?: RowSummary): Prom
   const context = rowContext(columns, tables);
   const blocks = (request: BlockRequest) => readBlocks(source, layout, context, tables.flags, request);
   const summary = known ?? (await summarizeRows({ rows: layout.groups, blocks }));
-  noteRows(summary, context, notes);
+  noteRows(summary, tables.hasSetupTable ? context.strangeSetups : new Set(), notes);
   noteDates(primary.header, summary, notes);
   const fields = fieldsOfRows(layout, columns.source !== undefined, tables.fields, summary, notes);
   noteImpossibleFields(fields, notes);
@@ -69,6 +69,8 @@ interface TablesRead {
   /** CRVAL of the FREQ axis, or what stands in for it, Hz */
   readonly reference: number;
   readonly setups: readonly Setup[];
+  /** the setups are those of a frequency table, and FREQSEL means something */
+  readonly hasSetupTable: boolean;
   readonly fields: readonly Field[] | undefined;
   readonly flags: TableFlags | undefined;
 }
@@ -93,6 +95,7 @@ async function readTables(
       antennas,
       reference,
       setups,
+      hasSetupTable: hdus.frequencies !== undefined,
       fields,
       flags: flags.length === 0 ? undefined : new TableFlags(flags),
     };
@@ -140,9 +143,9 @@ function noteParameters(columns: RowColumns, notes: Notes): void {
     notes.fault("missing-w", "no parameter WW: w is taken as 0 and cannot be judged");
 }
 
-function noteRows(summary: RowSummary, context: RowContext, notes: Notes): void {
-  if (context.strangeSetups.size > 0) {
-    const ids = [...context.strangeSetups].slice(0, 10).join(", ");
+function noteRows(summary: RowSummary, strangeSetups: ReadonlySet<number>, notes: Notes): void {
+  if (strangeSetups.size > 0) {
+    const ids = [...strangeSetups].slice(0, 10).join(", ");
     notes.fault(
       "setup-not-in-table",
       `rows name frequency setup (FREQSEL) ${ids}: taken as the only one there is`,

@@ -37,20 +37,8 @@ export async function readSetups(
   notes: Notes,
 ): Promise<Setup[]> {
   const { frequency: axis, subband } = layout;
-  let rows: { id: number; subbands: Subband[] }[];
-  if (hdu === undefined) {
-    if (subband.length > 1) {
-      throw layout.hdu.header.error(
-        `${subband.length} sub-bands (IF axis) and no frequency table (FQ): expected one with their frequencies`,
-        `NAXIS${subband.number}`,
-      );
-    }
-    const text = "no frequency table (FQ): frequencies are those of the FREQ axis";
-    notes.note("missing-frequency-table", text);
-    rows = [
-      { id: 1, subbands: [{ offset: 0, width: Number.NaN, bandwidth: Number.NaN, sideband: Number.NaN }] },
-    ];
-  } else rows = await readTableRows(cursor, hdu, layout, notes);
+  const rows =
+    hdu === undefined ? [headerSetup(layout, notes)] : await readTableRows(cursor, hdu, layout, notes);
   if (rows.length * subband.length * axis.length > MOST_FREQUENCIES) {
     throw layout.hdu.header.error(
       `${rows.length} frequency setups of ${subband.length} sub-bands of ${axis.length} channels: expected at most ` +
@@ -61,6 +49,19 @@ export async function readSetups(
   const setups = rows.map(({ id, subbands }) => setupOf(id, subbands, { ...axis, value: reference }));
   noteImpossible(setups, notes);
   return setups;
+}
+
+/** The FREQ axis alone: enough for one sub-band. */
+function headerSetup({ hdu, subband }: GroupLayout, notes: Notes): { id: number; subbands: Subband[] } {
+  if (subband.length > 1) {
+    throw hdu.header.error(
+      `${subband.length} sub-bands (IF axis) and no frequency table (FQ): expected one with their frequencies`,
+      `NAXIS${subband.number}`,
+    );
+  }
+  notes.note("missing-frequency-table", "no frequency table (FQ): frequencies are those of the header");
+  const unsaid = Number.NaN;
+  return { id: 1, subbands: [{ offset: 0, width: unsaid, bandwidth: unsaid, sideband: unsaid }] };
 }
 
 async function readTableRows(
