@@ -42,7 +42,9 @@ export function toDo(finding: Finding): string {
     flags.length <= 6 ? flags.join(", ") : `${flags.slice(0, 5).join(", ")} and ${flags.length - 5} more`;
   const word = flags.length === 1 ? "flag" : "flags";
   if (suggests === "flag") {
-    const mended = finding.mendedByFlags ? " As the data are it is past its hold limit; with the suggested flags it is not." : "";
+    const mended = finding.mendedByFlags
+      ? " As the data are it is past its hold limit; with the suggested flags it is not."
+      : "";
     return `Accept suggested ${word} ${named}.${mended}`;
   }
   if (suggests === "none") return `Suggested ${word} ${named} would remove it.`;
@@ -81,4 +83,9 @@ export function findingCounts(findings: readonly Finding[]): string {
   if (holds > 0) parts.push(`${holds} ${holds === 1 ? "hold" : "holds"}`);
   if (cautions > 0) parts.push(`${cautions} ${cautions === 1 ? "caution" : "cautions"}`);
   return parts.length === 0 ? "nothing that cautions or holds" : parts.join(", ");
+}
+
+/** Points that a rule took: whole ones, below one a digit. */
+export function pointsText(points: number): string {
+  return points < 0.95 ? String(Number(points.toPrecision(1))) : String(Math.round(points));
 }

@@ -88,7 +88,7 @@ export function fixtureImage(): ImageForecast {
       },
     ],
     wTerm: {
-      largestWavelengths: 11800,
+      largestWavelengths: 7540,
       edgePhaseRad: 1.62,
       edgeLossFraction: 0.187,
       uncorrectedFieldArcsec: 1340,
@@ -168,7 +168,7 @@ export function fixtureFindings(): Finding[] {
         unit: "fraction",
       },
       evidence: [
-        "The largest |w| is 11.8 kilowavelengths, on Q12-Q14.",
+        "The largest |w| is 7.54 kilowavelengths, on Q12-Q14.",
         "A field of 22.3 arcmin needs no correction at 0.1 rad.",
       ],
       suggests: "correct-w",

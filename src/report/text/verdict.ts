@@ -1,7 +1,7 @@
 /** The top of the text report: the verdict, the score, what took it, and what was looked at. */
 import { datasetFacts } from "../dataset-facts.ts";
 import type { Check } from "../report.ts";
-import { findingCounts, scoreSentence, VERDICT_ADVICE, VERDICT_NAME } from "../words.ts";
+import { findingCounts, pointsText, scoreSentence, VERDICT_ADVICE, VERDICT_NAME } from "../words.ts";
 import type { Paper } from "./paper.ts";
 
 export function verdictSection(paper: Paper, check: Check): void {
@@ -17,8 +17,4 @@ export function verdictSection(paper: Paper, check: Check): void {
   }
   paper.gap();
   for (const { label, value } of datasetFacts(check.survey)) paper.entry(label, value, { labelWidth: 11 });
-}
-
-export function pointsText(points: number): string {
-  return points < 0.95 ? String(Number(points.toPrecision(1))) : String(Math.round(points));
 }

@@ -1,4 +1,5 @@
 /** Columns that text takes on a terminal, and lines cut to them. */
+import { boundUnits, NO_BREAK_SPACE } from "../bound-units.ts";
 
 /**
  * Characters two columns wide: the ranges of East Asian Width W and F (Unicode Standard Annex 11) and the pictographs
@@ -56,21 +57,10 @@ export function pad(text: string, width: number, side: "left" | "right" = "left"
   return side === "left" ? text + spaces : spaces + text;
 }
 
-/** What stays on the line of the number before it. */
-const UNIT =
-  /^(?:%|deg|arcmin|arcsec|mas|uas|rad|[kMGT]?Hz|[munk]?Jy|[kcm]?m|[mn]?s|min|h|d|[kM]?λ|[kMGT]?B|sigma|times|UTC|J2000|B1950)[.,;:)]*$/;
-
 /** The words of a text, a number and its unit being one of them. */
 function wordsOf(text: string): string[] {
-  const words: string[] = [];
-  for (const part of text.split(" ")) {
-    if (part === "") continue;
-    const before = words.at(-1);
-    if (before !== undefined && /\d$/.test(before) && UNIT.test(part))
-      words[words.length - 1] = `${before} ${part}`;
-    else words.push(part);
-  }
-  return words;
+  const words = boundUnits(text).split(" ");
+  return words.filter((word) => word !== "").map((word) => word.replaceAll(NO_BREAK_SPACE, " "));
 }
 
 /**

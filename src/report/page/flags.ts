@@ -1,0 +1,59 @@
+/** The suggested flags with what each costs. On a narrow page every flag is a block of lines. */
+import type { FlagEntry } from "../../flags/entry.ts";
+import { formatCount, formatPercent } from "../../util/units.ts";
+import { sensitivityCost } from "../numbers.ts";
+import { formatChange } from "../quantity.ts";
+import type { Check } from "../report.ts";
+import type { ScopeWords } from "../scope.ts";
+import { PROPOSALS } from "../words.ts";
+import { html, type Markup, type Piece } from "./markup.ts";
+import { section, sentence, stackedTable, upperFirst } from "./parts.ts";
+
+const COLUMNS = [
+  { head: "Flag" },
+  { head: "Drops" },
+  { head: "Share", numeric: true, named: true },
+  { head: "Confidence", numeric: true, named: true },
+  { head: "Sensitivity", numeric: true, named: true },
+  { head: "Beam axes", numeric: true, named: true },
+  { head: "Sidelobe", numeric: true, named: true },
+  { head: "Gap", numeric: true, named: true },
+] as const;
+
+export function flagsSection(check: Check, words: ScopeWords): Markup {
+  const { flags } = check;
+  if (flags.length === 0) return section("flags", "Suggested flags", html`<p>None are suggested.</p>`);
+  const loss = sensitivityCost(check.image);
+  const together = Number.isFinite(loss)
+    ? ` All together they cost ${formatPercent(Math.max(0, loss))} of the sensitivity.`
+    : "";
+  return section(
+    "flags",
+    "Suggested flags",
+    html`<p class="note">${PROPOSALS}${together}</p>
+${stackedTable(
+  "Suggested flags and their cost",
+  COLUMNS,
+  flags.map((flag) => cellsOf(flag, words)),
+)}
+<p class="small muted">Share: of the samples not flagged yet. Confidence: that the flag removes a fault and not sky.
+Sensitivity: lost with natural weighting. Beam axes (major, minor), peak sidelobe and largest gap: relative change,
+planned weighting.</p>`,
+  );
+}
+
+function cellsOf(flag: FlagEntry, words: ScopeWords): Piece[] {
+  const { cost } = flag;
+  const [major, minor] = [cost.beamMajorChangeFraction, cost.beamMinorChangeFraction].map(formatChange);
+  return [
+    html`<span class="flag-id">${flag.id}</span>`,
+    html`<strong>${upperFirst(words.scope(flag))}</strong><br>${sentence(upperFirst(flag.reason))}
+<span class="muted small">${formatCount(flag.samples)} samples, rule <span class="code">${flag.rule}</span></span>`,
+    formatPercent(flag.fraction),
+    formatPercent(flag.confidence),
+    formatChange(-cost.sensitivityLossFraction),
+    major === minor ? major : html`${major},<br>${minor}`,
+    formatChange(cost.peakSidelobeChangeFraction),
+    formatChange(cost.largestGapChangeFraction),
+  ];
+}
