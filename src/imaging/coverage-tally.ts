@@ -99,6 +99,11 @@ export class CoverageTally {
     return Math.min(RADIAL_BINS - 1, Math.max(0, Math.floor((log - this.low) * this.binsPerLog)));
   }
 
+  /** The same counts with the edges of gaps at those of bins. */
+  binned(): CoverageTally {
+    return this.without(new CoverageTally(this.form));
+  }
+
   /** The tally with the samples of `other` taken out; both of one form. Edges of gaps are then those of bins. */
   without(other: CoverageTally): CoverageTally {
     const left = new CoverageTally(this.form);

@@ -60,6 +60,11 @@ export class CellIndex {
     return this.slots - 1;
   }
 
+  /** The cell's slot, or -1 when it has none. */
+  peek(iu: number, iv: number): number {
+    return this.slotOf[iu * this.columns + iv + this.half]!;
+  }
+
   /** Slots and the cells they stand for, in order of (iu, iv). */
   *inOrder(): Generator<readonly [slot: number, iu: number, iv: number]> {
     for (let cell = 0; cell < this.slotOf.length; cell++) {

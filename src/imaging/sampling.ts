@@ -127,6 +127,8 @@ export interface FrequencyRange {
   readonly low: Float64Array;
   readonly high: Float64Array;
   readonly mean: number;
+  /** of all */
+  readonly highest: number;
 }
 
 export function frequencyRange(dataset: Dataset, channelUsed: Uint8Array): FrequencyRange {
@@ -135,6 +137,7 @@ export function frequencyRange(dataset: Dataset, channelUsed: Uint8Array): Frequ
   const high = new Float64Array(dataset.setups.length * subbands).fill(Number.NaN);
   let sum = 0;
   let used = 0;
+  let highest = Number.NaN;
   dataset.setups.forEach((setup, index) => {
     for (let s = 0; s < subbands; s++) {
       const at = index * subbands + s;
@@ -143,12 +146,13 @@ export function frequencyRange(dataset: Dataset, channelUsed: Uint8Array): Frequ
         const frequency = setup.frequencies[c]!;
         if (!(low[at]! <= frequency)) low[at] = frequency;
         if (!(high[at]! >= frequency)) high[at] = frequency;
+        if (!(highest >= frequency)) highest = frequency;
         sum += frequency;
         used += 1;
       }
     }
   });
-  return { low, high, mean: used === 0 ? meanOf(dataset) : sum / used };
+  return { low, high, mean: used === 0 ? meanOf(dataset) : sum / used, highest };
 }
 
 function meanOf(dataset: Dataset): number {

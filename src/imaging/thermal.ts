@@ -130,3 +130,29 @@ export function brightness(sampling: Sampling): number {
   found.sort((a, b) => a - b);
   return found[Math.min(found.length - 1, Math.floor(found.length * 0.75))]!;
 }
+
+/**
+ * System equivalent flux density of an antenna that the measured noise means, Jy: median over baselines, sub-bands
+ * and products of sigma sqrt(2 dnu tau), for a perfect correlator. NaN when the amplitudes are not in Jy.
+ * @see Thompson, Moran & Swenson 2017, Interferometry and Synthesis in Radio Astronomy, 3rd ed., section 6.2
+ */
+export function measuredSefd(sampling: Sampling): number {
+  const { survey, products } = sampling;
+  const { dataset, levels } = survey;
+  const { subbands, channels, polarizations } = dataset.shape;
+  const setup = dataset.setups[0];
+  if (dataset.unit !== "Jy" || setup === undefined || !(survey.integration > 0)) return Number.NaN;
+  const found: number[] = [];
+  for (let at = 0; at < levels.sigma.length; at += polarizations) {
+    const width = setup.channelWidths[Math.floor(at / polarizations / channels) % subbands]!;
+    for (const product of products) {
+      const sigma = levels.sigma[at + product]!;
+      if (sigma > 0 && levels.count[at + product]! > 0) {
+        found.push(sigma * Math.sqrt(2 * width * survey.integration));
+      }
+    }
+  }
+  if (found.length === 0) return Number.NaN;
+  found.sort((a, b) => a - b);
+  return found[found.length >> 1]!;
+}

@@ -1,0 +1,306 @@
+/**
+ * What the planned image would suffer from this dataset: beams and noise of three weightings, coverage, the w term,
+ * smearing, what caps the dynamic range, and what the imaging run should be told. One pass over the weights; a second
+ * one, over the samples of the events, where there are any.
+ */
+import type { Weighting } from "../dataset/plan-request.ts";
+import type { Selection } from "../dataset/selection.ts";
+import type { DetectedEvent } from "../detect/event.ts";
+import type { Survey } from "../measure/survey-result.ts";
+import type { Measure } from "../measure/table.ts";
+import { formatFlux, formatNumber, formatPercent } from "../util/units.ts";
+import { adviceOf, type DropW } from "./advice.ts";
+import { BeamMaker, gridFormOf, type MadeBeam, pictureOf, reportBeam } from "./beams.ts";
+import { costsOf, type GriddedImage, type SelectionCost } from "./cost.ts";
+import { coverageFormOf, judgeCoverage } from "./coverage.ts";
+import { CoverageTally } from "./coverage-tally.ts";
+import { weightingName } from "./derive-plan.ts";
+import { type EdgeSamples, edgeSamples, FactorLookup } from "./edge-samples.ts";
+import type { ForecastParts, NamedBeam } from "./forecast-parts.ts";
+import { type GridRequest, gridDataset } from "./grid-dataset.ts";
+import type { BeamPicture, ImageForecast, WeightingResult, WTerm } from "./image.ts";
+import { imageMeasures } from "./image-measures.ts";
+import { eventLimits, type RankedLimit, rankLimits } from "./limits.ts";
+import type { Plan } from "./plan.ts";
+import { frequencyRange, type Sampling, samplingOf } from "./sampling.ts";
+import { type SmearingResult, smearingAt } from "./smearing.ts";
+import { brightness, fillWeightedVariance, measuredSefd } from "./thermal.ts";
+import { trackW } from "./track-w.ts";
+import { wLossAt } from "./w-loss.ts";
+import { snapshotsOf, W_PHASE_LIMIT, wByAntenna, wByBaseline, wTermOf } from "./w-report.ts";
+
+export interface ForecastRequest {
+  /** what was detected, for the limits on the dynamic range */
+  readonly events?: readonly DetectedEvent[];
+  /** told the share of the work that is done, 0..1 */
+  readonly onProgress?: (share: number) => void;
+}
+
+export interface Forecast {
+  readonly image: ImageForecast;
+  readonly picture: BeamPicture | null;
+  readonly measures: readonly Measure[];
+  /** What dropping each of these selections would cost; a pass over the weights for them all. */
+  costs(selections: readonly Selection[]): Promise<SelectionCost[]>;
+}
+
+export async function forecast(survey: Survey, plan: Plan, request: ForecastRequest = {}): Promise<Forecast> {
+  const { events = [], onProgress } = request;
+  const sampling = samplingOf(survey);
+  const variance = fillWeightedVariance(sampling);
+  const coverageForm = coverageFormOf(sampling, plan);
+  const gridRequest: GridRequest = {
+    sampling,
+    variance,
+    form: gridFormOf(sampling, plan, noiseBound(sampling, variance)),
+    coverage: () => new CoverageTally(coverageForm),
+    onProgress: onProgress === undefined ? undefined : (share) => onProgress(0.6 * share),
+  };
+  const gridded = await gridDataset(gridRequest);
+  const cells = gridded.grid.cells();
+  const maker = new BeamMaker(gridRequest.form);
+  const image: GriddedImage = {
+    request: { ...gridRequest, onProgress: undefined },
+    plan,
+    gridded,
+    cells,
+    maker,
+  };
+  const weightings = compared(plan.weighting.value).map(
+    (weighting): NamedBeam => ({
+      weighting,
+      name: weightingName(weighting),
+      planned: sameWeighting(weighting, plan.weighting.value),
+      made: maker.make(cells, weighting),
+    }),
+  );
+  onProgress?.(0.8);
+  const planned = weightings.find((named) => named.planned)!.made;
+  const natural = weightings.find((named) => named.weighting.kind === "natural")!.made;
+  const wOf = trackW(sampling);
+  const radius = Math.sin(plan.fieldOfView.value / 2);
+  const samples = edgeSamples(sampling, wOf.w, new FactorLookup(cells, planned.factors));
+  const loss = wLossAt(samples, radius);
+  const baselines = wByBaseline(sampling, wOf.w, samples, radius, plan.dishDiameter.value);
+  const wTerm = wTermOf(baselines, loss, plan.fieldOfView.value);
+  const smearing = smearingAt(samples, radius, sampling.field.declination);
+  const coverage = judgeCoverage(gridded.coverage, cells, plan);
+  const level = sourceLevel(sampling, natural);
+  const limits = rankLimits([
+    ...(await eventLimits(image, events, level)),
+    ...standingLimits({ plan, planned, wTerm, smearing, samples, radius, brightness: level.brightness }),
+  ]);
+  const parts: ForecastParts = {
+    sampling,
+    plan,
+    calibrated: survey.dataset.unit === "Jy",
+    weightings,
+    planned,
+    natural,
+    coverage,
+    trackW: wOf,
+    wTerm,
+    wShift: loss.shift,
+    baselines,
+    smearing,
+    limits,
+    sefd: measuredSefd(sampling),
+  };
+  const dropW = await dropCost(image, parts);
+  onProgress?.(1);
+  const snapshots = snapshotsOf(sampling, wOf.w, radius);
+  return {
+    image: reportImage(parts, maker.field, dropW),
+    picture: pictureOf(planned, weightingName(plan.weighting.value)),
+    measures: imageMeasures(parts, snapshots, wByAntenna(baselines)),
+    costs: (selections) => costsOf(image, selections),
+  };
+}
+
+/**
+ * The forecast of the data as they are, with that of the data after the suggested flags beside it. Limits, smearing,
+ * the w term and the advice are those of the data as they are.
+ */
+export function forecastAfter(before: ImageForecast, after: ImageForecast): ImageForecast {
+  return {
+    ...before,
+    weightings: before.weightings.map((result) => ({
+      ...result,
+      after:
+        after.weightings.find(
+          (other) => other.weighting === result.weighting && other.robust === result.robust,
+        )?.before ?? null,
+    })),
+    coverage: { before: before.coverage.before, after: after.coverage.before },
+  };
+}
+
+/** No sum of weight^2 x variance of the image's samples exceeds it. */
+function noiseBound(sampling: Sampling, variance: Float64Array): number {
+  let most = 0;
+  for (const value of variance) if (value > most) most = value;
+  return most * sampling.totalWeight * 1.01;
+}
+
+/** Natural, uniform and robust: the plan's robustness, or 0. */
+function compared(planned: Weighting): Weighting[] {
+  const robust: Weighting = planned.kind === "robust" ? planned : { kind: "robust", robust: 0 };
+  return [{ kind: "natural" }, robust, { kind: "uniform" }];
+}
+
+function sameWeighting(a: Weighting, b: Weighting): boolean {
+  return a.kind === b.kind && (a.kind !== "robust" || b.kind !== "robust" || a.robust === b.robust);
+}
+
+interface Level {
+  readonly brightness: number;
+  readonly sampleNoise: number;
+  readonly bandwidth: number;
+}
+
+function sourceLevel(sampling: Sampling, natural: MadeBeam): Level {
+  const { survey } = sampling;
+  const used = survey.levels.sigma.filter((sigma) => sigma > 0).sort();
+  const { low, high } = frequencyRange(survey.dataset, sampling.channelUsed);
+  const widths = high.map((frequency, i) => frequency - low[i]!).filter((width) => width > 0);
+  return {
+    brightness: natural.half === null ? Number.NaN : brightness(sampling),
+    sampleNoise: used.length === 0 ? Number.NaN : used[used.length >> 1]!,
+    bandwidth: widths.length === 0 ? 0 : widths.reduce((sum, width) => sum + width, 0) / widths.length,
+  };
+}
+
+interface Standing {
+  readonly plan: Plan;
+  readonly planned: MadeBeam;
+  readonly wTerm: WTerm;
+  readonly smearing: SmearingResult;
+  readonly samples: EdgeSamples;
+  readonly radius: number;
+  readonly brightness: number;
+}
+
+/** Limits of the whole dataset: noise, and what a source at the edge of the field does to its surroundings. */
+function standingLimits(standing: Standing): RankedLimit[] {
+  const { plan, planned, wTerm, smearing, samples, radius } = standing;
+  const limits: RankedLimit[] = [];
+  const add = (cause: string, range: number, text: string) => {
+    if (range > 0 && Number.isFinite(range))
+      limits.push({ event: null, cause, dynamicRangeFraction: range, text });
+  };
+  const thermal = standing.brightness / planned.noise;
+  add(
+    "thermal-noise",
+    thermal,
+    `thermal noise of ${formatFlux(planned.noise)} under a source of ${formatFlux(standing.brightness)} allows a dynamic range of ${formatNumber(thermal)}`,
+  );
+  if (!plan.correctsW.value && wTerm.edgePhaseRad > W_PHASE_LIMIT) {
+    const range = edgeDynamicRange(samples, radius);
+    add(
+      "w-term",
+      range,
+      `w not corrected: around a source at the edge of the field, which loses ${formatPercent(wTerm.edgeLossFraction)}, the dynamic range is ${formatNumber(range)}`,
+    );
+  }
+  const smeared = smearing.loss;
+  if (smeared > 0.01 && planned.sidelobes.rms > 0) {
+    const range = 1 / (smeared * planned.sidelobes.rms);
+    add(
+      smearing.bandwidthLossFraction >= smearing.timeLossFraction ? "bandwidth-smearing" : "time-smearing",
+      range,
+      `smearing of ${formatPercent(smeared)} at the edge of the field: the part of a source there that is lost leaves sidelobes at a dynamic range of ${formatNumber(range)}`,
+    );
+  }
+  return limits;
+}
+
+/** Peak over rms around a source at the edge when the phases that w leaves stay: sum T / sqrt(sum T^2 |1 - exp i phi|^2 / 2). */
+function edgeDynamicRange(samples: EdgeSamples, radius: number): number {
+  // One term stands for a cell's samples of much the same w: cells, not samples, decide how errors average.
+  const byBaseline = new Map<number, { re: number; im: number; weight: number }>();
+  let total = 0;
+  const depth = 1 - Math.sqrt(1 - radius * radius);
+  for (let i = 0; i < samples.count; i++) {
+    if (!Number.isFinite(samples.w[i]!)) continue;
+    const phase = 2 * Math.PI * samples.w[i]! * depth;
+    const key = samples.baseline[i]!;
+    const sum = byBaseline.get(key) ?? { re: 0, im: 0, weight: 0 };
+    sum.re += samples.weight[i]! * (1 - Math.cos(phase));
+    sum.im += samples.weight[i]! * Math.sin(phase);
+    sum.weight += samples.weight[i]!;
+    byBaseline.set(key, sum);
+    total += samples.weight[i]!;
+  }
+  let squares = 0;
+  for (const { re, im } of byBaseline.values()) squares += re * re + im * im;
+  return total / Math.sqrt(squares / 2);
+}
+
+/** What dropping every baseline beyond the w that needs no correction would cost. */
+async function dropCost(image: GriddedImage, parts: ForecastParts): Promise<DropW | null> {
+  const { plan, wTerm, baselines } = parts;
+  if (plan.correctsW.value || !(wTerm.edgePhaseRad > W_PHASE_LIMIT)) return null;
+  const far = baselines.filter((baseline) => baseline.phase > W_PHASE_LIMIT);
+  const used = baselines.filter((baseline) => baseline.weightFraction > 0);
+  if (far.length === used.length) return null;
+  const [cost] = await costsOf(image, [
+    {
+      antennas: null,
+      baselines: far.map(({ antenna1, antenna2 }) => [antenna1, antenna2]),
+      time: null,
+      subbands: null,
+      channels: null,
+      polarizations: null,
+      fields: null,
+    },
+  ]);
+  const grown = (1 + cost!.beamMajorChangeFraction) * (1 + cost!.beamMinorChangeFraction);
+  return {
+    baselines: far.length,
+    of: used.length,
+    sensitivityLoss: cost!.sensitivityLossFraction,
+    beamGrowth: Math.sqrt(grown) - 1,
+  };
+}
+
+function reportImage(parts: ForecastParts, computedField: number, dropW: DropW | null): ImageForecast {
+  const { calibrated, plan } = parts;
+  return {
+    weightings: parts.weightings.map(
+      ({ weighting, planned, made }): WeightingResult => ({
+        weighting: weighting.kind,
+        robust: weighting.kind === "robust" ? weighting.robust : null,
+        planned,
+        before: reportBeam(made, calibrated),
+        after: null,
+      }),
+    ),
+    wTerm: parts.wTerm,
+    smearing: {
+      bandwidthLossFraction: parts.smearing.bandwidthLossFraction,
+      timeLossFraction: parts.smearing.timeLossFraction,
+      safeChannelHz: parts.smearing.safeChannelHz,
+      safeIntegrationSeconds: parts.smearing.safeIntegrationSeconds,
+      safeLossFraction: parts.smearing.safeLossFraction,
+    },
+    coverage: { before: parts.coverage.coverage, after: null },
+    limits: parts.limits.map(({ cause, dynamicRangeFraction, text }) => ({
+      cause,
+      dynamicRangeFraction,
+      text,
+    })),
+    advice: adviceOf({
+      plan,
+      computedField,
+      planned: parts.planned,
+      weightings: parts.weightings,
+      wTerm: parts.wTerm,
+      dropW,
+      wZeroed: parts.trackW.zeroed,
+      smearing: parts.smearing,
+      coverage: parts.coverage,
+      baselines: parts.baselines,
+      calibrated,
+    }),
+  };
+}

@@ -1,0 +1,218 @@
+/**
+ * What caps the dynamic range, worst first. An error of phase (radians) or amplitude (fraction) e on some of the
+ * samples of a point source leaves in the image an rms, off the source, of e sqrt(sum over uv cells E^2 / 2) / sum T,
+ * where T are the imaging weights and E is the part of a cell's that carries the error. For one snapshot of N
+ * antennas this is the published N(N-1)/(sqrt 2 e) of one baseline and N sqrt(N-1)/(sqrt 2 e) of one antenna; over
+ * cells it counts how far Earth rotation and bandwidth spread the error.
+ * @see Perley 1999, Synthesis Imaging in Radio Astronomy II, ASP Conf. Ser. 180, chapter 13
+ */
+import type { DetectedEvent, EventKind } from "../detect/event.ts";
+import { formatNumber, formatPercent } from "../util/units.ts";
+import { cellFactors, imagingWeight, truncated } from "./cell-weights.ts";
+import { eachSelection, type GriddedImage } from "./cost.ts";
+import type { Limit } from "./image.ts";
+import type { FilledCells } from "./moment-grid.ts";
+
+/** A limit and the event behind it; null for one of the whole dataset. */
+export interface RankedLimit extends Limit {
+  readonly event: DetectedEvent | null;
+}
+
+/** More events than these are not ranked one by one: the most significant are. */
+const MOST_EVENTS = 48;
+
+/** One snapshot, peak over rms, error e; for tests and for words. `of`: what carries the error. */
+export function snapshotDynamicRange(
+  of: "baseline" | "antenna" | "baselines" | "antennas",
+  n: number,
+  e: number,
+): number {
+  switch (of) {
+    case "baseline":
+      return (n * (n - 1)) / (Math.SQRT2 * e);
+    case "antenna":
+      return (n * Math.sqrt(n - 1)) / (Math.SQRT2 * e);
+    case "baselines":
+      return Math.sqrt(n * (n - 1)) / e;
+    case "antennas":
+      return Math.sqrt(n * (n - 1)) / (Math.SQRT2 * e);
+  }
+}
+
+/** What the amplitudes are measured against, dataset unit. */
+export interface SourceLevel {
+  /** amplitude of the source; 0 or NaN unknown */
+  readonly brightness: number;
+  /** typical noise of one sample */
+  readonly sampleNoise: number;
+  /** Hz, over which a delay turns the phase */
+  readonly bandwidth: number;
+}
+
+/**
+ * Limits by events, each as if it were alone.
+ * @param planned natural, uniform or robust factors come from the plan of `image`
+ */
+export async function eventLimits(
+  image: GriddedImage,
+  events: readonly DetectedEvent[],
+  level: SourceLevel,
+): Promise<RankedLimit[]> {
+  const ranked = events
+    .map((event) => ({ event, error: errorOf(event, level) }))
+    .filter(({ error }) => error.size > 0)
+    .sort((a, b) => b.event.significance - a.event.significance)
+    .slice(0, MOST_EVENTS);
+  if (ranked.length === 0) return [];
+  const cells = truncated(image.cells, 0);
+  const factors = cellFactors(cells, image.plan.weighting.value);
+  const total = imagingWeight(cells, factors);
+  const limits: RankedLimit[] = [];
+  await eachSelection(
+    image,
+    ranked.map(({ event }) => event.scope),
+    (index, taken) => {
+      const { event, error } = ranked[index]!;
+      const range = total / errorSum(cells, factors, taken, event, error);
+      if (Number.isFinite(range)) limits.push(limitOf(event, error, range));
+    },
+  );
+  return limits.sort((a, b) => a.dynamicRangeFraction - b.dynamicRangeFraction);
+}
+
+/** How an event spoils its samples. */
+interface EventError {
+  /** phase in radians or amplitude as a fraction of the source's; 0: it does not spoil the image */
+  readonly size: number;
+  /** the same on all of them, or its own on each */
+  readonly coherent: boolean;
+  readonly what: string;
+}
+
+const NO_ERROR: EventError = { size: 0, coherent: true, what: "" };
+
+function errorOf(event: DetectedEvent, level: SourceLevel): EventError {
+  const size = Math.abs(event.size);
+  switch (event.kind) {
+    case "phase-jump":
+    case "closure":
+    case "half-turn": {
+      const degrees = event.kind === "half-turn" ? 180 : size;
+      return {
+        size: 2 * Math.abs(Math.sin((degrees * Math.PI) / 360)),
+        coherent: true,
+        what: `a phase error of ${formatNumber(degrees)} degrees`,
+      };
+    }
+    case "phase-noise":
+      return {
+        size: Math.min((size * Math.PI) / 180, Math.SQRT2),
+        coherent: false,
+        what: `phase noise of ${formatNumber(size)} degrees rms`,
+      };
+    case "delay-slope": {
+      const rms = Math.min((2 * Math.PI * size * 1e-9 * level.bandwidth) / Math.sqrt(12), Math.SQRT2);
+      return { size: rms, coherent: true, what: `a delay error of ${formatNumber(size)} ns` };
+    }
+    case "gain-step":
+    case "weak-antenna":
+    case "hand-off":
+      return amplitudeError(event.size);
+    case "silent-antenna":
+    case "stuck-zeros":
+    case "dropout":
+      return { size: 1, coherent: true, what: "samples without the source" };
+    case "persistent-line":
+    case "burst":
+    case "drifting-line":
+    case "lone-samples": {
+      const excess = (size * level.sampleNoise) / level.brightness;
+      const share = event.samples > 0 ? Math.sqrt(event.outlying / event.samples) : 1;
+      return Number.isFinite(excess)
+        ? { size: excess * share, coherent: false, what: `interference of ${formatNumber(size)} sigma` }
+        : NO_ERROR;
+    }
+    default:
+      // Noise, weights and polarization of the cross hands leave a point source where it is.
+      return NO_ERROR;
+  }
+}
+
+/** A gain of `ratio` times the others'. */
+function amplitudeError(ratio: number): EventError {
+  const size = Math.abs(ratio - 1);
+  return { size, coherent: true, what: `an amplitude error of ${formatPercent(size)}` };
+}
+
+/** e sqrt(sum of E^2 / 2): what the source's peak is divided by. */
+function errorSum(
+  cells: FilledCells,
+  factors: Float64Array,
+  taken: FilledCells,
+  event: DetectedEvent,
+  error: EventError,
+): number {
+  const few = taken.form.order === 0 ? taken : truncated(taken, 0);
+  let squares = 0;
+  let weights = 0;
+  for (let i = 0, j = 0; j < few.count; j++) {
+    while (
+      i < cells.count &&
+      (cells.iu[i]! < few.iu[j]! || (cells.iu[i] === few.iu[j] && cells.iv[i]! < few.iv[j]!))
+    ) {
+      i += 1;
+    }
+    if (i === cells.count) break;
+    const part = factors[i]! * few.weight[j]!;
+    squares += part * part;
+    weights += part;
+  }
+  if (error.coherent) return error.size * Math.sqrt(squares / 2);
+  // Independent from sample to sample: the samples add in squares, each about the mean weight.
+  const samples = Math.max(1, event.samples);
+  return (error.size * weights) / Math.sqrt(2 * samples);
+}
+
+const CAUSES: Partial<Record<EventKind, string>> = {
+  "half-turn": "half-turn flip",
+  closure: "correlator error",
+};
+
+function limitOf(event: DetectedEvent, error: EventError, range: number): RankedLimit {
+  const cause = CAUSES[event.kind] ?? event.kind.replaceAll("-", " ");
+  return {
+    event,
+    cause: event.kind,
+    dynamicRangeFraction: range,
+    text: `${cause} on ${scopeText(event)}: ${error.what} allows a dynamic range of ${formatNumber(range)}`,
+  };
+}
+
+/** "antenna 7", "baseline 3-9", "2 antennas" ... numbers only, so that nothing hostile gets into it. */
+function scopeText(event: DetectedEvent): string {
+  const { antennas, baselines, channels } = event.scope;
+  if (antennas !== null && antennas.length > 0) return named("antenna", antennas.map(String));
+  if (baselines !== null && baselines.length > 0) {
+    return named(
+      "baseline",
+      baselines.map(([a, b]) => `${a}-${b}`),
+    );
+  }
+  if (channels !== null && channels.length > 0) {
+    return named(
+      "channel",
+      channels.map(([low, high]) => (low === high ? `${low}` : `${low}-${high}`)),
+    );
+  }
+  return "all antennas";
+}
+
+function named(word: string, names: readonly string[]): string {
+  if (names.length > 4) return `${names.length} ${word}s`;
+  return `${word}${names.length === 1 ? "" : "s"} ${names.join(", ")}`;
+}
+
+/** Every limit, worst first. */
+export function rankLimits(limits: readonly RankedLimit[]): RankedLimit[] {
+  return [...limits].sort((a, b) => a.dynamicRangeFraction - b.dynamicRangeFraction);
+}
