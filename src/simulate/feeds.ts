@@ -1,6 +1,6 @@
 /** What a pair of feeds makes of the Stokes parameters of the sky, leakage included. */
 import type { RowState } from "./faults/effect.ts";
-import { type LeakageTable, leakageTable } from "./gains.ts";
+import type { LeakageTable } from "./gains.ts";
 import type { Observation } from "./observation.ts";
 import { isCircular, type Product } from "./products.ts";
 import type { Sky } from "./sky.ts";
@@ -26,11 +26,11 @@ export class FeedModel {
   private readonly real: Float64Array;
   private readonly imag: Float64Array;
 
-  constructor(observation: Observation, sky: Sky) {
+  constructor(observation: Observation, leakage: LeakageTable | null, sky: Sky) {
     this.observation = observation;
     this.sky = sky;
     this.circular = isCircular(observation.polarizations);
-    this.leakage = leakageTable(observation);
+    this.leakage = leakage;
     this.real = new Float64Array(observation.channels);
     this.imag = new Float64Array(observation.channels);
     this.view = { real: this.real, imag: this.imag, at: 0 };

@@ -82,6 +82,7 @@ export function observe(scenario: Scenario): Observation {
   const channels = scenario.frequency.subbands * scenario.frequency.channels;
   const polarizations = scenario.polarizations;
   requireKnownHands(scenario);
+  requireKnownFields(scenario);
   requireModestSize(scenario, stations.length, times.length);
   return {
     scenario,
@@ -276,6 +277,17 @@ function setupOf({ frequency }: Scenario): { setup: Setup; channelStep: number; 
     channelStep,
     bandCentre: (start + last) / 2,
   };
+}
+
+/** Sources are seen in fields that there are. */
+function requireKnownFields({ sky, fields }: Scenario): void {
+  sky.forEach((source, i) => {
+    const unknown = source.fields?.find((id) => id > fields.length);
+    if (unknown === undefined) return;
+    throw new InputError(`there is no field ${unknown}: there are ${fields.length}`, {
+      part: `scenario, sky.${i}.fields`,
+    });
+  });
 }
 
 /** Hands named by faults must be hands of the products, and antennas must exist. */

@@ -5,10 +5,10 @@
 
 import type { Vector3 } from "../geometry/earth.ts";
 import { applyMatrix, fillUvwMatrix, SPEED_OF_LIGHT } from "../geometry/uvw.ts";
-import { atmosphericDelays } from "./atmosphere.ts";
 import type { CompiledFault, Effect, RowState, Stage } from "./faults/effect.ts";
 import { FeedModel } from "./feeds.ts";
-import { type GainTable, gainTable } from "./gains.ts";
+import type { GainTable } from "./gains.ts";
+import type { Instrument } from "./instrument.ts";
 import type { Observation } from "./observation.ts";
 import { Random } from "./random.ts";
 import { Sky } from "./sky.ts";
@@ -30,13 +30,13 @@ export class RowMaker {
   private readonly matrix = new Float64Array(9);
   private matrixTime = -1;
 
-  constructor(observation: Observation, faults: readonly CompiledFault[]) {
+  constructor(observation: Observation, instrument: Instrument, faults: readonly CompiledFault[]) {
     this.observation = observation;
     this.effects = faults.flatMap(({ effect }) => (effect === null ? [] : [effect]));
     this.sky = new Sky(observation);
-    this.feeds = new FeedModel(observation, this.sky);
-    this.gains = gainTable(observation);
-    this.air = atmosphericDelays(observation);
+    this.feeds = new FeedModel(observation, instrument.leakage, this.sky);
+    this.gains = instrument.gains;
+    this.air = instrument.air;
     this.normals = new Float64Array(2 * observation.rowSamples);
     this.row = emptyRow(observation.rowSamples);
   }

@@ -3,6 +3,7 @@ import type { BlockRequest, Dataset, SampleBlock } from "../dataset/dataset.ts";
 import { isoFromMjd } from "../util/dates.ts";
 import { compileFaults } from "./faults/compile.ts";
 import type { CompiledFault } from "./faults/effect.ts";
+import { type Instrument, instrumentOf } from "./instrument.ts";
 import { type Observation, observe } from "./observation.ts";
 import { RowMaker } from "./rows.ts";
 import type { Scenario } from "./scenario.ts";
@@ -24,6 +25,16 @@ export function simulate(scenario: Scenario): Simulated {
   const observation = observe(scenario);
   const faults = compileFaults(observation);
   const schedule = new Schedule(observation);
+  let instrument: Instrument | undefined;
+  const making: Making = {
+    observation,
+    faults,
+    schedule,
+    instrument: () => {
+      instrument ??= instrumentOf(observation);
+      return instrument;
+    },
+  };
   const dataset: Dataset = {
     name: scenario.name,
     files: [],
@@ -43,19 +54,23 @@ export function simulate(scenario: Scenario): Simulated {
     hasWeights: true,
     rows: schedule.rows,
     notes: [],
-    blocks: (request) => blocks(observation, faults, request),
+    blocks: (request) => blocks(making, request),
   };
-  return { dataset, truth: new Truth(observation, faults, dataset) };
+  return { dataset, truth: new Truth(observation, faults, schedule, dataset) };
 }
 
-async function* blocks(
-  observation: Observation,
-  faults: readonly CompiledFault[],
-  request: BlockRequest,
-): AsyncIterable<SampleBlock> {
-  // Each call has a schedule's place and a row of its own: two may run at once.
-  const schedule = new Schedule(observation);
-  const maker = new RowMaker(observation, faults);
+/** What the rows of a dataset are made from; shared by all who read it. */
+interface Making {
+  readonly observation: Observation;
+  readonly faults: readonly CompiledFault[];
+  readonly schedule: Schedule;
+  readonly instrument: () => Instrument;
+}
+
+async function* blocks(making: Making, request: BlockRequest): AsyncIterable<SampleBlock> {
+  const { observation, schedule } = making;
+  // A maker of its own for each call: two may run at once.
+  const maker = new RowMaker(observation, making.instrument(), making.faults);
   const first = Math.max(0, request.rows?.[0] ?? 0);
   const last = Math.min(schedule.rows, request.rows?.[1] ?? schedule.rows);
   const mostRows = Math.max(1, Math.floor(BLOCK_BYTES / (SAMPLE_BYTES * observation.rowSamples)));
@@ -64,21 +79,15 @@ async function* blocks(
   for (let row = first; row < last; row += blockRows) {
     block.firstRow = row;
     block.rows = Math.min(blockRows, last - row);
-    fillBlock(block, observation, schedule, maker, request.want);
+    fillBlock(block, making, maker, request.want);
     yield block;
   }
 }
 
-const place: RowPlace = { time: 0, baseline: 0, copy: false };
-
-function fillBlock(
-  block: SampleBlock,
-  observation: Observation,
-  schedule: Schedule,
-  maker: RowMaker,
-  want: BlockRequest["want"],
-): void {
+function fillBlock(block: SampleBlock, making: Making, maker: RowMaker, want: BlockRequest["want"]): void {
+  const { observation, schedule } = making;
   const { row } = maker;
+  const place: RowPlace = { time: 0, baseline: 0, copy: false };
   for (let k = 0; k < block.rows; k++) {
     schedule.locate(block.firstRow + k, place);
     maker.begin(place.time, place.baseline);

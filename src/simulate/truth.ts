@@ -3,7 +3,7 @@ import type { Dataset, SampleBlock } from "../dataset/dataset.ts";
 import type { Selection } from "../dataset/selection.ts";
 import type { CompiledFault, Spoils } from "./faults/effect.ts";
 import type { Observation } from "./observation.ts";
-import { type RowPlace, Schedule } from "./schedule.ts";
+import type { RowPlace, Schedule } from "./schedule.ts";
 
 /** One fault as it is. */
 export interface TrueFault {
@@ -26,12 +26,17 @@ export class Truth {
   private readonly dataset: Dataset;
   private readonly schedule: Schedule;
 
-  constructor(observation: Observation, compiled: readonly CompiledFault[], dataset: Dataset) {
+  constructor(
+    observation: Observation,
+    compiled: readonly CompiledFault[],
+    schedule: Schedule,
+    dataset: Dataset,
+  ) {
     this.observation = observation;
     this.compiled = compiled;
     this.dataset = dataset;
-    this.schedule = new Schedule(observation);
-    this.rows = this.schedule.rows;
+    this.schedule = schedule;
+    this.rows = schedule.rows;
     this.faults = compiled.map(({ kind, cause, selection, size, unit, spoils }) => ({
       kind,
       cause,

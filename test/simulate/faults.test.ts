@@ -13,10 +13,26 @@ function cleanOf({ truth }: Simulated): Dataset {
   return simulate({ ...truth.observation.scenario, faults: [] }).dataset;
 }
 
+/** Samples of which a fault of the signal can change some only. */
+const CROSS_HANDS: Changes = { polarizations: ["RR", "LL", "RL", "LR"], autocorrelations: true };
+const MORE = {
+  jumpWithCrossHands: () => withFaults([{ kind: "phase-jump", antenna: 4, degrees: 30 }], CROSS_HANDS),
+  gainWithCrossHands: () =>
+    withFaults([{ kind: "gain-step", antenna: 4, factor: 2, hand: "R" }], CROSS_HANDS),
+  modelWithCrossHands: () =>
+    withFaults(
+      [{ kind: "antenna-position", antenna: 4, offset: ["9m", "0m", "0m"], of: "model" }],
+      CROSS_HANDS,
+    ),
+  exchangedWithCrossHands: () => withFaults([{ kind: "exchanged-hands", antenna: 4 }], CROSS_HANDS),
+  leakingHands: () =>
+    withFaults([{ kind: "silent-antenna", antenna: 4 }], { ...CROSS_HANDS, gains: { leakage: 0.05 } }),
+} as const;
+
 const CHANGE_ROWS = ["missing-rows", "duplicate-rows", "reversed-rows"];
 
 describe("the truth mask", () => {
-  const cases = Object.entries(FAULTY)
+  const cases = Object.entries({ ...FAULTY, ...MORE })
     .map(([name, make]) => ({ name, simulated: make() }))
     .filter(({ simulated: { truth } }) => !truth.faults.some(({ kind }) => CHANGE_ROWS.includes(kind)));
   const spoiling = (of: string) =>

@@ -5,7 +5,7 @@ import { compileHeaderFault, compilePosition } from "./geometry.ts";
 import { compileInterference } from "./interference.ts";
 import type { Fault } from "./schema.ts";
 import { placeOf, type Scope, scopeOf } from "./scope.ts";
-import { compileAntennaFault, compileBaselineFault, compileExchange, compileNoisy } from "./signal.ts";
+import { compileAntennaFault, compileBaselineFault, compileExchange } from "./signal.ts";
 import { compileSampleFault } from "./values.ts";
 
 /** A fault of the rows themselves, for the schedule. */
@@ -36,11 +36,10 @@ function compile(fault: Fault, index: number, observation: Observation): Compile
     case "half-turn":
     case "delay-slope":
     case "phase-noise":
+    case "noisy":
       return compileAntennaFault(fault, index, observation);
     case "exchanged-hands":
       return compileExchange(fault, index, observation);
-    case "noisy":
-      return compileNoisy(fault, index, observation);
     case "baseline-phase":
     case "baseline-gain":
       return compileBaselineFault(fault, index, observation);

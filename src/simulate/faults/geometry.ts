@@ -1,9 +1,10 @@
 /** Faults of what is written about a row: u, v, w and the order of its antennas; and of the antenna table. */
 import { SPEED_OF_LIGHT } from "../../geometry/uvw.ts";
 import type { Observation } from "../observation.ts";
+import { productsWithSignal } from "../sky.ts";
 import type { CompiledFault, RowState } from "./effect.ts";
 import type { FaultOf } from "./schema.ts";
-import { antennaScope, placeOf, scopeOf } from "./scope.ts";
+import { antennaScope, coverage, keepProducts, marksAll, placeOf, scopeOf } from "./scope.ts";
 
 type HeaderFault = FaultOf<"flipped-axis" | "zeroed-axis" | "wrong-unit" | "swapped-order">;
 
@@ -23,10 +24,8 @@ export function compileHeaderFault(
     spoils: "geometry",
     effect: {
       stages: { header },
-      covers: (time, baseline) => scope.times[time] === 1 && scope.baselines[baseline] === 1,
-      mark: (_time, _baseline, out, at) => {
-        for (const sample of scope.samples) out[at + sample] = 1;
-      },
+      covers: coverage(scope),
+      mark: marksAll(scope.samples),
     },
   };
 }
@@ -74,6 +73,10 @@ export function compilePosition(
   observation: Observation,
 ): CompiledFault {
   const scope = antennaScope({ antenna: fault.antenna }, observation, placeOf(index));
+  const seen = productsWithSignal(observation);
+  // Wrong delays turn signals; a wrong table is wrong whatever the sample holds.
+  const samples =
+    fault.of === "model" ? keepProducts(scope.samples, observation, (_, i) => seen[i]!) : scope.samples;
   return {
     kind: fault.kind,
     cause: fault.of === "uvw" ? "antenna" : "tables",
@@ -83,10 +86,8 @@ export function compilePosition(
     spoils: fault.of === "model" ? "values" : "geometry",
     effect: {
       stages: {},
-      covers: (time, baseline) => scope.times[time] === 1 && scope.baselines[baseline] === 1,
-      mark: (_time, _baseline, out, at) => {
-        for (const sample of scope.samples) out[at + sample] = 1;
-      },
+      covers: coverage(scope),
+      mark: marksAll(samples),
     },
   };
 }

@@ -11,7 +11,7 @@ import { Random } from "../random.ts";
 import { STREAM } from "../streams.ts";
 import type { CompiledFault, Effect, RowState } from "./effect.ts";
 import type { FaultOf } from "./schema.ts";
-import { placeOf, type Scope, scopeOf } from "./scope.ts";
+import { coverage, placeOf, type Scope, scopeOf } from "./scope.ts";
 
 type Interference = FaultOf<"persistent-line" | "burst" | "drifting-line" | "lone-samples">;
 
@@ -106,7 +106,7 @@ function transmitter(
   };
   return {
     stages: { value },
-    covers: (time, baseline) => scope.times[time] === 1 && scope.baselines[baseline] === 1,
+    covers: coverage(scope),
     mark: (time, baseline, out, at) => {
       const { list, count } = places(time, baseline);
       for (let k = 0; k < count; k++) out[at + list[k]!] = 1;

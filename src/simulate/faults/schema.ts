@@ -97,8 +97,8 @@ export const faultSchema = z.discriminatedUnion("kind", [
   fault("zeroed-axis", { ...rowsOf, axis: axis.default("w") }),
   fault("wrong-unit", { ...rowsOf, unit: z.enum(["metres", "wavelengths"]) }),
   /**
-   * east, north, up. in "table": the table alone; "uvw": u, v, w alone; "model": table, u, v, w and the delays the
-   * correlator tracked, so that the table agrees with u, v, w and the sky's phases show the error
+   * `offset` east, north, up; `of` "table": the table alone; "uvw": u, v, w alone; "model": table, u, v, w and the delays
+   * that the correlator tracked, so that table and u, v, w agree and the sky's phases show the error
    */
   fault("antenna-position", {
     antenna: antennaNumber,

@@ -4,6 +4,7 @@ import { SECONDS_PER_DAY } from "../../util/dates.ts";
 import { InputError } from "../../util/errors.ts";
 import type { Observation } from "../observation.ts";
 import { type Hand, handIndex } from "../products.ts";
+import type { Effect } from "./effect.ts";
 
 /** The keys of a fault that say which samples; every one optional. */
 export interface Where {
@@ -47,7 +48,7 @@ export function scopeOf(where: Where, observation: Observation, place: string): 
   };
 }
 
-/** `where` of one antenna's fault; with a hand, the products that join it. */
+/** `where` of one antenna's fault, on its baselines to others; with a hand, the products that join it. */
 export function antennaScope(
   fault: Where & { readonly antenna: number; readonly hand?: Hand | undefined },
   observation: Observation,
@@ -61,11 +62,25 @@ export function antennaScope(
           .filter(({ hand1, hand2 }) => hand1 === handIndex(hand) || hand2 === handIndex(hand))
           .map(({ name }) => name)
           .filter((name) => fault.polarizations?.includes(name) ?? true);
-  return scopeOf(
+  const scope = scopeOf(
     { ...fault, antennas: [antenna], polarizations: joined ?? fault.polarizations },
     observation,
     place,
   );
+  const { first, second } = observation;
+  return { ...scope, baselines: scope.baselines.map((inside, b) => (first[b] === second[b] ? 0 : inside)) };
+}
+
+/** Whether a row is in the scope: for `Effect.covers`. */
+export function coverage({ times, baselines }: Scope): Effect["covers"] {
+  return (time, baseline) => times[time] === 1 && baselines[baseline] === 1;
+}
+
+/** These samples of every row that is covered: for `Effect.mark`. */
+export function marksAll(samples: Int32Array): Effect["mark"] {
+  return (_time, _baseline, out, at) => {
+    for (const sample of samples) out[at + sample] = 1;
+  };
 }
 
 /** Of `samples`, those of products for which `keep` holds. */

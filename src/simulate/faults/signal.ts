@@ -1,4 +1,4 @@
-/** Faults that multiply the signal of an antenna or a baseline by a complex factor, and an antenna's noise. */
+/** Faults that multiply the signal, the noise or both of an antenna or a baseline by a complex factor. */
 import { SECONDS_PER_DAY } from "../../util/dates.ts";
 import type { Observation } from "../observation.ts";
 import { handIndex } from "../products.ts";
@@ -7,7 +7,16 @@ import { productsWithSignal } from "../sky.ts";
 import { STREAM } from "../streams.ts";
 import type { CompiledFault, Effect, RowState } from "./effect.ts";
 import type { FaultOf } from "./schema.ts";
-import { antennaScope, keepProducts, placeOf, type Scope, scopeOf, stationIndex } from "./scope.ts";
+import {
+  antennaScope,
+  coverage,
+  keepProducts,
+  marksAll,
+  placeOf,
+  type Scope,
+  scopeOf,
+  stationIndex,
+} from "./scope.ts";
 
 type AntennaFault = FaultOf<
   | "silent-antenna"
@@ -19,6 +28,7 @@ type AntennaFault = FaultOf<
   | "half-turn"
   | "delay-slope"
   | "phase-noise"
+  | "noisy"
 >;
 
 /** What an antenna's signal is multiplied by; null in an integration that is not hit. */
@@ -30,8 +40,13 @@ interface Factor {
   readonly turn: { readonly re: Float64Array; readonly im: Float64Array } | null;
   readonly size: number;
   readonly unit: string;
-  readonly withNoise: boolean;
+  /** what it multiplies */
+  readonly of: { readonly signal: boolean; readonly noise: boolean };
 }
+
+const SIGNAL = { signal: true, noise: false };
+const NOISE = { signal: false, noise: true };
+const BOTH = { signal: true, noise: true };
 
 const HALF_TURN = { re: -1, im: 0 };
 const SILENT = { re: 0, im: 0 };
@@ -42,12 +57,12 @@ function phasor(degrees: number): { re: number; im: number } {
 }
 
 function factorOf(fault: AntennaFault, index: number, observation: Observation): Factor {
-  const constant = (re: number, im: number, size: number, unit: string, withNoise = false): Factor => ({
+  const constant = (re: number, im: number, size: number, unit: string, of = SIGNAL): Factor => ({
     at: () => ({ re, im }),
     turn: null,
     size,
     unit,
-    withNoise,
+    of,
   });
   switch (fault.kind) {
     case "silent-antenna":
@@ -56,7 +71,9 @@ function factorOf(fault: AntennaFault, index: number, observation: Observation):
     case "weak-antenna":
       return constant(fault.factor, 0, fault.factor, "ratio");
     case "gain-step":
-      return constant(fault.factor, 0, fault.factor, "ratio", true);
+      return constant(fault.factor, 0, fault.factor, "ratio", BOTH);
+    case "noisy":
+      return constant(fault.factor, 0, fault.factor, "ratio", NOISE);
     case "half-turn":
       return constant(HALF_TURN.re, HALF_TURN.im, 180, "deg");
     case "phase-jump": {
@@ -78,7 +95,7 @@ function factorOf(fault: AntennaFault, index: number, observation: Observation):
         turn: null,
         size: fault.degrees,
         unit: "deg",
-        withNoise: false,
+        of: SIGNAL,
       };
     }
     case "dropout": {
@@ -93,7 +110,7 @@ function factorOf(fault: AntennaFault, index: number, observation: Observation):
         turn: null,
         size: fault.share,
         unit: "fraction",
-        withNoise: false,
+        of: SIGNAL,
       };
     }
   }
@@ -120,7 +137,7 @@ export function compileAntennaFault(
   const seen = productsWithSignal(observation);
   const ofHand = (end: "hand1" | "hand2") =>
     keepProducts(scope.samples, observation, (product, i) => {
-      if (!factor.withNoise && !seen[i]) return false;
+      if (!factor.of.noise && !seen[i]) return false;
       return hand === undefined || product[end] === handIndex(hand);
     });
   return {
@@ -159,8 +176,8 @@ function antennaEffect(
     if (row.station2 === station) for (const sample of asSecond) row.noise[sample]! *= size;
   };
   return {
-    stages: factor.withNoise ? { signal, noise } : { signal },
-    covers: (time, baseline) => scope.times[time] === 1 && scope.baselines[baseline] === 1,
+    stages: { ...(factor.of.signal ? { signal } : {}), ...(factor.of.noise ? { noise } : {}) },
+    covers: coverage(scope),
     mark: (time, baseline, out, at) => {
       if (factor.at(time) === null) return;
       if (first[baseline] === station) for (const sample of asFirst) out[at + sample] = 1;
@@ -226,10 +243,8 @@ export function compileBaselineFault(
     spoils: "values",
     effect: {
       stages: withNoise ? { signal, noise } : { signal },
-      covers: (time, baseline) => scope.times[time] === 1 && scope.baselines[baseline] === 1,
-      mark: (_time, _baseline, out, at) => {
-        for (const sample of samples) out[at + sample] = 1;
-      },
+      covers: coverage(scope),
+      mark: marksAll(samples),
     },
   };
 }
@@ -243,6 +258,8 @@ export function compileExchange(
   const place = placeOf(index);
   const station = stationIndex(observation, fault.antenna, place);
   const scope = antennaScope(fault, observation, place);
+  // An empty sky looks the same through either hand.
+  const samples = observation.scenario.sky.length > 0 ? scope.samples : new Int32Array(0);
   return {
     kind: fault.kind,
     cause: "antenna",
@@ -257,50 +274,8 @@ export function compileExchange(
           if (row.station2 === station) row.exchanged2 = !row.exchanged2;
         },
       },
-      covers: (time, baseline) => scope.times[time] === 1 && scope.baselines[baseline] === 1,
-      mark: (_time, _baseline, out, at) => {
-        for (const sample of scope.samples) out[at + sample] = 1;
-      },
-    },
-  };
-}
-
-export function compileNoisy(
-  fault: FaultOf<"noisy">,
-  index: number,
-  observation: Observation,
-): CompiledFault {
-  const place = placeOf(index);
-  const station = stationIndex(observation, fault.antenna, place);
-  const scope = antennaScope(fault, observation, place);
-  const { hand } = fault;
-  const ofHand = (end: "hand1" | "hand2") =>
-    keepProducts(
-      scope.samples,
-      observation,
-      (product) => hand === undefined || product[end] === handIndex(hand),
-    );
-  const [asFirst, asSecond] = [ofHand("hand1"), ofHand("hand2")];
-  const { first, second } = observation;
-  return {
-    kind: fault.kind,
-    cause: "antenna",
-    selection: scope.selection,
-    size: fault.factor,
-    unit: "ratio",
-    spoils: "values",
-    effect: {
-      stages: {
-        noise: (row) => {
-          if (row.station1 === station) for (const sample of asFirst) row.noise[sample]! *= fault.factor;
-          if (row.station2 === station) for (const sample of asSecond) row.noise[sample]! *= fault.factor;
-        },
-      },
-      covers: (time, baseline) => scope.times[time] === 1 && scope.baselines[baseline] === 1,
-      mark: (_time, baseline, out, at) => {
-        if (first[baseline] === station) for (const sample of asFirst) out[at + sample] = 1;
-        if (second[baseline] === station) for (const sample of asSecond) out[at + sample] = 1;
-      },
+      covers: coverage(scope),
+      mark: marksAll(samples),
     },
   };
 }

@@ -4,7 +4,7 @@ import { Random } from "../random.ts";
 import { STREAM } from "../streams.ts";
 import type { CompiledFault, Effect, RowState } from "./effect.ts";
 import type { FaultOf } from "./schema.ts";
-import { placeOf, scopeOf } from "./scope.ts";
+import { coverage, placeOf, scopeOf } from "./scope.ts";
 
 type SampleFault = FaultOf<"stuck-zeros" | "not-finite" | "weight-mismatch" | "flags">;
 
@@ -18,7 +18,7 @@ export function compileSampleFault(
   const visit = visitor(scope.samples, share, index, observation.scenario.seed);
   const effect: Effect = {
     stages: stagesOf(fault, visit),
-    covers: (time, baseline) => scope.times[time] === 1 && scope.baselines[baseline] === 1,
+    covers: coverage(scope),
     mark: (time, baseline, out, at) =>
       visit(time, baseline, (sample) => {
         out[at + sample] = 1;
