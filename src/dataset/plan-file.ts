@@ -2,15 +2,12 @@
  * plan.yaml: the image that the user wants, every key optional. Angles, flux densities and lengths carry their units;
  * what is misspelt, out of range or contradictory is refused with its line and column.
  */
-import { open } from "node:fs/promises";
 import { isMap, isScalar, isSeq, LineCounter, type ParsedNode, parseDocument, type Scalar } from "yaml";
 import { z } from "zod";
 import { InputError, nearest, type Place } from "../util/errors.ts";
+import { readSmallText } from "../util/small-text.ts";
 import { parseAngle, parseFlux, parseLength } from "../util/units.ts";
 import type { LineRange, PlanRequest, Weighting } from "./plan-request.ts";
-
-/** A plan is a few lines: more than this is some other file. */
-const MOST_BYTES = 1 << 20;
 
 /** The parser of units throws; zod collects. */
 function quantity(parse: (text: string) => number, least: number, most: number, bounds: string) {
@@ -117,38 +114,7 @@ const KEYS = Object.keys(FORM) as Key[];
 
 /** @throws InputError when the file cannot be read, is too large or is not a plan */
 export async function readPlan(path: string): Promise<PlanRequest> {
-  return parsePlan(await readSmallText(path), path);
-}
-
-async function readSmallText(path: string): Promise<string> {
-  try {
-    const file = await open(path);
-    try {
-      const buffer = Buffer.alloc(MOST_BYTES + 1);
-      let length = 0;
-      for (;;) {
-        const { bytesRead } = await file.read(buffer, length, buffer.length - length);
-        length += bytesRead;
-        if (bytesRead === 0 || length > MOST_BYTES) break;
-      }
-      if (length > MOST_BYTES) {
-        throw new InputError(
-          "the plan is larger than 1 MB",
-          { file: path },
-          "Give a YAML file of a few lines",
-        );
-      }
-      return new TextDecoder("utf-8", { fatal: true }).decode(buffer.subarray(0, length));
-    } finally {
-      await file.close();
-    }
-  } catch (cause) {
-    if (cause instanceof InputError) throw cause;
-    const why = cause instanceof TypeError ? "it is not UTF-8 text" : (cause as Error).message;
-    throw new InputError(`the plan cannot be read: ${why}`, { file: path }, "Give the path of a YAML file", {
-      cause,
-    });
-  }
+  return parsePlan(await readSmallText(path, "plan"), path);
 }
 
 /**

@@ -1,11 +1,8 @@
 /** A scenario from its YAML file, with the line and column of what is wrong. */
-import { open } from "node:fs/promises";
 import { type Path, YamlDocument } from "../rules/yaml-document.ts";
 import { InputError, type Place } from "../util/errors.ts";
+import { readSmallText } from "../util/small-text.ts";
 import { checkScenario, type Scenario } from "./scenario.ts";
-
-/** A scenario is a page of text, or a few with explicit positions: more than this is some other file. */
-const MOST_BYTES = 1 << 20;
 
 export interface ScenarioFile {
   readonly scenario: Scenario;
@@ -15,7 +12,7 @@ export interface ScenarioFile {
 
 /** @throws InputError when the file cannot be read or is not a scenario */
 export async function readScenario(path: string): Promise<ScenarioFile> {
-  return parseScenario(await readSmallText(path), path);
+  return parseScenario(await readSmallText(path, "scenario"), path);
 }
 
 /**
@@ -49,36 +46,4 @@ function located(error: unknown, document: YamlDocument): unknown {
   const { message, advice } = error as InputError;
   const place: Place = document.place(path);
   return new InputError(`${part[1]}: ${message}`, place, advice, { cause: error });
-}
-
-async function readSmallText(path: string): Promise<string> {
-  try {
-    const file = await open(path);
-    try {
-      const buffer = Buffer.alloc(MOST_BYTES + 1);
-      let length = 0;
-      for (;;) {
-        const { bytesRead } = await file.read(buffer, length, buffer.length - length);
-        length += bytesRead;
-        if (bytesRead === 0 || length > MOST_BYTES) break;
-      }
-      if (length > MOST_BYTES) {
-        throw new InputError("the scenario is larger than 1 MB", { file: path }, "Give a YAML file");
-      }
-      return new TextDecoder("utf-8", { fatal: true }).decode(buffer.subarray(0, length));
-    } finally {
-      await file.close();
-    }
-  } catch (cause) {
-    if (cause instanceof InputError) throw cause;
-    const why = cause instanceof TypeError ? "it is not UTF-8 text" : (cause as Error).message;
-    throw new InputError(
-      `the scenario cannot be read: ${why}`,
-      { file: path },
-      "Give the path of a YAML file",
-      {
-        cause,
-      },
-    );
-  }
 }
