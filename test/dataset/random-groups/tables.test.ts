@@ -141,7 +141,7 @@ describe("the frequency table", () => {
     expect(text(lone, "setup-not-in-table")).toBe(
       "rows name frequency setup (FREQSEL) 4: taken as the only one there is",
     );
-    const axes = [COMPLEX, stokes(1), freq(2)];
+    const axes = [COMPLEX, stokes(1), freq(2), RA, DEC];
     const alone = await open({ parameters: withParameter(freqsel), axes, tables: [antennaTable()] });
     expect(codes(alone)).toEqual(["missing-frequency-table"]);
   });
