@@ -1,5 +1,6 @@
 /** An invented observation as a dataset, and the truth about it. */
 import type { BlockRequest, Dataset, SampleBlock } from "../dataset/dataset.ts";
+import { newBlock } from "../dataset/new-block.ts";
 import { isoFromMjd } from "../util/dates.ts";
 import { compileFaults } from "./faults/compile.ts";
 import type { CompiledFault } from "./faults/effect.ts";
@@ -75,7 +76,7 @@ async function* blocks(making: Making, request: BlockRequest): AsyncIterable<Sam
   const last = Math.min(schedule.rows, request.rows?.[1] ?? schedule.rows);
   const mostRows = Math.max(1, Math.floor(BLOCK_BYTES / (SAMPLE_BYTES * observation.rowSamples)));
   const blockRows = Math.max(1, Math.min(request.blockRows ?? mostRows, mostRows, last - first));
-  const block = emptyBlock(blockRows, observation.rowSamples, request.want);
+  const block = newBlock(blockRows, observation.shape, request.want);
   for (let row = first; row < last; row += blockRows) {
     block.firstRow = row;
     block.rows = Math.min(blockRows, last - row);
@@ -111,25 +112,4 @@ function fillBlock(block: SampleBlock, making: Making, maker: RowMaker, want: Bl
     block.real.set(row.valueRe, at);
     block.imag.set(row.valueIm, at);
   }
-}
-
-function emptyBlock(rows: number, rowSamples: number, want: BlockRequest["want"]): SampleBlock {
-  const samples = want === "samples" ? rows * rowSamples : 0;
-  return {
-    firstRow: 0,
-    rows: 0,
-    time: new Float64Array(rows),
-    u: new Float64Array(rows),
-    v: new Float64Array(rows),
-    w: new Float64Array(rows),
-    antenna1: new Int32Array(rows),
-    antenna2: new Int32Array(rows),
-    subarray: new Int32Array(rows),
-    field: new Int32Array(rows),
-    setup: new Int32Array(rows),
-    integration: new Float32Array(rows),
-    real: new Float32Array(samples),
-    imag: new Float32Array(samples),
-    weight: new Float32Array(want === "rows" ? 0 : rows * rowSamples),
-  };
 }

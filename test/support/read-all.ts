@@ -1,5 +1,6 @@
 /** A whole small dataset in one block, for tests that look at single samples. */
 import type { BlockRequest, Dataset, SampleBlock } from "../../src/dataset/dataset.ts";
+import { newBlock } from "../../src/dataset/new-block.ts";
 
 const ROW_COLUMNS = [
   "time",
@@ -24,24 +25,8 @@ export async function readAll(
   const [first, last] = request.rows ?? [0, dataset.rows];
   const rows = last - first;
   const want = request.want ?? "samples";
-  const samples = (wanted: boolean) => new Float32Array(wanted ? rows * rowSamples : 0);
-  const all = {
-    firstRow: first,
-    rows: 0,
-    time: new Float64Array(rows),
-    u: new Float64Array(rows),
-    v: new Float64Array(rows),
-    w: new Float64Array(rows),
-    antenna1: new Int32Array(rows),
-    antenna2: new Int32Array(rows),
-    subarray: new Int32Array(rows),
-    field: new Int32Array(rows),
-    setup: new Int32Array(rows),
-    integration: new Float32Array(rows),
-    real: samples(want === "samples"),
-    imag: samples(want === "samples"),
-    weight: samples(want !== "rows"),
-  };
+  const all = newBlock(rows, dataset.shape, want);
+  all.firstRow = first;
   for await (const block of dataset.blocks({ ...request, want })) {
     if (block.firstRow !== first + all.rows)
       throw new Error(`block at row ${block.firstRow}: a row is missing`);

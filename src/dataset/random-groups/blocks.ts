@@ -2,6 +2,7 @@
 import { InputError } from "../../util/errors.ts";
 import type { BlockRequest, SampleBlock } from "../dataset.ts";
 import type { ByteSource, Cursor } from "../fits/source.ts";
+import { newBlock } from "../new-block.ts";
 import type { TableFlags } from "../table-flags.ts";
 import type { GroupLayout } from "./layout.ts";
 import { type BlockRange, blockRange, planReads, type ReadPlan } from "./plan.ts";
@@ -103,7 +104,7 @@ function blockDecoder(
   plan: ReadPlan,
   request: BlockRequest,
 ): (bytes: Uint8Array, range: BlockRange) => SampleBlock {
-  const block = newBlock(plan.blockRows, samples, request.want);
+  const block = newBlock(plan.blockRows, samples.shape, request.want);
   const scratch = new Float64Array(plan.blockRows);
   const fill = sampleFiller(samples, context, plan, request.want);
   return (bytes, range) => {
@@ -122,27 +123,6 @@ function blockDecoder(
     fillRows(raw, context, scratch, block);
     fill(raw, block);
     return block;
-  };
-}
-
-function newBlock(rows: number, { shape }: SampleLayout, want: BlockRequest["want"]): SampleBlock {
-  const samples = rows * shape.subbands * shape.channels * shape.polarizations;
-  return {
-    firstRow: 0,
-    rows: 0,
-    time: new Float64Array(rows),
-    u: new Float64Array(rows),
-    v: new Float64Array(rows),
-    w: new Float64Array(rows),
-    antenna1: new Int32Array(rows),
-    antenna2: new Int32Array(rows),
-    subarray: new Int32Array(rows),
-    field: new Int32Array(rows),
-    setup: new Int32Array(rows),
-    integration: new Float32Array(rows),
-    real: new Float32Array(want === "samples" ? samples : 0),
-    imag: new Float32Array(want === "samples" ? samples : 0),
-    weight: new Float32Array(want === "rows" ? 0 : samples),
   };
 }
 
