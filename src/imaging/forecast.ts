@@ -186,7 +186,7 @@ function standingLimits(standing: Standing): RankedLimit[] {
   const limits: RankedLimit[] = [];
   const add = (cause: string, range: number, text: string) => {
     if (range > 0 && Number.isFinite(range))
-      limits.push({ event: null, cause, dynamicRangeFraction: range, text });
+      limits.push({ event: null, eventIndex: null, cause, dynamicRangeFraction: range, text });
   };
   const thermal = standing.brightness / planned.noise;
   add(

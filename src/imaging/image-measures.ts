@@ -196,7 +196,8 @@ function azimuthalRows({ coverage }: ForecastParts): Row[] {
   }));
 }
 
-function limitRow({ cause, dynamicRangeFraction, text, event }: RankedLimit, planned: number): Row {
+function limitRow(limit: RankedLimit, planned: number): Row {
+  const { cause, dynamicRangeFraction, text, event, eventIndex } = limit;
   const scope = event?.scope;
   const antenna = scope?.antennas?.length === 1 ? scope.antennas[0]! : null;
   const [antenna1, antenna2] = scope?.baselines?.length === 1 ? scope.baselines[0]! : [null, null];
@@ -206,6 +207,7 @@ function limitRow({ cause, dynamicRangeFraction, text, event }: RankedLimit, pla
     dynamic_range: dynamicRangeFraction,
     ratio: planned / dynamicRangeFraction,
     text,
+    event: eventIndex ?? Number.NaN,
     antenna,
     antenna1,
     antenna2,

@@ -16,6 +16,8 @@ import type { FilledCells } from "./moment-grid.ts";
 /** A limit and the event behind it; null for one of the whole dataset. */
 export interface RankedLimit extends Limit {
   readonly event: DetectedEvent | null;
+  /** of that event in the list given */
+  readonly eventIndex: number | null;
 }
 
 /** More events than these are not ranked one by one: the most significant are. */
@@ -59,7 +61,7 @@ export async function eventLimits(
   level: SourceLevel,
 ): Promise<RankedLimit[]> {
   const ranked = events
-    .map((event) => ({ event, error: errorOf(event, level) }))
+    .map((event, eventIndex) => ({ event, eventIndex, error: errorOf(event, level) }))
     .filter(({ error }) => error.size > 0)
     .sort((a, b) => b.event.significance - a.event.significance)
     .slice(0, MOST_EVENTS);
@@ -72,9 +74,9 @@ export async function eventLimits(
     image,
     ranked.map(({ event }) => event.scope),
     (index, taken) => {
-      const { event, error } = ranked[index]!;
+      const { event, eventIndex, error } = ranked[index]!;
       const range = total / errorSum(cells, factors, taken, event, error);
-      if (Number.isFinite(range)) limits.push(limitOf(event, error, range));
+      if (Number.isFinite(range)) limits.push({ ...limitOf(event, error, range), eventIndex });
     },
   );
   return limits.sort((a, b) => a.dynamicRangeFraction - b.dynamicRangeFraction);
@@ -178,7 +180,7 @@ const CAUSES: Partial<Record<EventKind, string>> = {
   closure: "correlator error",
 };
 
-function limitOf(event: DetectedEvent, error: EventError, range: number): RankedLimit {
+function limitOf(event: DetectedEvent, error: EventError, range: number): Omit<RankedLimit, "eventIndex"> {
   const cause = CAUSES[event.kind] ?? event.kind.replaceAll("-", " ");
   return {
     event,

@@ -264,6 +264,7 @@ export const LIMIT: MeasureForm = {
     column("dynamic_range", "", "peak over rms that this cause alone allows"),
     column("ratio", "", "planned dynamic range over that"),
     column("text", "", "the same in words"),
+    column("event", "", "row of the measure event, from 0; NaN for a cause of the whole dataset"),
     column("antenna", "", "antenna at fault, or null"),
     column("antenna1", "", "baseline at fault, or null"),
     column("antenna2", "", "baseline at fault, or null"),
