@@ -1,0 +1,136 @@
+/** The `baseline` measure, and the facts of each baseline that other tables build on. */
+import { SPEED_OF_LIGHT } from "../../util/constants.ts";
+import { median, robustSigma } from "../../util/statistics.ts";
+import { fillMeasure } from "../fill-measure.ts";
+import { BASELINE } from "../forms.ts";
+import type { BareSurvey } from "../survey-measures.ts";
+import type { Measure } from "../table.ts";
+import { Counts } from "./counts.ts";
+import { parallelProducts } from "./products.ts";
+
+export interface BaselineFacts {
+  readonly counts: Counts;
+  /** medians over sub-bands, channels and parallel hands; NaN unknown */
+  readonly amplitude: number;
+  readonly sigma: number;
+  readonly coherence: number;
+  readonly scatter: number;
+  /** typical noise times the square root of the typical weight of a sample */
+  readonly weightScatter: number;
+  readonly uvMin: number;
+  readonly uvMax: number;
+  readonly wMax: number;
+}
+
+/** Integrations whose vector mean is held against their scalar mean. */
+const COHERENCE_WINDOW = 8;
+
+/** By number of the baseline. */
+export function baselineFacts(survey: BareSurvey): BaselineFacts[] {
+  return survey.baselines.map((_, baseline) => factsOf(survey, baseline));
+}
+
+function factsOf(survey: BareSurvey, baseline: number): BaselineFacts {
+  const { tracks, levels, dataset } = survey;
+  const { subbands, channels, polarizations } = dataset.shape;
+  const products = subbands * polarizations;
+  const each = products * channels;
+  const parallel = parallelProducts(dataset.polarizations);
+  const counts = new Counts();
+  const [first, last] = [tracks.firstCell[baseline]!, tracks.firstCell[baseline + 1]!];
+  for (let i = first * products; i < last * products; i++) counts.addProduct(tracks, i);
+  const ofParallel = (values: Float32Array) =>
+    values.subarray(baseline * each, (baseline + 1) * each).filter((_, i) => parallel[i % polarizations]);
+  const sigma = median(ofParallel(levels.sigma));
+  const inTime = timeFacts(survey, first, last, parallel);
+  return {
+    counts,
+    amplitude: median(ofParallel(levels.median)),
+    sigma,
+    coherence: inTime.coherence,
+    scatter: inTime.scatter,
+    weightScatter: sigma * Math.sqrt(inTime.sampleWeight),
+    ...spacings(survey, first, last),
+  };
+}
+
+/** What the series of channel averages in time says, median over its parallel-hand products. */
+function timeFacts(survey: BareSurvey, first: number, last: number, parallel: readonly boolean[]) {
+  const { tracks, dataset } = survey;
+  const { subbands, polarizations } = dataset.shape;
+  const products = subbands * polarizations;
+  const coherence: number[] = [];
+  const scatter: number[] = [];
+  const sampleWeight: number[] = [];
+  for (let k = 0; k < products; k++) {
+    if (!parallel[k % polarizations]) continue;
+    const amplitudes: number[] = [];
+    for (let cell = first; cell < last; cell++) {
+      const i = cell * products + k;
+      if (tracks.usable[i] === 0) continue;
+      amplitudes.push(tracks.amplitude[i]!);
+      sampleWeight.push(tracks.weight[i]! / tracks.usable[i]!);
+    }
+    scatter.push(robustSigma(amplitudes) / median(amplitudes));
+    coherence.push(coherenceOf(survey, first, last, k, products));
+  }
+  return { coherence: median(coherence), scatter: median(scatter), sampleWeight: median(sampleWeight) };
+}
+
+function coherenceOf(
+  survey: BareSurvey,
+  first: number,
+  last: number,
+  product: number,
+  products: number,
+): number {
+  const { tracks } = survey;
+  const windows: number[] = [];
+  let [re, im, scalar, count] = [0, 0, 0, 0];
+  for (let cell = first; cell < last; cell++) {
+    const i = cell * products + product;
+    if (count > 0 && tracks.scan[cell] !== tracks.scan[cell - 1]) [re, im, scalar, count] = [0, 0, 0, 0];
+    if (tracks.usable[i] === 0) continue;
+    re += tracks.real[i]!;
+    im += tracks.imag[i]!;
+    scalar += Math.hypot(tracks.real[i]!, tracks.imag[i]!);
+    count += 1;
+    if (count < COHERENCE_WINDOW) continue;
+    windows.push(Math.hypot(re, im) / scalar);
+    [re, im, scalar, count] = [0, 0, 0, 0];
+  }
+  return median(windows);
+}
+
+function spacings(survey: BareSurvey, first: number, last: number) {
+  const { u, v, w } = survey.tracks;
+  let [uvMin, uvMax, wMax] = [Number.NaN, Number.NaN, Number.NaN];
+  for (let cell = first; cell < last; cell++) {
+    const uv = Math.hypot(u[cell]!, v[cell]!) * SPEED_OF_LIGHT;
+    const height = Math.abs(w[cell]!) * SPEED_OF_LIGHT;
+    if (!(uv >= uvMin)) uvMin = Number.isNaN(uv) ? uvMin : uv;
+    if (!(uv <= uvMax)) uvMax = Number.isNaN(uv) ? uvMax : uv;
+    if (!(height <= wMax)) wMax = Number.isNaN(height) ? wMax : height;
+  }
+  return { uvMin, uvMax, wMax };
+}
+
+export function baselineMeasure(survey: BareSurvey, facts: readonly BaselineFacts[]): Measure {
+  const typicalSigma = median(facts.map(({ sigma }) => sigma));
+  const typicalWeightScatter = median(facts.map(({ weightScatter }) => weightScatter));
+  const rows = facts.map((fact, b) => ({
+    antenna1: survey.baselines[b]!.antenna1,
+    antenna2: survey.baselines[b]!.antenna2,
+    ...fact.counts.row,
+    uv_min_m: fact.uvMin,
+    uv_max_m: fact.uvMax,
+    w_max_m: fact.wMax,
+    amplitude_median: fact.amplitude,
+    noise_sigma: fact.sigma,
+    noise_ratio: fact.sigma / typicalSigma,
+    amplitude_scatter: fact.scatter,
+    coherence: fact.coherence,
+    weight_scatter_ratio: fact.weightScatter / typicalWeightScatter,
+  }));
+  return fillMeasure(BASELINE, rows);
+}
