@@ -20,14 +20,13 @@ export function planTable(plan: Plan): DataTable {
   const row = <T>(name: string, item: PlanValue<T>, text: (value: T) => string) => [
     name,
     text(item.value),
-    ORIGIN[item.origin],
-    item.how,
+    item.how === "" ? ORIGIN[item.origin] : `${ORIGIN[item.origin]}: ${item.how}`,
   ];
   const orNone = (text: (value: number) => string) => (value: number | null) =>
     value === null ? "none" : text(value);
   return {
     caption: "The plan that the dataset was judged against",
-    columns: [words("Plan"), words("Value"), words("Origin"), words("How")],
+    columns: [words("Plan"), words("Value"), words("Where it comes from")],
     rows: [
       row("field of view", plan.fieldOfView, formatAngle),
       row("resolution", plan.resolution, formatAngle),

@@ -27,8 +27,8 @@ export function createProgress(
   stream: ProgressStream,
   environment: Readonly<Record<string, string | undefined>> = process.env,
 ): Progress {
-  if (stream.isTTY !== true) return { stage: () => {}, end: () => {} };
-  const noColour = (environment.NO_COLOR ?? "") !== "" || environment.TERM === "dumb";
+  if (stream.isTTY !== true || environment.TERM === "dumb") return { stage: () => {}, end: () => {} };
+  const noColour = (environment.NO_COLOR ?? "") !== "";
   const chalk = new Chalk({ level: noColour ? 0 : 1 });
   let drawn = "";
   let ended = false;

@@ -27,7 +27,8 @@ export async function writeTextFile(path: string, text: string): Promise<void> {
     await rename(beside, path);
   } catch (cause) {
     const code = (cause as NodeJS.ErrnoException).code ?? "";
-    if (code !== "EEXIST") await rm(beside, { force: true });
+    // The error at hand says more than that there was nothing to take away.
+    if (code !== "EEXIST") await rm(beside, { force: true }).catch(() => {});
     throw new InputError(
       `the file cannot be written${code === "" ? "" : ` (${code})`}`,
       { file: path },

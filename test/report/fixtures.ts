@@ -452,3 +452,115 @@ export function cleanCheck(): Check {
     blindSpots: [],
   };
 }
+
+/** Names that would run, colour, turn around or widen what shows them. */
+export const HOSTILE = {
+  script: `<script>alert("x")</script><img src=x onerror=alert(1)>"'&`,
+  escapes: "\u001b[31mred\u001b]0;title\u0007\u009b2Jcleared\r\n\tnext",
+  bidi: "\u202egnissim\u2066\u200b\u200f",
+  wide: "漢字の観測所".repeat(20),
+  combining: `e${"\u0301\u0323\u0308".repeat(40)}`,
+  endless: "x".repeat(400),
+  pictures: "🛰️📡👩‍🔬".repeat(12),
+} as const;
+
+/** The faulty check with hostile text wherever a file, a rule or the user could have put some. */
+export function hostileCheck(text: string): Check {
+  const dataset = fixtureDataset();
+  const named: Dataset = {
+    ...dataset,
+    name: text,
+    files: [`/somewhere/${text}`],
+    header: { OBSERVER: text },
+    array: {
+      ...dataset.array,
+      name: text,
+      antennas: dataset.array.antennas.map((antenna) => ({ ...antenna, name: `${text}${antenna.number}` })),
+    },
+    fields: dataset.fields.map((field) => ({ ...field, name: text })),
+    unit: text,
+    notes: [{ kind: "fault", code: "hostile", text }],
+  };
+  const check = faultyCheck(named);
+  const findings = check.findings.map((finding) => ({
+    ...finding,
+    rule: text,
+    title: text,
+    measured: { ...finding.measured, unit: text },
+    limits: { ...finding.limits, unit: text, from: text },
+    consequence: { text },
+    evidence: [text],
+  }));
+  return {
+    ...check,
+    plan: { ...check.plan, fieldOfView: { ...check.plan.fieldOfView, how: text } },
+    events: check.events.map((one) => ({ ...one, unit: text, evidence: text })),
+    findings,
+    before: {
+      ...check.before,
+      findings,
+      taken: [{ rule: text, points: 1 }],
+      notJudged: [{ rule: text, why: text }],
+    },
+    flags: check.flags.map((flag) => ({ ...flag, rule: text, reason: text })),
+    image: {
+      ...check.image,
+      limits: check.image.limits.map((limit) => ({ ...limit, cause: text, text })),
+      advice: [{ name: text, value: text, why: text }],
+    },
+    beamPicture: { ...fixtureBeam(), weighting: text },
+    rulesFrom: [{ id: text, from: text }],
+    blindSpots: [text],
+  };
+}
+
+/** A dataset with nothing usable in it: no integration, no sample, every number unknown. */
+export function emptyCheck(): Check {
+  const check = faultyCheck();
+  const unknown = <T extends object>(numbers: T): T =>
+    Object.fromEntries(
+      Object.entries(numbers).map(([key, value]) => [key, typeof value === "number" ? Number.NaN : value]),
+    ) as T;
+  const dataset: Dataset = { ...check.dataset, rows: 0, fields: [], setups: [], notes: [] };
+  const empty = { antennas: [], fromTable: false } as const;
+  const { tracks, totals } = check.survey;
+  const nothing = Object.fromEntries(
+    Object.entries(tracks).map(([key, value]) => [key, typeof value === "number" ? 0 : value.slice(0, 0)]),
+  ) as unknown as Check["survey"]["tracks"];
+  const judged: Judgement = { score: Number.NaN, verdict: "hold", findings: [], taken: [], notJudged: [] };
+  return {
+    ...check,
+    dataset: { ...dataset, array: { ...dataset.array, ...empty } },
+    survey: {
+      ...check.survey,
+      dataset: { ...dataset, array: { ...dataset.array, ...empty } },
+      baselines: [],
+      antennasWithData: [],
+      tracks: nothing,
+      times: new Float64Array(0),
+      integration: Number.NaN,
+      scans: [],
+      totals: Object.fromEntries(Object.keys(totals).map((key) => [key, 0])) as unknown as typeof totals,
+    },
+    events: [],
+    measures: new Map(),
+    before: judged,
+    after: judged,
+    findings: [],
+    flags: [],
+    image: {
+      weightings: check.image.weightings.map((result) => ({
+        ...result,
+        before: unknown(result.before),
+        after: null,
+      })),
+      wTerm: { ...unknown(check.image.wTerm), known: false },
+      smearing: unknown(check.image.smearing),
+      coverage: { before: unknown(check.image.coverage.before), after: null },
+      limits: [],
+      advice: [],
+    },
+    beamPicture: null,
+    blindSpots: [],
+  };
+}

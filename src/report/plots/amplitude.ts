@@ -1,4 +1,5 @@
 /** Amplitude against uv distance. */
+import { plainTextWithin } from "../../util/terminal.ts";
 import type { Check } from "../report.ts";
 import { type Cells, FLAGGED, KEPT, SUGGESTED } from "./cells.ts";
 import { COLOUR, drawChart } from "./chart.ts";
@@ -40,7 +41,7 @@ export function amplitudeChart(check: Check, cells: Cells): string {
   const smallest = quantileOf(all, 0.002, largest);
   const log = largest / smallest > LOG_FROM;
   const [low, high] = [smallest * 0.8, largest * 1.25];
-  const unit = check.dataset.unit === "" ? "uncalibrated" : check.dataset.unit;
+  const unit = plainTextWithin(check.dataset.unit, 24) || "uncalibrated";
   const draw = (fate: number, colour: string) => {
     const points = byFate[fate]!;
     const scaled: Points = {

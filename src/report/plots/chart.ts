@@ -5,6 +5,7 @@
 import { type PlotOptions, plot } from "@observablehq/plot";
 import { parseHTML } from "linkedom";
 import { escapeHtml } from "../../util/html.ts";
+import { plainText } from "../../util/terminal.ts";
 import type { SvgDocument } from "./node.ts";
 
 /** The page's colours (see page/style.ts); each also differs in lightness. */
@@ -59,11 +60,12 @@ export function drawChart({ id, label, ...options }: ChartOptions): string {
  * - Plot numbers clip paths by a counter of the process: they get numbers of the chart's own, so that the same chart is
  *   the same text.
  * - Coordinates keep two decimals: more is bytes that nobody sees.
+ * - Names in it are escaped by the document, which lets through what cannot be printed.
  * - Parts that Plot labels for itself would be read out one by one inside an image that has its own label.
  */
 function finished(svg: string, id: string, label: string): string {
   const clips = new Map<string, string>();
-  return svg
+  return plainText(svg)
     .replace(/ (?:width|height)="[\d.]+"(?=[^>]* class="chart")/g, "")
     .replace(
       /viewBox="0 0 ([\d.]+) ([\d.]+)"/,

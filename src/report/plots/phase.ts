@@ -1,6 +1,7 @@
 /** Phase against time on the baselines that tell most of an antenna or baseline that an event concerns. */
 import { axisY, rectX, ruleX, ruleY, text } from "@observablehq/plot";
 import type { DetectedEvent } from "../../detect/event.ts";
+import { plainTextWithin } from "../../util/terminal.ts";
 import { formatNumber } from "../../util/units.ts";
 import type { Check } from "../report.ts";
 import type { ScopeWords } from "../scope.ts";
@@ -178,7 +179,7 @@ export function phaseChart(check: Check, subject: PhaseSubject, words: ScopeWord
         fontWeight: 600,
         stroke: "var(--surface)",
         strokeWidth: 4,
-        text: name,
+        text: (baseline: number) => plainTextWithin(name(baseline), 40),
       }),
       text(spans.slice(0, 6), {
         x: ({ time }: { time: readonly [number, number] }) =>
@@ -190,7 +191,8 @@ export function phaseChart(check: Check, subject: PhaseSubject, words: ScopeWord
         textAnchor: "start",
         fill: "var(--suggested-text)",
         fontWeight: 600,
-        text: ({ event }: { event: DetectedEvent }) => `${formatNumber(event.size)} ${event.unit}`,
+        text: ({ event }: { event: DetectedEvent }) =>
+          plainTextWithin(`${formatNumber(event.size)} ${event.unit}`, 24),
       }),
     ],
   });
