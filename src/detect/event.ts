@@ -28,6 +28,14 @@ export const EVENT_KINDS = [
 ] as const;
 export type EventKind = (typeof EVENT_KINDS)[number];
 
+/** The kinds that are interference. */
+export const INTERFERENCE_KINDS: ReadonlySet<EventKind> = new Set<EventKind>([
+  "persistent-line",
+  "burst",
+  "drifting-line",
+  "lone-samples",
+]);
+
 export interface DetectedEvent {
   readonly kind: EventKind;
   /** the smallest cause that explains it */
@@ -36,6 +44,8 @@ export interface DetectedEvent {
   readonly scope: Selection;
   /** what flagging it would take: the smallest selection that removes its harm; null: flagging is no cure */
   readonly flag: Selection | null;
+  /** what the cure takes besides `flag`, such as the other stretches of a dropout; only where `flag` is not null */
+  readonly alsoFlag?: readonly Selection[];
   /** its size, in `unit`: degrees of a jump, sigmas of interference, ratio of a gain */
   readonly size: number;
   /** 1 sigma error of `size`; NaN where it has none */
