@@ -3,6 +3,7 @@
 import type { Dataset } from "../dataset/dataset.ts";
 import type { DetectedEvent } from "../detect/event.ts";
 import type { FlagEntry } from "../flags/entry.ts";
+import type { Doubt } from "../flags/suggest.ts";
 import type { BeamPicture, ImageForecast } from "../imaging/image.ts";
 import type { Plan } from "../imaging/plan.ts";
 import type { Survey } from "../measure/survey-result.ts";
@@ -23,6 +24,8 @@ export interface Check {
   /** `before.findings` with verdicts softened where the flags mend them, flags linked; worst first */
   readonly findings: readonly Finding[];
   readonly flags: readonly FlagEntry[];
+  /** samples that look at fault but whose flags would not be worth their cost: for a person to judge */
+  readonly doubts: readonly Doubt[];
   readonly image: ImageForecast;
   readonly beamPicture: BeamPicture | null;
   readonly verdict: Verdict;
