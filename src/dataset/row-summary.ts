@@ -132,18 +132,26 @@ class RowCount {
   }
 
   #addAntennas({ rows, antenna1, antenna2, subarray }: SampleBlock): void {
-    let previous = -1;
+    const baselines = this.#baselines;
+    let previousSubarray = -1;
     for (let row = 0; row < rows; row++) {
       const a = antenna1[row]!;
       const b = antenna2[row]!;
-      if (a === b) this.#autocorrelations++;
+      if (subarray[row] !== previousSubarray) {
+        previousSubarray = subarray[row]!;
+        this.#subarrays.add(previousSubarray);
+      }
+      if (a === b) {
+        this.#autocorrelations++;
+        this.#antennas.add(a);
+        continue;
+      }
+      // Baselines come round again with every integration: one look-up a row, not three.
       const key = a < b ? a * 65536 + b : b * 65536 + a;
-      this.#subarrays.add(subarray[row]!);
-      if (key === previous) continue;
-      previous = key;
+      if (baselines.has(key)) continue;
+      if (baselines.size < MOST_BASELINES) baselines.add(key);
       this.#antennas.add(a);
       this.#antennas.add(b);
-      if (a !== b && this.#baselines.size < MOST_BASELINES) this.#baselines.add(key);
     }
   }
 

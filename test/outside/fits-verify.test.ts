@@ -1,4 +1,4 @@
-/** What we write is FITS by the checker of NASA's FITS Support Office (Debian package ftools-fv or fitsverify). */
+/** What we write is FITS by the checker of NASA's FITS Support Office (Debian package fitsverify). */
 import { spawnSync } from "node:child_process";
 import { describe, expect, it } from "vitest";
 import { binaryTable, card, headerBlocks, real } from "../../src/dataset/fits/write.ts";

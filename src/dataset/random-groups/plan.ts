@@ -7,7 +7,7 @@ export const MOST_BLOCK_BYTES = 16 * 1024 * 1024;
 /** Without a wish: about what the second-level cache holds, so that a block is decoded and used while it is warm. */
 const USUAL_BLOCK_BYTES = 1024 * 1024;
 /** Below this a group's array is cheaper read along than skipped. Measured: test/dataset/read.bench.ts. */
-const LEAST_SKIPPED_BYTES = 32 * 1024;
+const LEAST_SKIPPED_BYTES = 64 * 1024;
 /** Rows without samples are small; no more of them at a time than this. */
 const MOST_BLOCK_ROWS = 65_536;
 

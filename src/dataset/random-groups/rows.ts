@@ -51,7 +51,7 @@ export function fillRows(raw: RawRows, context: RowContext, scratch: Float64Arra
   if (columns.w === undefined) block.w.fill(0, 0, raw.rows);
   else fillSum(raw, columns.w, block.w);
   fillAntennas(raw, columns, scratch, block);
-  fillTimes(raw, context, block);
+  fillTimes(raw, context, scratch, block);
   if (columns.integration === undefined) block.integration.fill(Number.NaN, 0, raw.rows);
   else fillIntegrations(raw, columns.integration, scratch, block.integration);
   fillFields(raw, context, scratch, block.field);
@@ -90,23 +90,29 @@ function fillIntegrations(raw: RawRows, sum: Sum, scratch: Float64Array, out: Fl
  * Whole days and fractions of a day come in any order: summed with the lost digits carried along (Neumaier 1974,
  * ZAMM 54, 39), so that the fraction keeps its precision beside a Julian date.
  */
-function fillTimes(raw: RawRows, context: RowContext, block: SampleBlock): void {
+function fillTimes(raw: RawRows, context: RowContext, scratch: Float64Array, block: SampleBlock): void {
   const { view, rows, stride, bitpix } = raw;
   const { constant, terms } = context.columns.time;
   const { timeOffset } = context;
   const { time, subarray } = block;
-  for (let row = 0; row < rows; row++) {
-    let sum = constant;
-    let lost = 0;
-    for (let k = 0; k < terms.length; k++) {
-      const term = terms[k]!;
-      const value = term.scale * readStored(view, bitpix, row * stride + term.offset);
+  const lost = scratch;
+  const isFloat = bitpix === -32;
+  time.fill(constant, 0, rows);
+  lost.fill(0, 0, rows);
+  for (let k = 0; k < terms.length; k++) {
+    const { offset, scale } = terms[k]!;
+    for (let row = 0; row < rows; row++) {
+      const at = row * stride + offset;
+      const value = scale * (isFloat ? view.getFloat32(at) : readStored(view, bitpix, at));
+      const sum = time[row]!;
       const next = sum + value;
-      lost += Math.abs(sum) >= Math.abs(value) ? sum - next + value : value - next + sum;
-      sum = next;
+      lost[row]! += Math.abs(sum) >= Math.abs(value) ? sum - next + value : value - next + sum;
+      time[row] = next;
     }
+  }
+  for (let row = 0; row < rows; row++) {
     const array = subarray[row]!;
-    const mjd = sum + (lost - (array < timeOffset.length ? timeOffset[array]! : timeOffset[0]!));
+    const mjd = time[row]! + (lost[row]! - (array < timeOffset.length ? timeOffset[array]! : timeOffset[0]!));
     time[row] = Number.isFinite(mjd) ? mjd : Number.NaN;
   }
 }

@@ -199,13 +199,13 @@ describe("the bytes that are read", () => {
   it("for rows of large groups are their parameters alone", async () => {
     const bytes = groupFile({
       rows: 40,
-      axes: [COMPLEX, stokes(4), freq(1000), RA, DEC],
+      axes: [COMPLEX, stokes(4), freq(2000), RA, DEC],
       stored: (row) => row + 1,
       tables: [antennaTable()],
     });
     const { source, bytes: read } = counting(await openSource(file(bytes)));
     const opened = await openRandomGroups(await openFits(source));
-    // Headers and tables, and 24 bytes of each group of 48 kB.
+    // Headers and tables, and 24 bytes of each group of 96 kB.
     expect(read()).toBeLessThan(20_000);
     const before = read();
     const rows = await readAll(opened, { want: "rows" });
@@ -213,7 +213,7 @@ describe("the bytes that are read", () => {
     expect(rows.u).toEqual(Array.from({ length: 40 }, (_, row) => (row + 1) * 1e-9));
     const samples = await readAll(opened, { want: "samples", rows: [39, 40] });
     expect(samples.real[0]).toBe(40);
-    expect(read() - before).toBe(40 * 24 + 24 + 48_000);
+    expect(read() - before).toBe(40 * 24 + 24 + 96_000);
   });
 
   it("are not read again for a summary that is known", async () => {
