@@ -114,6 +114,11 @@ export const BASELINE: MeasureForm = {
     column("antenna1", "", "lower antenna number"),
     column("antenna2", "", "higher antenna number"),
     ...COUNTS,
+    column(
+      "flagged_beyond_antennas",
+      "",
+      "flagged fraction above that of the median baseline of either antenna, the larger",
+    ),
     column("uv_min_m", "m", "shortest projected spacing"),
     column("uv_max_m", "m", "longest projected spacing"),
     column("w_max_m", "m", "largest |w|"),

@@ -115,13 +115,31 @@ function spacings(survey: BareSurvey, first: number, last: number) {
   return { uvMin, uvMax, wMax };
 }
 
+/** By antenna, the median flagged fraction of its baselines. */
+function flaggedByAntenna(survey: BareSurvey, facts: readonly BaselineFacts[]): Map<number, number> {
+  const fractions = new Map<number, number[]>();
+  for (const [b, { antenna1, antenna2 }] of survey.baselines.entries()) {
+    for (const antenna of [antenna1, antenna2]) {
+      const known = fractions.get(antenna);
+      const fraction = facts[b]!.counts.flaggedFraction;
+      if (known === undefined) fractions.set(antenna, [fraction]);
+      else known.push(fraction);
+    }
+  }
+  return new Map([...fractions].map(([antenna, list]) => [antenna, median(list)]));
+}
+
 export function baselineMeasure(survey: BareSurvey, facts: readonly BaselineFacts[]): Measure {
+  const ofAntenna = flaggedByAntenna(survey, facts);
   const typicalSigma = median(facts.map(({ sigma }) => sigma));
   const typicalWeightScatter = median(facts.map(({ weightScatter }) => weightScatter));
   const rows = facts.map((fact, b) => ({
     antenna1: survey.baselines[b]!.antenna1,
     antenna2: survey.baselines[b]!.antenna2,
     ...fact.counts.row,
+    flagged_beyond_antennas:
+      fact.counts.flaggedFraction -
+      Math.max(ofAntenna.get(survey.baselines[b]!.antenna1)!, ofAntenna.get(survey.baselines[b]!.antenna2)!),
     uv_min_m: fact.uvMin,
     uv_max_m: fact.uvMax,
     w_max_m: fact.wMax,
