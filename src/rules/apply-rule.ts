@@ -2,7 +2,7 @@
 import { EVERYTHING, type Selection } from "../dataset/selection.ts";
 import type { Plan } from "../imaging/plan.ts";
 import type { Measure, Measures } from "../measure/table.ts";
-import { NotJudgeable, RuleColumns } from "./evaluate.ts";
+import { isTrue, NotJudgeable, RuleColumns } from "./evaluate.ts";
 import type { Expression } from "./expression.ts";
 import type { Hit } from "./hit.ts";
 import type { Rule } from "./rule.ts";
@@ -61,8 +61,8 @@ function applyTo(rule: Rule, measure: Measure, measures: Measures, plan: Plan): 
   const unjudged: number[] = [];
   let judged = 0;
   for (let row = 0; row < columns.rows; row++) {
-    // A condition on an unknown number is neither met nor missed.
-    const wants = wanted === null || (wanted[row] !== 0 && !Number.isNaN(wanted[row]));
+    // A condition that hangs on an unknown number is neither met nor missed.
+    const wants = wanted === null || isTrue(wanted[row]!);
     if (!wants && unsure?.[row] !== true) continue;
     const severity = severityOf(values[row]!, cautions[row]!, holds[row]!);
     if (!wants || Number.isNaN(severity)) {

@@ -38,28 +38,49 @@ export class RuleColumns {
     this.table = table(columns).params(parameters) as ColumnTable;
   }
 
-  /** One value a row; for a template, `value` holds what the rule computed. */
-  evaluate(expression: Expression, value?: readonly number[]): unknown[] {
+  /** One value a row; `value` holds what the rule computed. */
+  evaluate(expression: Expression, value: readonly number[]): unknown[] {
+    return this.run(expression, this.table.assign(table({ [VALUE_COLUMN]: [...value] })));
+  }
+
+  private run(expression: Expression, input: ColumnTable): unknown[] {
     if (this.rows === 0) return [];
-    const input = value === undefined ? this.table : this.table.assign(table({ [VALUE_COLUMN]: [...value] }));
     const text = arqueroText(expression.root, reference);
     return Array.from(input.derive({ [RESULT_COLUMN]: text }).array(RESULT_COLUMN) as Iterable<unknown>);
   }
 
   /** One number a row: true is 1, false 0, and everything else that is no number NaN. */
-  numbers(expression: Expression): number[] {
-    return this.evaluate(expression).map((value) =>
+  numbers(expression: Expression, input: ColumnTable = this.table): number[] {
+    return this.run(expression, input).map((value) =>
       typeof value === "number" ? value : typeof value === "boolean" ? Number(value) : Number.NaN,
     );
   }
 
-  /** Rows where a number that the expression reads is unknown (NaN; a null says there is none). */
-  unknownRows(expression: Expression): boolean[] {
-    const columns = expression.names
-      .filter((name) => name.source === "d")
-      .map((name) => columnOf(this.measure, name.name));
-    return Array.from({ length: this.rows }, (_, row) => columns.some((column) => Number.isNaN(column[row])));
+  /**
+   * Rows whose condition would depend on a number that is unknown (NaN; a null says there is none): it comes out
+   * different when the unknown ones are taken for very large or very small.
+   */
+  unknownRows(condition: Expression): boolean[] {
+    const names = condition.names.flatMap(({ source, name }) => (source === "d" ? [name] : []));
+    const columns = names.map((name) => columnOf(this.measure, name));
+    const unknown = Array.from({ length: this.rows }, (_, row) =>
+      columns.some((column) => Number.isNaN(column[row])),
+    );
+    if (!unknown.includes(true)) return unknown;
+    const [large, small] = [Number.POSITIVE_INFINITY, Number.NEGATIVE_INFINITY].map((extreme) => {
+      const replaced = columns.map((column) =>
+        column.map((value) => (Number.isNaN(value) ? extreme : value)),
+      );
+      const filled = Object.fromEntries(names.map((name, i) => [name, cleaned(replaced[i]!)]));
+      return this.numbers(condition, this.table.assign(table(filled)));
+    }) as [number[], number[]];
+    return unknown.map((is, row) => is && (isTrue(large[row]!) || isTrue(small[row]!)));
   }
+}
+
+/** A condition as `numbers` gives it. */
+export function isTrue(value: number): boolean {
+  return value !== 0 && !Number.isNaN(value);
 }
 
 function reference(source: Source, name: string): string {

@@ -1,9 +1,10 @@
 /** From rows past a rule's limits to a finding in words. */
 import type { Plan } from "../imaging/plan.ts";
 import type { Measure, Measures } from "../measure/table.ts";
+import { formatNumber } from "../util/units.ts";
 import type { Expression } from "./expression.ts";
 import type { Finding } from "./finding.ts";
-import type { FilledHit } from "./hit.ts";
+import type { FilledHit, Hit } from "./hit.ts";
 import { isPlanKey, type PlanKeyName, planWords } from "./plan-values.ts";
 import { formatQuantity } from "./quantity.ts";
 import type { Rule } from "./rule.ts";
@@ -103,11 +104,12 @@ function evidenceOf(
   };
   const sentences: string[] = [];
   if (ordered.length === 1) {
-    sentences.push(`${what}: ${show(hit.value)} for ${scopeWords(hit.scope)} (${limits}).`);
+    const whom = rowWords(hit);
+    sentences.push(`${what}: ${show(hit.value)}${whom === null ? "" : ` for ${whom}`} (${limits}).`);
   } else {
     const named = ordered
       .slice(0, MOST_NAMED)
-      .map((one) => `${scopeWords(one.hit.scope)} (${show(one.hit.value)})`);
+      .map((one) => `${rowWords(one.hit) ?? `row ${one.hit.row + 1}`} (${show(one.hit.value)})`);
     const more = ordered.length > MOST_NAMED ? `, and ${ordered.length - MOST_NAMED} more` : "";
     sentences.push(`${ordered.length} of ${judged} are past the caution limit (${limits}).`);
     sentences.push(`${what}, worst first: ${named.join("; ")}${more}.`);
@@ -117,6 +119,17 @@ function evidenceOf(
     if (text !== null) sentences.push(text);
   }
   return sentences;
+}
+
+/** Whom a row is about; null when it is the dataset as a whole. */
+function rowWords({ measure, row, scope }: Hit): string | null {
+  if (Object.values(scope).some((part) => part !== null)) return scopeWords(scope);
+  const names = measure.table.columnNames();
+  if (measure.each === "gap" && names.includes("from_wavelengths") && names.includes("to_wavelengths")) {
+    const at = (name: string) => formatNumber(Number(measure.table.get(name, row)));
+    return `spacings of ${at("from_wavelengths")} to ${at("to_wavelengths")} wavelengths`;
+  }
+  return null;
 }
 
 /** What the value is: the meaning of its column, or the rule's title where it is computed. */

@@ -3,6 +3,7 @@ import type { Selection } from "../dataset/selection.ts";
 import type { Plan } from "../imaging/plan.ts";
 import type { Measures, RowKind } from "../measure/table.ts";
 import { type Applied, applyRule } from "./apply-rule.ts";
+import { withEventLimits } from "./event-limits.ts";
 import { FAMILIES, type Finding } from "./finding.ts";
 import { findingOf } from "./finding-text.ts";
 import type { FilledHit, Hit, Judged } from "./hit.ts";
@@ -18,7 +19,8 @@ export const MOST_FINDINGS_OF_A_RULE = 6;
  * Judge measures. The score and verdict are of these measures alone: flags that are not applied do not soften them.
  * A rule whose measure, columns or numbers are missing is named in `notJudged`.
  */
-export function judge(rules: RuleSet, measures: Measures, plan: Plan): Judged {
+export function judge(rules: RuleSet, given: Measures, plan: Plan): Judged {
+  const measures = withEventLimits(given);
   const hits: Hit[] = [];
   const findings: Finding[] = [];
   const taken: { rule: string; points: number }[] = [];

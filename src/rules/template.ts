@@ -103,7 +103,7 @@ export interface Filling {
 
 export interface FilledText {
   readonly text: string;
-  /** the first number of the text that is not a limit or a count, with its unit */
+  /** the first number of the text that the data give (not a limit, a count or the plan), with its unit */
   readonly value?: number;
   readonly unit?: string;
 }
@@ -121,8 +121,9 @@ export function fillTemplate(template: Template, filling: Filling): FilledText {
       const value = filling.values[next++];
       const unit = part.unit ?? ownUnit(part.expression, filling);
       text += typeof value === "number" ? formatQuantity(value, unit) : String(value ?? "unknown");
+      const given = part.expression.names.every(({ source }) => source === "plan" || source === "dataset");
       // Shown in degrees, a phase is still a number of radians.
-      if (typeof value === "number") first ??= { value, unit: unit === "phase" ? "rad" : unit };
+      if (typeof value === "number" && !given) first ??= { value, unit: unit === "phase" ? "rad" : unit };
     }
   }
   return { text, ...first };
