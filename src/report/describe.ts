@@ -57,7 +57,14 @@ export function describeText(dataset: Dataset, { summary }: DescribeExtras): str
 /** A label and its lines beside it, each broken to the width; nothing where there are none. */
 function entry(label: string, texts: readonly string[]): string[] {
   const lines = texts.flatMap((text) => wrap(plainText(text), WIDTH - LABEL));
-  return lines.map((line, i) => (i === 0 ? pad(label, LABEL) : " ".repeat(LABEL)) + line);
+  return lines.map((line, i) => (i === 0 ? pad(label, LABEL) : " ".repeat(LABEL)) + unbound(line));
+}
+
+/** Keeps a number and what it belongs to on one line; `unbound` makes a blank of it. */
+const BOUND = "\u00a0";
+
+function unbound(line: string): string {
+  return line.replaceAll(BOUND, " ");
 }
 
 function headerLines({ header }: Dataset): string[] {
@@ -98,7 +105,7 @@ function arrayLines({ array }: Dataset, summary: RowSummary): string[] {
 /** Numbers and names; those without a row in brackets. */
 function antennaNames({ array }: Dataset, withData: ReadonlySet<number>): string {
   const shown = array.antennas.slice(0, MOST_ANTENNAS).map(({ number, name }) => {
-    const text = name === String(number) ? name : `${number} ${name}`;
+    const text = name === String(number) ? name : `${number}${BOUND}${name}`;
     return withData.has(number) ? text : `(${text})`;
   });
   const more = array.antennas.length - shown.length;
@@ -193,7 +200,9 @@ function noteLines({ notes }: Dataset): string[] {
   if (notes.length === 0) return [];
   const lines = notes.flatMap(({ kind, text }) => {
     const mark = kind === "fault" ? "! " : "- ";
-    return wrap(plainText(text), WIDTH - mark.length).map((line, i) => (i === 0 ? mark : "  ") + line);
+    return wrap(plainText(text), WIDTH - mark.length).map(
+      (line, i) => (i === 0 ? mark : "  ") + unbound(line),
+    );
   });
   const faults = notes.some(({ kind }) => kind === "fault")
     ? " (!: the format allows it, science does not)"
@@ -202,5 +211,5 @@ function noteLines({ notes }: Dataset): string[] {
 }
 
 function counted(count: number, noun: string): string {
-  return `${formatCount(count)} ${noun}${count === 1 ? "" : "s"}`;
+  return `${formatCount(count)}${BOUND}${noun}${count === 1 ? "" : "s"}`;
 }

@@ -1,24 +1,8 @@
-/** Every row and sample of a dataset in one set of arrays, for tests that compare. */
-import type { BlockRequest, Dataset, SampleBlock } from "../../src/dataset/dataset.ts";
+/** Every row and sample of a dataset in plain arrays, for tests that compare, and the error that a promise ends in. */
+import type { BlockRequest, Dataset } from "../../src/dataset/dataset.ts";
+import { readAll as readBlock } from "../support/read-all.ts";
 
-export interface AllRows {
-  readonly blocks: readonly { readonly firstRow: number; readonly rows: number }[];
-  readonly time: number[];
-  readonly u: number[];
-  readonly v: number[];
-  readonly w: number[];
-  readonly antenna1: number[];
-  readonly antenna2: number[];
-  readonly subarray: number[];
-  readonly field: number[];
-  readonly setup: number[];
-  readonly integration: number[];
-  readonly real: number[];
-  readonly imag: number[];
-  readonly weight: number[];
-}
-
-const ROW_COLUMNS = [
+const COLUMNS = [
   "time",
   "u",
   "v",
@@ -29,24 +13,19 @@ const ROW_COLUMNS = [
   "field",
   "setup",
   "integration",
-] as const satisfies readonly (keyof SampleBlock)[];
-const SAMPLE_COLUMNS = ["real", "imag", "weight"] as const satisfies readonly (keyof SampleBlock)[];
+  "real",
+  "imag",
+  "weight",
+] as const;
+
+export type AllRows = Record<(typeof COLUMNS)[number], number[]>;
 
 export async function readAll(
   dataset: Dataset,
   request: BlockRequest = { want: "samples" },
 ): Promise<AllRows> {
-  const { subbands, channels, polarizations } = dataset.shape;
-  const perRow = subbands * channels * polarizations;
-  const all: Record<string, number[]> = {};
-  for (const name of [...ROW_COLUMNS, ...SAMPLE_COLUMNS]) all[name] = [];
-  const blocks: { firstRow: number; rows: number }[] = [];
-  for await (const block of dataset.blocks(request)) {
-    blocks.push({ firstRow: block.firstRow, rows: block.rows });
-    for (const name of ROW_COLUMNS) all[name]!.push(...block[name].subarray(0, block.rows));
-    for (const name of SAMPLE_COLUMNS) all[name]!.push(...block[name].subarray(0, block.rows * perRow));
-  }
-  return { blocks, ...all } as unknown as AllRows;
+  const block = await readBlock(dataset, request);
+  return Object.fromEntries(COLUMNS.map((name) => [name, [...block[name]]])) as AllRows;
 }
 
 /** The InputError that `promise` ends in, as the line a user sees; fails when there is none. */

@@ -12,6 +12,7 @@ import { readTable, type Table } from "../../src/dataset/fits/table-rows.ts";
 import { binaryTable, card, headerBlocks, real } from "../../src/dataset/fits/write.ts";
 import { openDataset } from "../../src/dataset/open.ts";
 import { MJD_EPOCH_JD } from "../../src/util/dates.ts";
+import { everyColumn } from "../dataset/fits/every-column.ts";
 import {
   COMPLEX,
   DEC,
@@ -184,58 +185,7 @@ describe.skipIf(noPython)("files that we write", () => {
     const table = binaryTable({
       name: "EVERY",
       columns: [
-        {
-          name: "L",
-          form: "3L",
-          cells: [
-            [true, false, true],
-            [false, false, true],
-          ],
-        },
-        {
-          name: "X",
-          form: "11X",
-          cells: [[1, 0, 0, 0, 0, 0, 0, 1, 0, 1, 1].map(Boolean), Array(11).fill(false)],
-        },
-        { name: "B", form: "1B", cells: [0, 255] },
-        {
-          name: "I",
-          form: "2I",
-          cells: [
-            [-32768, 32767],
-            [1, -1],
-          ],
-        },
-        { name: "J", form: "1J", cells: [-2147483648, 2147483647], unit: "M" },
-        { name: "K", form: "1K", cells: [-9007199254740993n, 9223372036854775807n] },
-        { name: "A", form: "8A", cells: ["Ridge", ""] },
-        { name: "E", form: "1E", cells: [1.5, Number.NaN] },
-        {
-          name: "D",
-          form: "3D",
-          cells: [
-            [1e300, -0.1, Number.NEGATIVE_INFINITY],
-            [0, 1, 2],
-          ],
-        },
-        {
-          name: "C",
-          form: "1C",
-          cells: [
-            [1.5, -2.5],
-            [0, 1],
-          ],
-        },
-        {
-          name: "M",
-          form: "2M",
-          cells: [
-            [0.1, 0.2, 3, 4],
-            [0.3, 0.4, 5, 6],
-          ],
-        },
-        { name: "P", form: "1PE", cells: [[1, 2, 3], []] },
-        { name: "Q", form: "1QD", cells: [[7], [8, 9]] },
+        ...everyColumn,
         { name: "S", form: "1I", cells: [10, -5], keywords: { TSCAL: real(0.5), TZERO: real(100) } },
       ],
     });

@@ -11,6 +11,7 @@ import {
   real,
 } from "../../../src/dataset/fits/write.ts";
 import { lineOfError } from "../read-all.ts";
+import { everyColumn } from "./every-column.ts";
 import { memoryCursor, memorySource } from "./memory-cursor.ts";
 
 const primary = headerBlocks([card("SIMPLE", true), card("BITPIX", 8), card("NAXIS", 0)]);
@@ -36,61 +37,8 @@ function withCard(bytes: Uint8Array, keyword: string, value: string): Buffer {
 
 // FITS Standard 4.0, table 18: the column types.
 describe("a table with a column of every type", () => {
-  const columns: ColumnToWrite[] = [
-    {
-      name: "L",
-      form: "3L",
-      cells: [
-        [true, false, null],
-        [false, false, true],
-      ],
-    },
-    { name: "X", form: "11X", cells: [[1, 0, 0, 0, 0, 0, 0, 1, 0, 1, 1].map(Boolean), Array(11).fill(true)] },
-    { name: "B", form: "1B", cells: [0, 255] },
-    {
-      name: "I",
-      form: "2I",
-      cells: [
-        [-32768, 32767],
-        [1, -1],
-      ],
-    },
-    { name: "J", form: "1J", cells: [-2147483648, 2147483647] },
-    { name: "K", form: "1K", cells: [-9007199254740993n, 9223372036854775807n] },
-    { name: "A", form: "8A", cells: ["Ridge  ", ""] },
-    { name: "E", form: "1E", cells: [1.5, Number.NaN] },
-    {
-      name: "D",
-      form: "3D",
-      cells: [
-        [1e300, -0.1, Number.NEGATIVE_INFINITY],
-        [0, 1, 2],
-      ],
-    },
-    {
-      name: "C",
-      form: "1C",
-      cells: [
-        [1.5, -2.5],
-        [0, 1],
-      ],
-    },
-    {
-      name: "M",
-      form: "1M",
-      cells: [
-        [0.1, 0.2],
-        [0.3, 0.4],
-      ],
-    },
-    { name: "P", form: "1PE", cells: [[1, 2, 3], []] },
-    { name: "Q", form: "1QJ", cells: [[7], [8, 9]] },
-    { name: "ZERO", form: "0D", cells: [[], []] },
-    { name: "LAST", form: "1J", cells: [11, 12] },
-  ];
-
   it("gives every number as it was written", async () => {
-    const table = await made(columns);
+    const table = await made(everyColumn);
     const numbers = (name: string, row: number) => [...table.numbers(row, findColumn(table.layout, name)!)];
     expect(numbers("B", 0).concat(numbers("B", 1))).toEqual([0, 255]);
     expect(numbers("I", 0)).toEqual([-32768, 32767]);
@@ -107,14 +55,14 @@ describe("a table with a column of every type", () => {
   });
 
   it("keeps every digit of 64-bit integers", async () => {
-    const table = await made(columns);
+    const table = await made(everyColumn);
     const column = findColumn(table.layout, "K")!;
     expect(table.integers(0, column)).toEqual([-9007199254740993n]);
     expect(table.integers(1, column)).toEqual([9223372036854775807n]);
   });
 
   it("gives text, logicals and bits as what they are", async () => {
-    const table = await made(columns);
+    const table = await made(everyColumn);
     const column = (name: string) => findColumn(table.layout, name)!;
     expect(table.text(0, column("A"))).toBe("Ridge");
     expect(table.text(1, column("A"))).toBe("");
@@ -125,7 +73,7 @@ describe("a table with a column of every type", () => {
   });
 
   it("gives NaN for an element that a cell does not have", async () => {
-    const table = await made(columns);
+    const table = await made(everyColumn);
     expect(table.number(0, findColumn(table.layout, "ZERO")!)).toBeNaN();
     expect(table.number(1, findColumn(table.layout, "P")!, 0)).toBeNaN();
     expect(table.number(0, findColumn(table.layout, "I")!, 1)).toBe(32767);
