@@ -109,7 +109,7 @@ export function unitOfScale(scale: number, frequency: number): string | null {
 
 /** Expected u, v, w of spacing `i` in metres, in the orientation found, into `out`. */
 export function fillExpected(
-  spacings: Spacings,
+  spacings: Pick<Spacings, "x" | "y" | "z" | "hourAngle">,
   orientation: Orientation,
   i: number,
   out: Float64Array,

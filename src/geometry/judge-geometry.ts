@@ -4,7 +4,7 @@
  */
 import type { ArrayInfo, Field } from "../dataset/dataset.ts";
 import { type AntennaOffset, antennaOffsets } from "./antenna-offsets.ts";
-import { fillExpected, fillRepaired, type Orientation, orient } from "./compare-uvw.ts";
+import { fillExpected, fillRepaired, type Orientation, orient, signsOf } from "./compare-uvw.ts";
 import { concludeGeometry, type GeometryJudgement, type Rest } from "./geometry-faults.ts";
 import { equinoxDay, precess } from "./precession.ts";
 import { siderealTimeOf } from "./sidereal.ts";
@@ -328,4 +328,42 @@ function relativeRms(
     }
   }
   return total > 0 ? Math.sqrt(squares / total) : Number.NaN;
+}
+
+/** Fills `out` with the u, v, w (metres) of a baseline at a time, as the tables give them in this orientation. */
+export type UvwPredictor = (antenna1: number, antenna2: number, time: number, out: Float64Array) => boolean;
+
+/**
+ * u, v, w from the tables in the orientation that was found, with the file's sign; false where an antenna has no
+ * position. The day decides which equator "of date" is.
+ */
+export function uvwPredictor(
+  array: ArrayInfo,
+  field: Field,
+  orientation: Orientation,
+  day: number,
+): UvwPredictor {
+  const positions = new Map(array.antennas.map((antenna) => [antenna.number, antenna.position]));
+  const sign = signsOf(orientation.fit.map).reversed ? -1 : 1;
+  const one = {
+    x: new Float64Array(1),
+    y: new Float64Array(1),
+    z: new Float64Array(1),
+    hourAngle: new Float64Array(1),
+  };
+  const centre =
+    orientation.convention === "catalogue"
+      ? field
+      : precess(field.rightAscension, field.declination, equinoxDay(field.equinox), day);
+  return (antenna1, antenna2, time, out) => {
+    const a = positions.get(antenna1);
+    const b = positions.get(antenna2);
+    if (a === null || b === null || a === undefined || b === undefined) return false;
+    one.x[0] = sign * (a[0] - b[0]);
+    one.y[0] = sign * (a[1] - b[1]);
+    one.z[0] = sign * (a[2] - b[2]);
+    one.hourAngle[0] = hourAngle(siderealTimeOf(array, time), centre.rightAscension);
+    fillExpected(one, orientation, 0, out);
+    return true;
+  };
 }

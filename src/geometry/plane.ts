@@ -93,24 +93,49 @@ export interface ArrayPlane {
 /** Fewer antennas than these have no plane that one of them could be off. */
 export const LEAST_ANTENNAS_OF_A_PLANE = 5;
 
+/** Antennas further off than this many times the typical distance have no say in where the plane is. */
+const OFF_PLANE = 6;
+
 /**
- * The plane that the antennas lie on, of which a few may be off by any amount: least absolute deviations by
- * reweighted least squares. Null with too few antennas, or when they lie on a line.
+ * The plane that most antennas lie on, of which a few may be off by any amount: least absolute deviations first, then
+ * least squares over those near it. Null with too few antennas, or when they lie on a line.
  */
 export function fitArrayPlane(
   u: ArrayLike<number>,
   v: ArrayLike<number>,
   w: ArrayLike<number>,
 ): ArrayPlane | null {
+  if (u.length < LEAST_ANTENNAS_OF_A_PLANE) return null;
+  const rough = leastAbsolutePlane(u, v, w);
+  if (rough === null) return null;
+  const heights = Float64Array.from({ length: u.length }, (_, i) =>
+    Math.abs(heightOff(rough, u[i]!, v[i]!, w[i]!)),
+  );
+  // The plane goes through three of them: the typical height is that of the others.
+  const typical = heights.slice().sort()[Math.min(u.length - 1, 3 + ((u.length - 3) >> 1))]!;
+  return (
+    weightedPlane(
+      u,
+      v,
+      w,
+      heights.map((height) => (height <= OFF_PLANE * typical ? 1 : 0)),
+    ) ?? rough
+  );
+}
+
+function leastAbsolutePlane(
+  u: ArrayLike<number>,
+  v: ArrayLike<number>,
+  w: ArrayLike<number>,
+): ArrayPlane | null {
   const count = u.length;
-  if (count < LEAST_ANTENNAS_OF_A_PLANE) return null;
   const weight = new Float64Array(count).fill(1);
   let scale = 0;
   for (let i = 0; i < count; i++) scale = Math.max(scale, Math.abs(u[i]!), Math.abs(v[i]!));
   let plane: ArrayPlane | null = null;
   for (let round = 0; round < 50; round++) {
     const next = weightedPlane(u, v, w, weight);
-    if (next === null) return null;
+    if (next === null) return plane;
     let change = 0;
     for (let i = 0; i < count; i++) {
       const rest = Math.abs(w[i]! - next.a * u[i]! - next.b * v[i]! - next.c);

@@ -17,6 +17,7 @@ import { CoverageTally } from "./coverage-tally.ts";
 import { weightingName } from "./derive-plan.ts";
 import { type EdgeSamples, edgeSamples, FactorLookup } from "./edge-samples.ts";
 import type { ForecastParts, NamedBeam } from "./forecast-parts.ts";
+import { expectedW, geometryMeasures, judgeTracks } from "./geometry-report.ts";
 import { type GridRequest, gridDataset } from "./grid-dataset.ts";
 import type { BeamPicture, ImageForecast, WeightingResult, WTerm } from "./image.ts";
 import { imageMeasures } from "./image-measures.ts";
@@ -77,7 +78,8 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
   onProgress?.(0.8);
   const planned = weightings.find((named) => named.planned)!.made;
   const natural = weightings.find((named) => named.weighting.kind === "natural")!.made;
-  const wOf = trackW(sampling);
+  const geometry = judgeTracks(sampling);
+  const wOf = trackW(sampling, expectedW(sampling, geometry.judged));
   const radius = Math.sin(plan.fieldOfView.value / 2);
   const samples = edgeSamples(sampling, wOf.w, new FactorLookup(cells, planned.factors));
   const loss = wLossAt(samples, radius);
@@ -112,7 +114,10 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
   return {
     image: reportImage(parts, maker.field, dropW),
     picture: pictureOf(planned, weightingName(plan.weighting.value)),
-    measures: imageMeasures(parts, snapshots, wByAntenna(baselines)),
+    measures: [
+      ...imageMeasures(parts, snapshots, wByAntenna(baselines)),
+      ...geometryMeasures(sampling, geometry, radius),
+    ],
     costs: (selections) => costsOf(image, selections),
   };
 }

@@ -1,7 +1,8 @@
 /** The forecast as measures, for rules, reports and notebooks. */
+
+import { type Cell, fillMeasure, type Row } from "../measure/fill-measure.ts";
 import type { Measure } from "../measure/table.ts";
 import { type MadeBeam, RADIANS_PER_ARCSEC } from "./beams.ts";
-import { type Cell, fillMeasure, type Row } from "./fill-measure.ts";
 import type { ForecastParts } from "./forecast-parts.ts";
 import type { RankedLimit } from "./limits.ts";
 import {

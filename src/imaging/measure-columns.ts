@@ -2,14 +2,8 @@
  * The measures that the forecast fills, by name, and what each of their columns means. Numbers that are unknown are
  * NaN, names that are unknown null, yes and no 1 and 0. Fractions are of 1.
  */
-import type { Column, RowKind } from "../measure/table.ts";
-
-export interface MeasureForm {
-  readonly name: string;
-  readonly each: RowKind;
-  readonly title: string;
-  readonly columns: readonly Column[];
-}
+import type { MeasureForm } from "../measure/fill-measure.ts";
+import type { Column } from "../measure/table.ts";
 
 const column = (name: string, unit: string, meaning: string): Column => ({ name, unit, meaning });
 
@@ -228,8 +222,11 @@ export const ANTENNA_GEOMETRY: MeasureForm = {
   columns: [
     column("antenna", "", "antenna number"),
     column("offset_m", "m", "distance between the position that u, v, w mean and the table's"),
-    column("offset_east_m", "m", "its component to the east of the meridian the table uses"),
-    column("offset_wavelengths", "", "the same at the highest frequency"),
+    column("offset_x_m", "m", "its components in the table's frame"),
+    column("offset_y_m", "m", "its components in the table's frame"),
+    column("offset_z_m", "m", "its components in the table's frame"),
+    column("offset_wavelengths", "", "that distance at the highest frequency"),
+    column("offset_phase_edge", "rad", "phase that it leaves at the edge of the planned field"),
     column("significance", "", "that offset over the scatter of the others'"),
     column(
       "phase_offset_m",
