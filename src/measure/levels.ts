@@ -23,7 +23,7 @@ export function finishLevels(part: SurveyPart, places: Int32Array, tracks: Track
     const first = place * each;
     part.amplitudes.fillMedians(index, levels.median.subarray(first, first + each));
     levels.count.set(part.amplitudes.usable(index), first);
-    const sigma = part.noise.baselineSigma(index);
+    const sigma = part.noise.baselineSigma(index, shape);
     for (let s = 0; s < subbands; s++) {
       for (let p = 0; p < polarizations; p++) {
         const product = s * polarizations + p;
@@ -41,7 +41,13 @@ export function finishLevels(part: SurveyPart, places: Int32Array, tracks: Track
   return levels;
 }
 
-/** (subbands x channels x polarizations) noise of a channel over the typical one of its sub-band and polarization. */
+/** Channels on either side whose median is a channel's noise: more than a narrow line and its neighbours take. */
+const AROUND = 5;
+
+/**
+ * (subbands x channels x polarizations) noise of a channel over the typical one of its sub-band and polarization:
+ * smooth along the band, as a passband is and a narrow line is not.
+ */
 function channelShape(part: SurveyPart): Float64Array {
   const { subbands, channels, polarizations } = part.dataset.shape;
   const sigma = part.noise.channelSigma();
@@ -49,12 +55,13 @@ function channelShape(part: SurveyPart): Float64Array {
   for (let s = 0; s < subbands; s++) {
     for (let p = 0; p < polarizations; p++) {
       const at = (c: number) => (s * channels + c) * polarizations + p;
-      const typical = median(Float64Array.from({ length: channels }, (_, c) => sigma[at(c)]!));
+      const along = Float64Array.from({ length: channels }, (_, c) => sigma[at(c)]!);
+      const typical = median(along);
       if (!(typical > 0)) continue;
       for (let c = 0; c < channels; c++) {
-        // The outermost channels have no neighbours on one side: theirs is that of the next one in.
-        const inner = Math.min(Math.max(c, 1), channels - 2);
-        const ratio = sigma[at(inner)]! / typical;
+        // Shorter towards the ends, so that a passband's edge is not flattened; the outermost have no noise of their own.
+        const reach = Math.max(1, Math.min(AROUND, c, channels - 1 - c));
+        const ratio = median(along.subarray(Math.max(0, c - reach), c + reach + 1)) / typical;
         if (ratio > 0) shape[at(c)] = ratio;
       }
     }

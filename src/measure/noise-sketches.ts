@@ -4,9 +4,10 @@
  * spectra smoothed over neighbouring channels are told and corrected for.
  */
 import type { Shape } from "../dataset/dataset.ts";
-import { MAD_TO_SIGMA } from "../util/statistics.ts";
+import { MAD_TO_SIGMA, median } from "../util/statistics.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { addInto } from "./amplitude-sketches.ts";
+import type { BaselineIndex } from "./baseline-index.ts";
 import { BUCKET_SHIFT, BUCKETS, sketchQuantile, windowStart } from "./buckets.ts";
 import { AUTOCORRELATION, type PreparedBlock, USABLE } from "./prepared.ts";
 import type { SurveySettings } from "./settings.ts";
@@ -27,7 +28,12 @@ const LAG2_EVERY = 8;
 export class NoiseSketches implements Accumulator {
   private readonly shape: Shape;
   private readonly start: number;
-  private readonly byBaseline: Uint32Array[] = [];
+  private readonly index: BaselineIndex;
+  private readonly settings: SurveySettings;
+  /** (channels) segment of the sub-band that a channel belongs to */
+  private readonly segmentOf: Int32Array;
+  /** by sketch owner: (subbands x segments x polarizations x buckets) */
+  private readonly byOwner = new Map<number, Uint32Array>();
   /** (subbands x channels x polarizations x buckets) over all baselines */
   private readonly byChannel: Uint32Array;
   /** (2 lags x subbands x polarizations x buckets) */
@@ -35,19 +41,29 @@ export class NoiseSketches implements Accumulator {
   private readonly scratch = new Float32Array(2);
   private readonly scratchBits = new Int32Array(this.scratch.buffer);
 
-  constructor(shape: Shape, settings: SurveySettings) {
+  constructor(shape: Shape, settings: SurveySettings, index: BaselineIndex) {
     this.shape = shape;
+    this.settings = settings;
+    this.index = index;
+    this.segmentOf = Int32Array.from({ length: shape.channels }, (_, channel) =>
+      Math.floor((channel * settings.noiseSegments) / shape.channels),
+    );
     this.start = windowStart(settings.typicalPower);
     const { subbands, channels, polarizations } = shape;
     this.byChannel = new Uint32Array(subbands * channels * polarizations * BUCKETS);
     this.lags = new Uint32Array(2 * subbands * polarizations * BUCKETS);
   }
 
-  private ofBaseline(baseline: number): Uint32Array {
-    let sketch = this.byBaseline[baseline];
+  private owner(baseline: number): number {
+    return this.settings.sketchByBaseline ? baseline : this.index.baselines[baseline]!.antenna1;
+  }
+
+  private ofOwner(owner: number): Uint32Array {
+    let sketch = this.byOwner.get(owner);
     if (sketch === undefined) {
-      sketch = new Uint32Array(this.shape.subbands * this.shape.polarizations * BUCKETS);
-      this.byBaseline[baseline] = sketch;
+      const { subbands, polarizations } = this.shape;
+      sketch = new Uint32Array(subbands * this.settings.noiseSegments * polarizations * BUCKETS);
+      this.byOwner.set(owner, sketch);
     }
     return sketch;
   }
@@ -57,7 +73,7 @@ export class NoiseSketches implements Accumulator {
     for (let row = 0; row < prepared.rows; row++) {
       const baseline = prepared.baseline[row]!;
       if (baseline === AUTOCORRELATION) continue;
-      this.addRow(prepared, row, this.ofBaseline(baseline), 1);
+      this.addRow(prepared, row, this.ofOwner(this.owner(baseline)), 1);
       // By the row's place in the dataset, so that the choice is the same in any partition.
       if ((prepared.block.firstRow + row) % LAG2_EVERY === 0) {
         this.addRow(prepared, row, null, 2);
@@ -70,7 +86,8 @@ export class NoiseSketches implements Accumulator {
     const { subbands, channels, polarizations } = this.shape;
     const { real, imag } = prepared.block;
     const { kind } = prepared;
-    const { scratch, scratchBits, start, byChannel, lags } = this;
+    const { scratch, scratchBits, start, byChannel, lags, segmentOf } = this;
+    const segments = this.settings.noiseSegments;
     const toLags = sketch === null || (prepared.block.firstRow + row) % LAG2_EVERY === 0;
     const step = lag * polarizations;
     for (let s = 0; s < subbands; s++) {
@@ -88,7 +105,7 @@ export class NoiseSketches implements Accumulator {
             if (bucket < 0) bucket = 0;
             else if (bucket >= BUCKETS) bucket = BUCKETS - 1;
             if (sketch !== null) {
-              sketch[(s * polarizations + p) * BUCKETS + bucket]! += 1;
+              sketch[((s * segments + segmentOf[c]!) * polarizations + p) * BUCKETS + bucket]! += 1;
               byChannel[((s * channels + c) * polarizations + p) * BUCKETS + bucket]! += 1;
             }
             if (toLags) lags[(((lag - 1) * subbands + s) * polarizations + p) * BUCKETS + bucket]! += 1;
@@ -101,8 +118,8 @@ export class NoiseSketches implements Accumulator {
   merge(other: this, baselines: Int32Array): void {
     addInto(this.byChannel, other.byChannel);
     addInto(this.lags, other.lags);
-    for (const [baseline, counts] of other.byBaseline.entries()) {
-      if (counts !== undefined) addInto(this.ofBaseline(baselines[baseline]!), counts);
+    for (const [owner, counts] of other.byOwner) {
+      addInto(this.ofOwner(this.settings.sketchByBaseline ? baselines[owner]! : owner), counts);
     }
   }
 
@@ -119,21 +136,46 @@ export class NoiseSketches implements Accumulator {
   }
 
   /**
-   * (subbands x polarizations) rms of the real (or imaginary) part of one sample of a baseline; NaN where no three
+   * (subbands x polarizations) rms of the real (or imaginary) part of one sample of a baseline in a channel of typical
+   * noise: the median over segments of the sub-band, which a few bad channels do not move. NaN where no three
    * neighbouring channels are usable.
+   *
+   * @param shape  (subbands x channels x polarizations) noise of a channel over the typical one
    */
-  baselineSigma(baseline: number): Float64Array {
+  baselineSigma(baseline: number, shape: Float64Array): Float64Array {
     const { subbands, polarizations } = this.shape;
-    const sketch = this.byBaseline[baseline];
-    return Float64Array.from({ length: subbands * polarizations }, (_, i) =>
-      sketch === undefined
-        ? Number.NaN
-        : this.factor(Math.floor(i / polarizations), i % polarizations) *
-          sketchQuantile(sketch, i * BUCKETS, this.start, 0.5),
-    );
+    const segments = this.settings.noiseSegments;
+    const sketch = this.byOwner.get(this.owner(baseline));
+    const sigma = new Float64Array(subbands * polarizations).fill(Number.NaN);
+    if (sketch === undefined) return sigma;
+    for (let s = 0; s < subbands; s++) {
+      for (let p = 0; p < polarizations; p++) {
+        const ofSegments = Float64Array.from({ length: segments }, (_, segment) => {
+          const middle = sketchQuantile(
+            sketch,
+            ((s * segments + segment) * polarizations + p) * BUCKETS,
+            this.start,
+            0.5,
+          );
+          return middle / this.segmentShape(shape, s, segment, p);
+        });
+        sigma[s * polarizations + p] = this.factor(s, p) * median(ofSegments);
+      }
+    }
+    return sigma;
   }
 
-  /** (subbands x channels x polarizations) the same over all baselines; NaN in the outermost channels. */
+  private segmentShape(shape: Float64Array, subband: number, segment: number, polarization: number): number {
+    const { channels, polarizations } = this.shape;
+    const of: number[] = [];
+    for (let c = 1; c < channels - 1; c++) {
+      if (this.segmentOf[c] === segment)
+        of.push(shape[(subband * channels + c) * polarizations + polarization]!);
+    }
+    return median(of);
+  }
+
+  /** (subbands x channels x polarizations) the rms over all baselines; NaN in the outermost channels. */
   channelSigma(): Float64Array {
     const { subbands, channels, polarizations } = this.shape;
     const sigma = new Float64Array(subbands * channels * polarizations);

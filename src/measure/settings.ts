@@ -3,6 +3,7 @@
  * typical power that centres the sketches, how many channels share one, and the width of the time bins.
  */
 import type { Dataset } from "../dataset/dataset.ts";
+import { exactQuantum } from "../util/exact-sum.ts";
 import { median } from "../util/statistics.ts";
 import { BUCKETS } from "./buckets.ts";
 
@@ -11,6 +12,8 @@ export interface SurveySettings {
   readonly typicalPower: number;
   /** groups of neighbouring channels of a sub-band that share a sketch, 1..channels */
   readonly channelGroups: number;
+  /** segments of a sub-band that each have a noise of their own, so that a few bad channels do not raise it */
+  readonly noiseSegments: number;
   /** false where not even one sketch a baseline fits: baselines then share that of their lower antenna */
   readonly sketchByBaseline: boolean;
   /** 0: a track cell is one row; else seconds of a time bin */
@@ -23,6 +26,7 @@ export const DEFAULT_MEMORY = 512 * 2 ** 20;
 
 /** Rows at the beginning, middle and end of the dataset that set the scales. */
 const PROBE_ROWS = 64;
+const NOISE_SEGMENTS = 8;
 /** Bytes of a track cell's row columns, and of each of its products. */
 const CELL_BYTES = 80;
 const PRODUCT_BYTES = 44;
@@ -34,23 +38,19 @@ export async function settleSurvey(dataset: Dataset, memory = DEFAULT_MEMORY): P
   const antennas = Math.max(2, Math.min(dataset.array.antennas.length, 4096));
   const baselines = Math.min((antennas * (antennas - 1)) / 2, dataset.rows);
   const sketchBytes = 4 * BUCKETS * subbands * polarizations;
-  const fitting = Math.floor(memory / 2 / (sketchBytes * Math.max(1, baselines)));
+  const most = Math.min(channels, NOISE_SEGMENTS);
+  const fitting = Math.floor(memory / 2 / (sketchBytes * Math.max(1, baselines))) - most;
   const cellBytes = CELL_BYTES + PRODUCT_BYTES * subbands * polarizations;
   const overflow = Math.ceil((dataset.rows * cellBytes) / (memory / 2));
   return {
     typicalPower: probe.power,
     channelGroups: Math.max(1, Math.min(channels, fitting)),
+    noiseSegments: fitting >= 1 ? most : 1,
     sketchByBaseline: fitting >= 1,
     binSeconds: overflow <= 1 ? 0 : overflow * probe.integration,
-    sumQuantum: quantumFor(probe.largestSum * channels, dataset.rows),
+    // The probe has not seen the largest term: leave room for one a thousand times as large.
+    sumQuantum: exactQuantum(1024 * probe.largestSum * channels, dataset.rows),
   };
-}
-
-/** The power of two at which sums of `rows` numbers of about this size still add exactly in doubles. */
-function quantumFor(size: number, rows: number): number {
-  const headroom = 2 ** 10;
-  const largest = Math.max(size, Number.MIN_VALUE * 2 ** 60) * headroom * Math.max(1, rows);
-  return 2 ** (Math.ceil(Math.log2(largest)) - 52);
 }
 
 interface Probe {

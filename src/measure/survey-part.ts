@@ -30,7 +30,7 @@ export class SurveyPart {
     this.settings = settings;
     this.prepared = new PreparedBlock(shape);
     this.amplitudes = new AmplitudeSketches(shape, settings, this.index);
-    this.noise = new NoiseSketches(shape, settings);
+    this.noise = new NoiseSketches(shape, settings, this.index);
     this.channels = new ChannelCounts(shape);
     this.tracks = new TrackCells(shape, settings);
   }

@@ -3,6 +3,7 @@
  * that cross rows add multiples of the survey's quantum, so that they are the same whatever order the rows come in.
  */
 import type { Shape } from "../dataset/dataset.ts";
+import { toMultiple } from "../util/exact-sum.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { GrowingColumn } from "./column-store.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
@@ -84,7 +85,7 @@ export class TrackCells implements Accumulator {
     const out = this.sums.array;
     const first = cell * this.products * SUMS;
     for (let k = 0; k < sums.length; k++) {
-      out[first + k] = quantum > 0 ? Math.round(sums[k]! / quantum) * quantum : sums[k]!;
+      out[first + k] = quantum > 0 ? toMultiple(sums[k]!, quantum) : sums[k]!;
     }
   }
 
