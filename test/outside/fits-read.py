@@ -1,5 +1,5 @@
-"""A FITS file as Astropy reads it, cell by cell. Usage: fits-read.py PATH, or fits-read.py astropy-sample for the
-random-groups file among the test data that Astropy installs. Prints JSON; what JSON has no number for is a string.
+"""A FITS file as Astropy reads it, cell by cell. Usage: fits-read.py PATH..., a PATH of astropy:NAME being a file among
+the test data that Astropy installs. Prints a JSON list of those that exist; what JSON has no number for is a string.
 """
 import json
 import os
@@ -59,9 +59,12 @@ def read(path):
     return out
 
 
+def located(path):
+    if not path.startswith("astropy:"):
+        return path
+    return os.path.join(os.path.dirname(fits.__file__), "tests", "data", path.removeprefix("astropy:"))
+
+
 if __name__ == "__main__":
-    path = sys.argv[1]
-    if path == "astropy-sample":
-        path = os.path.join(os.path.dirname(fits.__file__), "tests", "data", "random_groups.fits")
-    result = {"path": path, **read(path)} if os.path.exists(path) else {"path": None}
-    print(json.dumps(result, allow_nan=False))
+    paths = [located(path) for path in sys.argv[1:]]
+    print(json.dumps([{"path": path, **read(path)} for path in paths if os.path.exists(path)], allow_nan=False))
