@@ -1,6 +1,7 @@
 /** `report.json` and `flags.json`: the contracts for other programs. Units are in the keys; see the schemas beside. */
 import { basename } from "node:path";
 import type { Dataset } from "../dataset/dataset.ts";
+import type { Selection } from "../dataset/selection.ts";
 import type { FlagEntry, FlagFile } from "../flags/entry.ts";
 import type { ImageForecast } from "../imaging/image.ts";
 import type { Plan } from "../imaging/plan.ts";
@@ -118,24 +119,28 @@ function flagsPart(check: Check): object {
     file: "flags.json",
     sensitivityLossFraction: check.flags.length === 0 ? 0 : sensitivityCost(check.image),
     entries: check.flags.map(flagPart),
+    doubts: check.doubts.map(({ rule, reason, why, selection }) => ({
+      rule,
+      reason,
+      why,
+      ...selectionPart(selection),
+    })),
   };
+}
+
+function selectionPart(selection: Selection): object {
+  const { antennas, baselines, time, subbands, channels, polarizations, fields } = selection;
+  return { antennas, baselines, time: exactly(time), subbands, channels, polarizations, fields };
 }
 
 /** Keys in the order of the contract, whatever the order they were made in; times to the last bit. */
 function flagPart(flag: FlagEntry): object {
-  const { id, rule, reason, antennas, baselines, time, subbands, channels, polarizations, fields } = flag;
-  const { samples, fraction, confidence, cost } = flag;
+  const { id, rule, reason, samples, fraction, confidence, cost } = flag;
   return {
     id,
     rule,
     reason,
-    antennas,
-    baselines,
-    time: exactly(time),
-    subbands,
-    channels,
-    polarizations,
-    fields,
+    ...selectionPart(flag),
     samples,
     fraction,
     confidence,

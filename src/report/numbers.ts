@@ -139,7 +139,7 @@ function wTable(image: ImageForecast): DataTable {
       ],
       [
         "planes, or facets, that a correction needs",
-        `${formatCount(wTerm.planes)}, or ${formatCount(wTerm.facets)}`,
+        wTerm.planes <= 1 ? "none" : `${formatCount(wTerm.planes)}, or ${formatCount(wTerm.facets)}`,
       ],
     ],
   };

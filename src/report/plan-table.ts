@@ -20,7 +20,7 @@ export function planTable(plan: Plan): DataTable {
   const row = <T>(name: string, item: PlanValue<T>, text: (value: T) => string) => [
     name,
     text(item.value),
-    item.how === "" ? ORIGIN[item.origin] : `${ORIGIN[item.origin]}: ${item.how}`,
+    originText(item),
   ];
   const orNone = (text: (value: number) => string) => (value: number | null) =>
     value === null ? "none" : text(value);
@@ -41,6 +41,12 @@ export function planTable(plan: Plan): DataTable {
       row("expected SEFD", plan.expectedSefd, orNone(formatFlux)),
     ],
   };
+}
+
+/** `given in the plan`, `derived: 1.0 lambda/B of ...`: the origin is not said twice. */
+function originText({ origin, how }: PlanValue<unknown>): string {
+  const word = ORIGIN[origin];
+  return how === "" ? word : how.startsWith(word) ? how : `${word}: ${how}`;
 }
 
 function lineText(ranges: Plan["lineChannels"]["value"]): string {

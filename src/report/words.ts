@@ -89,3 +89,14 @@ export function findingCounts(findings: readonly Finding[]): string {
 export function pointsText(points: number): string {
   return points < 0.95 ? String(Number(points.toPrecision(1))) : String(Math.round(points));
 }
+
+/** A clause as a sentence: a capital at its start, a full stop at its end. */
+export function sentence(text: string): string {
+  const trimmed = text.trim();
+  const stopped = trimmed === "" || /[.!?]$/.test(trimmed) ? trimmed : `${trimmed}.`;
+  return upperFirst(stopped);
+}
+
+export function upperFirst(text: string): string {
+  return text.charAt(0).toUpperCase() + text.slice(1);
+}

@@ -180,7 +180,13 @@ function levelsOf(baselines: readonly Baseline[]): Levels {
     const edge = channel === 0 || channel === CHANNELS - 1;
     count[i] = edge ? 0 : INTEGRATIONS - 15;
   }
-  return { median: new Float32Array(size).fill(1.5), sigma: new Float32Array(size).fill(0.29), count };
+  const median = Float32Array.from({ length: size }, (_, i) => {
+    const channel = Math.floor(i / POLARIZATIONS) % (SUBBANDS * CHANNELS);
+    const inLine =
+      channel >= CHANNELS + INTERFERENCE.channels[0] && channel <= CHANNELS + INTERFERENCE.channels[1];
+    return (1.5 + 0.1 * Math.sin(channel / 9)) * (inLine ? 3.2 : 1);
+  });
+  return { median, sigma: new Float32Array(size).fill(0.29), count };
 }
 
 export function fixtureSurvey(dataset: Dataset): Survey {

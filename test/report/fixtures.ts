@@ -409,6 +409,14 @@ export function faultyCheck(dataset: Dataset = fixtureDataset()): Check {
     after: judgement(67.9, "hold", findings),
     findings,
     flags: fixtureFlags(),
+    doubts: [
+      {
+        selection: { ...EVERYTHING, baselines: [[2, 9]] },
+        rule: "noisy",
+        reason: "noise 2.1 times that of the others",
+        why: "its weights say so already, and dropping it would cost more than it gives",
+      },
+    ],
     image: fixtureImage(),
     beamPicture: fixtureBeam(),
     verdict: "hold",
@@ -441,6 +449,7 @@ export function cleanCheck(): Check {
     after: judged,
     findings: ready,
     flags: [],
+    doubts: [],
     image: {
       ...check.image,
       weightings: check.image.weightings.map((result) => ({ ...result, after: null })),
@@ -503,6 +512,7 @@ export function hostileCheck(text: string): Check {
       notJudged: [{ rule: text, why: text }],
     },
     flags: check.flags.map((flag) => ({ ...flag, rule: text, reason: text })),
+    doubts: [{ selection: EVERYTHING, rule: text, reason: text, why: text }],
     image: {
       ...check.image,
       limits: check.image.limits.map((limit) => ({ ...limit, cause: text, text })),
@@ -548,6 +558,7 @@ export function emptyCheck(): Check {
     after: judged,
     findings: [],
     flags: [],
+    doubts: [],
     image: {
       weightings: check.image.weightings.map((result) => ({
         ...result,

@@ -69,6 +69,7 @@ describe("the page", () => {
       "Dirty beam",
       "Amplitude against uv distance",
       "|w| against uv distance",
+      "Amplitude against channel",
       "Flagged samples by antenna",
       "Flagged samples by channel",
       "Phase against time, antenna Q07",
@@ -112,7 +113,7 @@ describe("the page", () => {
         [...hostile.querySelectorAll("*")].flatMap((element) => element.getAttributeNames()),
       ).not.toContain("onerror");
       expect(text.replaceAll("\n", "").match(/[\p{Cc}\p{Cf}]/gu) ?? []).toEqual([]);
-      expect(hostile.querySelectorAll("figure").length).toBe(7);
+      expect(hostile.querySelectorAll("figure").length).toBe(8);
       expect(hostile.querySelectorAll("main > section").length).toBe(
         document.querySelectorAll("main > section").length,
       );

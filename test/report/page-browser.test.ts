@@ -111,7 +111,7 @@ describe.skipIf(executablePath === undefined)("the page in a browser", () => {
           const scale = chart.getBoundingClientRect().width / chart.viewBox.baseVal.width;
           return scale * parseFloat(getComputedStyle(chart).fontSize);
         })`)) as number[];
-      expect(sizes).toHaveLength(7);
+      expect(sizes).toHaveLength(8);
       expect(Math.min(...sizes)).toBeGreaterThan(9);
       await page.context().close();
     }

@@ -4,9 +4,16 @@ import { weightingLabel } from "../numbers.ts";
 import { amplitudeChart } from "../plots/amplitude.ts";
 import { beamChart } from "../plots/beam.ts";
 import { type Cells, classifyCells } from "../plots/cells.ts";
-import { channelShares, flaggedByAntennaChart, flaggedByChannelChart, shares } from "../plots/flagged.ts";
+import {
+  type ChannelShare,
+  channelShares,
+  flaggedByAntennaChart,
+  flaggedByChannelChart,
+  shares,
+} from "../plots/flagged.ts";
 import { phaseChart, phaseSubjects } from "../plots/phase.ts";
-import { uvCoverageChart } from "../plots/uv-coverage.ts";
+import { isTaken, spectrumChart, spectrumOf } from "../plots/spectrum.ts";
+import { hasAzimuthalGap, hasRadialGap, uvCoverageChart } from "../plots/uv-coverage.ts";
 import { largestAllowedW, wDistanceChart } from "../plots/w-distance.ts";
 import { formatArcsec, formatWavelengths } from "../quantity.ts";
 import type { Check } from "../report.ts";
@@ -14,11 +21,12 @@ import type { ScopeWords } from "../scope.ts";
 import { html, Markup } from "./markup.ts";
 import { section } from "./parts.ts";
 
-type Key = readonly [shape: "" | "dot" | "hatch" | "line", colour: string, text: string];
+type Key = readonly [shape: "" | "area" | "dot" | "hatch" | "line", colour: string, text: string];
 
 const KEPT: Key = ["dot", "kept", "usable"];
 const SUGGESTED: Key = ["dot", "suggested", "mostly taken by suggested flags"];
 const FLAGGED: Key = ["dot", "flagged", "flagged already"];
+const GAPS: Key = ["area", "limit", "largest gaps in radius and direction"];
 const BARS: readonly Key[] = [
   ["", "flagged", "flagged already"],
   ["", "bad", "not finite or exactly zero"],
@@ -34,12 +42,16 @@ export function figuresSection(check: Check, words: ScopeWords): Markup {
     );
   }
   const cells = classifyCells(check);
+  const channels = channelShares(check, cells);
   const suggested = check.flags.length > 0 ? [SUGGESTED] : [];
+  const { before } = check.image.coverage;
+  const gaps = hasRadialGap(before) || hasAzimuthalGap(before) ? [GAPS] : [];
   const figures = [
     figure("uv-coverage", "uv coverage", uvCoverageChart(check, cells), uvText(check), [
       KEPT,
       ...suggested,
       FLAGGED,
+      ...gaps,
     ]),
     beamFigure(check),
     figure("amplitude", "Amplitude against uv distance", amplitudeChart(check, cells), amplitudeText(check), [
@@ -52,6 +64,7 @@ export function figuresSection(check: Check, words: ScopeWords): Markup {
       FLAGGED,
       ["line", "limit", "what the field allows without correction"],
     ]),
+    spectrumFigure(check, channels),
     figure(
       "flagged-antenna",
       "Flagged samples by antenna",
@@ -62,8 +75,8 @@ export function figuresSection(check: Check, words: ScopeWords): Markup {
     figure(
       "flagged-channel",
       "Flagged samples by channel",
-      flaggedByChannelChart(check, cells),
-      channelText(check, cells),
+      flaggedByChannelChart(check, channels),
+      channelText(check, channels),
       [["", "flagged", "flagged already, not finite or zero"], BARS[2]!],
     ),
     ...phaseFigures(check, words),
@@ -111,6 +124,26 @@ function beamFigure(check: Check): Markup | undefined {
   return figure("beam", "Dirty beam", svg, text, [], ramp);
 }
 
+function spectrumFigure(check: Check, channels: readonly ChannelShare[]): Markup | undefined {
+  const spectrum = spectrumOf(check);
+  if (spectrum === null) return undefined;
+  const { channels: each } = check.dataset.shape;
+  const top = spectrum.loudest;
+  const loudest =
+    top === null
+      ? ""
+      : ` The loudest is channel ${top.channel % each} of sub-band ${Math.floor(top.channel / each)}, ${formatNumber(top.ratio)} times the median channel.`;
+  const text = `Median amplitude of each channel on the median baseline, and on the baseline that only a tenth exceed.${loudest}`;
+  const shaded: Key[] = channels.some(isTaken)
+    ? [["hatch", "suggested", "channels suggested for flagging"]]
+    : [];
+  return figure("spectrum", "Amplitude against channel", spectrumChart(check, spectrum, channels), text, [
+    ["dot", "kept", "median baseline"],
+    ["dot", "limit", "baseline exceeded by a tenth"],
+    ...shaded,
+  ]);
+}
+
 function uvText(check: Check): string {
   const { coverage } = check.image;
   const { before, after } = coverage;
@@ -150,14 +183,16 @@ function antennaText(cells: Cells, words: ScopeWords): string {
     .slice(0, 3);
   const say = (list: readonly { antenna: number; share: number }[]) =>
     list.map(({ antenna, share }) => `${words.antenna(antenna)} ${formatPercent(share)}`).join(", ");
-  const lost = `Most lost already: ${say(worst.map(({ antenna, lost: share }) => ({ antenna, share })))}.`;
+  const lost =
+    (worst[0]?.lost ?? 0) > 0
+      ? `Most lost already: ${say(worst.map(({ antenna, lost: share }) => ({ antenna, share })))}.`
+      : "No sample of any antenna is lost already.";
   if (taken.length === 0) return lost;
   return `${lost} Most taken by the suggested flags: ${say(taken.map(({ antenna, suggested: share }) => ({ antenna, share })))}.`;
 }
 
-function channelText(check: Check, cells: Cells): string {
+function channelText(check: Check, all: readonly ChannelShare[]): string {
   const { channels } = check.dataset.shape;
-  const all = channelShares(check, cells);
   const gone = all.filter((share) => share.flagged > 0.995).length;
   const most = all
     .map((share, channel) => ({ ...share, channel }))

@@ -3,10 +3,10 @@
 import type { Finding } from "../../rules/finding.ts";
 import type { Check } from "../report.ts";
 import type { ScopeWords } from "../scope.ts";
-import { limitsText, toDo } from "../words.ts";
+import { limitsText, sentence, toDo, upperFirst } from "../words.ts";
 import { verdictTag } from "./icons.ts";
 import { html, Markup } from "./markup.ts";
-import { section, sentence, upperFirst } from "./parts.ts";
+import { section } from "./parts.ts";
 
 /** More findings within their limits than this are folded away. */
 const MOST_WITHIN = 5;

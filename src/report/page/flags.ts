@@ -5,9 +5,9 @@ import { sensitivityCost } from "../numbers.ts";
 import { formatChange } from "../quantity.ts";
 import type { Check } from "../report.ts";
 import type { ScopeWords } from "../scope.ts";
-import { PROPOSALS } from "../words.ts";
+import { PROPOSALS, sentence, upperFirst } from "../words.ts";
 import { html, type Markup, type Piece } from "./markup.ts";
-import { section, sentence, stackedTable, upperFirst } from "./parts.ts";
+import { section, stackedTable } from "./parts.ts";
 
 const COLUMNS = [
   { head: "Flag" },
@@ -22,15 +22,26 @@ const COLUMNS = [
 
 export function flagsSection(check: Check, words: ScopeWords): Markup {
   const { flags } = check;
-  if (flags.length === 0) return section("flags", "Suggested flags", html`<p>None are suggested.</p>`);
+  const content = flags.length === 0 ? html`<p>None are suggested.</p>` : flagTable(check, words);
+  return section("flags", "Suggested flags", [content, doubtList(check, words)]);
+}
+
+function doubtList(check: Check, words: ScopeWords): Piece {
+  if (check.doubts.length === 0) return undefined;
+  return html`<div><h3 class="small">In doubt: for a person to look at, no flag is suggested</h3>
+<ul class="plain">${check.doubts.map(
+    ({ selection, rule, reason, why }) =>
+      html`<li><strong>${upperFirst(words.scope(selection))}</strong>: ${sentence(reason)} ${sentence(why)} <span class="muted small">Rule <span class="code">${rule}</span></span></li>\n`,
+  )}</ul></div>`;
+}
+
+function flagTable(check: Check, words: ScopeWords): Markup {
+  const { flags } = check;
   const loss = sensitivityCost(check.image);
   const together = Number.isFinite(loss)
     ? ` All together they cost ${formatPercent(Math.max(0, loss))} of the sensitivity.`
     : "";
-  return section(
-    "flags",
-    "Suggested flags",
-    html`<p class="note">${PROPOSALS}${together}</p>
+  return html`<p class="note">${PROPOSALS}${together}</p>
 ${stackedTable(
   "Suggested flags and their cost",
   COLUMNS,
@@ -38,8 +49,7 @@ ${stackedTable(
 )}
 <p class="small muted">Share: of the samples not flagged yet. Confidence: that the flag removes a fault and not sky.
 Sensitivity: lost with natural weighting. Beam axes (major, minor), peak sidelobe and largest gap: relative change,
-planned weighting.</p>`,
-  );
+planned weighting.</p>`;
 }
 
 function cellsOf(flag: FlagEntry, words: ScopeWords): Piece[] {

@@ -1,8 +1,9 @@
 /** What limits the image, worst first, each against the dynamic range that the plan asks for. */
 import { formatRatio } from "../quantity.ts";
 import type { Check } from "../report.ts";
+import { sentence } from "../words.ts";
 import { html, type Markup } from "./markup.ts";
-import { section, sentence } from "./parts.ts";
+import { section } from "./parts.ts";
 
 export function limitsSection(check: Check): Markup {
   const { limits } = check.image;

@@ -61,12 +61,3 @@ export function stackedTable(
 <tbody role="rowgroup">
 ${body}</tbody></table>`;
 }
-
-/** A sentence ends in a full stop. */
-export function sentence(text: string): string {
-  return /[.!?]$/.test(text) ? text : `${text}.`;
-}
-
-export function upperFirst(text: string): string {
-  return text.charAt(0).toUpperCase() + text.slice(1);
-}

@@ -2,8 +2,9 @@
 import { numberTables } from "../numbers.ts";
 import { planTable } from "../plan-table.ts";
 import type { Check } from "../report.ts";
+import { sentence } from "../words.ts";
 import { html, type Markup } from "./markup.ts";
-import { dataTable, section, sentence, stackedTable } from "./parts.ts";
+import { dataTable, section, stackedTable } from "./parts.ts";
 
 export function settingsSection(check: Check): Markup {
   const { advice } = check.image;

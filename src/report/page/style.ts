@@ -167,10 +167,12 @@ figcaption { font-size: 0.875rem; color: var(--muted); margin-top: 0.35rem; }
 .chart text { font-size: inherit; }
 .chart .halo { paint-order: stroke; stroke: var(--surface); stroke-width: 4px; stroke-linejoin: round; }
 .chart path[d$="z"], .chart rect { shape-rendering: crispEdges; }
+.chart .gap path { fill: var(--limit); fill-opacity: 0.1; stroke: var(--limit); stroke-opacity: 0.75; stroke-dasharray: 4 3; shape-rendering: auto; }
 .legend { display: flex; flex-wrap: wrap; gap: 0.2rem 1.1rem; list-style: none; padding: 0; margin: 0.5rem 0 0; font-size: 0.85rem; }
 .legend li { display: inline-flex; align-items: center; gap: 0.45rem; }
 .key { width: 1.1rem; height: 0.7rem; flex: none; border-radius: 1px; background: var(--key); }
 .key.dot { width: 0.6rem; height: 0.6rem; border-radius: 50%; }
+.key.area { border: 1.5px dashed var(--key); background: color-mix(in srgb, var(--key) 14%, transparent); }
 .key.line { height: 0; border-top: 2px dashed var(--key); background: none; border-radius: 0; }
 .key.hatch { background: repeating-linear-gradient(135deg, var(--key) 0 2px, transparent 2px 5px); border: 1px solid var(--key); }
 .ramp { display: flex; align-items: center; gap: 0.6rem; margin-top: 0.5rem; font-size: 0.85rem; }

@@ -4,7 +4,7 @@ import { encode } from "fast-png";
 import type { Beam, BeamPicture } from "../../imaging/image.ts";
 import { formatPercent } from "../../util/units.ts";
 import { formatArcsec } from "../quantity.ts";
-import { COLOUR, drawChart, SQUARE } from "./chart.ts";
+import { drawChart, SQUARE } from "./chart.ts";
 import { picture } from "./marks.ts";
 import { node } from "./node.ts";
 import { quantileOf } from "./quantile.ts";
@@ -158,7 +158,7 @@ function furniture(
           cy: y(north),
           r: 9,
           fill: "none",
-          stroke: COLOUR.limit,
+          stroke: "var(--ink)",
           "stroke-width": 2,
         }),
       );

@@ -1,9 +1,10 @@
 /** How much of each antenna's and each channel's samples is flagged already, not finite, or suggested for flagging. */
-import { barY, gridY, rectY, ruleX, text } from "@observablehq/plot";
+import { barY, gridY, rectY } from "@observablehq/plot";
 import { plainTextWithin } from "../../util/terminal.ts";
 import type { Check } from "../report.ts";
 import type { ScopeWords } from "../scope.ts";
 import type { Cells, Fate } from "./cells.ts";
+import { channelAxis, subbandMarks } from "./channel-axis.ts";
 import { COLOUR, drawChart, MARGIN } from "./chart.ts";
 import { hatching } from "./marks.ts";
 
@@ -61,9 +62,8 @@ export function flaggedByAntennaChart(check: Check, cells: Cells, words: ScopeWo
   });
 }
 
-export function flaggedByChannelChart(check: Check, cells: Cells): string {
+export function flaggedByChannelChart(check: Check, bars: readonly ChannelShare[]): string {
   const { subbands, channels } = check.dataset.shape;
-  const bars = channelShares(check, cells);
   const step = Math.max(1, Math.ceil(bars.length / MOST_BARS));
   const stacked: WideBar[] = [];
   for (let first = 0; first < bars.length; first += step) {
@@ -72,18 +72,10 @@ export function flaggedByChannelChart(check: Check, cells: Cells): string {
     const suggested = Math.min(1 - flagged, Math.max(...some.map((bar) => bar.suggested)));
     for (const bar of stack(first, [flagged, 0, suggested])) join(stacked, { ...bar, width: some.length });
   }
-  const edges = Array.from({ length: subbands }, (_, subband) => subband * channels);
-  const named = edges.filter((_, i) => i % Math.ceil(subbands / 8) === 0);
   return drawChart({
     id: "flagged-channel",
     label: `share of samples flagged by channel, ${subbands} sub-bands of ${channels} channels`,
-    x: {
-      domain: [0, subbands * channels],
-      label: subbands === 1 ? "channel" : "channel, sub-bands side by side",
-      labelArrow: "none",
-      ticks: subbands === 1 ? 8 : named,
-      tickFormat: (at: number) => (subbands === 1 ? String(at) : `${Math.floor(at / channels)}:0`),
-    },
+    x: channelAxis(subbands, channels),
     marginTop: MARGIN.top + 16,
     y: PERCENT_AXIS,
     marks: [
@@ -97,19 +89,7 @@ export function flaggedByChannelChart(check: Check, cells: Cells): string {
         fill: (bar: Bar) => fillOf(bar.kind, "flagged-channel-hatch"),
         inset: 0,
       }),
-      ruleX(edges.slice(1), { stroke: "currentColor", strokeOpacity: 0.35, strokeDasharray: "2 3" }),
-      ...(subbands > 1 && subbands <= 8
-        ? [
-            text(edges, {
-              x: (at: number) => at + channels / 2,
-              frameAnchor: "top",
-              dy: -6,
-              lineAnchor: "bottom",
-              text: (at: number) => `sub-band ${at / channels}`,
-              fill: "var(--muted)",
-            }),
-          ]
-        : []),
+      ...subbandMarks(subbands, channels),
     ],
   });
 }
@@ -167,8 +147,13 @@ export function shares(fate: Fate): Shares {
   return { flagged: share(fate.flagged), bad: share(fate.bad), suggested: share(fate.suggested) };
 }
 
+export interface ChannelShare {
+  readonly flagged: number;
+  readonly suggested: number;
+}
+
 /** (subbands x channels) share that is not usable, and share that the suggested flags would take of the rest. */
-export function channelShares(check: Check, cells: Cells): { flagged: number; suggested: number }[] {
+export function channelShares(check: Check, cells: Cells): ChannelShare[] {
   const { survey, dataset } = check;
   const { subbands, channels, polarizations } = dataset.shape;
   const { count } = survey.levels;

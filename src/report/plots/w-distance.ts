@@ -9,8 +9,8 @@ import { dots, type Points } from "./marks.ts";
 import { setupRange } from "./setups.ts";
 import { wavelengthUnit } from "./ticks.ts";
 
-/** Dots of one colour, evenly through the dataset where there are more. */
-const MOST_DOTS = 5000;
+/** Dots, evenly through the dataset where there are more cells. */
+const MOST_DOTS = 9000;
 
 /** Largest |w| that keeps the phase at the edge of the planned field within the limit, wavelengths. */
 export function largestAllowedW(check: Check): number {
@@ -24,14 +24,18 @@ export function wDistanceChart(check: Check, cells: Cells): string {
   const { tracks } = check.survey;
   const high = check.dataset.setups.map((setup) => setupRange(setup)[1]);
   const byFate: { x: number[]; y: number[] }[] = [KEPT, SUGGESTED, FLAGGED].map(() => ({ x: [], y: [] }));
+  // The extremes are of all cells, the dots of every n-th.
+  const step = Math.max(1, Math.ceil(tracks.cells / MOST_DOTS));
   let [reach, top] = [0, 0];
   for (let cell = 0; cell < tracks.cells; cell++) {
     const frequency = high[tracks.setup[cell]!] ?? Number.NaN;
     const spacing = Math.hypot(tracks.u[cell]!, tracks.v[cell]!) * frequency;
     const w = Math.abs(tracks.w[cell]!) * frequency;
     if (!Number.isFinite(spacing) || !Number.isFinite(w)) continue;
-    byFate[cells.fate[cell]!]!.x.push(spacing);
-    byFate[cells.fate[cell]!]!.y.push(w);
+    if (cell % step === 0) {
+      byFate[cells.fate[cell]!]!.x.push(spacing);
+      byFate[cells.fate[cell]!]!.y.push(w);
+    }
     if (spacing > reach) reach = spacing;
     if (w > top) top = w;
   }
@@ -45,7 +49,7 @@ export function wDistanceChart(check: Check, cells: Cells): string {
     y: Array.from(points.y, (value) => value / y.divisor),
   });
   const draw = (fate: number, colour: string) => {
-    return dots(thinned(scaled(byFate[fate]!)), { colour, size: 2 });
+    return dots(scaled(byFate[fate]!), { colour, size: 2 });
   };
   const degrees = formatNumber((check.image.wTerm.phaseLimitRad * 180) / Math.PI);
   return drawChart({
@@ -85,12 +89,4 @@ export function wDistanceChart(check: Check, cells: Cells): string {
         : []),
     ],
   });
-}
-
-/** Every n-th point, so that at most `MOST_DOTS` are left. */
-function thinned(points: Points): Points {
-  const step = Math.max(1, Math.ceil(points.x.length / MOST_DOTS));
-  if (step === 1) return points;
-  const keep = (_: number, i: number) => i % step === 0;
-  return { x: Array.from(points.x).filter(keep), y: Array.from(points.y).filter(keep) };
 }

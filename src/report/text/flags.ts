@@ -4,16 +4,24 @@ import { sensitivityCost } from "../numbers.ts";
 import { formatChange } from "../quantity.ts";
 import type { Check } from "../report.ts";
 import type { ScopeWords } from "../scope.ts";
-import { PROPOSALS } from "../words.ts";
+import { PROPOSALS, sentence, upperFirst } from "../words.ts";
 import type { Paper } from "./paper.ts";
 
 export function flagsSection(paper: Paper, check: Check, words: ScopeWords): void {
   const { flags } = check;
   paper.heading("Suggested flags");
-  if (flags.length === 0) {
-    paper.prose("None are suggested.");
-    return;
+  if (flags.length === 0) paper.prose("None are suggested.");
+  else flagTable(paper, check, words);
+  if (check.doubts.length === 0) return;
+  paper.gap();
+  paper.prose("In doubt, so for a person to look at; no flag is suggested:", 2, paper.ink.strong);
+  for (const { selection, reason, why } of check.doubts) {
+    paper.bullet(`${upperFirst(words.scope(selection))}: ${sentence(reason)} ${sentence(why)}`);
   }
+}
+
+function flagTable(paper: Paper, check: Check, words: ScopeWords): void {
+  const { flags } = check;
   paper.prose(PROPOSALS);
   const loss = sensitivityCost(check.image);
   if (Number.isFinite(loss))

@@ -1,6 +1,7 @@
 /** What limits the image, worst first. */
 import { formatRatio } from "../quantity.ts";
 import type { Check } from "../report.ts";
+import { sentence } from "../words.ts";
 import type { Paper } from "./paper.ts";
 
 export function limitsSection(paper: Paper, check: Check): void {
@@ -25,8 +26,4 @@ export function limitsSection(paper: Paper, check: Check): void {
       return [String(i + 1), formatRatio(limit.dynamicRangeFraction), sentence(limit.text) + enough];
     }),
   );
-}
-
-function sentence(text: string): string {
-  return /[.!?]$/.test(text) ? text : `${text}.`;
 }
