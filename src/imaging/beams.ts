@@ -18,8 +18,8 @@ const MOST_HALF = 1000;
 const USUAL_SIZE = 1024;
 const LARGEST_SIZE = 2048;
 const LEAST_SIZE = 64;
-/** Samples a period of the finest fringe: 6 where they are cheap, never below 2 (Nyquist). */
-const FINE_SAMPLING = 6;
+/** Samples a period of the finest fringe: 4 where they are cheap, never below 2 (Nyquist). */
+const FINE_SAMPLING = 4;
 const COARSE_SAMPLING = 2.2;
 /** Tracks of many integrations fill so many cells that fewer moments of each give the same beam. */
 const MANY_TRACK_CELLS = 5000;

@@ -6,8 +6,9 @@
 const RADIAL_BINS = 4096;
 /** Bins of direction over half a turn: a quarter of a degree each. */
 const DIRECTION_BINS = 720;
-/** An annulus is an octave of spacing, or a little less. */
+/** An annulus is an octave of spacing, or a little less; it holds at least this share of the samples. */
 const MOST_ANNULI = 24;
+const LEAST_SHARE = 0.05;
 
 export interface CoverageForm {
   /** wavelengths: no sample is below or above */
@@ -162,12 +163,14 @@ export class CoverageTally {
     return gaps;
   }
 
-  /** The annuli between the plan's scales, each with its widest gap that is longer than `least` wavelengths. */
+  /**
+   * The annuli between the plan's scales, each with its widest gap that is longer than `least` wavelengths. Octaves
+   * with few samples, as the innermost are, join their neighbours: a direction that one track misses is no gap.
+   */
   azimuthalGaps(least: number): Annulus[] {
-    return Array.from({ length: this.annuli }, (_, annulus) => {
-      const from = Math.exp(this.annulusLow + annulus / this.annuliPerLog);
-      const to = Math.exp(this.annulusLow + (annulus + 1) / this.annuliPerLog);
-      const counts = this.directions.subarray(annulus * DIRECTION_BINS, (annulus + 1) * DIRECTION_BINS);
+    return this.groups().map(({ first, last, counts }) => {
+      const from = Math.exp(this.annulusLow + first / this.annuliPerLog);
+      const to = Math.exp(this.annulusLow + (last + 1) / this.annuliPerLog);
       const { width, middle } = widestGap(counts);
       const gap = (width * Math.PI) / DIRECTION_BINS;
       const long = gap * Math.sqrt(from * to) > least;
@@ -180,6 +183,35 @@ export class CoverageTally {
       };
     });
   }
+
+  /** Neighbouring octaves joined until each group holds enough of the samples; the last takes what is left. */
+  private groups(): { first: number; last: number; counts: Int32Array }[] {
+    const total = this.directions.reduce((sum, count) => sum + count, 0);
+    const groups: { first: number; last: number; counts: Int32Array }[] = [];
+    let enough = true;
+    for (let annulus = 0; annulus < this.annuli; annulus++) {
+      const own = this.directions.subarray(annulus * DIRECTION_BINS, (annulus + 1) * DIRECTION_BINS);
+      if (enough) groups.push({ first: annulus, last: annulus, counts: new Int32Array(DIRECTION_BINS) });
+      const group = groups.at(-1)!;
+      addInto(group.counts, own);
+      group.last = annulus;
+      enough = sumOf(group.counts) >= LEAST_SHARE * total;
+    }
+    if (!enough && groups.length > 1) {
+      const { last, counts } = groups.pop()!;
+      addInto(groups.at(-1)!.counts, counts);
+      groups.at(-1)!.last = last;
+    }
+    return groups;
+  }
+}
+
+function addInto(to: Int32Array, from: Int32Array): void {
+  for (let i = 0; i < to.length; i++) to[i]! += from[i]!;
+}
+
+function sumOf(counts: Int32Array): number {
+  return counts.reduce((sum, count) => sum + count, 0);
 }
 
 function finite(value: number, otherwise: number): number {

@@ -8,24 +8,24 @@ import type { Selection } from "../dataset/selection.ts";
 import type { DetectedEvent } from "../detect/event.ts";
 import type { Survey } from "../measure/survey-result.ts";
 import type { Measure } from "../measure/table.ts";
-import { formatFlux, formatNumber, formatPercent } from "../util/units.ts";
 import { adviceOf, type DropW } from "./advice.ts";
-import { BeamMaker, gridFormOf, type MadeBeam, pictureOf, reportBeam } from "./beams.ts";
+import { BeamMaker, gridFormOf, pictureOf, reportBeam } from "./beams.ts";
 import { costsOf, type GriddedImage, type SelectionCost } from "./cost.ts";
 import { coverageFormOf, judgeCoverage } from "./coverage.ts";
 import { CoverageTally } from "./coverage-tally.ts";
 import { weightingName } from "./derive-plan.ts";
-import { type EdgeSamples, edgeSamples, FactorLookup } from "./edge-samples.ts";
+import { edgeSamples, FactorLookup } from "./edge-samples.ts";
 import type { ForecastParts, NamedBeam } from "./forecast-parts.ts";
 import { expectedW, geometryMeasures, judgeTracks } from "./geometry-report.ts";
 import { type GridRequest, gridDataset } from "./grid-dataset.ts";
-import type { BeamPicture, ImageForecast, WeightingResult, WTerm } from "./image.ts";
+import type { BeamPicture, ImageForecast, WeightingResult } from "./image.ts";
 import { imageMeasures } from "./image-measures.ts";
-import { eventLimits, type RankedLimit, rankLimits } from "./limits.ts";
+import { eventLimits } from "./limits.ts";
 import type { Plan } from "./plan.ts";
-import { frequencyRange, type Sampling, samplingOf } from "./sampling.ts";
-import { type SmearingResult, smearingAt } from "./smearing.ts";
-import { brightness, fillWeightedVariance, measuredSefd } from "./thermal.ts";
+import { type Sampling, samplingOf } from "./sampling.ts";
+import { smearingAt } from "./smearing.ts";
+import { sourceLevel, standingLimits } from "./standing-limits.ts";
+import { fillWeightedVariance, measuredSefd } from "./thermal.ts";
 import { trackW } from "./track-w.ts";
 import { wLossAt } from "./w-loss.ts";
 import { snapshotsOf, W_PHASE_LIMIT, wByAntenna, wByBaseline, wTermOf } from "./w-report.ts";
@@ -87,11 +87,11 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
   const wTerm = wTermOf(baselines, loss, plan.fieldOfView.value);
   const smearing = smearingAt(samples, radius, sampling.field.declination);
   const coverage = judgeCoverage(gridded.coverage, cells, plan);
-  const level = sourceLevel(sampling, natural);
-  const limits = rankLimits([
+  const level = sourceLevel(sampling);
+  const limits = [
     ...(await eventLimits(image, events, level)),
-    ...standingLimits({ plan, planned, wTerm, smearing, samples, radius, brightness: level.brightness }),
-  ]);
+    ...standingLimits({ plan, planned, wTerm, wLoss: loss, smearing, samples, radius, level }),
+  ].sort((a, b) => a.dynamicRangeFraction - b.dynamicRangeFraction);
   const parts: ForecastParts = {
     sampling,
     plan,
@@ -102,7 +102,7 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
     coverage,
     trackW: wOf,
     wTerm,
-    wShift: loss.shift,
+    wShift: Math.hypot(loss.east, loss.north),
     baselines,
     smearing,
     limits,
@@ -155,90 +155,6 @@ function compared(planned: Weighting): Weighting[] {
 
 function sameWeighting(a: Weighting, b: Weighting): boolean {
   return a.kind === b.kind && (a.kind !== "robust" || b.kind !== "robust" || a.robust === b.robust);
-}
-
-interface Level {
-  readonly brightness: number;
-  readonly sampleNoise: number;
-  readonly bandwidth: number;
-}
-
-function sourceLevel(sampling: Sampling, natural: MadeBeam): Level {
-  const { survey } = sampling;
-  const used = survey.levels.sigma.filter((sigma) => sigma > 0).sort();
-  const { low, high } = frequencyRange(survey.dataset, sampling.channelUsed);
-  const widths = high.map((frequency, i) => frequency - low[i]!).filter((width) => width > 0);
-  return {
-    brightness: natural.half === null ? Number.NaN : brightness(sampling),
-    sampleNoise: used.length === 0 ? Number.NaN : used[used.length >> 1]!,
-    bandwidth: widths.length === 0 ? 0 : widths.reduce((sum, width) => sum + width, 0) / widths.length,
-  };
-}
-
-interface Standing {
-  readonly plan: Plan;
-  readonly planned: MadeBeam;
-  readonly wTerm: WTerm;
-  readonly smearing: SmearingResult;
-  readonly samples: EdgeSamples;
-  readonly radius: number;
-  readonly brightness: number;
-}
-
-/** Limits of the whole dataset: noise, and what a source at the edge of the field does to its surroundings. */
-function standingLimits(standing: Standing): RankedLimit[] {
-  const { plan, planned, wTerm, smearing, samples, radius } = standing;
-  const limits: RankedLimit[] = [];
-  const add = (cause: string, range: number, text: string) => {
-    if (range > 0 && Number.isFinite(range))
-      limits.push({ event: null, eventIndex: null, cause, dynamicRangeFraction: range, text });
-  };
-  const thermal = standing.brightness / planned.noise;
-  add(
-    "thermal-noise",
-    thermal,
-    `thermal noise of ${formatFlux(planned.noise)} under a source of ${formatFlux(standing.brightness)} allows a dynamic range of ${formatNumber(thermal)}`,
-  );
-  if (!plan.correctsW.value && wTerm.edgePhaseRad > W_PHASE_LIMIT) {
-    const range = edgeDynamicRange(samples, radius);
-    add(
-      "w-term",
-      range,
-      `w not corrected: around a source at the edge of the field, which loses ${formatPercent(wTerm.edgeLossFraction)}, the dynamic range is ${formatNumber(range)}`,
-    );
-  }
-  const smeared = smearing.loss;
-  if (smeared > 0.01 && planned.sidelobes.rms > 0) {
-    const range = 1 / (smeared * planned.sidelobes.rms);
-    add(
-      smearing.bandwidthLossFraction >= smearing.timeLossFraction ? "bandwidth-smearing" : "time-smearing",
-      range,
-      `smearing of ${formatPercent(smeared)} at the edge of the field: the part of a source there that is lost leaves sidelobes at a dynamic range of ${formatNumber(range)}`,
-    );
-  }
-  return limits;
-}
-
-/** Peak over rms around a source at the edge when the phases that w leaves stay: sum T / sqrt(sum T^2 |1 - exp i phi|^2 / 2). */
-function edgeDynamicRange(samples: EdgeSamples, radius: number): number {
-  // One term stands for a cell's samples of much the same w: cells, not samples, decide how errors average.
-  const byBaseline = new Map<number, { re: number; im: number; weight: number }>();
-  let total = 0;
-  const depth = 1 - Math.sqrt(1 - radius * radius);
-  for (let i = 0; i < samples.count; i++) {
-    if (!Number.isFinite(samples.w[i]!)) continue;
-    const phase = 2 * Math.PI * samples.w[i]! * depth;
-    const key = samples.baseline[i]!;
-    const sum = byBaseline.get(key) ?? { re: 0, im: 0, weight: 0 };
-    sum.re += samples.weight[i]! * (1 - Math.cos(phase));
-    sum.im += samples.weight[i]! * Math.sin(phase);
-    sum.weight += samples.weight[i]!;
-    byBaseline.set(key, sum);
-    total += samples.weight[i]!;
-  }
-  let squares = 0;
-  for (const { re, im } of byBaseline.values()) squares += re * re + im * im;
-  return total / Math.sqrt(squares / 2);
 }
 
 /** What dropping every baseline beyond the w that needs no correction would cost. */

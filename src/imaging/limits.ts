@@ -63,7 +63,7 @@ export async function eventLimits(
   const ranked = events
     .map((event, eventIndex) => ({ event, eventIndex, error: errorOf(event, level) }))
     .filter(({ error }) => error.size > 0)
-    .sort((a, b) => b.event.significance - a.event.significance)
+    .sort((a, b) => b.event.significance - a.event.significance || a.eventIndex - b.eventIndex)
     .slice(0, MOST_EVENTS);
   if (ranked.length === 0) return [];
   const cells = truncated(image.cells, 0);
@@ -79,7 +79,7 @@ export async function eventLimits(
       if (Number.isFinite(range)) limits.push({ ...limitOf(event, error, range), eventIndex });
     },
   );
-  return limits.sort((a, b) => a.dynamicRangeFraction - b.dynamicRangeFraction);
+  return limits;
 }
 
 /** How an event spoils its samples. */
@@ -212,9 +212,4 @@ function scopeText(event: DetectedEvent): string {
 function named(word: string, names: readonly string[]): string {
   if (names.length > 4) return `${names.length} ${word}s`;
   return `${word}${names.length === 1 ? "" : "s"} ${names.join(", ")}`;
-}
-
-/** Every limit, worst first. */
-export function rankLimits(limits: readonly RankedLimit[]): RankedLimit[] {
-  return [...limits].sort((a, b) => a.dynamicRangeFraction - b.dynamicRangeFraction);
 }

@@ -165,7 +165,8 @@ export const RADIAL_GAP: MeasureForm = {
 export const AZIMUTHAL_GAP: MeasureForm = {
   name: "azimuthal_gap",
   each: "gap",
-  title: "Widest direction range without samples in each annulus between the plan's scales",
+  title:
+    "Widest direction range without samples in each annulus (an octave of spacing or more) between the plan's scales",
   columns: [
     column("from_wavelengths", "", "inner radius of the annulus, wavelengths"),
     column("to_wavelengths", "", "outer radius of the annulus, wavelengths"),

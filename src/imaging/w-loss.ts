@@ -11,8 +11,9 @@ import type { EdgeSamples } from "./edge-samples.ts";
 export interface WLoss {
   /** peak lost, of 1; at most a little over 1 */
   readonly loss: number;
-  /** displacement of the peak, radians east and north for a source in the direction w decides alone: size only */
-  readonly shift: number;
+  /** displacement of the peak, radians east and north: the same wherever on the edge the source is */
+  readonly east: number;
+  readonly north: number;
 }
 
 /** Samples used to look for the peak; the last value is over all. */
@@ -22,7 +23,7 @@ const SEARCH_SAMPLES = 8000;
 export function wLossAt(samples: EdgeSamples, radius: number): WLoss {
   const depth = planeDepth(radius);
   const all = new PeakSum(samples, depth, 1);
-  if (!(all.total > 0)) return { loss: Number.NaN, shift: Number.NaN };
+  if (!(all.total > 0)) return { loss: Number.NaN, east: Number.NaN, north: Number.NaN };
   const stride = Math.max(1, Math.ceil(samples.count / SEARCH_SAMPLES));
   const few = stride === 1 ? all : new PeakSum(samples, depth, stride);
   const plane = fitPlane(samples.u, samples.v, zeroed(samples.w), known(samples));
@@ -38,7 +39,7 @@ export function wLossAt(samples: EdgeSamples, radius: number): WLoss {
     if (height > value) [best, value] = [place, height];
   }
   const [place, height] = stride === 1 ? [best, value] : climb(all, best);
-  return { loss: 1 - height, shift: Math.hypot(place[0], place[1]) };
+  return { loss: 1 - height, east: place[0], north: place[1] };
 }
 
 function known(samples: EdgeSamples): Float64Array {

@@ -1,0 +1,96 @@
+/** Limits on the dynamic range that belong to the whole dataset: noise, and what happens at the edge of the field. */
+import { planeDepth } from "../geometry/w-term.ts";
+import { formatFlux, formatNumber, formatPercent } from "../util/units.ts";
+import type { MadeBeam } from "./beams.ts";
+import type { EdgeSamples } from "./edge-samples.ts";
+import type { WTerm } from "./image.ts";
+import type { RankedLimit, SourceLevel } from "./limits.ts";
+import type { Plan } from "./plan.ts";
+import { frequencyRange, type Sampling } from "./sampling.ts";
+import type { SmearingResult } from "./smearing.ts";
+import { brightness } from "./thermal.ts";
+import type { WLoss } from "./w-loss.ts";
+
+/** What is lost below this at the edge of the field limits no image: common practice, no source. */
+const LEAST_LOSS = 0.01;
+
+export interface Standing {
+  readonly plan: Plan;
+  readonly planned: MadeBeam;
+  readonly wTerm: WTerm;
+  readonly wLoss: WLoss;
+  readonly smearing: SmearingResult;
+  readonly samples: EdgeSamples;
+  /** of the field's edge, sine of its angle */
+  readonly radius: number;
+  readonly level: SourceLevel;
+}
+
+export function standingLimits(standing: Standing): RankedLimit[] {
+  return [noiseLimit(standing), wLimit(standing), smearingLimit(standing)].filter(
+    (limit): limit is RankedLimit =>
+      limit !== null && limit.dynamicRangeFraction > 0 && Number.isFinite(limit.dynamicRangeFraction),
+  );
+}
+
+function whole(cause: string, range: number, text: string): RankedLimit {
+  return { event: null, eventIndex: null, cause, dynamicRangeFraction: range, text };
+}
+
+function noiseLimit({ planned, level }: Standing): RankedLimit {
+  const range = level.brightness / planned.noise;
+  const text = `thermal noise of ${formatFlux(planned.noise)} under a source of ${formatFlux(level.brightness)} allows a dynamic range of ${formatNumber(range)}`;
+  return whole("thermal-noise", range, text);
+}
+
+function wLimit({ plan, wTerm, wLoss, samples, radius }: Standing): RankedLimit | null {
+  if (plan.correctsW.value || !(wTerm.edgeLossFraction > LEAST_LOSS)) return null;
+  const range = edgeDynamicRange(samples, radius, wLoss);
+  const text = `w not corrected: around a source at the edge of the field, which loses ${formatPercent(wTerm.edgeLossFraction)}, the dynamic range is ${formatNumber(range)}`;
+  return whole("w-term", range, text);
+}
+
+function smearingLimit({ planned, smearing }: Standing): RankedLimit | null {
+  if (!(smearing.loss > LEAST_LOSS && planned.sidelobes.rms > 0)) return null;
+  const range = 1 / (smearing.loss * planned.sidelobes.rms);
+  const cause =
+    smearing.bandwidthLossFraction >= smearing.timeLossFraction ? "bandwidth-smearing" : "time-smearing";
+  const text = `smearing of ${formatPercent(smearing.loss)} at the edge of the field: what a source there loses leaves sidelobes at a dynamic range of ${formatNumber(range)}`;
+  return whole(cause, range, text);
+}
+
+/**
+ * Peak over rms around a source at the edge of the field when the phases that w leaves stay, its displacement apart:
+ * sum T / sqrt(sum E^2 / 2), E the sum of T (exp(i phase) - 1) of a baseline, whose w changes slowly.
+ */
+function edgeDynamicRange(samples: EdgeSamples, radius: number, { east, north }: WLoss): number {
+  const depth = planeDepth(radius);
+  const re = new Map<number, number>();
+  const im = new Map<number, number>();
+  let total = 0;
+  for (let i = 0; i < samples.count; i++) {
+    if (!Number.isFinite(samples.w[i]!)) continue;
+    const turns = samples.w[i]! * depth + samples.u[i]! * east + samples.v[i]! * north;
+    const weight = samples.weight[i]!;
+    const key = samples.baseline[i]!;
+    re.set(key, (re.get(key) ?? 0) + weight * (1 - Math.cos(2 * Math.PI * turns)));
+    im.set(key, (im.get(key) ?? 0) + weight * Math.sin(2 * Math.PI * turns));
+    total += weight;
+  }
+  let squares = 0;
+  for (const [key, value] of re) squares += value * value + im.get(key)! ** 2;
+  return total / Math.sqrt(squares / 2);
+}
+
+/** What errors are measured against. */
+export function sourceLevel(sampling: Sampling): SourceLevel {
+  const { survey } = sampling;
+  const noise = survey.levels.sigma.filter((sigma) => sigma > 0).sort();
+  const { low, high } = frequencyRange(survey.dataset, sampling.channelUsed);
+  const widths = high.map((frequency, i) => frequency - low[i]!).filter((width) => width > 0);
+  return {
+    brightness: sampling.totalWeight > 0 ? brightness(sampling) : Number.NaN,
+    sampleNoise: noise.length === 0 ? Number.NaN : noise[noise.length >> 1]!,
+    bandwidth: widths.length === 0 ? 0 : widths.reduce((sum, width) => sum + width, 0) / widths.length,
+  };
+}
