@@ -14,7 +14,7 @@ export class AmplitudeSketches implements Accumulator {
   private readonly start: number;
   /** (channels) group that a channel belongs to */
   private readonly groupOf: Int32Array;
-  /** by sketch owner: (subbands x groups x polarizations x buckets) */
+  /** by sketch owner: (buckets x subbands x groups x polarizations) */
   private readonly sketches = new Map<number, Uint32Array>();
   /** by baseline: (subbands x channels x polarizations) usable samples */
   private readonly counts: Uint32Array[] = [];
@@ -58,22 +58,23 @@ export class AmplitudeSketches implements Accumulator {
     const { kind, powerBits, rowSamples } = prepared;
     const { start, groupOf } = this;
     const groups = this.settings.channelGroups;
+    const width = subbands * groups * polarizations;
     for (let row = 0; row < prepared.rows; row++) {
       const baseline = prepared.baseline[row]!;
       if (baseline === AUTOCORRELATION) continue;
-      const sketch = this.sketchOf(this.owner(baseline));
+      const sketches = this.sketchOf(this.owner(baseline));
       const counts = this.countsOf(baseline);
       let i = row * rowSamples;
       let at = 0;
       for (let s = 0; s < subbands; s++) {
         for (let c = 0; c < channels; c++) {
-          let base = (s * groups + groupOf[c]!) * polarizations * BUCKETS;
-          for (let p = 0; p < polarizations; p++, i++, at++, base += BUCKETS) {
+          let sketch = (s * groups + groupOf[c]!) * polarizations;
+          for (let p = 0; p < polarizations; p++, i++, at++, sketch++) {
             if (kind[i] !== USABLE) continue;
             let bucket = (powerBits[i]! >> BUCKET_SHIFT) - start;
             if (bucket < 0) bucket = 0;
             else if (bucket >= BUCKETS) bucket = BUCKETS - 1;
-            sketch[base + bucket]! += 1;
+            sketches[bucket * width + sketch]! += 1;
             counts[at]! += 1;
           }
         }
@@ -99,7 +100,7 @@ export class AmplitudeSketches implements Accumulator {
     if (sketch === undefined) return;
     const groups = this.settings.channelGroups;
     const ofSketch = Float32Array.from({ length: subbands * groups * polarizations }, (_, i) =>
-      sketchQuantile(sketch, i * BUCKETS, this.start, 0.5),
+      sketchQuantile(sketch, i, this.start, 0.5),
     );
     let at = 0;
     for (let s = 0; s < subbands; s++) {

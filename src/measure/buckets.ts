@@ -43,19 +43,24 @@ export function bucketAmplitude(start: number, bucket: number): number {
 
 /**
  * Amplitude below which the share `q` of the counts lies: the first bucket whose cumulative count exceeds q (n - 1).
+ * Sketches are held side by side, bucket by bucket, because neighbouring channels fall into the same few buckets: so
+ * their counts share cache lines.
  *
- * @param counts  the sketch is counts[at .. at + BUCKETS)
+ * @param counts  (buckets x sketches)
+ * @param sketch  which one
+ * @param start   first raw bucket of the window
  * @param q       0..1
  * @returns NaN when the sketch is empty
  */
-export function sketchQuantile(counts: Uint32Array, at: number, start: number, q: number): number {
+export function sketchQuantile(counts: Uint32Array, sketch: number, start: number, q: number): number {
+  const sketches = counts.length / BUCKETS;
   let total = 0;
-  for (let bucket = 0; bucket < BUCKETS; bucket++) total += counts[at + bucket]!;
+  for (let at = sketch; at < counts.length; at += sketches) total += counts[at]!;
   if (total === 0) return Number.NaN;
   const rank = q * (total - 1);
   let below = 0;
   for (let bucket = 0; bucket < BUCKETS; bucket++) {
-    below += counts[at + bucket]!;
+    below += counts[bucket * sketches + sketch]!;
     if (below > rank) return bucketAmplitude(start, bucket);
   }
   throw new RangeError("a share above 1 was asked of a sketch");

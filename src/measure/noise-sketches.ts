@@ -22,7 +22,7 @@ const SMOOTHED_LAG2_FACTOR = 14 / 3;
 /** Ratio of lag-2 to lag-1 rms: 1 for white noise, sqrt(14/3) = 2.16 when smoothed. */
 const SMOOTHED_RATIO: readonly [number, number] = [1.9, 2.5];
 
-/** Rows whose lag-2 differences are taken: one in this many is plenty for a ratio. */
+/** Of those rows, the ones whose lag-2 differences are taken: one in this many is plenty for a ratio. */
 const LAG2_EVERY = 8;
 
 export class NoiseSketches implements Accumulator {
@@ -32,11 +32,11 @@ export class NoiseSketches implements Accumulator {
   private readonly settings: SurveySettings;
   /** (channels) segment of the sub-band that a channel belongs to */
   private readonly segmentOf: Int32Array;
-  /** by sketch owner: (subbands x segments x polarizations x buckets) */
+  /** by sketch owner: (buckets x subbands x segments x polarizations) */
   private readonly byOwner = new Map<number, Uint32Array>();
-  /** (subbands x channels x polarizations x buckets) over all baselines */
+  /** (buckets x subbands x channels x polarizations) over all baselines */
   private readonly byChannel: Uint32Array;
-  /** (2 lags x subbands x polarizations x buckets) */
+  /** (buckets x 2 lags x subbands x polarizations) */
   private readonly lags: Uint32Array;
   private readonly scratch = new Float32Array(2);
   private readonly scratchBits = new Int32Array(this.scratch.buffer);
@@ -73,22 +73,30 @@ export class NoiseSketches implements Accumulator {
     for (let row = 0; row < prepared.rows; row++) {
       const baseline = prepared.baseline[row]!;
       if (baseline === AUTOCORRELATION) continue;
-      this.addRow(prepared, row, this.ofOwner(this.owner(baseline)), 1);
-      // By the row's place in the dataset, so that the choice is the same in any partition.
-      if ((prepared.block.firstRow + row) % LAG2_EVERY === 0) {
-        this.addRow(prepared, row, null, 2);
-      }
+      const drawn = scattered(prepared.block.firstRow + row);
+      if (drawn % this.settings.noiseEvery !== 0) continue;
+      const toLags = Math.floor(drawn / this.settings.noiseEvery) % LAG2_EVERY === 0;
+      this.addRow(prepared, row, this.ofOwner(this.owner(baseline)), 1, toLags);
+      if (toLags) this.addRow(prepared, row, null, 2, true);
     }
   }
 
   /** @param sketch the baseline's; null: this row goes to the sums of lags alone */
-  private addRow(prepared: PreparedBlock, row: number, sketch: Uint32Array | null, lag: number): void {
+  private addRow(
+    prepared: PreparedBlock,
+    row: number,
+    sketch: Uint32Array | null,
+    lag: number,
+    toLags: boolean,
+  ): void {
     const { subbands, channels, polarizations } = this.shape;
     const { real, imag } = prepared.block;
     const { kind } = prepared;
     const { scratch, scratchBits, start, byChannel, lags, segmentOf } = this;
     const segments = this.settings.noiseSegments;
-    const toLags = sketch === null || (prepared.block.firstRow + row) % LAG2_EVERY === 0;
+    const ownWidth = subbands * segments * polarizations;
+    const channelWidth = subbands * channels * polarizations;
+    const lagWidth = 2 * subbands * polarizations;
     const step = lag * polarizations;
     for (let s = 0; s < subbands; s++) {
       const subband = row * prepared.rowSamples + s * channels * polarizations;
@@ -105,10 +113,10 @@ export class NoiseSketches implements Accumulator {
             if (bucket < 0) bucket = 0;
             else if (bucket >= BUCKETS) bucket = BUCKETS - 1;
             if (sketch !== null) {
-              sketch[((s * segments + segmentOf[c]!) * polarizations + p) * BUCKETS + bucket]! += 1;
-              byChannel[((s * channels + c) * polarizations + p) * BUCKETS + bucket]! += 1;
+              sketch[bucket * ownWidth + (s * segments + segmentOf[c]!) * polarizations + p]! += 1;
+              byChannel[bucket * channelWidth + (s * channels + c) * polarizations + p]! += 1;
             }
-            if (toLags) lags[(((lag - 1) * subbands + s) * polarizations + p) * BUCKETS + bucket]! += 1;
+            if (toLags) lags[bucket * lagWidth + ((lag - 1) * subbands + s) * polarizations + p]! += 1;
           }
         }
       }
@@ -126,7 +134,7 @@ export class NoiseSketches implements Accumulator {
   /** sigma over the median second difference of a sub-band and polarization. */
   private factor(subband: number, polarization: number): number {
     const { subbands, polarizations } = this.shape;
-    const at = (lag: number) => (((lag - 1) * subbands + subband) * polarizations + polarization) * BUCKETS;
+    const at = (lag: number) => ((lag - 1) * subbands + subband) * polarizations + polarization;
     const ratio =
       sketchQuantile(this.lags, at(2), this.start, 0.5) / sketchQuantile(this.lags, at(1), this.start, 0.5);
     const smoothed = ratio > SMOOTHED_RATIO[0] && ratio < SMOOTHED_RATIO[1];
@@ -153,7 +161,7 @@ export class NoiseSketches implements Accumulator {
         const ofSegments = Float64Array.from({ length: segments }, (_, segment) => {
           const middle = sketchQuantile(
             sketch,
-            ((s * segments + segment) * polarizations + p) * BUCKETS,
+            (s * segments + segment) * polarizations + p,
             this.start,
             0.5,
           );
@@ -181,10 +189,19 @@ export class NoiseSketches implements Accumulator {
     const sigma = new Float64Array(subbands * channels * polarizations);
     for (let i = 0; i < sigma.length; i++) {
       const subband = Math.floor(i / (channels * polarizations));
-      sigma[i] =
-        this.factor(subband, i % polarizations) *
-        sketchQuantile(this.byChannel, i * BUCKETS, this.start, 0.5);
+      sigma[i] = this.factor(subband, i % polarizations) * sketchQuantile(this.byChannel, i, this.start, 0.5);
     }
     return sigma;
   }
+}
+
+/**
+ * A number from a row's place in the dataset, so that a choice of rows is the same in any partition and does not fall in
+ * step with the order of the baselines: the finalizer of MurmurHash3 (Appleby 2011).
+ */
+function scattered(place: number): number {
+  let h = (place ^ Math.floor(place / 2 ** 32)) >>> 0;
+  h = Math.imul(h ^ (h >>> 16), 0x85ebca6b);
+  h = Math.imul(h ^ (h >>> 13), 0xc2b2ae35);
+  return (h ^ (h >>> 16)) >>> 0;
 }

@@ -14,6 +14,8 @@ export interface SurveySettings {
   readonly channelGroups: number;
   /** segments of a sub-band that each have a noise of their own, so that a few bad channels do not raise it */
   readonly noiseSegments: number;
+  /** one row in this many goes to the noise: a median needs hundreds of differences, not all there are */
+  readonly noiseEvery: number;
   /** false where not even one sketch a baseline fits: baselines then share that of their lower antenna */
   readonly sketchByBaseline: boolean;
   /** 0: a track cell is one row; else seconds of a time bin */
@@ -27,6 +29,8 @@ export const DEFAULT_MEMORY = 512 * 2 ** 20;
 /** Rows at the beginning, middle and end of the dataset that set the scales. */
 const PROBE_ROWS = 64;
 const NOISE_SEGMENTS = 8;
+/** Second differences that the noise of a segment of a baseline is measured from: its median is then good to 4 %. */
+const DIFFERENCES = 1024;
 /** Bytes of a track cell's row columns, and of each of its products. */
 const CELL_BYTES = 80;
 const PRODUCT_BYTES = 44;
@@ -36,15 +40,16 @@ export async function settleSurvey(dataset: Dataset, memory = DEFAULT_MEMORY): P
   const probe = await probeDataset(dataset);
   const { subbands, channels, polarizations } = dataset.shape;
   const antennas = Math.max(2, Math.min(dataset.array.antennas.length, 4096));
-  const baselines = Math.min((antennas * (antennas - 1)) / 2, dataset.rows);
+  const baselines = Math.max(1, Math.min((antennas * (antennas - 1)) / 2, dataset.rows));
   const sketchBytes = 4 * BUCKETS * subbands * polarizations;
   const most = Math.min(channels, NOISE_SEGMENTS);
-  const fitting = Math.floor(memory / 2 / (sketchBytes * Math.max(1, baselines))) - most;
+  const fitting = Math.floor(memory / 2 / (sketchBytes * baselines)) - most;
   const cellBytes = CELL_BYTES + PRODUCT_BYTES * subbands * polarizations;
   const overflow = Math.ceil((dataset.rows * cellBytes) / (memory / 2));
   return {
     typicalPower: probe.power,
     channelGroups: Math.max(1, Math.min(channels, fitting)),
+    noiseEvery: Math.max(1, Math.floor(((dataset.rows / baselines) * ((2 * channels) / most)) / DIFFERENCES)),
     noiseSegments: fitting >= 1 ? most : 1,
     sketchByBaseline: fitting >= 1,
     binSeconds: overflow <= 1 ? 0 : overflow * probe.integration,

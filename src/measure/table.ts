@@ -2,6 +2,7 @@
  * A measure: computed numbers as a table that rules, reports and notebooks read by column name.
  */
 import type { ColumnTable } from "arquero";
+import type { Selection } from "../dataset/selection.ts";
 
 /** What a row of a measure is about; rules name it in `each`. */
 export type RowKind =
@@ -37,6 +38,8 @@ export interface Measure {
   readonly title: string;
   readonly columns: readonly Column[];
   readonly table: ColumnTable;
+  /** by row, the samples it is about, where columns cannot name them all; absent: the columns say it */
+  readonly scopes?: readonly Selection[];
 }
 
 /** By name. */
