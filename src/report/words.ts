@@ -10,13 +10,22 @@ export const VERDICT_NAME: Readonly<Record<Verdict, string>> = {
 };
 
 /** What the verdict on a dataset tells its reader to do. */
-export const VERDICT_ADVICE: Readonly<Record<Verdict, string>> = {
-  ready: "Image it as it is.",
-  caution: "Image it after the suggested flags, or within the limits stated.",
-  hold:
-    "Do not image it yet: even after the suggested flags the planned image is out of reach, " +
-    "or something is wrong that flags do not mend.",
-};
+export function verdictAdvice({ verdict, flags }: Pick<Check, "verdict" | "flags">): string {
+  const some = flags.length > 0;
+  switch (verdict) {
+    case "ready":
+      return "Image it as it is.";
+    case "caution":
+      return some
+        ? "Image it after the suggested flags, or within the limits stated."
+        : "Image it within the limits stated.";
+    case "hold":
+      return (
+        `Do not image it yet: ${some ? "even after the suggested flags " : ""}the planned image is out of reach, ` +
+        "or something is wrong that flags do not mend."
+      );
+  }
+}
 
 export const PROPOSALS =
   "The flags are proposals for a person to accept or refuse. Nothing has been flagged and the dataset has not been changed.";
@@ -99,4 +108,9 @@ export function sentence(text: string): string {
 
 export function upperFirst(text: string): string {
   return text.charAt(0).toUpperCase() + text.slice(1);
+}
+
+/** `and 1 more rule` */
+export function moreRules(count: number): string {
+  return `and ${count} more ${count === 1 ? "rule" : "rules"}`;
 }

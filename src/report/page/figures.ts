@@ -124,13 +124,16 @@ function beamFigure(check: Check): Markup | undefined {
   return figure("beam", "Dirty beam", svg, text, [], ramp);
 }
 
+/** A channel this many times the median one is worth a word; no source, a matter of reading. */
+const STANDS_OUT = 1.1;
+
 function spectrumFigure(check: Check, channels: readonly ChannelShare[]): Markup | undefined {
   const spectrum = spectrumOf(check);
   if (spectrum === null) return undefined;
   const { channels: each } = check.dataset.shape;
   const top = spectrum.loudest;
   const loudest =
-    top === null
+    top === null || top.ratio < STANDS_OUT
       ? ""
       : ` The loudest is channel ${top.channel % each} of sub-band ${Math.floor(top.channel / each)}, ${formatNumber(top.ratio)} times the median channel.`;
   const text = `Median amplitude of each channel on the median baseline, and on the baseline that only a tenth exceed.${loudest}`;

@@ -122,6 +122,7 @@ tbody th { font-weight: 500; }
 tbody th.sub { padding-left: 1.75rem; font-weight: 400; color: var(--muted); }
 th.number, td.number { text-align: right; }
 .stacks th, .stacks td { overflow-wrap: anywhere; }
+.stacks td:nth-child(2) { min-width: 8.5rem; }
 .stacks .number { padding-left: 0.5rem; overflow-wrap: normal; }
 .stacks th:first-child { overflow-wrap: break-word; }
 .scroll + p { margin-top: 0.5rem; }

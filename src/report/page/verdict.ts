@@ -1,7 +1,7 @@
 /** The top of the page: the verdict, the score before and after the flags, what took it, and what was looked at. */
 import { datasetFacts } from "../dataset-facts.ts";
 import type { Check } from "../report.ts";
-import { findingCounts, pointsText, scoreText, VERDICT_ADVICE, VERDICT_NAME } from "../words.ts";
+import { findingCounts, moreRules, pointsText, scoreText, VERDICT_NAME, verdictAdvice } from "../words.ts";
 import { verdictIcon } from "./icons.ts";
 import { html, Markup } from "./markup.ts";
 
@@ -16,7 +16,7 @@ export function verdictSection(check: Check): Markup {
 <div>
 <h1 id="verdict">${check.dataset.name}<span class="unseen">: ${VERDICT_NAME[verdict]}</span></h1>
 <p class="verdict-word">${verdictIcon(verdict)}<span>${VERDICT_NAME[verdict]}</span></p>
-<p class="advice">${VERDICT_ADVICE[verdict]}</p>
+<p class="advice">${verdictAdvice(check)}</p>
 <p class="muted">Found: ${findingCounts(check.findings)}.</p>
 </div>
 <div>${scorePart(check)}</div>
@@ -71,5 +71,5 @@ function takenList(check: Check): Markup {
     const width = Math.max(1, Math.round((100 * points) / Math.max(most, 1e-9)));
     return html`<li><span>${rule}</span><span aria-hidden="true"><span class="bar" style="width:${width}%"></span></span><span class="number">${pointsText(points)}</span></li>\n`;
   })}</ul>
-${rest > 0 && html`<p class="small muted">and ${rest} more rules</p>`}`;
+${rest > 0 && html`<p class="small muted">${moreRules(rest)}</p>`}`;
 }

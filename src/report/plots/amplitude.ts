@@ -47,7 +47,7 @@ export function amplitudeChart(check: Check, cells: Cells): string {
       x: points.x.map((value) => value / divisor),
       y: points.y.map(scale.place),
     };
-    if (points.x.length > MOST_DOTS) return density(scaled, { colour, columns: 120, rows: 72 });
+    if (points.x.length > MOST_DOTS) return density(scaled, { colour });
     return dots(scaled, { colour, size: fate === SUGGESTED ? 2.5 : 2, opacity: 0.8 });
   };
   return drawChart({

@@ -67,38 +67,38 @@ function strokes(
   });
 }
 
-/** Shades that tell densities apart, each twice as many points as the one before. */
+/** Shades that tell densities apart, evenly in the logarithm of the count. */
 const SHADES = 6;
+
+/** Sides of a bin, user units: no rounding opens a seam between two of them. */
+const BIN_WIDTH = 3.5;
+const BIN_HEIGHT = 4;
 
 /**
  * How densely points lie, in bins of the plotting area, in shades of one colour: the darkest is the densest bin, the
  * lightest any point at all.
  */
-export function density(
-  points: Points,
-  options: { colour: string; columns?: number; rows?: number },
-): RenderFunction {
-  const { colour, columns = 84, rows = 56 } = options;
+export function density(points: Points, { colour }: { colour: string }): RenderFunction {
   return (_index, scales, _values, dimensions, context) => {
     const { x, y } = linear(scales);
     const { width, height, marginLeft, marginRight, marginTop, marginBottom } = dimensions;
-    const binWidth = (width - marginLeft - marginRight) / columns;
-    const binHeight = (height - marginTop - marginBottom) / rows;
+    const columns = Math.ceil((width - marginLeft - marginRight) / BIN_WIDTH);
+    const rows = Math.ceil((height - marginTop - marginBottom) / BIN_HEIGHT);
     const counts = new Uint32Array(columns * rows);
     for (let i = 0; i < points.x.length; i++) {
-      const column = Math.floor((x(points.x[i]!) - marginLeft) / binWidth);
-      const row = Math.floor((y(points.y[i]!) - marginTop) / binHeight);
+      const column = Math.floor((x(points.x[i]!) - marginLeft) / BIN_WIDTH);
+      const row = Math.floor((y(points.y[i]!) - marginTop) / BIN_HEIGHT);
       if (column >= 0 && column < columns && row >= 0 && row < rows) counts[row * columns + column]! += 1;
     }
     const group = node(context.document, "g", {});
     const most = counts.reduce((high, count) => Math.max(high, count), 0);
     for (let shade = 0; shade < SHADES; shade++) {
       const path = shadePath(counts, columns, rows, most, shade, (column, row) => [
-        marginLeft + column * binWidth,
-        marginTop + row * binHeight,
+        marginLeft + column * BIN_WIDTH,
+        marginTop + row * BIN_HEIGHT,
       ]);
       if (path === "") continue;
-      const shaped = path.replaceAll("W", coordinate(binWidth)).replaceAll("H", coordinate(binHeight));
+      const shaped = path.replaceAll("W", coordinate(BIN_WIDTH)).replaceAll("H", coordinate(BIN_HEIGHT));
       const opacity = (0.16 + (0.84 * shade) / (SHADES - 1)).toFixed(2);
       group.appendChild(node(context.document, "path", { d: shaped, fill: colour, "fill-opacity": opacity }));
     }
@@ -127,7 +127,8 @@ function shadePath(
 }
 
 function shadeOf(count: number, most: number): number {
-  return Math.max(0, SHADES - 1 - Math.floor(Math.log2(most / count)));
+  if (most <= 1) return SHADES - 1;
+  return Math.min(SHADES - 1, Math.floor((SHADES * Math.log(count)) / Math.log(most)));
 }
 
 /** A picture over a range of both axes. */

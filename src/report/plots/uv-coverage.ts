@@ -3,15 +3,16 @@ import { type RenderFunction, ruleX, ruleY } from "@observablehq/plot";
 import type { Coverage } from "../../imaging/image.ts";
 import { formatWavelengths } from "../quantity.ts";
 import type { Check } from "../report.ts";
-import { type Cells, FLAGGED, KEPT, SUGGESTED, someCells } from "./cells.ts";
+import { type Cells, FLAGGED, KEPT, SUGGESTED } from "./cells.ts";
 import { COLOUR, drawChart, SQUARE } from "./chart.ts";
 import { segments } from "./marks.ts";
 import { node } from "./node.ts";
+import { raster } from "./raster.ts";
 import { setupRange } from "./setups.ts";
 import { wavelengthUnit } from "./ticks.ts";
 
-/** Cells drawn, each twice. */
-const MOST = 3500;
+/** Up to this many cells are drawn one by one, each twice. */
+const MOST_SEGMENTS = 3500;
 
 interface Track {
   readonly from: { x: number[]; y: number[] };
@@ -22,7 +23,6 @@ export function uvCoverageChart(check: Check, cells: Cells): string {
   const { survey } = check;
   const { tracks } = survey;
   const ranges = check.dataset.setups.map(setupRange);
-  const chosen = someCells(survey, MOST);
   let reach = 0;
   for (let cell = 0; cell < tracks.cells; cell++) {
     const [, high] = ranges[tracks.setup[cell]!] ?? [0, 0];
@@ -34,7 +34,7 @@ export function uvCoverageChart(check: Check, cells: Cells): string {
     from: { x: [], y: [] },
     to: { x: [], y: [] },
   }));
-  for (const cell of chosen) {
+  for (let cell = 0; cell < tracks.cells; cell++) {
     const range = ranges[tracks.setup[cell]!];
     if (range === undefined) continue;
     const { from, to } = byFate[cells.fate[cell]!]!;
@@ -46,8 +46,13 @@ export function uvCoverageChart(check: Check, cells: Cells): string {
     }
   }
   const limit = (reach > 0 ? reach / divisor : 1) * 1.05;
-  const draw = (fate: number, colour: string) =>
-    segments(byFate[fate]!.from, byFate[fate]!.to, { colour, size: 1.5 });
+  // What stays lies on top: where a suggested flag shows, nothing else covers the plane.
+  const classes = [
+    { ...byFate[FLAGGED]!, colour: COLOUR.flagged },
+    { ...byFate[SUGGESTED]!, colour: COLOUR.suggested },
+    { ...byFate[KEPT]!, colour: COLOUR.kept },
+  ];
+  const few = tracks.cells <= MOST_SEGMENTS;
   return drawChart({
     id: "uv-coverage",
     label: `uv coverage out to ${formatWavelengths(reach)}`,
@@ -58,9 +63,9 @@ export function uvCoverageChart(check: Check, cells: Cells): string {
       ruleX([0], { stroke: COLOUR.faint }),
       ruleY([0], { stroke: COLOUR.faint }),
       gaps(check.image.coverage.before, divisor),
-      draw(FLAGGED, COLOUR.flagged),
-      draw(KEPT, COLOUR.kept),
-      draw(SUGGESTED, COLOUR.suggested),
+      ...(few
+        ? classes.map(({ from, to, colour }) => segments(from, to, { colour, size: 1.5 }))
+        : [raster(classes)]),
     ],
   });
 }

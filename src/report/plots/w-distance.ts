@@ -6,11 +6,12 @@ import type { Check } from "../report.ts";
 import { type Cells, FLAGGED, KEPT, SUGGESTED } from "./cells.ts";
 import { COLOUR, drawChart } from "./chart.ts";
 import { dots, type Points } from "./marks.ts";
+import { raster } from "./raster.ts";
 import { setupRange } from "./setups.ts";
 import { wavelengthUnit } from "./ticks.ts";
 
-/** Dots, evenly through the dataset where there are more cells. */
-const MOST_DOTS = 9000;
+/** Up to this many cells are drawn one by one. */
+const MOST_DOTS = 5000;
 
 /** Largest |w| that keeps the phase at the edge of the planned field within the limit, wavelengths. */
 export function largestAllowedW(check: Check): number {
@@ -24,60 +25,59 @@ export function wDistanceChart(check: Check, cells: Cells): string {
   const { tracks } = check.survey;
   const high = check.dataset.setups.map((setup) => setupRange(setup)[1]);
   const byFate: { x: number[]; y: number[] }[] = [KEPT, SUGGESTED, FLAGGED].map(() => ({ x: [], y: [] }));
-  // The extremes are of all cells, the dots of every n-th.
-  const step = Math.max(1, Math.ceil(tracks.cells / MOST_DOTS));
   let [reach, top] = [0, 0];
   for (let cell = 0; cell < tracks.cells; cell++) {
     const frequency = high[tracks.setup[cell]!] ?? Number.NaN;
     const spacing = Math.hypot(tracks.u[cell]!, tracks.v[cell]!) * frequency;
     const w = Math.abs(tracks.w[cell]!) * frequency;
     if (!Number.isFinite(spacing) || !Number.isFinite(w)) continue;
-    if (cell % step === 0) {
-      byFate[cells.fate[cell]!]!.x.push(spacing);
-      byFate[cells.fate[cell]!]!.y.push(w);
-    }
+    byFate[cells.fate[cell]!]!.x.push(spacing);
+    byFate[cells.fate[cell]!]!.y.push(w);
     if (spacing > reach) reach = spacing;
     if (w > top) top = w;
   }
   const allowed = largestAllowedW(check);
   const shown = Number.isFinite(allowed) && allowed <= Math.max(top * 2, 1e-9);
   const ceiling = 1.08 * Math.max(top, shown ? allowed : 0, 1e-9);
-  const x = wavelengthUnit(reach);
-  const y = wavelengthUnit(ceiling);
+  const across = wavelengthUnit(reach);
+  const up = wavelengthUnit(ceiling);
   const scaled = (points: Points): Points => ({
-    x: Array.from(points.x, (value) => value / x.divisor),
-    y: Array.from(points.y, (value) => value / y.divisor),
+    x: Array.from(points.x, (value) => value / across.divisor),
+    y: Array.from(points.y, (value) => value / up.divisor),
   });
-  const draw = (fate: number, colour: string) => {
-    return dots(scaled(byFate[fate]!), { colour, size: 2 });
-  };
+  const classes = [
+    { ...scaled(byFate[FLAGGED]!), colour: COLOUR.flagged },
+    { ...scaled(byFate[KEPT]!), colour: COLOUR.kept },
+    { ...scaled(byFate[SUGGESTED]!), colour: COLOUR.suggested },
+  ];
+  const few = tracks.cells <= MOST_DOTS;
   const degrees = formatNumber((check.image.wTerm.phaseLimitRad * 180) / Math.PI);
   return drawChart({
     id: "w-distance",
     label: `|w| against uv distance; |w| reaches ${formatWavelengths(top)}`,
     x: {
-      domain: [0, Math.max(reach / x.divisor, 1e-9) * 1.03],
-      label: `uv distance (${x.name})`,
+      domain: [0, Math.max(reach / across.divisor, 1e-9) * 1.03],
+      label: `uv distance (${across.name})`,
       ticks: 6,
       labelArrow: "none",
     },
     y: {
-      domain: [0, ceiling / y.divisor],
-      label: `|w| (${y.name})`,
+      domain: [0, ceiling / up.divisor],
+      label: `|w| (${up.name})`,
       ticks: 5,
       labelArrow: "none",
       grid: true,
     },
     marks: [
-      draw(FLAGGED, COLOUR.flagged),
-      draw(KEPT, COLOUR.kept),
-      draw(SUGGESTED, COLOUR.suggested),
+      ...(few
+        ? classes.map(({ x, y, colour }) => dots({ x, y }, { colour, size: 2 }))
+        : [raster(classes.map(({ x, y, colour }) => ({ from: { x, y }, to: { x, y }, colour })))]),
       ...(shown
         ? [
-            ruleY([allowed / y.divisor], { stroke: COLOUR.limit, strokeWidth: 2, strokeDasharray: "6 4" }),
+            ruleY([allowed / up.divisor], { stroke: COLOUR.limit, strokeWidth: 2, strokeDasharray: "6 4" }),
             text([`limit: ${degrees} deg at the edge`], {
               frameAnchor: "right",
-              y: () => allowed / y.divisor,
+              y: () => allowed / up.divisor,
               dx: -4,
               dy: -5,
               lineAnchor: "bottom",

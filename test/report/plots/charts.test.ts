@@ -6,12 +6,28 @@ import { classifyCells } from "../../../src/report/plots/cells.ts";
 import { phaseChart, phaseSubjects } from "../../../src/report/plots/phase.ts";
 import { uvCoverageChart } from "../../../src/report/plots/uv-coverage.ts";
 import { largestAllowedW, wDistanceChart } from "../../../src/report/plots/w-distance.ts";
+import type { Check } from "../../../src/report/report.ts";
 import { scopeWords } from "../../../src/report/scope.ts";
 import { cleanCheck, faultyCheck, fixtureBeam } from "../fixtures.ts";
 
 const check = faultyCheck();
 const cells = classifyCells(check);
 const words = scopeWords(check.dataset, check.survey.times);
+
+/** The faulty check with the cells of its first baselines only. */
+function firstBaselines(count: number): Check {
+  const last = count * 120;
+  const { tracks } = check.survey;
+  const cut = Object.fromEntries(
+    Object.entries(tracks).map(([key, value]) => [
+      key,
+      typeof value === "number" || key === "firstCell"
+        ? value
+        : value.slice(0, (value.length / tracks.cells) * last),
+    ]),
+  ) as unknown as typeof tracks;
+  return { ...check, survey: { ...check.survey, tracks: { ...cut, cells: last } } };
+}
 
 /** Dots and segments of one colour: a path begins each with M. */
 function marks(svg: string, colour: string): number {
@@ -35,11 +51,25 @@ describe("every chart", () => {
 });
 
 describe("uvCoverageChart", () => {
-  it("draws each cell it takes with its conjugate", () => {
-    const drawn =
-      marks(uvCoverageChart(check, cells), "kept") + marks(uvCoverageChart(check, cells), "suggested") - 2;
-    const flagged = marks(uvCoverageChart(check, cells), "flagged") - 1;
-    expect(drawn + flagged).toBe(2 * Math.ceil(10_920 / 4));
+  it("draws each cell with its conjugate, one by one where they are few", () => {
+    const few = firstBaselines(25);
+    const svg = uvCoverageChart(few, classifyCells(few));
+    const drawn = ["kept", "suggested", "flagged"].map((colour) => marks(svg, colour) - 1);
+    expect(drawn[0]! + drawn[1]! + drawn[2]!).toBe(2 * 25 * 120);
+  });
+
+  it("draws many cells as the squares they touch, the same on both sides of the origin", () => {
+    const svg = uvCoverageChart(check, cells);
+    const squares = [...svg.matchAll(/M([\d.]+) ([\d.]+)h([\d.]+)v1\.5/g)].map((match) =>
+      match.slice(1, 4).map(Number),
+    );
+    expect(squares.length).toBeGreaterThan(500);
+    const weight = squares.reduce((sum, [x, , width]) => sum + width! * (x! + width! / 2), 0);
+    const area = squares.reduce((sum, [, , width]) => sum + width!, 0);
+    const frame = /<rect[^>]*>/.exec(svg);
+    expect(frame).toBeNull();
+    // The middle of a plotting area of 426 units that begins at 46.
+    expect(Math.abs(weight / area - (46 + 426 / 2))).toBeLessThan(1.5);
   });
 });
 
