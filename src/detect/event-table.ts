@@ -112,6 +112,7 @@ function eventMeasure(survey: Survey, events: readonly DetectedEvent[]): Measure
     each: "event",
     title: "What happened to samples, attributed to the smallest cause",
     columns: EVENT_FORM,
+    scopes: events.map(({ scope }) => scope),
     table: table(
       data,
       EVENT_FORM.map(({ name }) => name),
@@ -119,7 +120,8 @@ function eventMeasure(survey: Survey, events: readonly DetectedEvent[]): Measure
   };
 }
 
-const INTERFERENCE_COLUMNS: readonly Column[] = [
+/** The columns of the measure "interference". */
+export const INTERFERENCE_FORM: readonly Column[] = [
   { name: "samples", unit: "", meaning: "usable samples of the dataset" },
   { name: "outlying", unit: "", meaning: "samples found to hold interference" },
   { name: "outlying_fraction", unit: "", meaning: "outlying over samples" },
@@ -158,12 +160,12 @@ function interferenceMeasure(survey: Survey, events: readonly DetectedEvent[]): 
     ),
     events: interference.length,
   };
-  const names = INTERFERENCE_COLUMNS.map(({ name }) => name);
+  const names = INTERFERENCE_FORM.map(({ name }) => name);
   return {
     name: "interference",
     each: "dataset",
     title: "How much of the data interference takes, one row",
-    columns: INTERFERENCE_COLUMNS,
+    columns: INTERFERENCE_FORM,
     table: table(Object.fromEntries(names.map((name) => [name, [row[name]!]])), names),
   };
 }

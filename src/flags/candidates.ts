@@ -39,16 +39,14 @@ function fromEvents(events: readonly DetectedEvent[], judged: Judged, rules: Rul
     // An event within its limits belongs to the rule of its kind, which has the kind's name.
     const rule = hit?.rule.id ?? (inForce.has(event.kind) ? event.kind : undefined);
     if (event.flag === null || rule === undefined) return [];
-    return [
-      {
-        selection: event.flag,
-        rule,
-        confidence: Math.min(1, Math.max(0, event.confidence)),
-        severity: hit?.severity ?? 0,
-        reasons: [event.evidence],
-        repair: event.repair,
-      },
-    ];
+    return [event.flag, ...(event.alsoFlag ?? [])].map((selection) => ({
+      selection,
+      rule,
+      confidence: Math.min(1, Math.max(0, event.confidence)),
+      severity: hit?.severity ?? 0,
+      reasons: [event.evidence],
+      repair: event.repair,
+    }));
   });
 }
 

@@ -2,8 +2,7 @@
 import { EVERYTHING, type Selection } from "../dataset/selection.ts";
 import type { Plan } from "../imaging/plan.ts";
 import type { Measure, Measures } from "../measure/table.ts";
-import { isTrue, NotJudgeable, RuleColumns } from "./evaluate.ts";
-import type { Expression } from "./expression.ts";
+import { NotJudgeable, RuleColumns } from "./evaluate.ts";
 import type { Hit } from "./hit.ts";
 import type { Rule } from "./rule.ts";
 import { rowScopes, scopeWords } from "./scope.ts";
@@ -54,18 +53,15 @@ function applyTo(rule: Rule, measure: Measure, measures: Measures, plan: Plan): 
   const values = columns.numbers(rule.value);
   const cautions = columns.numbers(caution);
   const holds = columns.numbers(hold);
-  const wanted = rule.where === null ? null : columns.numbers(rule.where);
-  const unsure = rule.where === null || asksForUnknown(rule.where) ? null : columns.unknownRows(rule.where);
+  const wanted = rule.where === null ? null : columns.condition(rule.where);
   const scopeOf = rowScopes(measure);
   const hits: Hit[] = [];
   const unjudged: number[] = [];
   let judged = 0;
   for (let row = 0; row < columns.rows; row++) {
-    // A condition that hangs on an unknown number is neither met nor missed.
-    const wants = wanted === null || isTrue(wanted[row]!);
-    if (!wants && unsure?.[row] !== true) continue;
+    if (wanted?.[row] === false) continue;
     const severity = severityOf(values[row]!, cautions[row]!, holds[row]!);
-    if (!wants || Number.isNaN(severity)) {
+    if (wanted?.[row] === null || Number.isNaN(severity)) {
       unjudged.push(row);
       continue;
     }
@@ -91,10 +87,6 @@ function applyTo(rule: Rule, measure: Measure, measures: Measures, plan: Plan): 
       unjudged.length === 0 ? null : whyNot(unjudged, columns.rows, scopeOf, values, cautions, holds),
     unjudged: unjudged.map(scopeOf),
   };
-}
-
-function asksForUnknown(expression: Expression): boolean {
-  return /\bop\s*\.\s*is_(?:nan|finite)\b/.test(expression.text);
 }
 
 function whyNot(

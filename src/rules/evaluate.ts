@@ -3,7 +3,7 @@ import { type ColumnTable, table } from "arquero";
 import type { Plan } from "../imaging/plan.ts";
 import type { Measure, Measures } from "../measure/table.ts";
 import { nearest } from "../util/errors.ts";
-import { arqueroText, type Expression, type Source } from "./expression.ts";
+import { arqueroText, type Expression, type Node, type Source } from "./expression.ts";
 import { isPlanKey, planValue } from "./plan-values.ts";
 
 /** Why a rule cannot be judged on these measures, one clause. */
@@ -18,6 +18,8 @@ export class RuleColumns {
   readonly rows: number;
   private readonly measure: Measure;
   private readonly table: ColumnTable;
+  /** what plan and dataset say, by name in the arquero text */
+  private readonly parameters: ReadonlyMap<string, unknown>;
 
   /**
    * @throws NotJudgeable when a column that the expressions name is not there
@@ -26,61 +28,96 @@ export class RuleColumns {
     this.measure = measure;
     this.rows = measure.table.numRows();
     const columns: Record<string, unknown[]> = {};
-    const parameters: Record<string, unknown> = {};
+    const parameters = new Map<string, unknown>();
     for (const { source, name } of expressions.flatMap((expression) => expression.names)) {
       if (source === "d") columns[name] = cleaned(columnOf(measure, name));
       else if (source === "plan" && isPlanKey(name))
-        parameters[parameter(source, name)] = planValue(plan, name);
-      else if (source === "dataset") parameters[parameter(source, name)] = datasetValue(measures, name);
+        parameters.set(parameter(source, name), planValue(plan, name));
+      else if (source === "dataset") parameters.set(parameter(source, name), datasetValue(measures, name));
     }
     // A table without a column has no rows; this one has as many as the measure.
     columns[VALUE_COLUMN] = new Array(this.rows).fill(Number.NaN);
-    this.table = table(columns).params(parameters) as ColumnTable;
+    this.table = table(columns).params(Object.fromEntries(parameters)) as ColumnTable;
+    this.parameters = parameters;
   }
 
   /** One value a row; `value` holds what the rule computed. */
   evaluate(expression: Expression, value: readonly number[]): unknown[] {
-    return this.run(expression, this.table.assign(table({ [VALUE_COLUMN]: [...value] })));
-  }
-
-  private run(expression: Expression, input: ColumnTable): unknown[] {
-    if (this.rows === 0) return [];
-    const text = arqueroText(expression.root, reference);
-    return Array.from(input.derive({ [RESULT_COLUMN]: text }).array(RESULT_COLUMN) as Iterable<unknown>);
+    return this.run(expression.root, this.table.assign(table({ [VALUE_COLUMN]: [...value] })));
   }
 
   /** One number a row: true is 1, false 0, and everything else that is no number NaN. */
-  numbers(expression: Expression, input: ColumnTable = this.table): number[] {
-    return this.run(expression, input).map((value) =>
+  numbers(expression: Expression): number[] {
+    return this.run(expression.root, this.table).map((value) =>
       typeof value === "number" ? value : typeof value === "boolean" ? Number(value) : Number.NaN,
     );
   }
 
+  private run(node: Node, input: ColumnTable): unknown[] {
+    if (this.rows === 0) return [];
+    const text = arqueroText(node, reference);
+    return Array.from(input.derive({ [RESULT_COLUMN]: text }).array(RESULT_COLUMN) as Iterable<unknown>);
+  }
+
   /**
-   * Rows whose condition would depend on a number that is unknown (NaN; a null says there is none): it comes out
-   * different when the unknown ones are taken for very large or very small.
+   * Whether each row meets a condition: null where that hangs on a number of the data that is not known (NaN; a null
+   * says that there is none, and meets nothing). Unknown or true is true, unknown and false is false (Kleene 1938).
    */
-  unknownRows(condition: Expression): boolean[] {
-    const names = condition.names.flatMap(({ source, name }) => (source === "d" ? [name] : []));
-    const columns = names.map((name) => columnOf(this.measure, name));
-    const unknown = Array.from({ length: this.rows }, (_, row) =>
-      columns.some((column) => Number.isNaN(column[row])),
+  condition(expression: Expression): (boolean | null)[] {
+    return this.rows === 0 ? [] : this.truths(expression.root);
+  }
+
+  private truths(node: Node): (boolean | null)[] {
+    if (node.kind === "unary" && node.operator === "!") {
+      return this.truths(node.operand).map((truth) => (truth === null ? null : !truth));
+    }
+    if (node.kind === "binary" && (node.operator === "&&" || node.operator === "||")) {
+      const decisive = node.operator === "||";
+      const left = this.truths(node.left);
+      const right = this.truths(node.right);
+      return left.map((truth, row) => {
+        if (truth === decisive || right[row] === decisive) return decisive;
+        return truth === null || right[row] === null ? null : !decisive;
+      });
+    }
+    // What asks whether a number is known has an answer either way.
+    const answers = node.kind === "call";
+    const unknown = answers ? () => false : this.unknownIn(node);
+    return this.run(node, this.table).map((value, row) => {
+      if (unknown(row)) return null;
+      return typeof value === "number" ? value !== 0 && !Number.isNaN(value) : Boolean(value);
+    });
+  }
+
+  /** Whether a number that part of a condition reads is not known in a row. */
+  private unknownIn(node: Node): (row: number) => boolean {
+    const names = namesIn(node);
+    const columns = names.flatMap(({ source, name }) =>
+      source === "d" ? [columnOf(this.measure, name)] : [],
     );
-    if (!unknown.includes(true)) return unknown;
-    const [large, small] = [Number.POSITIVE_INFINITY, Number.NEGATIVE_INFINITY].map((extreme) => {
-      const replaced = columns.map((column) =>
-        column.map((value) => (Number.isNaN(value) ? extreme : value)),
-      );
-      const filled = Object.fromEntries(names.map((name, i) => [name, cleaned(replaced[i]!)]));
-      return this.numbers(condition, this.table.assign(table(filled)));
-    }) as [number[], number[]];
-    return unknown.map((is, row) => is && (isTrue(large[row]!) || isTrue(small[row]!)));
+    const everywhere = names.some(
+      ({ source, name }) =>
+        source === "dataset" && Number.isNaN(this.parameters.get(parameter(source, name))),
+    );
+    return (row) => everywhere || columns.some((column) => Number.isNaN(column[row]));
   }
 }
 
-/** A condition as `numbers` gives it. */
-export function isTrue(value: number): boolean {
-  return value !== 0 && !Number.isNaN(value);
+function namesIn(node: Node): { readonly source: Source; readonly name: string }[] {
+  switch (node.kind) {
+    case "name":
+      return [node];
+    case "unary":
+      return namesIn(node.operand);
+    case "binary":
+      return [node.left, node.right].flatMap(namesIn);
+    case "choice":
+      return [node.test, node.yes, node.no].flatMap(namesIn);
+    case "call":
+      return node.arguments.flatMap(namesIn);
+    default:
+      return [];
+  }
 }
 
 function reference(source: Source, name: string): string {

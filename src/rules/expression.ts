@@ -18,7 +18,7 @@ export type Node =
   | { readonly kind: "text"; readonly value: string }
   | { readonly kind: "boolean"; readonly value: boolean }
   | { readonly kind: "pi" }
-  | { readonly kind: "name"; readonly source: Source; readonly name: string; readonly at: number }
+  | { readonly kind: "name"; readonly source: Source; readonly name: string }
   | { readonly kind: "unary"; readonly operator: string; readonly operand: Node }
   | { readonly kind: "binary"; readonly operator: string; readonly left: Node; readonly right: Node }
   | { readonly kind: "choice"; readonly test: Node; readonly yes: Node; readonly no: Node }
@@ -29,7 +29,14 @@ export interface Expression {
   readonly text: string;
   readonly root: Node;
   /** every name it reads, in the order of the text */
-  readonly names: readonly { readonly source: Source; readonly name: string }[];
+  readonly names: readonly NameRead[];
+}
+
+export interface NameRead {
+  readonly source: Source;
+  readonly name: string;
+  /** character of the text, from 0 */
+  readonly at: number;
 }
 
 /** Functions of arquero that a rule may call: [fewest, most] arguments. None of them aggregates or loops. */
@@ -74,7 +81,7 @@ export function parseExpression(text: string): Expression {
 }
 
 class Parser {
-  readonly names: { source: Source; name: string }[] = [];
+  readonly names: NameRead[] = [];
   private readonly tokens: readonly Token[];
   private at = 0;
   private depth = 0;
@@ -202,8 +209,8 @@ class Parser {
   }
 
   private name(source: Source, name: string, at: number): Node {
-    this.names.push({ source, name });
-    return { kind: "name", source, name, at };
+    this.names.push({ source, name, at });
+    return { kind: "name", source, name };
   }
 
   private call(): Node {

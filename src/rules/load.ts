@@ -3,6 +3,7 @@ import { lstat, readdir, readFile, stat } from "node:fs/promises";
 import { join } from "node:path";
 import { fileURLToPath } from "node:url";
 import { InputError, nearest, type Place } from "../util/errors.ts";
+import { requireKnownNames } from "./catalogue.ts";
 import { FAMILIES } from "./finding.ts";
 import type { Rule, RuleSet } from "./rule.ts";
 import { readRule } from "./schema.ts";
@@ -84,13 +85,16 @@ function switchOff(
 }
 
 /**
- * One rule from the text of its file.
+ * One rule from the text of its file, its measure and columns among those that are known.
  *
  * @param file as the user gave it, for errors
  * @param from what the rule says of its origin
  */
 export function parseRule(text: string, file: string, from: string = file): ReturnType<typeof readRule> {
-  return readRule(new YamlDocument(text, file), from);
+  const document = new YamlDocument(text, file);
+  const read = readRule(document, from);
+  if ("rule" in read) requireKnownNames(read.rule, document);
+  return read;
 }
 
 async function readRuleFile(file: string): Promise<string> {

@@ -8,6 +8,8 @@ import type { Finding } from "./finding.ts";
 
 /** The scope of each row, by the column names that are understood everywhere (see Measure). */
 export function rowScopes(measure: Measure): (row: number) => Selection {
+  const { scopes } = measure;
+  if (scopes !== undefined) return (row) => scopes[row] ?? EVERYTHING;
   const names = new Set(measure.table.columnNames());
   const column = (name: string): ((row: number) => unknown) =>
     names.has(name) ? (row) => measure.table.get(name, row) : () => null;

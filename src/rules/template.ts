@@ -77,7 +77,9 @@ function placeholder(inner: string, at: number): Part {
     throw new ExpressionError(`unknown unit "${unit}" in {${name}}: ${hint}`, at + inner.lastIndexOf(unit));
   }
   try {
-    return { kind: "quantity", expression: parseExpression(withUnit?.[1] ?? inner), unit };
+    const parsed = parseExpression(withUnit?.[1] ?? inner);
+    const names = parsed.names.map((name) => ({ ...name, at: name.at + at }));
+    return { kind: "quantity", expression: { ...parsed, names }, unit };
   } catch (error) {
     if (!(error instanceof ExpressionError)) throw error;
     throw new ExpressionError(`in {${name}}: ${error.message}`, at + error.at);

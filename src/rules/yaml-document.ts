@@ -13,6 +13,8 @@ import {
 } from "yaml";
 import { InputError, type Place } from "../util/errors.ts";
 
+const ADVICE = 'Correct the file; a text with ": " or " #" in it needs quotes';
+
 /** A path into a document: keys and indices. */
 export type Path = readonly (string | number)[];
 
@@ -32,7 +34,7 @@ export class YamlDocument {
     const document = parse(text, this.lines, file);
     const error = document.errors[0] ?? document.warnings[0];
     if (error !== undefined) {
-      throw new InputError(`not YAML: ${error.message}`, this.placeAt(error.pos[0]), "Correct the file");
+      throw new InputError(`not YAML: ${error.message}`, this.placeAt(error.pos[0]), ADVICE);
     }
     this.root = document.contents;
     // Without anchors a document cannot grow when it is read.

@@ -161,10 +161,10 @@ describe("an expression", () => {
   it("names what it reads", () => {
     const { names } = parseExpression("d.a + plan.resolution * dataset.antennas + value");
     expect(names).toEqual([
-      { source: "d", name: "a" },
-      { source: "plan", name: "resolution" },
-      { source: "dataset", name: "antennas" },
-      { source: "value", name: "value" },
+      { source: "d", name: "a", at: 2 },
+      { source: "plan", name: "resolution", at: 11 },
+      { source: "dataset", name: "antennas", at: 32 },
+      { source: "value", name: "value", at: 43 },
     ]);
   });
 

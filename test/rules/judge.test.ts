@@ -201,6 +201,28 @@ describe("judge", () => {
     });
   });
 
+  it.each([
+    ["d.flagged > 0 || d.antenna == 1", 1, 0],
+    ["d.flagged > 0 && d.antenna == 2", 0, 0],
+    ["d.flagged > 0 && d.antenna == 1", 0, 1],
+    ["!(d.flagged > 0)", 0, 1],
+    ["d.flagged == 1 || dataset.rows > 3", 0, 1],
+    ["op.is_nan(d.flagged)", 1, 0],
+  ])("takes a condition on what is unknown as neither met nor missed: %s", (where, found, unknown) => {
+    const one = rule({ where, value: "1", limits: "{ caution: 0, hold: 2 }", consequence: "x" });
+    const dataset = measure("dataset", "dataset", { rows: [Number.NaN] });
+    const given = measure("antenna", "antenna", { antenna: [1], flagged: [Number.NaN] });
+    const { findings, notJudged } = judge(ruleSet(one), measures(dataset, given), PLAN);
+    expect([findings.length, notJudged.length]).toEqual([found, unknown]);
+  });
+
+  it("takes a null for what is not there: it meets no condition", () => {
+    expect(judged([null], { where: "d.flagged > 0", value: "1", consequence: "x" })).toMatchObject({
+      findings: [],
+      notJudged: [],
+    });
+  });
+
   it("takes an event table without rows for an answer: nothing happened", () => {
     const events = measure("event", "event", { kind: [], size: [] });
     const result = judge(

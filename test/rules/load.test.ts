@@ -85,6 +85,19 @@ describe("a rule file", () => {
     expect(lineOf(ruleText({ consequence: text }))).toContain(expected);
   });
 
+  it("has an unknown measure or column named with its place and the right spelling", () => {
+    expect(lineOf(ruleText({ measure: "antena" }))).toBe(
+      'r.yaml, line 5, column 10: there is no measure "antena": did you mean "antenna"?',
+    );
+    expect(lineOf(ruleText({ value: "1 - d.flaged" }))).toBe(
+      'r.yaml, value, line 7, column 15: the measure "antenna" has no column "flaged": did you mean "flagged"?',
+    );
+    expect(lineOf(ruleText({ consequence: "So {dataset.row as count}." }))).toContain(
+      'consequence, line 11, column 27: the measure "dataset" has no column "row": did you mean "rows"?',
+    );
+    expect(lineOf(ruleText({ where: "d.dynamic_range > 1" }))).toContain('has no column "dynamic_range"');
+  });
+
   it.each([
     ["two of one key", "id: a\nid: b\n"],
     ["a tag", "id: !!js/function 'x'\n"],

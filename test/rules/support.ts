@@ -2,8 +2,9 @@
 import { table } from "arquero";
 import type { Plan, PlanValue } from "../../src/imaging/plan.ts";
 import type { Measure, Measures, RowKind } from "../../src/measure/table.ts";
-import { parseRule } from "../../src/rules/load.ts";
 import type { Rule, RuleSet } from "../../src/rules/rule.ts";
+import { readRule } from "../../src/rules/schema.ts";
+import { YamlDocument } from "../../src/rules/yaml-document.ts";
 
 function derived<T>(value: T): PlanValue<T> {
   return { value, origin: "derived", how: "made up" };
@@ -75,8 +76,9 @@ function quoted(key: string, value: string): string {
   return key === "consequence" || key === "where" || key === "value" ? JSON.stringify(value) : value;
 }
 
+/** A rule over made-up measures: its columns are not held against those that are known. */
 export function rule(changes: Readonly<Record<string, string | null>> = {}): Rule {
-  const read = parseRule(ruleText(changes), "made-up.yaml");
+  const read = readRule(new YamlDocument(ruleText(changes), "made-up.yaml"), "made-up.yaml");
   if (!("rule" in read)) throw new Error("switched off");
   return read.rule;
 }
