@@ -99,6 +99,19 @@ export function pointsText(points: number): string {
   return points < 0.95 ? String(Number(points.toPrecision(1))) : String(Math.round(points));
 }
 
+/** Rules that could not be judged, those with one reason together. */
+export function notJudgedTexts(notJudged: Check["before"]["notJudged"]): { rules: string; why: string }[] {
+  const byReason = new Map<string, string[]>();
+  for (const { rule, why } of notJudged) {
+    const reason = why.trim().replace(/\.$/, "");
+    byReason.set(reason, [...(byReason.get(reason) ?? []), rule]);
+  }
+  return [...byReason].map(([why, rules]) => ({
+    rules: `${rules.length === 1 ? "Rule" : "Rules"} ${rules.join(", ")}`,
+    why,
+  }));
+}
+
 /** A clause as a sentence: a capital at its start, a full stop at its end. */
 export function sentence(text: string): string {
   const trimmed = text.trim();

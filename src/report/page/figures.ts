@@ -69,16 +69,10 @@ export function figuresSection(check: Check, words: ScopeWords): Markup {
       "flagged-antenna",
       "Flagged samples by antenna",
       flaggedByAntennaChart(check, cells, words),
-      antennaText(cells, words),
+      antennaText(cells, words) + absentText(check, cells),
       BARS,
     ),
-    figure(
-      "flagged-channel",
-      "Flagged samples by channel",
-      flaggedByChannelChart(check, channels),
-      channelText(check, channels),
-      [["", "flagged", "flagged already, not finite or zero"], BARS[2]!],
-    ),
+    channelFigure(check, channels),
     ...phaseFigures(check, words),
   ];
   return section("plots", "The data in plots", html`<div class="plots">${figures}</div>`);
@@ -122,6 +116,17 @@ function beamFigure(check: Check): Markup | undefined {
     `The response to a point source before deconvolution, ${beamPicture.weighting} weighting, the data as they are. ` +
     `Colours are fractions of the peak; the line is half of it.${lobes}`;
   return figure("beam", "Dirty beam", svg, text, [], ramp);
+}
+
+function channelFigure(check: Check, channels: readonly ChannelShare[]): Markup | undefined {
+  if (channels.length < 2) return undefined;
+  return figure(
+    "flagged-channel",
+    "Flagged samples by channel",
+    flaggedByChannelChart(check, channels),
+    channelText(check, channels),
+    [["", "flagged", "flagged already, not finite or zero"], BARS[2]!],
+  );
 }
 
 /** A channel this many times the median one is worth a word; no source, a matter of reading. */
@@ -192,6 +197,12 @@ function antennaText(cells: Cells, words: ScopeWords): string {
       : "No sample of any antenna is lost already.";
   if (taken.length === 0) return lost;
   return `${lost} Most taken by the suggested flags: ${say(taken.map(({ antenna, suggested: share }) => ({ antenna, share })))}.`;
+}
+
+function absentText(check: Check, cells: Cells): string {
+  const absent = check.dataset.polarizations.filter((_, i) => cells.present[i] === false);
+  if (absent.length === 0) return "";
+  return ` ${absent.join(" and ")} ${absent.length === 1 ? "has" : "have"} no usable sample: absent, and not counted here.`;
 }
 
 function channelText(check: Check, all: readonly ChannelShare[]): string {

@@ -2,7 +2,7 @@
 import { numberTables } from "../numbers.ts";
 import { planTable } from "../plan-table.ts";
 import type { Check } from "../report.ts";
-import { sentence } from "../words.ts";
+import { notJudgedTexts, sentence } from "../words.ts";
 import { html, type Markup } from "./markup.ts";
 import { dataTable, section, stackedTable } from "./parts.ts";
 
@@ -42,9 +42,8 @@ export function blindSection(check: Check): Markup {
   const { notJudged } = check.before;
   const texts = [
     ...check.blindSpots.map((text) => html`<li>${sentence(text)}</li>`),
-    ...notJudged.map(
-      ({ rule, why }) =>
-        html`<li>Rule <span class="code">${rule}</span> could not be judged: ${sentence(why)}</li>`,
+    ...notJudgedTexts(notJudged).map(
+      ({ rules, why }) => html`<li>${rules} could not be judged: ${why}.</li>`,
     ),
   ];
   const content =

@@ -26,6 +26,8 @@ export interface Fate {
 export interface Cells {
   /** (cells) KEPT, SUGGESTED (most of its usable samples) or FLAGGED (none usable) */
   readonly fate: Uint8Array;
+  /** of all polarizations; (polarizations) false where none of its samples is usable: absent, and counted nowhere here */
+  readonly present: readonly boolean[];
   /** by antenna number */
   readonly antennas: ReadonlyMap<number, Fate>;
   /** (subbands x channels) share of all samples of the channel that a suggested flag covers, 0..1 */
@@ -44,7 +46,9 @@ interface Cover {
 export function classifyCells(check: Check): Cells {
   const { survey, dataset, flags } = check;
   const { tracks } = survey;
-  const products = dataset.shape.subbands * dataset.shape.polarizations;
+  const { polarizations } = dataset.shape;
+  const products = dataset.shape.subbands * polarizations;
+  const present = presentPolarizations(check);
   const matcher = compileSelections(dataset, flags);
   const block = blockOf(survey);
   const covers = new Map<string, Cover>();
@@ -67,6 +71,7 @@ export function classifyCells(check: Check): Cells {
     cover.rows += 1;
     let [usable, taken, flagged, bad] = [0, 0, 0, 0];
     for (let product = 0; product < products; product++) {
+      if (!present[product % polarizations]) continue;
       const at = cell * products + product;
       usable += tracks.usable[at]!;
       taken += tracks.usable[at]! * cover.products[product]!;
@@ -83,7 +88,18 @@ export function classifyCells(check: Check): Cells {
       sums.bad += bad;
     }
   }
-  return { fate, antennas, channelCover: channelCoverOf(check, covers) };
+  return { fate, present, antennas, channelCover: channelCoverOf(check, covers) };
+}
+
+/** Products that a file has room for and never fills are absent, not lost; where all are so, none is. */
+function presentPolarizations(check: Check): boolean[] {
+  const { tracks } = check.survey;
+  const { polarizations } = check.dataset.shape;
+  const present = new Array<boolean>(polarizations).fill(false);
+  for (let at = 0; at < tracks.usable.length; at++) {
+    if (tracks.usable[at]! > 0) present[at % polarizations] = true;
+  }
+  return present.includes(true) ? present : present.fill(true);
 }
 
 /** The row columns of the cells as a block, for the matcher. */

@@ -3,6 +3,7 @@ import { barY, gridY, rectY } from "@observablehq/plot";
 import { plainTextWithin } from "../../util/terminal.ts";
 import type { Check } from "../report.ts";
 import type { ScopeWords } from "../scope.ts";
+import { displayWidth } from "../text/width.ts";
 import type { Cells, Fate } from "./cells.ts";
 import { channelAxis, subbandMarks } from "./channel-axis.ts";
 import { COLOUR, drawChart, MARGIN } from "./chart.ts";
@@ -31,17 +32,18 @@ export function flaggedByAntennaChart(check: Check, cells: Cells, words: ScopeWo
   const stacked = bars.flatMap((bar) => stack(bar.number, [bar.flagged, bar.bad, bar.suggested]));
   const every = Math.max(1, Math.ceil(bars.length / 40));
   const upright = bars.length <= 10;
+  const room = 34 + 7 * Math.max(0, ...bars.map((bar) => displayWidth(bar.name)));
   const names = new Map(bars.map((bar) => [bar.number, bar.name]));
   return drawChart({
     id: "flagged-antenna",
     label: `share of samples flagged by antenna, ${bars.length} antennas`,
-    marginBottom: upright ? 44 : 74,
+    marginBottom: upright ? MARGIN.bottom : room,
     x: {
       type: "band",
       domain: bars.map((bar) => bar.number),
       label: "antenna",
       labelArrow: "none",
-      labelOffset: upright ? 40 : 70,
+      labelOffset: (upright ? MARGIN.bottom : room) - 4,
       padding: 0.2,
       ticks: bars.filter((_, i) => i % every === 0).map((bar) => bar.number),
       tickFormat: (number: number) => names.get(number) ?? "",
@@ -157,7 +159,7 @@ export function channelShares(check: Check, cells: Cells): ChannelShare[] {
   const { survey, dataset } = check;
   const { subbands, channels, polarizations } = dataset.shape;
   const { count } = survey.levels;
-  const total = survey.totals.rows * polarizations;
+  const total = survey.totals.rows * cells.present.filter(Boolean).length;
   return Array.from({ length: subbands * channels }, (_, channel) => {
     let usable = 0;
     for (let baseline = 0; baseline < survey.baselines.length; baseline++) {

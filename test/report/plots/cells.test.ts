@@ -63,3 +63,18 @@ describe("someCells", () => {
     expect(someCells(check.survey, 20_000)).toHaveLength(10_920);
   });
 });
+
+describe("products that a file never fills", () => {
+  it("are absent, not lost, and counted nowhere", () => {
+    const { tracks } = check.survey;
+    const usable = Uint32Array.from(tracks.usable, (count, at) => (at % 2 === 1 ? 0 : count));
+    const zero = Uint32Array.from(tracks.usable, (count, at) => (at % 2 === 1 ? count : 0));
+    const half = classifyCells({
+      ...check,
+      survey: { ...check.survey, tracks: { ...tracks, usable, zero } },
+    });
+    expect(half.present).toEqual([true, false]);
+    expect(shares(half.antennas.get(5)!).bad).toBeCloseTo(shares(cells.antennas.get(5)!).bad, 9);
+    expect(count(half.fate, FLAGGED)).toBe(15 * 91);
+  });
+});
