@@ -5,8 +5,7 @@ import type { Selection } from "../dataset/selection.ts";
 import type { DetectedEvent } from "../detect/event.ts";
 import type { Judged } from "../rules/hit.ts";
 import type { RuleSet } from "../rules/rule.ts";
-import { scopeWords } from "../rules/scope.ts";
-import { plainText } from "../util/terminal.ts";
+import { type AntennaLabel, antennaLabels, scopeWords } from "../rules/scope.ts";
 import type { Candidate } from "./candidate.ts";
 import { flagCandidates } from "./candidates.ts";
 import type { FlagCost, FlagEntry } from "./entry.ts";
@@ -51,7 +50,7 @@ export async function suggestFlags(request: FlagRequest): Promise<FlagSuggestion
   const merged = mergeCandidates(flagCandidates(events, judged, rules), times);
   if (merged.length === 0) return { flags: [], doubts: [] };
   const { each, total } = await countOf(dataset, merged);
-  const name = antennaNames(dataset);
+  const label = antennaLabels(dataset.array.antennas);
   const doubts: Doubt[] = [];
   const worthy: Counted[] = [];
   for (const [i, one] of merged.entries()) {
@@ -60,11 +59,11 @@ export async function suggestFlags(request: FlagRequest): Promise<FlagSuggestion
     if (count.unflagged === 0) continue;
     const why = whyNotWorth({ ...one, sensitivityLoss: lossOf(count, total) });
     if (why === null) worthy.push({ ...one, count });
-    else doubts.push({ selection: one.selection, rule: one.rule, reason: reasonOf(one, name), why });
+    else doubts.push({ selection: one.selection, rule: one.rule, reason: reasonOf(one, label), why });
   }
   const ranked = withoutInner(worthy).sort(byRank);
   const flags = (await withoutCovered(dataset, ranked)).map((one, i) =>
-    entryOf(one, total, `F${i + 1}`, name),
+    entryOf(one, total, `F${i + 1}`, label),
   );
   return { flags, doubts };
 }
@@ -93,16 +92,11 @@ function tieKey(one: Candidate): string {
   return `${one.rule} ${keyWithout(one.selection, null)}`;
 }
 
-function entryOf(
-  one: Counted,
-  total: SelectionCount,
-  id: string,
-  name: (antenna: number) => string | undefined,
-): FlagEntry {
+function entryOf(one: Counted, total: SelectionCount, id: string, label: AntennaLabel): FlagEntry {
   return {
     id,
     rule: one.rule,
-    reason: reasonOf(one, name),
+    reason: reasonOf(one, label),
     ...one.selection,
     samples: one.count.unflagged,
     fraction: one.count.unflagged / total.unflagged,
@@ -131,9 +125,9 @@ export function withCosts(
   return flags.map((flag, i) => ({ ...flag, cost: { ...flag.cost, ...costs[i] } }));
 }
 
-/** `Antenna 7 (N07), sub-band 1, channels 40 to 44: what was seen. Instead of flagging, calibrate ...` */
-function reasonOf(one: Candidate, name: (antenna: number) => string | undefined): string {
-  const scope = scopeWords(one.selection, name);
+/** `Antenna N07, sub-band 1, channels 40 to 44: what was seen. Instead of flagging, calibrate ...` */
+function reasonOf(one: Candidate, label: AntennaLabel): string {
+  const scope = scopeWords(one.selection, label);
   const seen = one.reasons.map(withoutStop).join("; ");
   const repair = one.repair === null ? "" : ` Or, instead of flagging: ${withoutStop(one.repair)}.`;
   return `${scope.charAt(0).toUpperCase()}${scope.slice(1)}: ${seen}.${repair}`;
@@ -141,12 +135,4 @@ function reasonOf(one: Candidate, name: (antenna: number) => string | undefined)
 
 function withoutStop(sentence: string): string {
   return sentence.trim().replace(/\.+$/, "");
-}
-
-function antennaNames(dataset: Dataset): (antenna: number) => string | undefined {
-  const names = new Map(dataset.array.antennas.map(({ number, name }) => [number, plainText(name).trim()]));
-  return (antenna) => {
-    const name = names.get(antenna);
-    return name === undefined || name === "" ? undefined : name;
-  };
 }

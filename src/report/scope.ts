@@ -1,6 +1,7 @@
 /** Selections in the user's terms: antennas by name, times in UTC. The names are hostile and escaped by the writers. */
 import type { Dataset } from "../dataset/dataset.ts";
 import type { Selection } from "../dataset/selection.ts";
+import { antennaLabels } from "../rules/scope.ts";
 import { isoFromMjd } from "../util/dates.ts";
 import { plainText } from "../util/terminal.ts";
 import { formatNumber } from "../util/units.ts";
@@ -27,13 +28,12 @@ const MOST_NAMES = 8;
  * @param times integration centres, MJD ascending: a date is only said where there are several
  */
 export function scopeWords(dataset: Pick<Dataset, "array" | "fields">, times: ArrayLike<number>): ScopeWords {
-  const names = antennaNames(dataset);
+  const antenna = antennaLabels(dataset.array.antennas);
   const fieldNames = new Map(dataset.fields.map((field) => [field.id, plainText(field.name).trim()]));
   const first = times.length > 0 ? times[0]! : Number.NaN;
   const last = times.length > 0 ? times[times.length - 1]! : Number.NaN;
   const severalDays = Math.floor(first) !== Math.floor(last);
 
-  const antenna = (number: number) => names.get(number) ?? `antenna ${number}`;
   const baseline = (a: number, b: number) => `${antenna(a)}-${antenna(b)}`;
   const time = (mjd: number) => {
     const text = isoFromMjd(mjd);
@@ -91,20 +91,4 @@ function joined(names: readonly string[], most: number): string {
   const rest = names.length - shown.length;
   if (rest > 0) return `${shown.join(", ")} and ${formatNumber(rest, 9)} more`;
   return shown.length < 2 ? shown.join("") : `${shown.slice(0, -1).join(", ")} and ${shown.at(-1)}`;
-}
-
-/** By number: the name where it is one antenna's own, else with the number. */
-function antennaNames(dataset: Pick<Dataset, "array">): Map<number, string> {
-  const uses = new Map<string, number>();
-  for (const { name } of dataset.array.antennas) {
-    const plain = plainText(name).trim();
-    uses.set(plain, (uses.get(plain) ?? 0) + 1);
-  }
-  return new Map(
-    dataset.array.antennas.map(({ number, name }) => {
-      const plain = plainText(name).trim();
-      if (plain === "") return [number, String(number)];
-      return [number, uses.get(plain) === 1 ? plain : `${plain} (${number})`];
-    }),
-  );
 }

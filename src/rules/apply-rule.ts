@@ -5,7 +5,7 @@ import type { Measure, Measures } from "../measure/table.ts";
 import { NotJudgeable, RuleColumns } from "./evaluate.ts";
 import type { Hit } from "./hit.ts";
 import type { Rule } from "./rule.ts";
-import { rowScopes, scopeWords } from "./scope.ts";
+import { measuredLabels, rowScopes, scopeWords } from "./scope.ts";
 import { severityOf } from "./severity.ts";
 import { templateExpressions } from "./template.ts";
 
@@ -55,6 +55,7 @@ function applyTo(rule: Rule, measure: Measure, measures: Measures, plan: Plan): 
   const holds = columns.numbers(hold);
   const wanted = rule.where === null ? null : columns.condition(rule.where);
   const scopeOf = rowScopes(measure);
+  const label = measuredLabels(measures);
   const hits: Hit[] = [];
   const unjudged: number[] = [];
   let judged = 0;
@@ -84,7 +85,9 @@ function applyTo(rule: Rule, measure: Measure, measures: Measures, plan: Plan): 
     fillings: hits.map((hit) => filled.map((column) => column[hit.row])),
     judged,
     notJudged:
-      unjudged.length === 0 ? null : whyNot(unjudged, columns.rows, scopeOf, values, cautions, holds),
+      unjudged.length === 0
+        ? null
+        : whyNot(unjudged, columns.rows, (row) => scopeWords(scopeOf(row), label), values, cautions, holds),
     unjudged: unjudged.map(scopeOf),
   };
 }
@@ -92,7 +95,7 @@ function applyTo(rule: Rule, measure: Measure, measures: Measures, plan: Plan): 
 function whyNot(
   rows: readonly number[],
   of: number,
-  scopeOf: (row: number) => Selection,
+  words: (row: number) => string,
   values: readonly number[],
   cautions: readonly number[],
   holds: readonly number[],
@@ -106,7 +109,7 @@ function whyNot(
         : "its value is not known"
       : "its limits are not known";
   if (of === 1) return lacks;
-  const named = rows.slice(0, MOST_NAMED).map((row) => scopeWords(scopeOf(row)));
+  const named = rows.slice(0, MOST_NAMED).map(words);
   const more = rows.length > MOST_NAMED ? ` and ${rows.length - MOST_NAMED} more` : "";
   return `${lacks} for ${rows.length} of ${of} rows: ${named.join("; ")}${more}`;
 }

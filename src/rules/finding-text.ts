@@ -8,7 +8,7 @@ import type { FilledHit, Hit } from "./hit.ts";
 import { isPlanKey, type PlanKeyName, planWords } from "./plan-values.ts";
 import { formatQuantity } from "./quantity.ts";
 import type { Rule } from "./rule.ts";
-import { findingScope, scopeWords, unionScope } from "./scope.ts";
+import { type AntennaLabel, findingScope, measuredLabels, scopeWords, unionScope } from "./scope.ts";
 import { verdictOf } from "./severity.ts";
 import { fillTemplate, templateExpressions } from "./template.ts";
 
@@ -29,13 +29,14 @@ export function findingOf(
   const ordered = [...hits].sort(bySeverity);
   const { hit, values } = ordered[0]!;
   const scope = unionScope(hits.map((one) => one.hit.scope));
+  const label = measuredLabels(measures);
   const show = (value: number) => formatQuantity(value, rule.unit);
   const consequence = fillTemplate(rule.consequence, {
     bare: {
       value: show(hit.value),
       caution: show(hit.caution),
       hold: show(hit.hold),
-      scope: scopeWords(scope),
+      scope: scopeWords(scope, label),
       count: String(hits.length),
     },
     value: hit.value,
@@ -54,7 +55,7 @@ export function findingOf(
     limits: { caution: hit.caution, hold: hit.hold, unit: rule.unit, from: limitsFrom(rule, plan) },
     mendedByFlags: false,
     consequence,
-    evidence: evidenceOf(rule, ordered, judged, show),
+    evidence: evidenceOf(rule, ordered, judged, show, label),
     suggests: rule.suggests,
     flags: [],
   };
@@ -93,6 +94,7 @@ function evidenceOf(
   ordered: readonly FilledHit[],
   judged: number,
   show: (value: number) => string,
+  label: AntennaLabel,
 ): string[] {
   const { hit } = ordered[0]!;
   const what = meaningOf(rule, hit.measure);
@@ -104,12 +106,12 @@ function evidenceOf(
   };
   const sentences: string[] = [];
   if (ordered.length === 1) {
-    const whom = rowWords(hit);
+    const whom = rowWords(hit, label);
     sentences.push(`${what}: ${show(hit.value)}${whom === null ? "" : ` for ${whom}`} (${limits}).`);
   } else {
     const named = ordered
       .slice(0, MOST_NAMED)
-      .map((one) => `${rowWords(one.hit) ?? `row ${one.hit.row + 1}`} (${show(one.hit.value)})`);
+      .map((one) => `${rowWords(one.hit, label) ?? `row ${one.hit.row + 1}`} (${show(one.hit.value)})`);
     const more = ordered.length > MOST_NAMED ? `, and ${ordered.length - MOST_NAMED} more` : "";
     sentences.push(`${ordered.length} of ${judged} are past the caution limit (${limits}).`);
     sentences.push(`${what}, worst first: ${named.join("; ")}${more}.`);
@@ -122,8 +124,8 @@ function evidenceOf(
 }
 
 /** Whom a row is about; null when it is the dataset as a whole. */
-function rowWords({ measure, row, scope }: Hit): string | null {
-  if (Object.values(scope).some((part) => part !== null)) return scopeWords(scope);
+function rowWords({ measure, row, scope }: Hit, label: AntennaLabel): string | null {
+  if (Object.values(scope).some((part) => part !== null)) return scopeWords(scope, label);
   const names = measure.table.columnNames();
   if (measure.each === "gap" && names.includes("from_wavelengths") && names.includes("to_wavelengths")) {
     const at = (name: string) => formatNumber(Number(measure.table.get(name, row)));

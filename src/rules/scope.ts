@@ -2,8 +2,9 @@
 import type { Polarization } from "../dataset/dataset.ts";
 import { POLARIZATIONS } from "../dataset/dataset.ts";
 import { EVERYTHING, type Selection } from "../dataset/selection.ts";
-import type { Measure } from "../measure/table.ts";
+import type { Measure, Measures } from "../measure/table.ts";
 import { isoFromMjd } from "../util/dates.ts";
+import { plainText } from "../util/terminal.ts";
 import type { Finding } from "./finding.ts";
 
 /** The scope of each row, by the column names that are understood everywhere (see Measure). */
@@ -152,29 +153,46 @@ export function findingScope(scope: Selection): Finding["scope"] {
 /** Most members that a list in a sentence names one by one. */
 const MOST_NAMED = 6;
 
+/** How an antenna is called: by number without a label. */
+export type AntennaLabel = (antenna: number) => string;
+
 /**
- * A selection in words: `antenna 7 (N07), sub-band 1, channels 40 to 44, 02:14:00 to 02:31:00`.
- *
- * @param nameOf an antenna's name, hostile text; undefined where it has none worth saying
+ * An antenna's name where it is the only one of that name, else with its number; the number where it has none. Names are
+ * a file's: stripped of what cannot be seen.
  */
-export function scopeWords(
-  scope: Selection,
-  nameOf: (antenna: number) => string | undefined = () => undefined,
-): string {
-  const antenna = (number: number): string => {
-    const name = nameOf(number);
-    return name === undefined || name === String(number) ? `${number}` : `${number} (${name})`;
-  };
+export function antennaLabels(
+  antennas: Iterable<{ readonly number: number; readonly name: string | null }>,
+): AntennaLabel {
+  const plain = [...antennas].map(({ number, name }) => ({ number, name: plainText(name ?? "").trim() }));
+  const uses = new Map<string, number>();
+  for (const { name } of plain) uses.set(name, (uses.get(name) ?? 0) + 1);
+  const labels = new Map(
+    plain
+      .filter(({ name }) => name !== "")
+      .map(({ number, name }) => [number, uses.get(name) === 1 ? name : `${name} (${number})`]),
+  );
+  return (antenna) => labels.get(antenna) ?? String(antenna);
+}
+
+/** The labels of the antennas that the measure "antenna" names. */
+export function measuredLabels(measures: Measures): AntennaLabel {
+  const antennas = measures.get("antenna");
+  const names = new Set(antennas?.table.columnNames());
+  if (antennas === undefined || !names.has("antenna") || !names.has("name")) return String;
+  const rows = Array.from({ length: antennas.table.numRows() }, (_, row) => ({
+    number: Number(antennas.table.get("antenna", row)),
+    name: antennas.table.get("name", row) as string | null,
+  }));
+  return antennaLabels(rows);
+}
+
+/** A selection in words: `antenna N07, sub-band 1, channels 40 to 44, 2024-06-15 02:14:00 to 02:31:00 UTC`. */
+export function scopeWords(scope: Selection, label: AntennaLabel = String): string {
   const parts: string[] = [];
-  if (scope.antennas !== null) parts.push(listed("antenna", "antennas", scope.antennas.map(antenna)));
+  if (scope.antennas !== null) parts.push(listed("antenna", "antennas", scope.antennas.map(label)));
   if (scope.baselines !== null) {
-    parts.push(
-      listed(
-        "baseline",
-        "baselines",
-        scope.baselines.map(([a, b]) => `${a}-${b}`),
-      ),
-    );
+    const names = scope.baselines.map(([a, b]) => `${label(a)}-${label(b)}`);
+    parts.push(listed("baseline", "baselines", names));
   }
   if (scope.subbands !== null) parts.push(listed("sub-band", "sub-bands", scope.subbands.map(String)));
   if (scope.channels !== null) {
@@ -192,6 +210,7 @@ function channelWords([low, high]: readonly [number, number]): string {
 }
 
 function listed(one: string, many: string, members: readonly string[]): string {
+  if (members.length === 0) return `no ${one}`;
   if (members.length === 1) return `${one} ${members[0]}`;
   if (members.length > MOST_NAMED) {
     const named = members.slice(0, MOST_NAMED - 1).join(", ");
@@ -204,7 +223,7 @@ function listed(one: string, many: string, members: readonly string[]): string {
 export function timeWords([start, end]: readonly [number, number]): string {
   const from = isoFromMjd(start);
   const to = isoFromMjd(end);
-  if (from === to) return `at ${from.replace("T", " ")}`;
+  if (from === to) return `at ${from.replace("T", " ")} UTC`;
   const sameDay = from.slice(0, 10) === to.slice(0, 10);
-  return `${from.replace("T", " ")} to ${sameDay ? to.slice(11) : to.replace("T", " ")}`;
+  return `${from.replace("T", " ")} to ${sameDay ? to.slice(11) : to.replace("T", " ")} UTC`;
 }

@@ -77,7 +77,7 @@ describe("suggestFlags", () => {
     expect(flags[0]!.fraction).toBeCloseTo(1 / 3, 12);
     expect(flags[0]!.cost.sensitivityLossFraction).toBeCloseTo(1 - Math.sqrt(2 / 3), 12);
     expect(flags[0]!.cost.beamMajorChangeFraction).toBeNaN();
-    expect(flags[0]!.reason).toBe("Antenna 1 (N1), sub-band 0: 12 sigma above the level.");
+    expect(flags[0]!.reason).toBe("Antenna N1, sub-band 0: 12 sigma above the level.");
   });
 
   it("offers the repair beside the flag", async () => {
