@@ -104,7 +104,8 @@ export interface Dataset {
   readonly rows: number;
   readonly notes: readonly Note[];
   /**
-   * Rows in file order. The yielded block and its arrays are reused: valid until the next is asked for.
+   * Rows in file order. The yielded block and its arrays are buffers of this call: the caller may overwrite them, and
+   * they are valid until the next block is asked for.
    * @throws InputError at the byte or group where the file is malformed
    */
   blocks(request: BlockRequest): AsyncIterable<SampleBlock>;
