@@ -95,11 +95,16 @@ function niceCell(radians: number): number {
 
 /** Smallest even product of 2, 3 and 5 that is at least `pixels`. */
 export function smoothSize(pixels: number): number {
-  for (let size = Math.max(2, pixels + (pixels % 2)); ; size += 2) {
-    let rest = size;
-    for (const prime of [2, 3, 5]) while (rest % prime === 0) rest /= prime;
-    if (rest === 1) return size;
+  let best = Number.POSITIVE_INFINITY;
+  for (let fives = 1; fives < best; fives *= 5) {
+    for (let threes = fives; threes < best; threes *= 3) {
+      const twos = Math.max(1, Math.ceil(Math.log2(pixels / threes) - 1e-12));
+      const size = threes * 2 ** twos;
+      if (size >= pixels && size < best) best = size;
+    }
+    if (fives > pixels) break;
   }
+  return best;
 }
 
 function weightingAdvice({ plan, weightings, calibrated }: AdviceInput): Advice[] {

@@ -20,6 +20,8 @@ export const LARGEST_SCALE_FACTOR = 0.6;
 const FIELD_IN_BEAMS = 100;
 /** What imaging of ordinary data reaches: common practice, no source. Above it, the user should say so. */
 const MOST_DYNAMIC_RANGE = 10_000;
+/** Weightings other than natural have more noise: what is planned of the thermal limit. Common practice, no source. */
+const THERMAL_SHARE = 0.5;
 /** Where the noise or the source is unknown, or the data are faint: common practice, no source. */
 const LEAST_DYNAMIC_RANGE = 100;
 
@@ -161,17 +163,17 @@ function dynamicRangeOf(request: PlanRequest, sampling: Sampling): PlanValue<num
   if (request.dynamicRange !== undefined) return given(request.dynamicRange);
   const peak = brightness(sampling);
   const noise = naturalNoise(sampling);
-  const reach = peak / noise;
+  const reach = THERMAL_SHARE * (peak / noise);
   if (!(reach > LEAST_DYNAMIC_RANGE)) {
     const why = Number.isFinite(reach)
-      ? `the source over the thermal noise gives ${formatNumber(reach)}`
+      ? `half of the source over the thermal noise is ${formatNumber(reach)}`
       : "the thermal limit is unknown";
     return preset(LEAST_DYNAMIC_RANGE, `${LEAST_DYNAMIC_RANGE}, since ${why}`);
   }
   const calibrated = sampling.survey.dataset.unit === "Jy";
   const ratio = calibrated
-    ? `${formatFlux(peak)} over the thermal noise, ${formatFlux(noise)}`
-    : "amplitude over thermal noise";
+    ? `half of ${formatFlux(peak)} over the thermal noise, ${formatFlux(noise)}`
+    : "half of the amplitude over the thermal noise";
   if (reach > MOST_DYNAMIC_RANGE) {
     return preset(
       MOST_DYNAMIC_RANGE,

