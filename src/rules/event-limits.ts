@@ -32,6 +32,7 @@ export function withEventLimits(measures: Measures): Measures {
   const events = measures.get(EVENT);
   const limits = measures.get(LIMIT);
   if (events === undefined || limits === undefined) return measures;
+  if (events.table.columnNames().includes("dynamic_range_ratio")) return measures;
   const ratios = new Array<number>(events.table.numRows()).fill(Number.NaN);
   const ranges = [...ratios];
   for (let row = 0; row < limits.table.numRows(); row++) {

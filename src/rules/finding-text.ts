@@ -107,7 +107,7 @@ function evidenceOf(
   const sentences: string[] = [];
   if (ordered.length === 1) {
     const whom = rowWords(hit, label);
-    sentences.push(`${what}: ${show(hit.value)}${whom === null ? "" : ` for ${whom}`} (${limits}).`);
+    sentences.push(`${what}: ${show(hit.value)}${whom === null ? "" : ` for ${whom}`}.`);
   } else {
     const named = ordered
       .slice(0, MOST_NAMED)
