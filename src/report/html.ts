@@ -36,7 +36,7 @@ const CONTENTS: readonly (readonly [string, string])[] = [
 ];
 
 export function writeHtml(check: Check): string {
-  const words = scopeWords(check.dataset, check.survey.times);
+  const words = scopeWords(check.dataset);
   const { name, version } = tool();
   const page = html`<!doctype html>
 <html lang="en">

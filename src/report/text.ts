@@ -20,7 +20,7 @@ export interface TextOptions {
 /** The whole report, lines of at most `width` columns, ending in a line end. */
 export function writeText(check: Check, options: TextOptions): string {
   const paper = new Paper(options);
-  const words = scopeWords(check.dataset, check.survey.times);
+  const words = scopeWords(check.dataset);
   verdictSection(paper, check);
   limitsSection(paper, check);
   findingsSection(paper, check, words);

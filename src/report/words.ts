@@ -50,14 +50,17 @@ export function toDo(finding: Finding): string {
   const named =
     flags.length <= 6 ? flags.join(", ") : `${flags.slice(0, 5).join(", ")} and ${flags.length - 5} more`;
   const word = flags.length === 1 ? "flag" : "flags";
-  if (suggests === "flag") {
-    const mended = finding.mendedByFlags
-      ? " As the data are it is past its hold limit; with the suggested flags it is not."
-      : "";
-    return `Accept suggested ${word} ${named}.${mended}`;
-  }
-  if (suggests === "none") return `Suggested ${word} ${named} would remove it.`;
-  return `${TO_DO[suggests]} Until then, suggested ${word} ${named} would remove it.`;
+  const mended = finding.mendedByFlags ? ` ${mendedText(finding)}` : "";
+  if (suggests === "flag") return `Accept suggested ${word} ${named}.${mended}`;
+  const first = suggests === "none" ? "" : `${TO_DO[suggests]} Until then, `;
+  return upperFirst(`${first}suggested ${word} ${named} would remove it.${mended}`);
+}
+
+/** A finding that flags mend is shown as a caution, though its value may stand far beyond the hold limit. */
+function mendedText({ severity }: Finding): string {
+  return severity >= 1
+    ? "As the data are it is past its hold limit; with the suggested flags it is not."
+    : "With the suggested flags it is within its limits.";
 }
 
 /** `42.1 deg`, and the limits it is held against: `caution above 10 deg, hold above 30 deg`. */

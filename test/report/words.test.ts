@@ -14,6 +14,9 @@ const [wPhase, jump, interference, silent, gap] = fixtureFindings() as [
 describe("toDo", () => {
   it("names the flags to accept, and says when they bring a hold back", () => {
     expect(toDo(interference)).toBe(
+      "Accept suggested flag F2. With the suggested flags it is within its limits.",
+    );
+    expect(toDo({ ...interference, severity: 1 })).toBe(
       "Accept suggested flag F2. As the data are it is past its hold limit; with the suggested flags it is not.",
     );
     expect(toDo({ ...interference, flags: ["F2", "F4"], mendedByFlags: false })).toBe(
@@ -22,7 +25,7 @@ describe("toDo", () => {
   });
 
   it("prefers a repair to a flag where there is one", () => {
-    expect(toDo(jump)).toMatch(/^Calibrate it out.*suggested flag F1 would remove it\.$/);
+    expect(toDo(jump)).toMatch(/^Calibrate it out.*suggested flag F1 would remove it\. As the data are/);
   });
 
   it("does not speak of flags where none helps", () => {

@@ -61,7 +61,7 @@ function gauge(finding: Finding): Markup {
 function withinList(findings: readonly Finding[], words: ScopeWords): Markup {
   const list = html`<ul class="within ready">${findings.map((finding) => {
     const { measured, limits } = limitsText(finding);
-    const where = Object.keys(finding.scope).length === 0 ? "" : ` (${words.scope(finding.scope, 3)})`;
+    const where = Object.keys(finding.scope).length === 0 ? "" : ` (${words.scope(finding.scope)})`;
     return html`<li>${finding.title}${where}: <strong>${measured}</strong> <span class="muted">${limits}</span></li>\n`;
   })}</ul>`;
   if (findings.length <= MOST_WITHIN)

@@ -31,7 +31,7 @@ function doubtList(check: Check, words: ScopeWords): Piece {
   return html`<div><h3 class="small">In doubt: for a person to look at, no flag is suggested</h3>
 <ul class="plain">${check.doubts.map(
     ({ selection, rule, reason, why }) =>
-      html`<li><strong>${upperFirst(words.scope(selection))}</strong>: ${sentence(reason)} ${sentence(why)} <span class="muted small">Rule <span class="code">${rule}</span></span></li>\n`,
+      html`<li><strong>${upperFirst(words.scope(selection))}</strong>: ${sentence(words.reason(reason, selection))} ${sentence(why)} <span class="muted small">Rule <span class="code">${rule}</span></span></li>\n`,
   )}</ul></div>`;
 }
 
@@ -57,7 +57,7 @@ function cellsOf(flag: FlagEntry, words: ScopeWords): Piece[] {
   const [major, minor] = [cost.beamMajorChangeFraction, cost.beamMinorChangeFraction].map(formatChange);
   return [
     html`<span class="flag-id">${flag.id}</span>`,
-    html`<strong>${upperFirst(words.scope(flag))}</strong><br>${sentence(upperFirst(flag.reason))}
+    html`<strong>${upperFirst(words.scope(flag))}</strong><br>${sentence(words.reason(flag.reason, flag))}
 <span class="muted small">${formatCount(flag.samples)} samples, rule <span class="code">${flag.rule}</span></span>`,
     formatPercent(flag.fraction),
     formatPercent(flag.confidence),

@@ -19,7 +19,7 @@ export function findingsSection(paper: Paper, check: Check, words: ScopeWords): 
   paper.prose("Within their limits:", 2, paper.ink.strong);
   for (const finding of within) {
     const { measured, limits } = limitsText(finding);
-    const where = Object.keys(finding.scope).length === 0 ? "" : ` (${words.scope(finding.scope, 3)})`;
+    const where = Object.keys(finding.scope).length === 0 ? "" : ` (${words.scope(finding.scope)})`;
     paper.bullet(`${finding.title}${where}: ${measured}; ${limits}.`);
   }
 }

@@ -16,7 +16,9 @@ export function flagsSection(paper: Paper, check: Check, words: ScopeWords): voi
   paper.gap();
   paper.prose("In doubt, so for a person to look at; no flag is suggested:", 2, paper.ink.strong);
   for (const { selection, reason, why } of check.doubts) {
-    paper.bullet(`${upperFirst(words.scope(selection))}: ${sentence(reason)} ${sentence(why)}`);
+    paper.bullet(
+      `${upperFirst(words.scope(selection))}: ${sentence(words.reason(reason, selection))} ${sentence(why)}`,
+    );
   }
 }
 
@@ -45,7 +47,7 @@ function flagTable(paper: Paper, check: Check, words: ScopeWords): void {
       formatChange(flag.cost.beamMajorChangeFraction),
       formatChange(flag.cost.peakSidelobeChangeFraction),
       formatPercent(flag.confidence),
-      `${flag.reason} (${formatCount(flag.samples)} samples)`,
+      `${words.reason(flag.reason, flag)} (${formatCount(flag.samples)} samples)`,
     ]),
   );
   paper.prose(

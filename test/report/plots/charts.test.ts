@@ -12,7 +12,7 @@ import { cleanCheck, faultyCheck, fixtureBeam } from "../fixtures.ts";
 
 const check = faultyCheck();
 const cells = classifyCells(check);
-const words = scopeWords(check.dataset, check.survey.times);
+const words = scopeWords(check.dataset);
 
 /** The faulty check with the cells of its first baselines only. */
 function firstBaselines(count: number): Check {
