@@ -219,7 +219,8 @@ footer { margin-top: 3rem; padding-top: 1.25rem; border-top: 1px solid var(--rul
   .verdict-grid { grid-template-columns: 1.15fr 1fr; }
   tr, .limits li { break-inside: avoid; }
   th, td { padding: 0.2rem 0.5rem; }
-  thead, tbody tr:first-child { break-after: avoid; }
+  thead { display: table-row-group; }
+  thead tr { break-after: avoid; }
   .tables { columns: 2; }
   .finding-grid { grid-template-columns: minmax(0, 1fr) 12rem; gap: 0.5rem 1.5rem; }
   .verdict, .finding { padding: 0.8rem 1rem; }
