@@ -1,6 +1,6 @@
 /** From rows past a rule's limits to a finding in words. */
 import type { Plan } from "../imaging/plan.ts";
-import type { Measure, Measures } from "../measure/table.ts";
+import type { Column, Measure, Measures } from "../measure/table.ts";
 import { formatNumber } from "../util/units.ts";
 import type { Expression } from "./expression.ts";
 import type { Finding } from "./finding.ts";
@@ -89,6 +89,7 @@ function limitsFrom(rule: Rule, plan: Plan): string {
   return [...[...keys].map((key) => planWords(plan, key)), rule.sources[0]!].join("; ");
 }
 
+/** What the measure says itself where it has words; and of several rows, which and how far. */
 function evidenceOf(
   rule: Rule,
   ordered: readonly FilledHit[],
@@ -97,30 +98,31 @@ function evidenceOf(
   label: AntennaLabel,
 ): string[] {
   const { hit } = ordered[0]!;
+  const told = ordered.slice(0, MOST_NAMED).flatMap((one) => toldBy(one.hit));
   const what = meaningOf(rule, hit.measure);
-  const limits = `caution from ${show(hit.caution)}, hold from ${show(hit.hold)}`;
-  const told = (one: FilledHit): string | null => {
-    if (!hit.measure.table.columnNames().includes("evidence")) return null;
-    const text: unknown = hit.measure.table.get("evidence", one.hit.row);
-    return typeof text === "string" && text !== "" ? text : null;
-  };
-  const sentences: string[] = [];
   if (ordered.length === 1) {
     const whom = rowWords(hit, label);
-    sentences.push(`${what}: ${show(hit.value)}${whom === null ? "" : ` for ${whom}`}.`);
-  } else {
-    const named = ordered
-      .slice(0, MOST_NAMED)
-      .map((one) => `${rowWords(one.hit, label) ?? `row ${one.hit.row + 1}`} (${show(one.hit.value)})`);
-    const more = ordered.length > MOST_NAMED ? `, and ${ordered.length - MOST_NAMED} more` : "";
-    sentences.push(`${ordered.length} of ${judged} are past the caution limit (${limits}).`);
-    sentences.push(`${what}, worst first: ${named.join("; ")}${more}.`);
+    return told.length > 0 ? told : [`${what}: ${show(hit.value)}${whom === null ? "" : ` for ${whom}`}.`];
   }
-  for (const one of ordered.slice(0, MOST_NAMED)) {
-    const text = told(one);
-    if (text !== null) sentences.push(text);
-  }
-  return sentences;
+  const column = columnOf(rule, hit.measure);
+  // Yes is no quantity.
+  const plain = column !== undefined && isYesOrNo(column);
+  const named = ordered.slice(0, MOST_NAMED).map((one) => {
+    const words = rowWords(one.hit, label) ?? `row ${one.hit.row + 1}`;
+    return plain ? words : `${words} (${show(one.hit.value)})`;
+  });
+  const more = ordered.length > MOST_NAMED ? `, and ${ordered.length - MOST_NAMED} more` : "";
+  return [
+    `${ordered.length} of ${judged} are past the caution limit.`,
+    `${what}, worst first: ${named.join("; ")}${more}.`,
+    ...told,
+  ];
+}
+
+function toldBy({ measure, row }: Hit): string[] {
+  if (!measure.table.columnNames().includes("evidence")) return [];
+  const text: unknown = measure.table.get("evidence", row);
+  return typeof text === "string" && text !== "" ? [text] : [];
 }
 
 /** Whom a row is about; null when it is the dataset as a whole. */
@@ -134,10 +136,20 @@ function rowWords({ measure, row, scope }: Hit, label: AntennaLabel): string | n
   return null;
 }
 
-/** What the value is: the meaning of its column, or the rule's title where it is computed. */
+/** What the value is: the meaning of its column, or the rule's title where it is computed or the column says little. */
 function meaningOf(rule: Rule, measure: Measure): string {
-  const { root } = rule.value;
-  const column = root.kind === "name" ? measure.columns.find(({ name }) => name === root.name) : undefined;
-  const words = column?.meaning ?? rule.title;
-  return words.charAt(0).toUpperCase() + words.slice(1);
+  const column = columnOf(rule, measure);
+  const says = column !== undefined && !isYesOrNo(column) && !/^(?:of|the same)\b/.test(column.meaning);
+  const words = says ? column.meaning : rule.title;
+  // A letter that is a symbol, as in "u, v, w", stays as it is.
+  return /^[a-z]{2}/.test(words) ? words.charAt(0).toUpperCase() + words.slice(1) : words;
+}
+
+/** The column that a rule's value is, alone. */
+function columnOf({ value: { root } }: Rule, measure: Measure): Column | undefined {
+  return root.kind === "name" ? measure.columns.find(({ name }) => name === root.name) : undefined;
+}
+
+function isYesOrNo({ meaning }: Column): boolean {
+  return meaning.startsWith("1 when");
 }
