@@ -77,7 +77,14 @@ export function antennaPhases(phasors: BaselinePhasors, antennas: number): Anten
   return phasesOf(phasors, antennas, ur, ui, gr, gi, { sumR, sumI, total });
 }
 
-function residual(b: number, p: BaselinePhasors, ur: Float64Array, ui: Float64Array, gr: Float64Array, gi: Float64Array) {
+function residual(
+  b: number,
+  p: BaselinePhasors,
+  ur: Float64Array,
+  ui: Float64Array,
+  gr: Float64Array,
+  gi: Float64Array,
+) {
   const [i, j] = [p.first[b]!, p.second[b]!];
   // X g_i* g_j
   const mr = gr[i]! * gr[j]! + gi[i]! * gi[j]!;

@@ -3,8 +3,8 @@
  * detectors of antenna faults work on.
  */
 import type { Polarization } from "../../dataset/dataset.ts";
-import { parallelProducts } from "../../measure/tables/products.ts";
 import type { Survey } from "../../measure/survey-result.ts";
+import { parallelProducts } from "../../measure/tables/products.ts";
 import { SECONDS_PER_DAY } from "../../util/dates.ts";
 import { median } from "../../util/statistics.ts";
 
@@ -77,7 +77,10 @@ export function gridOf(survey: Survey): Grid {
 }
 
 function timesOf({ tracks }: Survey): Float64Array {
-  const sorted = tracks.time.slice().filter((time) => !Number.isNaN(time)).sort();
+  const sorted = tracks.time
+    .slice()
+    .filter((time) => !Number.isNaN(time))
+    .sort();
   const times: number[] = [];
   for (const time of sorted) {
     if (times.length === 0 || time - times[times.length - 1]! > SAME_TIME) times.push(time);
@@ -186,8 +189,7 @@ export function sampleSigma(
   const { subbands, channels, polarizations } = dataset.shape;
   const values: number[] = [];
   for (let c = 0; c < channels; c++) {
-    const value =
-      levels.sigma[((baseline * subbands + subband) * channels + c) * polarizations + product]!;
+    const value = levels.sigma[((baseline * subbands + subband) * channels + c) * polarizations + product]!;
     if (value > 0) values.push(value);
   }
   return median(values);

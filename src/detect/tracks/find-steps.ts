@@ -1,0 +1,187 @@
+/** The steps of antenna phases that are out of family, one by one, the most significant first. */
+
+import { wrap } from "./antenna-phases.ts";
+import type { Grid } from "./grid.ts";
+import {
+  fillSteps,
+  type Series,
+  type Steps,
+  significanceOf,
+  solveStep,
+  stepsOf,
+  WINDOWS,
+} from "./step-search.ts";
+
+export interface FoundStep {
+  /** index into Grid.antennas */
+  readonly antenna: number;
+  /** first integration after the step */
+  readonly at: number;
+  /** radians, after minus before */
+  readonly phase: number;
+  readonly error: number;
+  readonly significance: number;
+  /** indices into the series that step */
+  readonly series: readonly number[];
+}
+
+export interface StepSettings {
+  /** sigmas a step must be out of family */
+  readonly threshold: number;
+  /** radians that are worth telling */
+  readonly least: number;
+  readonly skip: ReadonlySet<number>;
+}
+
+const MOST_STEPS = 24;
+/** The step must be shared by this much of the weight of the antenna's baselines. */
+const LEAST_AGREEMENT = 0.6;
+
+interface Group {
+  readonly members: readonly number[];
+  readonly windows: readonly Steps[];
+}
+
+/** @param series are turned back at the steps found */
+export function findSteps(grid: Grid, series: readonly Series[], settings: StepSettings): FoundStep[] {
+  const longest = Math.max(0, ...grid.segments.map(({ start, end }) => (end - start) / 2));
+  const windows = WINDOWS.filter((window) => window <= longest);
+  const groups: Group[] = groupsOf(series).map((members) => ({
+    members,
+    windows: windows.map((window) =>
+      stepsOf(
+        grid,
+        members.map((i) => series[i]!),
+        window,
+      ),
+    ),
+  }));
+  const found: FoundStep[] = [];
+  while (found.length < MOST_STEPS) {
+    const best = strongest(grid, groups, settings);
+    if (best === null) break;
+    const step = settle(grid, series, groups, best);
+    found.push(step);
+    turnBack(grid, series, step);
+    for (const group of groups) {
+      for (const steps of group.windows) {
+        fillSteps(
+          grid,
+          group.members.map((i) => series[i]!),
+          steps,
+          step.at - steps.window,
+          step.at + steps.window + 1,
+        );
+      }
+    }
+  }
+  return found;
+}
+
+/** All, each polarization, each sub-band, each alone: without repeats. */
+function groupsOf(series: readonly Series[]): number[][] {
+  const groups = new Map<string, number[]>();
+  const add = (members: number[]) => groups.set(members.join(" "), members);
+  const indices = series.map((_, i) => i);
+  add(indices);
+  for (const { product } of series) add(indices.filter((i) => series[i]!.product === product));
+  for (const { subband } of series) add(indices.filter((i) => series[i]!.subband === subband));
+  if (series.length <= 8) for (const i of indices) add([i]);
+  return [...groups.values()].filter((members) => members.length > 0);
+}
+
+interface Candidate {
+  readonly group: number;
+  readonly window: number;
+  readonly at: number;
+  readonly antenna: number;
+  readonly significance: number;
+}
+
+function strongest(grid: Grid, groups: readonly Group[], settings: StepSettings): Candidate | null {
+  const antennas = grid.antennas.length;
+  let best: Candidate | null = null;
+  for (let g = 0; g < groups.length; g++) {
+    const { windows } = groups[g]!;
+    for (let w = 0; w < windows.length; w++) {
+      const steps = windows[w]!;
+      for (let i = 0; i < steps.phase.length; i++) {
+        if (!(Math.abs(steps.phase[i]!) >= settings.least)) continue;
+        const antenna = i % antennas;
+        const at = (i - antenna) / antennas;
+        const significance = significanceOf(steps, antennas, at, antenna);
+        if (significance < settings.threshold || significance <= (best?.significance ?? 0)) continue;
+        if (settings.skip.has(antenna) || steps.agreement[i]! < LEAST_AGREEMENT) continue;
+        best = { group: g, window: w, at, antenna, significance };
+      }
+    }
+  }
+  return best;
+}
+
+/** Exact time, series concerned, size and error. */
+function settle(grid: Grid, series: readonly Series[], groups: readonly Group[], best: Candidate): FoundStep {
+  const { members, windows } = groups[best.group]!;
+  const chosen = windows[best.window]!;
+  const at = sharpest(grid, windows, best);
+  const segment = grid.segments.find(({ start, end }) => at > start && at < end)!;
+  const left: [number, number] = [Math.max(segment.start, at - chosen.window), at];
+  const right: [number, number] = [at, Math.min(segment.end, at + chosen.window)];
+  const measure = (which: readonly number[]) => {
+    const solved = solveStep(
+      grid,
+      which.map((i) => series[i]!),
+      left,
+      right,
+    );
+    return { phase: solved.phase[best.antenna]!, error: solved.error[best.antenna]! };
+  };
+  const whole = measure(members);
+  // Series of a step: those on the side of it rather than on that of none.
+  const others = series.map((_, i) => i).filter((i) => !members.includes(i));
+  const stepping = [...members, ...others].filter((i) => {
+    const { phase } = measure([i]);
+    return Math.abs(wrap(phase - whole.phase)) < Math.abs(whole.phase) / 2;
+  });
+  const which = stepping.length === 0 ? members : stepping.sort((a, b) => a - b);
+  const { phase, error } = measure(which);
+  const scale = Math.max(chosen.scale[best.antenna]!, error);
+  return { antenna: best.antenna, at, phase, error: scale, significance: best.significance, series: which };
+}
+
+/** The instant, by the shortest window that shows the step clearly. */
+function sharpest(grid: Grid, windows: readonly Steps[], best: Candidate): number {
+  const antennas = grid.antennas.length;
+  const reach = windows[best.window]!.window;
+  const sense = Math.sign(windows[best.window]!.phase[best.at * antennas + best.antenna]!);
+  for (const steps of windows) {
+    if (steps.window > reach) break;
+    let at = -1;
+    let most = 5;
+    for (let t = Math.max(1, best.at - reach); t <= Math.min(grid.times.length - 1, best.at + reach); t++) {
+      const phase = steps.phase[t * antennas + best.antenna]!;
+      const significance = significanceOf(steps, antennas, t, best.antenna);
+      const same = Math.sign(phase) === sense || Math.abs(phase) > 2.6;
+      if (same && significance > most) [at, most] = [t, significance];
+    }
+    if (at >= 0) return at;
+  }
+  return best.at;
+}
+
+function turnBack(grid: Grid, series: readonly Series[], step: FoundStep): void {
+  const { baselines, first, times } = grid;
+  for (const b of grid.touching[step.antenna]!) {
+    const angle = first[b] === step.antenna ? -step.phase : step.phase;
+    const [c, s] = [Math.cos(angle), Math.sin(angle)];
+    for (const which of step.series) {
+      const { real, imag } = series[which]!;
+      for (let t = step.at; t < times.length; t++) {
+        const i = t * baselines + b;
+        const [x, y] = [real[i]!, imag[i]!];
+        real[i] = x * c - y * s;
+        imag[i] = x * s + y * c;
+      }
+    }
+  }
+}

@@ -1,0 +1,100 @@
+/** Phase jumps and half turns of antennas, each with the interval it holds for. */
+import type { DetectedEvent } from "../event.ts";
+import type { Grid } from "./grid.ts";
+import { wrap } from "./antenna-phases.ts";
+import { type FoundStep, findSteps } from "./find-steps.ts";
+import { clock, degrees, makeEvent, productsOf, spanOf } from "./make-event.ts";
+
+/** Sigmas out of family: of 10^5 trials on noise and wander none is. */
+export const JUMP_THRESHOLD = 6.5;
+/** Smaller ones are calibration's to mend, whatever they are. */
+const LEAST_DEGREES = 3;
+const HALF_TURN_DEGREES = 4;
+
+/** A step and, where it came back, the step that undid it. */
+interface Interval {
+  readonly step: FoundStep;
+  readonly back: FoundStep | null;
+}
+
+/** @param skip antennas (indices) whose phase is no use */
+export function phaseJumps(grid: Grid, skip: ReadonlySet<number>): DetectedEvent[] {
+  const series = grid.planes.map((plane) => ({
+    ...plane,
+    real: plane.real.slice(),
+    imag: plane.imag.slice(),
+  }));
+  const least = (LEAST_DEGREES * Math.PI) / 180;
+  const steps = findSteps(grid, series, { threshold: JUMP_THRESHOLD, least, skip });
+  return intervalsOf(steps).map((interval) => eventOf(grid, interval));
+}
+
+/** Each step with the next one of its antenna and products that undoes it. */
+export function intervalsOf(steps: readonly FoundStep[]): Interval[] {
+  const sorted = [...steps].sort((a, b) => a.antenna - b.antenna || a.at - b.at);
+  const used = new Set<FoundStep>();
+  const intervals: Interval[] = [];
+  for (const [i, step] of sorted.entries()) {
+    if (used.has(step)) continue;
+    const back = sorted
+      .slice(i + 1)
+      .find((other) => !used.has(other) && other.antenna === step.antenna && undoes(step, other));
+    if (back !== undefined) used.add(back);
+    intervals.push({ step, back: back ?? null });
+  }
+  return intervals;
+}
+
+function undoes(step: FoundStep, other: FoundStep): boolean {
+  if (step.series.join() !== other.series.join()) return false;
+  const tolerance = 4 * Math.hypot(step.error, other.error);
+  return Math.abs(wrap(step.phase + other.phase)) < Math.min(tolerance, Math.abs(step.phase) / 2);
+}
+
+function eventOf(grid: Grid, { step, back }: Interval): DetectedEvent {
+  const { antennas, times } = grid;
+  const { phase, error } = together(step, back);
+  const size = degrees(phase);
+  const sizeError = degrees(error);
+  const halfTurn = 180 - Math.abs(size) < Math.max(HALF_TURN_DEGREES, 3 * sizeError) && Math.abs(size) > 150;
+  const [a, b] = [grid.antennas[step.antenna]!, antennas.length];
+  const products = productsOf(grid, step.series);
+  const end = back?.at ?? times.length;
+  const scope = { ...scopeOf(grid, step.antenna), ...products, time: spanOf(grid, step.at, end) };
+  const before = back === null && step.at < times.length - step.at;
+  const flag = before ? { ...scope, time: spanOf(grid, 0, step.at) } : scope;
+  const from = clock(times[step.at]!);
+  const until = back === null ? "on" : `to ${clock(times[end - 1]!)}`;
+  const who = b < 3 ? "the baseline" : `antenna ${a}`;
+  return makeEvent(grid, {
+    kind: halfTurn ? "half-turn" : "phase-jump",
+    cause: b < 3 ? "baseline" : "antenna",
+    scope,
+    flag,
+    size: halfTurn ? 180 : size,
+    sizeError,
+    unit: "deg",
+    significance: step.significance,
+    evidence:
+      `The phase of ${who} turns by ${size.toFixed(1)} +- ${sizeError.toFixed(1)} deg from ${from} UTC ${until}` +
+      `, ${step.significance.toFixed(1)} sigma out of its noise and wander` +
+      (b < 3 ? "; two antennas cannot be told from their baseline." : ", on all its baselines alike."),
+    repair: halfTurn
+      ? `turn the phase of ${who} by 180 deg from ${from} UTC ${until}`
+      : `calibrate ${who} separately before and after ${from} UTC${back === null ? "" : ` and ${clock(times[end]!)} UTC`}`,
+  });
+}
+
+/** The antenna, or the baseline where there is one only. */
+export function scopeOf(grid: Grid, antenna: number) {
+  if (grid.antennas.length >= 3) return { antennas: [grid.antennas[antenna]!] };
+  return { baselines: [[grid.antennas[0]!, grid.antennas[1]!] as const] };
+}
+
+function together(step: FoundStep, back: FoundStep | null): { phase: number; error: number } {
+  if (back === null) return step;
+  const [w1, w2] = [1 / step.error ** 2, 1 / back.error ** 2];
+  // The return is minus the step; the difference is wrapped so that half turns do not cancel.
+  const apart = wrap(-back.phase - step.phase);
+  return { phase: step.phase + (apart * w2) / (w1 + w2), error: 1 / Math.sqrt(w1 + w2) };
+}

@@ -1,0 +1,167 @@
+/**
+ * Steps of antenna phases in time without a model of the sky: the mean visibility of a window after each instant against
+ * that of a window before it, R L*, solved for antennas.
+ */
+import { median, robustSigma } from "../../util/statistics.ts";
+import { type AntennaPhases, antennaPhases, LEAST_VARIANCE } from "./antenna-phases.ts";
+import type { Grid } from "./grid.ts";
+
+/** Complex series, (times x baselines), that turn with the antennas like visibilities do. */
+export interface Series {
+  readonly subband: number;
+  readonly product: number;
+  readonly real: Float32Array;
+  readonly imag: Float32Array;
+  /** of the real or the imaginary part */
+  readonly variance: Float32Array;
+}
+
+/** Integrations of each window. */
+export const WINDOWS: readonly number[] = [1, 2, 4, 8, 16, 32];
+
+/** Phase steps at every instant; (instants x antennas). An instant t lies before integration t. */
+export interface Steps {
+  readonly window: number;
+  readonly phase: Float32Array;
+  readonly error: Float32Array;
+  readonly agreement: Float32Array;
+  /** (antennas) robust sigma of the steps of the antenna, at least that of the array: noise and wander both */
+  readonly scale: Float64Array;
+}
+
+/** Steps over one window for the sum of some series. */
+export function stepsOf(grid: Grid, series: readonly Series[], window: number): Steps {
+  const { times, antennas } = grid;
+  const size = times.length * antennas.length;
+  const steps = {
+    window,
+    phase: new Float32Array(size).fill(Number.NaN),
+    error: new Float32Array(size).fill(Number.NaN),
+    agreement: new Float32Array(size),
+    scale: new Float64Array(antennas.length),
+  };
+  fillSteps(grid, series, steps, 0, times.length);
+  fillScale(steps, antennas.length);
+  return steps;
+}
+
+export function fillSteps(
+  grid: Grid,
+  series: readonly Series[],
+  steps: Steps,
+  from: number,
+  to: number,
+): void {
+  const antennas = grid.antennas.length;
+  const { window } = steps;
+  for (const segment of grid.segments) {
+    const last = Math.min(to, segment.end - window + 1);
+    for (let t = Math.max(from, segment.start + window); t < last; t++) {
+      const solved = solveStep(grid, series, [t - window, t], [t, t + window]);
+      for (let a = 0; a < antennas; a++) {
+        steps.phase[t * antennas + a] = solved.phase[a]!;
+        steps.error[t * antennas + a] = solved.error[a]!;
+        steps.agreement[t * antennas + a] = solved.agreement[a]!;
+      }
+    }
+  }
+}
+
+/** Antenna phases of the mean of one range of integrations over that of another; ranges are [start, end). */
+export function solveStep(
+  grid: Grid,
+  series: readonly Series[],
+  left: readonly [number, number],
+  right: readonly [number, number],
+): AntennaPhases {
+  return antennaPhases(stepPhasors(grid, series, left, right), grid.antennas.length);
+}
+
+export function stepPhasors(
+  grid: Grid,
+  series: readonly Series[],
+  left: readonly [number, number],
+  right: readonly [number, number],
+) {
+  const { baselines } = grid;
+  const real = new Float64Array(baselines);
+  const imag = new Float64Array(baselines);
+  const weight = new Float64Array(baselines);
+  const l: Mean = { re: 0, im: 0, variance: 0 };
+  const r: Mean = { re: 0, im: 0, variance: 0 };
+  for (let b = 0; b < baselines; b++) {
+    let [re, im, spread] = [0, 0, 0];
+    for (const one of series) {
+      if (!meanOf(one, baselines, b, left, l) || !meanOf(one, baselines, b, right, r)) continue;
+      const scale = 1 / (l.variance + r.variance) ** 2;
+      re += scale * (r.re * l.re + r.im * l.im);
+      im += scale * (r.im * l.re - r.re * l.im);
+      const [powerL, powerR] = [l.re * l.re + l.im * l.im, r.re * r.re + r.im * r.im];
+      // Powers hold noise of twice the variance.
+      spread +=
+        scale *
+        scale *
+        Math.max(
+          powerL * r.variance + powerR * l.variance - 2 * l.variance * r.variance,
+          2 * l.variance * r.variance,
+        );
+    }
+    real[b] = re;
+    imag[b] = im;
+    const power = re * re + im * im - spread;
+    weight[b] = power > 0 ? 1 / Math.max(LEAST_VARIANCE, spread / power) : 0;
+  }
+  return { first: grid.first, second: grid.second, real, imag, weight };
+}
+
+interface Mean {
+  re: number;
+  im: number;
+  variance: number;
+}
+
+function meanOf(
+  one: Series,
+  baselines: number,
+  b: number,
+  [start, end]: readonly [number, number],
+  into: Mean,
+): boolean {
+  let [re, im, variance, n] = [0, 0, 0, 0];
+  for (let t = start; t < end; t++) {
+    const value = one.real[t * baselines + b]!;
+    if (Number.isNaN(value)) continue;
+    re += value;
+    im += one.imag[t * baselines + b]!;
+    variance += one.variance[t * baselines + b]!;
+    n += 1;
+  }
+  if (n === 0 || !(variance > 0)) return false;
+  into.re = re / n;
+  into.im = im / n;
+  into.variance = variance / (n * n);
+  return true;
+}
+
+export function fillScale(steps: Steps, antennas: number): void {
+  const own = Array.from({ length: antennas }, (_, a) => {
+    const values: number[] = [];
+    for (let i = a; i < steps.phase.length; i += antennas) {
+      const value = steps.phase[i]!;
+      if (!Number.isNaN(value)) values.push(value);
+    }
+    return values.length < 3 ? Number.NaN : Math.hypot(robustSigma(values), median(values));
+  });
+  const typical = median(own);
+  for (let a = 0; a < antennas; a++) {
+    steps.scale[a] = Number.isNaN(typical) ? Number.NaN : Math.max(typical, own[a] || 0);
+  }
+}
+
+/** How far a step is out of family and above its error, sigmas; 0 where unknown. */
+export function significanceOf(steps: Steps, antennas: number, t: number, a: number): number {
+  const at = t * antennas + a;
+  const phase = Math.abs(steps.phase[at]!);
+  const scale = Math.max(steps.scale[a]!, steps.error[at]!);
+  return phase > 0 && scale > 0 ? phase / scale : 0;
+}
