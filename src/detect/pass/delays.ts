@@ -1,0 +1,381 @@
+/**
+ * Sources away from the phase centre: their phase runs along the band, by no more than a source within sight of the
+ * dishes can make it. Where a block of integrations is badly described by one amplitude a row, up to three such slopes are
+ * added, each only when it explains what the block shows.
+ */
+import type { Bandpass } from "./bandpass.ts";
+import type { Plane } from "./plane.ts";
+
+const MOST_SLOPES = 3;
+const TERMS = MOST_SLOPES + 1;
+/** Steps of the search in units of a turn over the band. */
+const STEPS_PER_TURN = 4;
+const MOST_STEPS = 64;
+/** A tilt of the whole band must explain this share of what the block has in excess of noise. */
+const LEAST_TILT = 0.25;
+/** All slopes together must explain this share, */
+const LEAST_EXPLAINED = 0.6;
+/** besides what one more amplitude a row, and a slope, explain of pure noise. */
+const TERM_COST = 0.5;
+const SLOPE_COST = 3;
+const POLISH_ROUNDS = 3;
+/** Over noise: then nothing more is sought. */
+const ENOUGH = 1.05;
+/** Residuals are clipped at this power while slopes are sought. */
+const CLIP = 9;
+/** Mean of ln(1 + p/2) over exponential p: e^2 E1(2). */
+export const NOISE_COST = 0.36132862;
+
+export class DelayTerms {
+  private slopes: number[] = [];
+  /** (terms x columns) */
+  private basisReal = new Float64Array(0);
+  private basisImag = new Float64Array(0);
+  private readonly matrixReal = new Float64Array(TERMS * TERMS);
+  private readonly matrixImag = new Float64Array(TERMS * TERMS);
+  private readonly rightReal = new Float64Array(TERMS);
+  private readonly rightImag = new Float64Array(TERMS);
+  /** (rows x terms) */
+  private amplitudeReal = new Float64Array(0);
+  private amplitudeImag = new Float64Array(0);
+  private savedReal = new Float32Array(0);
+  private savedImag = new Float32Array(0);
+  private savedPower = new Float32Array(0);
+
+  /**
+   * Improve the model of rows [first, last) where slopes do; leave it alone where they do not explain most of what the
+   * block has in excess of noise, since then it is not the sky's.
+   *
+   * @param noise 2 sigma^2
+   * @param steepest radians a column that a source in sight can cause
+   * @returns slopes that describe the block now, 0 when it was left alone
+   */
+  improve(
+    plane: Plane,
+    bandpass: Bandpass,
+    first: number,
+    last: number,
+    noise: number,
+    steepest: number,
+  ): number {
+    const before = misfit(plane, first, last, noise);
+    const rows = last - first;
+    const refit = (slopes: number[]): number => {
+      this.slopes = slopes;
+      this.fillBasis(bandpass, plane.columns);
+      for (let row = first; row < last; row++) this.fitRow(plane, row, (row - first) * TERMS, noise);
+      return misfit(plane, first, last, noise).cost;
+    };
+    this.save(plane, first, last);
+    if (this.amplitudeReal.length < rows * TERMS) {
+      this.amplitudeReal = new Float64Array(rows * TERMS);
+      this.amplitudeImag = new Float64Array(rows * TERMS);
+    }
+    // An antenna's delay may have changed: then the whole band is tilted, by anything.
+    let cost = refit([tiltOf(plane, bandpass, first, last)]);
+    if (cost > before.cost - LEAST_TILT * (before.cost - before.floor)) cost = refit([0]);
+    while (this.slopes.length < TERMS && cost > ENOUGH * before.floor) {
+      const slope = this.steepestPower(plane, bandpass, first, last, noise, steepest);
+      if (slope === null) break;
+      cost = refit([...this.slopes, slope]);
+      for (let round = 0; round < POLISH_ROUNDS && cost > ENOUGH * before.floor; round++) {
+        const known = this.slopes;
+        const better = refit(this.polished(plane, first, last));
+        if (better >= cost) {
+          cost = refit(known);
+          break;
+        }
+        cost = better;
+      }
+    }
+    const spent = TERM_COST * rows * (this.slopes.length - 1) + SLOPE_COST * this.slopes.length;
+    if (before.cost - cost < LEAST_EXPLAINED * (before.cost - before.floor) + spent) {
+      this.restore(plane, first, last);
+      return 0;
+    }
+    return this.slopes.length;
+  }
+
+  /** The slope whose waves hold most of the residual's power, or null when it is what noise holds. */
+  private steepestPower(
+    plane: Plane,
+    bandpass: Bandpass,
+    first: number,
+    last: number,
+    noise: number,
+    steepest: number,
+  ): number | null {
+    const coarse = (2 * Math.PI) / (plane.columns * STEPS_PER_TURN);
+    const half = Math.max(1, Math.min(MOST_STEPS / 2, Math.ceil(steepest / coarse)));
+    const power = (slope: number) => wavePower(plane, bandpass, first, last, noise, slope);
+    let best = 0;
+    let found = 0;
+    for (let k = -half; k <= half; k++) {
+      const slope = (k * steepest) / half;
+      if (this.slopes.some((known) => Math.abs(known - slope) < 0.25 * coarse)) continue;
+      const value = power(slope);
+      if (value <= best) continue;
+      best = value;
+      found = slope;
+    }
+    if (best <= 1 + 5 / Math.sqrt(last - first)) return null;
+    for (let step = steepest / half / 2; step > coarse / 16; step /= 2) {
+      for (const slope of [found - step, found + step]) {
+        const value = power(slope);
+        if (value <= best) continue;
+        best = value;
+        found = slope;
+      }
+    }
+    return found;
+  }
+
+  /** The slopes moved to where the residual says they should be: one step of Gauss and Newton, each by itself. */
+  private polished(plane: Plane, first: number, last: number): number[] {
+    const { columns, real, imag, modelReal, modelImag, marks } = plane;
+    const terms = this.slopes.length;
+    const middle = (columns - 1) / 2;
+    const along = new Float64Array(terms);
+    const norm = new Float64Array(terms);
+    for (let row = first; row < last; row++) {
+      for (let c = 0, i = row * columns; c < columns; c++, i++) {
+        if (marks[i] !== 0) continue;
+        const x = real[i]! - modelReal[i]!;
+        const y = imag[i]! - modelImag[i]!;
+        for (let j = 0; j < terms; j++) {
+          const ar = this.amplitudeReal[(row - first) * TERMS + j]!;
+          const ai = this.amplitudeImag[(row - first) * TERMS + j]!;
+          const br = this.basisReal[j * columns + c]!;
+          const bi = this.basisImag[j * columns + c]!;
+          // A step of slope turns the term by i (c - middle).
+          const tr = -(br * ai + bi * ar) * (c - middle);
+          const ti = (br * ar - bi * ai) * (c - middle);
+          along[j]! += tr * x + ti * y;
+          norm[j]! += tr * tr + ti * ti;
+        }
+      }
+    }
+    const most = Math.PI / (columns * STEPS_PER_TURN);
+    return this.slopes.map((slope, j) => {
+      const step = norm[j]! > 0 ? along[j]! / norm[j]! : 0;
+      return slope + Math.max(-most, Math.min(most, step));
+    });
+  }
+
+  private fillBasis({ real, imag }: Bandpass, columns: number): void {
+    if (this.basisReal.length < TERMS * columns) {
+      this.basisReal = new Float64Array(TERMS * columns);
+      this.basisImag = new Float64Array(TERMS * columns);
+    }
+    for (const [term, slope] of this.slopes.entries()) {
+      for (let c = 0; c < columns; c++) {
+        const wr = Math.cos(slope * c);
+        const wi = Math.sin(slope * c);
+        this.basisReal[term * columns + c] = real[c]! * wr - imag[c]! * wi;
+        this.basisImag[term * columns + c] = real[c]! * wi + imag[c]! * wr;
+      }
+    }
+  }
+
+  /** All terms to one row, least squares twice: plain, then with what sticks out counting less. */
+  private fitRow(plane: Plane, row: number, keptAt: number, noise: number): void {
+    const { columns, real, imag, modelReal, modelImag, marks, power } = plane;
+    const { basisReal, basisImag, matrixReal, matrixImag, rightReal, rightImag } = this;
+    const terms = this.slopes.length;
+    const at = row * columns;
+    for (let round = 0; round < 3; round++) {
+      matrixReal.fill(0);
+      matrixImag.fill(0);
+      rightReal.fill(0);
+      rightImag.fill(0);
+      for (let c = 0; c < columns; c++) {
+        if (marks[at + c] !== 0) continue;
+        const weight = round === 0 ? 1 : 1 / (1 + power[at + c]! / (2 * noise));
+        for (let j = 0; j < terms; j++) {
+          const jr = basisReal[j * columns + c]! * weight;
+          const ji = basisImag[j * columns + c]! * weight;
+          rightReal[j]! += jr * real[at + c]! + ji * imag[at + c]!;
+          rightImag[j]! += jr * imag[at + c]! - ji * real[at + c]!;
+          for (let k = 0; k <= j; k++) {
+            const kr = basisReal[k * columns + c]!;
+            const ki = basisImag[k * columns + c]!;
+            matrixReal[j * TERMS + k]! += jr * kr + ji * ki;
+            matrixImag[j * TERMS + k]! += jr * ki - ji * kr;
+          }
+        }
+      }
+      if (!this.solve(terms)) return;
+      for (let c = 0; c < columns; c++) {
+        let mr = 0;
+        let mi = 0;
+        for (let j = 0; j < terms; j++) {
+          const br = basisReal[j * columns + c]!;
+          const bi = basisImag[j * columns + c]!;
+          mr += br * rightReal[j]! - bi * rightImag[j]!;
+          mi += br * rightImag[j]! + bi * rightReal[j]!;
+        }
+        modelReal[at + c] = mr;
+        modelImag[at + c] = mi;
+        const x = real[at + c]! - mr;
+        const y = imag[at + c]! - mi;
+        power[at + c] = x * x + y * y;
+      }
+    }
+    for (let j = 0; j < terms; j++) {
+      this.amplitudeReal[keptAt + j] = rightReal[j]!;
+      this.amplitudeImag[keptAt + j] = rightImag[j]!;
+    }
+  }
+
+  /** Cholesky solution of the normal equations into `right`, in place. @returns false when there are too few samples */
+  private solve(terms: number): boolean {
+    const { matrixReal: a, matrixImag: b, rightReal: x, rightImag: y } = this;
+    for (let j = 0; j < terms; j++) {
+      for (let k = 0; k <= j; k++) {
+        let re = a[j * TERMS + k]!;
+        let im = b[j * TERMS + k]!;
+        for (let m = 0; m < k; m++) {
+          re -= a[j * TERMS + m]! * a[k * TERMS + m]! + b[j * TERMS + m]! * b[k * TERMS + m]!;
+          im -= b[j * TERMS + m]! * a[k * TERMS + m]! - a[j * TERMS + m]! * b[k * TERMS + m]!;
+        }
+        if (j === k) {
+          // Slopes close together are nearly the same: a touch of ridge keeps the amplitudes finite.
+          const pivot = re + 1e-9 * a[0]!;
+          if (!(pivot > 0)) return false;
+          a[j * TERMS + j] = Math.sqrt(pivot);
+          b[j * TERMS + j] = 0;
+        } else {
+          a[j * TERMS + k] = re / a[k * TERMS + k]!;
+          b[j * TERMS + k] = im / a[k * TERMS + k]!;
+        }
+      }
+    }
+    for (let j = 0; j < terms; j++) {
+      for (let m = 0; m < j; m++) {
+        x[j]! -= a[j * TERMS + m]! * x[m]! - b[j * TERMS + m]! * y[m]!;
+        y[j]! -= a[j * TERMS + m]! * y[m]! + b[j * TERMS + m]! * x[m]!;
+      }
+      x[j]! /= a[j * TERMS + j]!;
+      y[j]! /= a[j * TERMS + j]!;
+    }
+    for (let j = terms - 1; j >= 0; j--) {
+      for (let m = j + 1; m < terms; m++) {
+        x[j]! -= a[m * TERMS + j]! * x[m]! + b[m * TERMS + j]! * y[m]!;
+        y[j]! -= a[m * TERMS + j]! * y[m]! - b[m * TERMS + j]! * x[m]!;
+      }
+      x[j]! /= a[j * TERMS + j]!;
+      y[j]! /= a[j * TERMS + j]!;
+    }
+    return true;
+  }
+
+  private save(plane: Plane, first: number, last: number): void {
+    const [from, to] = [first * plane.columns, last * plane.columns];
+    if (this.savedReal.length < to - from) {
+      this.savedReal = new Float32Array(to - from);
+      this.savedImag = new Float32Array(to - from);
+      this.savedPower = new Float32Array(to - from);
+    }
+    this.savedReal.set(plane.modelReal.subarray(from, to));
+    this.savedImag.set(plane.modelImag.subarray(from, to));
+    this.savedPower.set(plane.power.subarray(from, to));
+  }
+
+  private restore(plane: Plane, first: number, last: number): void {
+    const [from, to] = [first * plane.columns, last * plane.columns];
+    plane.modelReal.set(this.savedReal.subarray(0, to - from), from);
+    plane.modelImag.set(this.savedImag.subarray(0, to - from), from);
+    plane.power.set(this.savedPower.subarray(0, to - from), from);
+  }
+}
+
+/** Power of the clipped residual in waves of one slope, over that of noise. */
+function wavePower(
+  plane: Plane,
+  { real: bandReal, imag: bandImag, size }: Bandpass,
+  first: number,
+  last: number,
+  noise: number,
+  slope: number,
+): number {
+  const { columns, real, imag, modelReal, modelImag, marks, power } = plane;
+  const clip = CLIP * noise;
+  const turnReal = Math.cos(slope);
+  const turnImag = Math.sin(slope);
+  let total = 0;
+  let expected = 0;
+  for (let row = first; row < last; row++) {
+    let re = 0;
+    let im = 0;
+    let waveReal = 1;
+    let waveImag = 0;
+    for (let c = 0, i = row * columns; c < columns; c++, i++) {
+      if (marks[i] === 0) {
+        const scale = power[i]! > clip ? Math.sqrt(clip / power[i]!) : 1;
+        const x = (real[i]! - modelReal[i]!) * scale;
+        const y = (imag[i]! - modelImag[i]!) * scale;
+        const br = bandReal[c]! * waveReal - bandImag[c]! * waveImag;
+        const bi = bandReal[c]! * waveImag + bandImag[c]! * waveReal;
+        re += br * x + bi * y;
+        im += br * y - bi * x;
+        expected += size[c]!;
+      }
+      const next = waveReal * turnReal - waveImag * turnImag;
+      waveImag = waveReal * turnImag + waveImag * turnReal;
+      waveReal = next;
+    }
+    total += re * re + im * im;
+  }
+  return total / (expected * noise);
+}
+
+/** Mean step of phase from channel to channel over the shape of the band, radians. */
+function tiltOf(
+  { columns, real, imag, marks }: Plane,
+  { real: br, imag: bi }: Bandpass,
+  first: number,
+  last: number,
+): number {
+  let re = 0;
+  let im = 0;
+  for (let row = first; row < last; row++) {
+    let beforeRe = 0;
+    let beforeIm = 0;
+    for (let c = 0, i = row * columns; c < columns; c++, i++) {
+      const good = marks[i] === 0;
+      const x = good ? br[c]! * real[i]! + bi[c]! * imag[i]! : 0;
+      const y = good ? br[c]! * imag[i]! - bi[c]! * real[i]! : 0;
+      re += x * beforeRe + y * beforeIm;
+      im += y * beforeRe - x * beforeIm;
+      beforeRe = x;
+      beforeIm = y;
+    }
+  }
+  return Math.atan2(im, re);
+}
+
+/**
+ * How badly rows [first, last) are described: the sum of ln(1 + p/2) of their powers over noise, which goes on falling as
+ * a bad fit gets better but does not let one outlier decide; and what noise alone would give.
+ */
+export function misfit(
+  { columns, marks, power }: Plane,
+  first: number,
+  last: number,
+  noise: number,
+): { cost: number; floor: number } {
+  const scale = 0.5 / noise;
+  let samples = 0;
+  // One logarithm for a run of samples: their product stays far from the largest double.
+  let cost = 0;
+  let product = 1;
+  for (let i = first * columns; i < last * columns; i++) {
+    if (marks[i] !== 0) continue;
+    product *= 1 + power[i]! * scale;
+    samples += 1;
+    if (product < 1e150) continue;
+    cost += Math.log(product);
+    product = 1;
+  }
+  return { cost: cost + Math.log(product), floor: NOISE_COST * samples };
+}
