@@ -165,7 +165,7 @@ function uvText(check: Check): string {
 
 function amplitudeText(check: Check): string {
   const unit = check.dataset.unit === "Jy" ? "" : " Amplitudes are not calibrated.";
-  return `Mean amplitude of each baseline, integration and sub-band; where points are many, darker is denser.${unit}`;
+  return `Mean amplitude of each baseline, integration and sub-band, parallel hands; where points are many, darker is denser.${unit}`;
 }
 
 function wText(check: Check): string {

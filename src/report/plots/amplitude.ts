@@ -1,4 +1,5 @@
 /** Amplitude against uv distance. */
+import { parallelProducts } from "../../measure/tables/products.ts";
 import { plainTextWithin } from "../../util/terminal.ts";
 import type { Check } from "../report.ts";
 import { amplitudeScale } from "./amplitude-scale.ts";
@@ -16,6 +17,7 @@ const MOST_POINTS = 300_000;
 export function amplitudeChart(check: Check, cells: Cells): string {
   const { tracks } = check.survey;
   const { subbands, polarizations } = check.dataset.shape;
+  const parallel = parallelProducts(check.dataset.polarizations);
   const middles = subbandMiddles(check.dataset);
   const byFate: { x: number[]; y: number[] }[] = [KEPT, SUGGESTED, FLAGGED].map(() => ({ x: [], y: [] }));
   let reach = 0;
@@ -27,7 +29,7 @@ export function amplitudeChart(check: Check, cells: Cells): string {
       const amplitude = meanAmplitude(
         tracks.amplitude,
         (cell * subbands + subband) * polarizations,
-        polarizations,
+        parallel,
       );
       if (!(amplitude > 0) || !Number.isFinite(distance)) continue;
       points.x.push(distance);
@@ -64,11 +66,12 @@ export function amplitudeChart(check: Check, cells: Cells): string {
   });
 }
 
-function meanAmplitude(amplitudes: Float32Array, from: number, count: number): number {
+/** Mean of the products that carry the total intensity. */
+function meanAmplitude(amplitudes: Float32Array, from: number, parallel: readonly boolean[]): number {
   let [sum, seen] = [0, 0];
-  for (let at = from; at < from + count; at++) {
-    const amplitude = amplitudes[at]!;
-    if (!Number.isFinite(amplitude)) continue;
+  for (const [product, counts] of parallel.entries()) {
+    const amplitude = amplitudes[from + product]!;
+    if (!counts || !Number.isFinite(amplitude)) continue;
     sum += amplitude;
     seen += 1;
   }
