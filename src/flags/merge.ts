@@ -98,16 +98,23 @@ function joined(group: readonly Candidate[]): Candidate {
     // As sure as the least sure of its parts: it takes their samples too.
     confidence: Math.min(...group.map((one) => one.confidence)),
     severity: weightiest[0]!.severity,
+    excess: excessOf(group),
     reasons: distinct(weightiest.flatMap((one) => one.reasons)),
     repair: weightiest.find((one) => one.repair !== null)?.repair ?? null,
   };
+}
+
+/** Of several faults: they add as independent errors do. */
+function excessOf(faults: readonly Candidate[]): number | null {
+  const known = faults.flatMap(({ excess }) => (excess === null ? [] : [excess]));
+  return known.length === 0 ? null : Math.hypot(...known);
 }
 
 function distinct(reasons: readonly string[]): string[] {
   return [...new Set(reasons)].slice(0, MOST_REASONS);
 }
 
-/** What lies inside another, larger one goes; the larger one takes over how severe it was. */
+/** What lies inside another, larger one goes; the larger one mends its harm too. */
 export function withoutInner<T extends Candidate>(candidates: readonly T[]): T[] {
   const isInner = (one: T, i: number) =>
     candidates.some(
@@ -120,7 +127,8 @@ export function withoutInner<T extends Candidate>(candidates: readonly T[]): T[]
     .filter((one, i) => !isInner(one, i))
     .map((one) => {
       const inside = candidates.filter((other) => contains(one.selection, other.selection));
-      return { ...one, severity: Math.max(...inside.map((other) => other.severity)) };
+      const severity = Math.max(...inside.map((other) => other.severity));
+      return { ...one, severity, excess: excessOf(inside) };
     });
 }
 

@@ -1,6 +1,6 @@
 /** A row of a measure that is past a rule's caution limit. */
 import type { Selection } from "../dataset/selection.ts";
-import type { Measure } from "../measure/table.ts";
+import type { Measure, Measures } from "../measure/table.ts";
 import type { Judgement } from "./finding.ts";
 import type { Rule } from "./rule.ts";
 
@@ -25,6 +25,8 @@ export interface FilledHit {
 
 /** A judgement and the rows behind it. */
 export interface Judged extends Judgement {
+  /** what was judged, events with the dynamic range that each allows */
+  readonly measures: Measures;
   /** by rule in the order of the set, then row */
   readonly hits: readonly Hit[];
   /** what rules could not judge: behind `notJudged` */

@@ -48,6 +48,7 @@ export function judge(rules: RuleSet, given: Measures, plan: Plan): Judged {
     findings: worstFirst(findings, rules),
     taken: taken.sort((a, b) => b.points - a.points || (a.rule < b.rule ? -1 : 1)),
     notJudged,
+    measures,
     hits,
     unjudged,
   };

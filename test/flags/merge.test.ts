@@ -12,6 +12,7 @@ function candidate(parts: Partial<Selection>, more: Partial<Candidate> = {}): Ca
     rule: "burst",
     confidence: 0.9,
     severity: 0.5,
+    excess: null,
     reasons: ["seen"],
     repair: null,
     ...more,

@@ -136,6 +136,40 @@ describe("suggestFlags", () => {
     });
   });
 
+  it("weighs what a fault adds to the image against the sensitivity that goes", async () => {
+    // One channel of eight: 6.5 % of the sensitivity. The thermal noise allows a dynamic range of 1000.
+    const weighed = async (dynamicRange: number) => {
+      const events = [event({ subbands: [0], channels: [[0, 0]] }, { kind: "dropout", size: 1 })];
+      const rules = ruleSet(
+        rule({ id: "dropout", measure: "event", each: "event", value: "0", consequence: "x" }),
+      );
+      const table = measure("event", "event", { kind: ["dropout"], size: [1], error: [Number.NaN] });
+      const limits = measure("limit", "event", {
+        cause: ["dropout", "thermal-noise"],
+        event: [0, Number.NaN],
+        dynamic_range: [dynamicRange, 1000],
+        ratio: [100 / dynamicRange, 0.1],
+      });
+      const found = judge(rules, measures(table, limits), PLAN);
+      return suggestFlags({ dataset: DATASET, times: TIMES, events, judged: found, rules });
+    };
+    // sqrt(1 + 0.5^2) = 1.118 of the thermal noise goes; sqrt(1 + 0.2^2) = 1.020 would not pay.
+    expect((await weighed(2000)).flags).toHaveLength(1);
+    expect((await weighed(5000)).flags).toHaveLength(0);
+    expect((await weighed(5000)).doubts).toHaveLength(1);
+  });
+
+  it("takes the other stretches of an event's cure with it", async () => {
+    const other = { ...EVERYTHING, antennas: [1], time: [TIMES[2]!, TIMES[2]!] } as const;
+    const { flags } = await suggested([
+      event({ antennas: [1], time: [TIMES[0]!, TIMES[0]!] }, { alsoFlag: [other] }),
+    ]);
+    expect(flags.map(({ time }) => time)).toEqual([
+      [TIMES[0], TIMES[0]],
+      [TIMES[2], TIMES[2]],
+    ]);
+  });
+
   it("suggests nothing for an event that flagging does not cure, or whose rule is switched off", async () => {
     expect((await suggested([event(null)])).flags).toEqual([]);
     expect((await suggested([event({ subbands: [1] })], ruleSet())).flags).toEqual([]);
