@@ -2,7 +2,7 @@
  * The samples of the image, thinned where they are very many, for sums over what a source at the field's edge would
  * do: channel groups of the channel-averaged tracks, at the weights of the planned image.
  */
-import { CellIndex, type FilledCells } from "./moment-grid.ts";
+import { type FilledCells, fieldCells } from "./moment-grid.ts";
 import { type Sampling, trackOffset, trackWeight } from "./sampling.ts";
 
 /** (count) each */
@@ -31,36 +31,26 @@ const MOST_SAMPLES = 60_000;
 const GROUP_WIDTH = 0.005;
 const MOST_GROUPS = 16;
 
-/** By uv cell, the planned weighting's factor on the weights there. */
-export class FactorLookup {
-  private readonly index: CellIndex;
-  private readonly factors: Float64Array;
-  private readonly field: number;
+/** By (u, v) in wavelengths, the planned weighting's factor on the weights there; 0 outside the filled cells. */
+export type FactorLookup = (u: number, v: number) => number;
 
-  constructor(cells: FilledCells, factors: Float64Array) {
-    this.index = new CellIndex(cells.form.half);
-    this.field = cells.form.field;
-    for (let i = 0; i < cells.count; i++) this.index.slot(cells.iu[i]!, cells.iv[i]!);
-    this.factors = factors;
-  }
-
-  /** 0 outside the filled cells. */
-  at(u: number, v: number): number {
+export function factorLookup(cells: FilledCells, factors: Float64Array): FactorLookup {
+  const place = fieldCells(cells);
+  const { field } = cells.form;
+  return (u, v) => {
     const sign = u < 0 || (u === 0 && v < 0) ? -1 : 1;
-    const iu = Math.floor(sign * u * this.field + 0.5);
-    let iv = Math.floor(sign * v * this.field + 0.5);
-    if (iu === 0 && iv < 0) iv = Math.floor(-sign * v * this.field + 0.5);
-    const { half } = this.index;
-    if (!(iu <= half && Math.abs(iv) <= half)) return 0;
-    const slot = this.index.peek(iu, iv);
-    return slot < 0 ? 0 : this.factors[slot]!;
-  }
+    const iu = Math.floor(sign * u * field + 0.5);
+    let iv = Math.floor(sign * v * field + 0.5);
+    if (iu === 0 && iv < 0) iv = Math.floor(-sign * v * field + 0.5);
+    const at = place(iu, iv);
+    return at < 0 ? 0 : factors[at]!;
+  };
 }
 
 /**
  * @param wOf (cells of the tracks) seconds: the file's w, or the recomputed one
  */
-export function edgeSamples(sampling: Sampling, wOf: Float64Array, factors: FactorLookup): EdgeSamples {
+export function edgeSamples(sampling: Sampling, wOf: Float64Array, factorAt: FactorLookup): EdgeSamples {
   const { survey, products, field } = sampling;
   const { tracks, dataset } = survey;
   const { subbands } = dataset.shape;
@@ -88,7 +78,7 @@ export function edgeSamples(sampling: Sampling, wOf: Float64Array, factors: Fact
         u,
         v,
         wOf[cell]! * frequency,
-        natural * factors.at(u, v),
+        natural * factorAt(u, v),
         natural,
         frequency,
         width,

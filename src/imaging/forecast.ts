@@ -14,7 +14,7 @@ import { costsOf, type GriddedImage, type SelectionCost } from "./cost.ts";
 import { coverageFormOf, judgeCoverage } from "./coverage.ts";
 import { CoverageTally } from "./coverage-tally.ts";
 import { weightingName } from "./derive-plan.ts";
-import { edgeSamples, FactorLookup } from "./edge-samples.ts";
+import { edgeSamples, factorLookup } from "./edge-samples.ts";
 import type { ForecastParts, NamedBeam } from "./forecast-parts.ts";
 import { expectedW, geometryMeasures, judgeTracks } from "./geometry-report.ts";
 import { type GridRequest, gridDataset } from "./grid-dataset.ts";
@@ -81,7 +81,7 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
   const geometry = judgeTracks(sampling);
   const wOf = trackW(sampling, expectedW(sampling, geometry.judged));
   const radius = Math.sin(plan.fieldOfView.value / 2);
-  const samples = edgeSamples(sampling, wOf.w, new FactorLookup(cells, planned.factors));
+  const samples = edgeSamples(sampling, wOf.w, factorLookup(cells, planned.factors));
   const loss = wLossAt(samples, radius);
   const baselines = wByBaseline(sampling, wOf.w, samples, radius, plan.dishDiameter.value);
   const wTerm = wTermOf(baselines, loss, plan.fieldOfView.value);

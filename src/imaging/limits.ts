@@ -1,17 +1,18 @@
 /**
  * What caps the dynamic range, worst first. An error of phase (radians) or amplitude (fraction) e on some of the
- * samples of a point source leaves in the image an rms, off the source, of e sqrt(sum over uv cells E^2 / 2) / sum T,
- * where T are the imaging weights and E is the part of a cell's that carries the error. For one snapshot of N
- * antennas this is the published N(N-1)/(sqrt 2 e) of one baseline and N sqrt(N-1)/(sqrt 2 e) of one antenna; over
- * cells it counts how far Earth rotation and bandwidth spread the error.
+ * samples of a point source leaves in the image an rms, off the source, of e sqrt(sum E^2 / 2) / sum T, where T are the
+ * imaging weights and E those that carry the error, samples closer than 1/field added first. For one snapshot of N
+ * antennas this is the published N(N-1)/(sqrt 2 e) of one baseline and N sqrt(N-1)/(sqrt 2 e) of one antenna; it counts
+ * how far Earth rotation and bandwidth spread the error.
  * @see Perley 1999, Synthesis Imaging in Radio Astronomy II, ASP Conf. Ser. 180, chapter 13
  */
 import type { DetectedEvent, EventKind } from "../detect/event.ts";
 import { formatNumber, formatPercent } from "../util/units.ts";
 import { cellFactors, imagingWeight, truncated } from "./cell-weights.ts";
 import { eachSelection, type GriddedImage } from "./cost.ts";
+import { errorRms } from "./error-rms.ts";
 import type { Limit } from "./image.ts";
-import type { FilledCells } from "./moment-grid.ts";
+import { fieldCells } from "./moment-grid.ts";
 
 /** A limit and the event behind it; null for one of the whole dataset. */
 export interface RankedLimit extends Limit {
@@ -69,13 +70,15 @@ export async function eventLimits(
   const cells = truncated(image.cells, 0);
   const factors = cellFactors(cells, image.plan.weighting.value);
   const total = imagingWeight(cells, factors);
+  const place = fieldCells(cells);
+  const factorOf = (iu: number, iv: number) => factors[place(iu, iv)] ?? 0;
   const limits: RankedLimit[] = [];
   await eachSelection(
     image,
     ranked.map(({ event }) => event.scope),
     (index, taken) => {
       const { event, eventIndex, error } = ranked[index]!;
-      const range = total / errorSum(cells, factors, taken, event, error);
+      const range = total / spoiled(errorRms(taken, factorOf), event, error);
       if (Number.isFinite(range)) limits.push({ ...limitOf(event, error, range), eventIndex });
     },
   );
@@ -146,33 +149,10 @@ function amplitudeError(ratio: number): EventError {
   return { size, coherent: true, what: `an amplitude error of ${formatPercent(size)}` };
 }
 
-/** e sqrt(sum of E^2 / 2): what the source's peak is divided by. */
-function errorSum(
-  cells: FilledCells,
-  factors: Float64Array,
-  taken: FilledCells,
-  event: DetectedEvent,
-  error: EventError,
-): number {
-  const few = taken.form.order === 0 ? taken : truncated(taken, 0);
-  let squares = 0;
-  let weights = 0;
-  for (let i = 0, j = 0; j < few.count; j++) {
-    while (
-      i < cells.count &&
-      (cells.iu[i]! < few.iu[j]! || (cells.iu[i] === few.iu[j] && cells.iv[i]! < few.iv[j]!))
-    ) {
-      i += 1;
-    }
-    if (i === cells.count) break;
-    const part = factors[i]! * few.weight[j]!;
-    squares += part * part;
-    weights += part;
-  }
-  if (error.coherent) return error.size * Math.sqrt(squares / 2);
-  // Independent from sample to sample: the samples add in squares, each about the mean weight.
-  const samples = Math.max(1, event.samples);
-  return (error.size * weights) / Math.sqrt(2 * samples);
+/** What the source's peak is divided by: the same error on all samples, or its own on each, which add in squares. */
+function spoiled(sums: { rms: number; weight: number }, event: DetectedEvent, error: EventError): number {
+  if (error.coherent) return error.size * sums.rms;
+  return (error.size * sums.weight) / Math.sqrt(2 * Math.max(1, event.samples));
 }
 
 const CAUSES: Partial<Record<EventKind, string>> = {

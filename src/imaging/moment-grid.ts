@@ -194,6 +194,15 @@ export class MomentGrid {
   }
 }
 
+/** Finds a filled cell's place by its (iu, iv); -1 where it is not filled. */
+export function fieldCells(cells: FilledCells): (iu: number, iv: number) => number {
+  const { half } = cells.form;
+  const index = new CellIndex(half);
+  // Slots are given in the order of asking: a cell's slot is its place.
+  for (let i = 0; i < cells.count; i++) index.slot(cells.iu[i]!, cells.iv[i]!);
+  return (iu, iv) => (iu >= 0 && iu <= half && iv >= -half && iv <= half ? index.peek(iu, iv) : -1);
+}
+
 /**
  * A number so large that adding it to a term and taking it away again rounds the term to a multiple of 2^-50 of the
  * bound, rounded up to a power of two. Such multiples add up exactly, in any order.
