@@ -57,10 +57,14 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
     ),
   }));
   const found: FoundStep[] = [];
-  while (found.length < MOST_STEPS) {
+  for (let tries = 0; found.length < MOST_STEPS && tries < 4 * MOST_STEPS; tries++) {
     const best = strongest(grid, groups, settings);
     if (best === null) break;
     const step = settle(grid, series, groups, best);
+    if (!isSharp(grid, groups[best.group]!, step) || repeats(found, step) || Math.abs(step.phase) < settings.least) {
+      passOver(grid, groups, best);
+      continue;
+    }
     found.push(step);
     turnBack(grid, series, step);
     for (const group of groups) {
@@ -117,6 +121,40 @@ function strongest(grid: Grid, groups: readonly Group[], settings: StepSettings)
     }
   }
   return best;
+}
+
+/** A step is there at once; wander and a changing sky take their time. */
+function isSharp(grid: Grid, { windows }: Group, step: FoundStep): boolean {
+  const antennas = grid.antennas.length;
+  for (const steps of windows) {
+    const at = step.at * antennas + step.antenna;
+    if (!(steps.error[at]! < Math.abs(step.phase) / 5)) continue;
+    return Math.abs(wrap(steps.phase[at]! - step.phase)) < Math.abs(step.phase) / 2;
+  }
+  return true;
+}
+
+function repeats(found: readonly FoundStep[], step: FoundStep): boolean {
+  return found.some(
+    (other) =>
+      other.antenna === step.antenna &&
+      other.at === step.at &&
+      other.series.some((i) => step.series.includes(i)),
+  );
+}
+
+/** No longer a candidate: all that its windows hold of this antenna. */
+function passOver(grid: Grid, groups: readonly Group[], { antenna, at, group, window }: Candidate): void {
+  const antennas = grid.antennas.length;
+  const reach = groups[group]!.windows[window]!.window;
+  for (const { windows } of groups) {
+    for (const steps of windows) {
+      if (steps.window < reach) continue;
+      for (let t = Math.max(0, at - reach); t <= Math.min(grid.times.length - 1, at + reach); t++) {
+        steps.phase[t * antennas + antenna] = Number.NaN;
+      }
+    }
+  }
 }
 
 /** Exact time, series concerned, size and error. */

@@ -1,0 +1,144 @@
+/**
+ * What amplitude the rest of the array makes likely on an antenna's baselines: that of other antennas' baselines near in
+ * the uv plane, so that a resolved sky is no antenna's fault.
+ */
+import { median, robustSigma } from "../../util/statistics.ts";
+import type { Grid, Plane } from "./grid.ts";
+
+/** Mean power of a stretch of one baseline: of means over a few integrations, noise taken off. */
+interface Point {
+  readonly baseline: number;
+  readonly u: number;
+  readonly v: number;
+  readonly power: number;
+  /** of `power` when there is no signal */
+  readonly error: number;
+}
+
+export interface AntennaLevel {
+  /** power over that expected; NaN unknown */
+  readonly power: number;
+  /** by noise */
+  readonly powerError: number;
+  /** median of ln(amplitude over that expected), and its robust scatter over the stretches */
+  readonly logAmplitude: number;
+  readonly scatter: number;
+  /** share of the stretches below what is expected */
+  readonly below: number;
+  /** expected power over its error by noise */
+  readonly expected: number;
+  readonly stretches: number;
+}
+
+const COHERENT = 8;
+const NEIGHBOURS = 5;
+const MOST_POINTS = 3000;
+
+/** @param planes of one polarization @param ignore antennas that are no measure for others */
+export function levelsByAntenna(
+  grid: Grid,
+  planes: readonly Plane[],
+  ignore: ReadonlySet<number>,
+): AntennaLevel[] {
+  const stretches = Math.max(1, Math.min(8, Math.floor(MOST_POINTS / Math.max(1, grid.baselines))));
+  const points = planes.flatMap((plane) => pointsOf(grid, plane, stretches));
+  return grid.antennas.map((_, antenna) => levelOf(grid, points, antenna, ignore));
+}
+
+function levelOf(
+  grid: Grid,
+  points: readonly Point[],
+  antenna: number,
+  ignore: ReadonlySet<number>,
+): AntennaLevel {
+  const touches = ({ baseline }: Point, a: number) =>
+    grid.first[baseline] === a || grid.second[baseline] === a;
+  const own = points.filter((point) => touches(point, antenna) && !ignoredBut(grid, point, ignore, antenna));
+  const others = points.filter(
+    (point) =>
+      !touches(point, antenna) &&
+      !ignore.has(grid.first[point.baseline]!) &&
+      !ignore.has(grid.second[point.baseline]!),
+  );
+  const ratios: number[] = [];
+  let [power, expected, variance] = [0, 0, 0];
+  for (const point of own) {
+    const likely = median(nearestPowers(point, others));
+    if (!(likely > 0)) continue;
+    power += point.power;
+    expected += likely;
+    variance += point.error ** 2;
+    ratios.push(Math.log(Math.max(point.power, point.error * 0.1) / likely) / 2);
+  }
+  const error = Math.sqrt(variance);
+  return {
+    power: expected > 0 ? power / expected : Number.NaN,
+    powerError: expected > 0 ? error / expected : Number.NaN,
+    logAmplitude: median(ratios),
+    scatter: robustSigma(ratios),
+    below: ratios.filter((ratio) => ratio < 0).length / Math.max(1, ratios.length),
+    expected: error > 0 ? expected / error : 0,
+    stretches: ratios.length,
+  };
+}
+
+function ignoredBut(grid: Grid, { baseline }: Point, ignore: ReadonlySet<number>, antenna: number): boolean {
+  const other = grid.first[baseline] === antenna ? grid.second[baseline]! : grid.first[baseline]!;
+  return ignore.has(other);
+}
+
+function nearestPowers(point: Point, others: readonly Point[]): number[] {
+  const near: { distance: number; power: number }[] = [];
+  for (const other of others) {
+    const distance = Math.min(
+      Math.hypot(other.u - point.u, other.v - point.v),
+      Math.hypot(other.u + point.u, other.v + point.v),
+    );
+    if (near.length === NEIGHBOURS && distance >= near[NEIGHBOURS - 1]!.distance) continue;
+    near.push({ distance, power: other.power });
+    near.sort((a, b) => a.distance - b.distance);
+    if (near.length > NEIGHBOURS) near.pop();
+  }
+  return near.map(({ power }) => power);
+}
+
+function pointsOf(grid: Grid, plane: Plane, stretches: number): Point[] {
+  const { baselines, times, cellOf, survey } = grid;
+  const points: Point[] = [];
+  const length = Math.max(1, Math.ceil(times.length / stretches));
+  for (let b = 0; b < baselines; b++) {
+    for (let from = 0; from < times.length; from += length) {
+      const point = pointOf(grid, plane, b, from, Math.min(times.length, from + length));
+      if (point === null) continue;
+      let cell = -1;
+      for (let t = from; t < Math.min(times.length, from + length) && cell < 0; t++)
+        cell = cellOf[t * baselines + b]!;
+      points.push({ ...point, baseline: b, u: survey.tracks.u[cell]!, v: survey.tracks.v[cell]! });
+    }
+  }
+  return points;
+}
+
+function pointOf(grid: Grid, plane: Plane, b: number, from: number, to: number) {
+  const { baselines, segments } = grid;
+  let [power, variance, blocks] = [0, 0, 0];
+  for (const segment of segments) {
+    for (let start = Math.max(from, segment.start); start < Math.min(to, segment.end); start += COHERENT) {
+      let [re, im, noise, n] = [0, 0, 0, 0];
+      for (let t = start; t < Math.min(start + COHERENT, to, segment.end); t++) {
+        const i = t * baselines + b;
+        if (Number.isNaN(plane.real[i]!)) continue;
+        re += plane.real[i]!;
+        im += plane.imag[i]!;
+        noise += plane.variance[i]!;
+        n += 1;
+      }
+      if (n === 0) continue;
+      power += (re * re + im * im - 2 * noise) / (n * n);
+      variance += (2 * noise) ** 2 / n ** 4;
+      blocks += 1;
+    }
+  }
+  if (blocks === 0) return null;
+  return { power: power / blocks, error: Math.sqrt(variance) / blocks };
+}
