@@ -76,6 +76,7 @@ export class CombinedScores {
    * @param polarization index, or null: all together
    * @param scores (steps x columns) out: variance 1 in noise, 0 where nothing is usable
    * @param marks  (steps x columns) out: 2 where nothing is usable, else 0
+   * @param samples (steps x columns) out: scores that were added
    */
   fill(
     groups: number,
@@ -84,6 +85,7 @@ export class CombinedScores {
     polarization: number | null,
     scores: Float32Array,
     marks: Uint8Array,
+    samples?: Float32Array,
   ): void {
     const from = polarization ?? 0;
     const to = polarization === null ? this.polarizations : from + 1;
@@ -100,6 +102,7 @@ export class CombinedScores {
         }
         scores[step * columns + c] = count === 0 ? 0 : (sum * QUANTUM) / Math.sqrt(count);
         marks[step * columns + c] = count === 0 ? 2 : 0;
+        if (samples !== undefined) samples[step * columns + c] = count;
       }
     }
   }

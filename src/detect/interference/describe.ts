@@ -1,0 +1,129 @@
+/** Features as events, in numbers and words. */
+import { SECONDS_PER_DAY } from "../../util/dates.ts";
+import type { DetectedEvent } from "../event.ts";
+import { ELEVATED_SHARE } from "../pass/second-pass.ts";
+import type { DetectRequest } from "../request.ts";
+import { amplitudeOf } from "./amplitude.ts";
+import type { Feature } from "./features.ts";
+import type { Grid } from "./grid.ts";
+import { channelsOf } from "./group.ts";
+import { scopeOf, selectionsOf } from "./selections.ts";
+
+const CAUSES = { "persistent-line": "channels", "drifting-line": "channels", burst: "time" } as const;
+const WORDS = {
+  "persistent-line": "stand out for",
+  "drifting-line": "are crossed in",
+  burst: "stand out for",
+} as const;
+/** Confidence in a flag where the plan looks for lines and this is one. */
+const DOUBTFUL_LINE = 0.3;
+
+export function eventOf(grid: Grid, request: DetectRequest, feature: Feature): DetectedEvent {
+  const [flag, ...others] = selectionsOf(grid, feature);
+  // Where lines are what is looked for, one that stays may be the sky's.
+  const doubtful = request.purpose === "line" && feature.kind === "persistent-line";
+  const { counts, significance } = feature;
+  const amplitude = amplitudeOf(grid, feature);
+  const only = feature.who.kind === "listed" && feature.who.baselines === 1;
+  return {
+    kind: feature.kind,
+    cause: only ? "baseline" : feature.who.kind === "antenna" ? "antenna" : CAUSES[feature.kind],
+    scope: scopeOf(grid, feature),
+    flag: doubtful ? null : flag!,
+    ...(doubtful || others.length === 0 ? {} : { alsoFlag: others }),
+    size: amplitude,
+    sizeError: Number.NaN,
+    unit: "sigma",
+    significance,
+    confidence: doubtful ? DOUBTFUL_LINE : confidenceOf(significance, counts.elevated / counts.usable),
+    samples: counts.usable,
+    outlying: Math.round(aboveNoise(counts.elevated, counts.usable)),
+    evidence: evidenceOf(grid, feature, amplitude, doubtful),
+    repair: null,
+  };
+}
+
+/** Samples elevated beyond what noise elevates. */
+function aboveNoise(elevated: number, usable: number): number {
+  return Math.max(0, (elevated - ELEVATED_SHARE * usable) / (1 - ELEVATED_SHARE));
+}
+
+/** Strong and filled is sure; faint or thinly filled is less so. */
+function confidenceOf(significance: number, share: number): number {
+  const sure = Number.isNaN(significance) ? 0.9 : 1 - Math.exp(-significance / 5);
+  const filled = Number.isNaN(share) ? 0.9 : Math.min(1, 0.6 + share);
+  return Math.min(0.99, sure * filled);
+}
+
+function evidenceOf(grid: Grid, feature: Feature, amplitude: number, doubtful: boolean): string {
+  const { counts, who, kind } = feature;
+  const { polarizations } = grid.survey.dataset;
+  const products =
+    who.subset.polarizations === null
+      ? ""
+      : ` in ${polarizations.filter((_, p) => who.subset.polarizations![p] === 1).join(" and ")}`;
+  const shares =
+    counts.usable > 0
+      ? `; ${percent(counts.elevated / counts.usable)} of their ${counts.usable} samples exceed what ` +
+        `${percent(ELEVATED_SHARE)} of noise does`
+      : "; too many samples to keep a mark of each, so that only sums over baselines were looked at";
+  const doubt = doubtful ? "; it may be a line of the sky, which this observation looks for" : "";
+  const size = amplitude >= 8 ? "8 sigma a sample or more" : `about ${amplitude.toFixed(1)} sigma a sample`;
+  return (
+    `${channelWords(grid, feature)} ${WORDS[kind]} ${durationWords(grid, feature)} on ${baselineWords(grid, feature)}` +
+    `${products}, by ${size}${shares}${doubt}`
+  );
+}
+
+function channelWords(grid: Grid, feature: Feature): string {
+  const { dataset } = grid.survey;
+  const { channels, subbands } = dataset.shape;
+  const [low, high] = channelsOf(feature);
+  const { frequencies, channelWidths } = dataset.setups[0]!;
+  const edges = [low, high].flatMap((column) => {
+    const half = channelWidths[Math.floor(column / channels)]! / 2;
+    return [frequencies[column]! - half, frequencies[column]! + half];
+  });
+  const [from, to] = [Math.min(...edges) / 1e6, Math.max(...edges) / 1e6];
+  const digits = Math.max(0, Math.min(6, 2 - Math.floor(Math.log10(Math.max(1e-6, to - from)))));
+  const [a, b] = [low % channels, high % channels];
+  const [first, last] = [Math.floor(low / channels), Math.floor(high / channels)];
+  const name = (subband: number, channel: number) =>
+    subbands === 1 ? `${channel}` : `${channel} of sub-band ${subband}`;
+  const range =
+    low === high
+      ? `Channel ${name(first, a)}`
+      : first === last
+        ? `Channels ${a} to ${name(last, b)}`
+        : `Channels ${name(first, a)} to ${name(last, b)}`;
+  const setups = dataset.setups.length > 1 ? " in the first setup" : "";
+  return `${range} (${from.toFixed(digits)} to ${to.toFixed(digits)} MHz${setups})`;
+}
+
+function durationWords(grid: Grid, { rectangles }: Feature): string {
+  const { integration } = grid.survey;
+  const first = Math.min(...rectangles.map(({ firstStep }) => firstStep));
+  const last = Math.max(...rectangles.map(({ lastStep }) => lastStep));
+  if (first === 0 && last === grid.steps - 1 && rectangles.length === 1) return "the whole time";
+  let seconds = 0;
+  for (const r of rectangles) {
+    const [start, end] = grid.timeRange(r.firstStep, r.lastStep);
+    seconds += (end - start) * SECONDS_PER_DAY + (Number.isFinite(integration) ? integration : 0);
+  }
+  const length = `${Number(seconds.toPrecision(3))} s`;
+  return rectangles.length === 1 ? length : `${length} in ${rectangles.length} pieces`;
+}
+
+function baselineWords(grid: Grid, { who }: Feature): string {
+  const all = grid.survey.baselines.length;
+  if (who.kind === "all") return all === 1 ? "the one baseline" : `all ${all} baselines`;
+  if (who.kind === "antenna") return `the ${who.baselines} baselines of one antenna`;
+  const share = `${who.baselines} of ${all} baselines (${percent(who.baselines / all)})`;
+  return who.kind === "short"
+    ? `the shortest ${share}, below ${Number((who.shorterThan * 299792458).toPrecision(3))} m`
+    : share;
+}
+
+function percent(share: number): string {
+  return `${Number((100 * share).toPrecision(2))} %`;
+}

@@ -1,0 +1,188 @@
+/** Features of interference: rectangles of integrations by channels, with those whom they hit. */
+import type { Band } from "../pass/bands.ts";
+import { area, boundsOf, coverOf, linesOf, type Region, regionsOf } from "./components.ts";
+import { settleEdges } from "./edges.ts";
+import { Finder } from "./find.ts";
+import { type Counts, type Grid, noCounts, type Rectangle } from "./grid.ts";
+import { likelihood, type Who, whoIsHit } from "./subset.ts";
+
+export type FeatureKind = "persistent-line" | "burst" | "drifting-line";
+
+export interface Feature {
+  readonly kind: FeatureKind;
+  readonly band: Band;
+  readonly rectangles: readonly Rectangle[];
+  readonly who: Who;
+  readonly counts: Counts;
+  /** in sigmas: the square root of twice the log likelihood ratio against noise */
+  readonly significance: number;
+}
+
+/** Fewer elevated samples than this share of a feature's are the background's fault. */
+const LEAST_ELEVATED = 0.12;
+/** A feature must be this sure, sigmas. */
+const LEAST_SIGNIFICANCE = 7;
+const MOST_REGIONS = 256;
+/** A feature this long in time, as a share of the observation, and this narrow, is a line. */
+const LINE_DURATION = 0.4;
+const LINE_WIDTH = 0.15;
+/** A drifting line moves over this many channels, with this correlation of channel and time. */
+const DRIFT_CHANNELS = 3;
+const DRIFT_CORRELATION = 0.9;
+/** Of what one baseline alone sees: shares of the samples that must stand out, and how many samples at least. */
+const ALONE_OUTLYING = 0.5;
+const ALONE_BRIGHT = 0.05;
+const ALONE_SAMPLES = 8;
+
+/** Everything that stands out in a band; takes it out of the grid's marks. */
+export function featuresOf(grid: Grid, band: Band): Feature[] {
+  const { mask, persistent } = new Finder(grid.pass.combined).find(band);
+  const features: Feature[] = [];
+  for (const [low, high] of runsOf(persistent)) {
+    const rectangle = shifted({ firstStep: 0, lastStep: grid.steps - 1, low, high }, band);
+    const feature = settle(grid, band, "persistent-line", [rectangle]);
+    if (feature === null) continue;
+    features.push(feature);
+    take(grid, feature, mask);
+  }
+  for (const region of regionsOf(mask, grid.steps, band.columns).slice(0, MOST_REGIONS)) {
+    const rectangles = coverOf(region, band.columns).map((r) => shifted(r, band));
+    const feature = settle(grid, band, kindOf(region, band.columns, grid.steps), rectangles);
+    if (feature === null) continue;
+    features.push(feature);
+    take(grid, feature, null);
+  }
+  return features;
+}
+
+/** What stands out on single baselines and is left when the features of all are taken out. */
+export function featuresOfBaselines(grid: Grid, band: Band): Feature[] {
+  const { marks } = grid.pass;
+  const { tracks, baselines } = grid.survey;
+  if (marks === null) return [];
+  const features: Feature[] = [];
+  const { columns } = band;
+  const mask = new Uint8Array(grid.steps * columns);
+  for (let baseline = 0; baseline < baselines.length; baseline++) {
+    mask.fill(0);
+    let some = 0;
+    for (let cell = tracks.firstCell[baseline]!; cell < tracks.firstCell[baseline + 1]!; cell++) {
+      const at = grid.stepOfCell[cell]! * columns;
+      for (let c = 0; c < columns; c++) {
+        for (let p = 0; p < grid.polarizations; p++) {
+          if (!marks.outlying.has(cell, (band.first + c) * grid.polarizations + p)) continue;
+          mask[at + c] = 1;
+          some += 1;
+        }
+      }
+    }
+    if (some < ALONE_SAMPLES) continue;
+    const only = new Uint8Array(baselines.length);
+    only[baseline] = 1;
+    const who: Who = {
+      subset: { baselines: only, polarizations: null },
+      kind: "listed",
+      antenna: null,
+      baselines: 1,
+      shorterThan: Number.NaN,
+    };
+    for (const region of regionsOf(mask, grid.steps, columns).slice(0, MOST_REGIONS)) {
+      if (region.length * grid.polarizations < ALONE_SAMPLES) break;
+      const rectangles = coverOf(region, columns).map((r) => shifted(r, band));
+      const feature = weigh(grid, band, kindOf(region, columns, grid.steps), rectangles, who);
+      const { usable, outlying, bright } = feature.counts;
+      const sure =
+        outlying >= ALONE_SAMPLES && outlying >= ALONE_OUTLYING * usable && bright >= ALONE_BRIGHT * usable;
+      if (!sure) continue;
+      features.push(feature);
+      take(grid, feature, null);
+    }
+  }
+  return features;
+}
+
+function settle(grid: Grid, band: Band, kind: FeatureKind, rectangles: readonly Rectangle[]): Feature | null {
+  let settled = rectangles;
+  let who = whoIsHit(grid, settled);
+  if (kind !== "persistent-line") {
+    if (settled.length === 1) settled = settled.map((r) => settleEdges(grid, r, who.subset, band));
+    who = whoIsHit(grid, settled);
+  }
+  if (grid.pass.marks === null) return { ...weigh(grid, band, kind, settled, who), significance: Number.NaN };
+  const feature = weigh(grid, band, kind, settled, who);
+  const { usable, elevated } = feature.counts;
+  if (usable === 0 || elevated < LEAST_ELEVATED * usable) return null;
+  return feature.significance < LEAST_SIGNIFICANCE ? null : feature;
+}
+
+function weigh(
+  grid: Grid,
+  band: Band,
+  kind: FeatureKind,
+  rectangles: readonly Rectangle[],
+  who: Who,
+): Feature {
+  const counts = noCounts();
+  for (const rectangle of rectangles) grid.count(rectangle, who.subset, [counts], () => 0);
+  const gain = likelihood(counts.usable, counts.elevated, counts.elevated / Math.max(1, counts.usable));
+  return { kind, band, rectangles, who, counts, significance: Math.sqrt(Math.max(0, 2 * gain)) };
+}
+
+/** Take a feature out of the marks and, if given, of a mask of its band. */
+function take(grid: Grid, { rectangles, who, band }: Feature, mask: Uint8Array | null): void {
+  for (const r of rectangles) {
+    grid.clear(r, who.subset);
+    if (mask === null) continue;
+    for (let step = r.firstStep; step <= r.lastStep; step++) {
+      const at = step * band.columns - band.first;
+      mask.fill(0, at + r.low, at + r.high + 1);
+    }
+  }
+}
+
+function kindOf(region: Region, columns: number, steps: number): FeatureKind {
+  const bounds = boundsOf(region, columns);
+  const width = bounds.high - bounds.low + 1;
+  const duration = bounds.lastStep - bounds.firstStep + 1;
+  if (duration >= LINE_DURATION * steps && width <= Math.max(1, LINE_WIDTH * columns)) {
+    return "persistent-line";
+  }
+  const drifts =
+    width >= DRIFT_CHANNELS &&
+    duration >= DRIFT_CHANNELS &&
+    region.length < 0.7 * area(bounds) &&
+    Math.abs(driftCorrelation(region, columns)) > DRIFT_CORRELATION;
+  return drifts ? "drifting-line" : "burst";
+}
+
+/** Correlation of a region's middle channel with time. */
+function driftCorrelation(region: Region, columns: number): number {
+  const lines = linesOf(region, columns);
+  const n = lines.length;
+  const meanStep = lines.reduce((sum, { step }) => sum + step, 0) / n;
+  const meanAt = lines.reduce((sum, { low, high }) => sum + (low + high) / 2, 0) / n;
+  let [st, ss, tt] = [0, 0, 0];
+  for (const { step, low, high } of lines) {
+    const s = step - meanStep;
+    const t = (low + high) / 2 - meanAt;
+    st += s * t;
+    ss += s * s;
+    tt += t * t;
+  }
+  return st / Math.sqrt(ss * tt);
+}
+
+function shifted(r: Rectangle, { first }: Band): Rectangle {
+  return { ...r, low: r.low + first, high: r.high + first };
+}
+
+function runsOf(flags: Uint8Array): [low: number, high: number][] {
+  const runs: [number, number][] = [];
+  for (let c = 0; c < flags.length; c++) {
+    if (flags[c] === 0) continue;
+    const last = runs[runs.length - 1];
+    if (last !== undefined && last[1] === c - 1) last[1] = c;
+    else runs.push([c, c]);
+  }
+  return runs;
+}

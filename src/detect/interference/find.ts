@@ -1,0 +1,133 @@
+/** Where scores added over baselines stand out: masks of integrations by channels. */
+
+import type { Band } from "../pass/bands.ts";
+import { type CombinedScores, LENGTH_GROUPS } from "../pass/combined.ts";
+import { medianInPlace } from "../statistics/order.ts";
+import { SumThresholdRoom, sumThreshold } from "../statistics/sum-threshold.ts";
+
+const LONGEST = 64;
+const FIRST = 6;
+const RATIO = 1.5;
+/** Mean score of a sample below which the background is doubted rather than the data. */
+const LEAST_MEAN = 0.3;
+/** The same of most of a band at once, which a background that does not fit causes more easily. */
+const LEAST_ROW_MEAN = 1.5;
+/** A channel's mean over all time must stand this many sigmas out of the band's. */
+const LEAST_CHANNEL = 8;
+/** Share of the integrations at which a channel is hit all the time. */
+export const PERSISTENT_SHARE = 0.75;
+
+export interface Found {
+  /** (steps x columns) 1: stands out; 0 else */
+  readonly mask: Uint8Array;
+  /** (columns) 1: stands out at all times */
+  readonly persistent: Uint8Array;
+}
+
+export class Finder {
+  private readonly combined: CombinedScores;
+  private readonly room = new SumThresholdRoom();
+
+  constructor(combined: CombinedScores) {
+    this.combined = combined;
+  }
+
+  /** What stands out in a band: on all baselines or on the shorter ones, in all products or in one. */
+  find(band: Band): Found {
+    const { combined } = this;
+    const { steps, polarizations } = combined;
+    const { columns } = band;
+    const mask = new Uint8Array(steps * columns);
+    const persistent = new Uint8Array(columns);
+    const scores = new Float32Array(steps * columns);
+    const marks = new Uint8Array(steps * columns);
+    const counts = new Float32Array(steps * columns);
+    const products: (number | null)[] = polarizations === 1 ? [null] : [null, ...Array(polarizations).keys()];
+    for (let groups = LENGTH_GROUPS; groups >= 1; groups = groups >> 1) {
+      for (const product of products) {
+        combined.fill(groups, band.first, columns, product, scores, marks, counts);
+        this.level(scores, marks, counts, steps, columns);
+        this.markChannels(scores, marks, counts, steps, columns, persistent);
+        sumThreshold(
+          scores,
+          marks,
+          steps,
+          columns,
+          { first: FIRST, ratio: RATIO, longestTime: LONGEST, longestFrequency: Math.max(1, columns >> 1) },
+          this.room,
+        );
+        for (let i = 0; i < mask.length; i++) if (marks[i] === 1) mask[i] = 1;
+      }
+    }
+    for (let c = 0; c < columns; c++) {
+      let hit = 0;
+      for (let step = 0; step < steps; step++) hit += mask[step * columns + c]!;
+      if (steps > 1 && hit >= PERSISTENT_SHARE * steps) persistent[c] = 1;
+    }
+    return { mask, persistent };
+  }
+
+  /** Take out what most of the band has in common, unless it is too strong to be a background that does not fit. */
+  private level(
+    scores: Float32Array,
+    marks: Uint8Array,
+    counts: Float32Array,
+    steps: number,
+    columns: number,
+  ): void {
+    const work = new Float64Array(columns);
+    for (let step = 0; step < steps; step++) {
+      const at = step * columns;
+      let count = 0;
+      let samples = 0;
+      for (let i = at; i < at + columns; i++) {
+        if (marks[i] === 2) continue;
+        work[count++] = scores[i]!;
+        samples += counts[i]!;
+      }
+      if (count < 2) continue;
+      const common = medianInPlace(work, count);
+      if (common <= 0 || common > LEAST_ROW_MEAN * Math.sqrt(samples / count)) continue;
+      for (let k = 0; k < count; k++) work[k] = Math.abs(work[k]! - common);
+      const above = Math.max(1, 1.4826 * medianInPlace(work, count));
+      for (let i = at; i < at + columns; i++) scores[i] = (scores[i]! - common) / above;
+    }
+  }
+
+  private markChannels(
+    scores: Float32Array,
+    marks: Uint8Array,
+    counts: Float32Array,
+    steps: number,
+    columns: number,
+    persistent: Uint8Array,
+  ): void {
+    const sums = new Float64Array(columns);
+    const means = new Float64Array(columns);
+    const work = new Float64Array(columns);
+    let known = 0;
+    for (let c = 0; c < columns; c++) {
+      let sum = 0;
+      let weighted = 0;
+      let samples = 0;
+      let n = 0;
+      for (let i = c; i < steps * columns; i += columns) {
+        if (marks[i] === 2) continue;
+        sum += scores[i]!;
+        weighted += scores[i]! * Math.sqrt(counts[i]!);
+        samples += counts[i]!;
+        n += 1;
+      }
+      sums[c] = n === 0 ? Number.NaN : sum / Math.sqrt(n);
+      means[c] = weighted / samples;
+      if (n > 0) work[known++] = sums[c]!;
+    }
+    if (known < 4) return;
+    const middle = medianInPlace(work, known);
+    for (let k = 0; k < known; k++) work[k] = Math.abs(work[k]! - middle);
+    const spread = Math.max(1, 1.4826 * medianInPlace(work, known));
+    for (let c = 0; c < columns; c++) {
+      if (sums[c]! - middle > LEAST_CHANNEL * spread && means[c]! > LEAST_MEAN) persistent[c] = 1;
+    }
+  }
+}

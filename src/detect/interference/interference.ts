@@ -1,0 +1,82 @@
+/**
+ * Interference: what stands out of each baseline's background in time and frequency, gathered into few selections.
+ * @see Offringa et al. 2010, MNRAS 405, 155 (SumThreshold)
+ */
+import { EVERYTHING, type Selection } from "../../dataset/selection.ts";
+import type { Survey } from "../../measure/survey-result.ts";
+import type { DetectedEvent } from "../event.ts";
+import type { Band } from "../pass/bands.ts";
+import { type SecondPass, SINGLE_SCORE, secondPass } from "../pass/second-pass.ts";
+import type { DetectRequest } from "../request.ts";
+import { eventOf } from "./describe.ts";
+import { type Feature, featuresOf, featuresOfBaselines } from "./features.ts";
+import { Grid } from "./grid.ts";
+import { groupInTime } from "./group.ts";
+import { isProtected } from "./protect.ts";
+
+/**
+ * @param explained samples that antenna faults account for already: not looked at again
+ * @throws InputError where the dataset turns out to be malformed
+ */
+export async function detectInterference(
+  survey: Survey,
+  request: DetectRequest,
+  explained: readonly Selection[],
+): Promise<DetectedEvent[]> {
+  if (survey.tracks.cells === 0) return [];
+  return interferenceOf(survey, await secondPass(survey, request.onProgress), request, explained);
+}
+
+/** The same from a second pass that is there already; uses up its marks. */
+export function interferenceOf(
+  survey: Survey,
+  pass: SecondPass,
+  request: DetectRequest,
+  explained: readonly Selection[],
+): DetectedEvent[] {
+  const grid = new Grid(survey, pass);
+  grid.explain(explained);
+  const { subbands, channels } = survey.dataset.shape;
+  const bands: readonly Band[] =
+    pass.bands.length > 0 ? pass.bands : [{ first: 0, columns: subbands * channels, subband: null }];
+  const features: Feature[] = [];
+  for (const band of bands) {
+    const all = featuresOf(grid, band);
+    features.push(...groupInTime([...all, ...featuresOfBaselines(grid, band)], grid.steps));
+  }
+  const events = features
+    .filter((feature) => !isProtected(survey, request, feature))
+    .map((feature) => eventOf(grid, request, feature));
+  const lone = loneSamples(grid);
+  return lone === null ? events : [...events, lone];
+}
+
+/** Bright samples that no feature took. */
+function loneSamples({ pass: { marks }, survey }: Grid): DetectedEvent | null {
+  if (marks === null) return null;
+  const count = marks.bright.total();
+  if (count === 0) return null;
+  const usable = marks.usable.total();
+  const share = count / usable;
+  return {
+    kind: "lone-samples",
+    cause: "samples",
+    scope: EVERYTHING,
+    flag: null,
+    size: SINGLE_SCORE,
+    sizeError: Number.NaN,
+    unit: "sigma",
+    significance: SINGLE_SCORE,
+    confidence: 0.9,
+    samples: usable,
+    outlying: count,
+    evidence:
+      `${count} samples without neighbours, ${percent(share)} of ${usable}, stand more than ${SINGLE_SCORE} sigma out of the ` +
+      `background of their baseline, spread over ${survey.baselines.length} baselines`,
+    repair: `clip what stands more than ${SINGLE_SCORE} sigma out of each baseline's background`,
+  };
+}
+
+function percent(share: number): string {
+  return `${Number((100 * share).toPrecision(2))} %`;
+}
