@@ -39,23 +39,35 @@ export function scoreOfPower(power: number): number {
   return x;
 }
 
-/** Scores lie between these: what is fainter than LOWEST or brighter than HIGHEST says no more. */
-export const LOWEST_SCORE = -3;
+/** What is brighter than this says no more. */
 export const HIGHEST_SCORE = 8;
 
-const STEPS_PER_UNIT = 32;
+const STEPS_PER_UNIT = 128;
 const HIGHEST_POWER = 40;
 
-/** Score of the middle of each step of power. */
-const SCORES = Float32Array.from({ length: HIGHEST_POWER * STEPS_PER_UNIT + 1 }, (_, step) => {
-  const score = scoreOfPower((step + 0.5) / STEPS_PER_UNIT);
-  return Math.min(HIGHEST_SCORE, Math.max(LOWEST_SCORE, score));
-});
+/** Mean score of noise over each step of power, so that the scores of noise have the mean 0. */
+const SCORES = stepScores();
+
+function stepScores(): Float32Array {
+  const scores = new Float32Array(HIGHEST_POWER * STEPS_PER_UNIT + 1);
+  let below = Number.NEGATIVE_INFINITY;
+  for (let step = 0; step < scores.length; step++) {
+    const power = (step + 1) / STEPS_PER_UNIT;
+    const above = scoreOfPower(power);
+    const share = Math.exp(-step / STEPS_PER_UNIT) - Math.exp(-power);
+    const mean = (Math.exp(-0.5 * below * below) - Math.exp(-0.5 * above * above)) / (SQRT_TWO_PI * share);
+    // Far up the tail the difference loses its digits: there the middle will do.
+    const score = power > 20 ? 0.5 * (below + above) : mean;
+    scores[step] = Math.min(HIGHEST_SCORE, score);
+    below = above;
+  }
+  return scores;
+}
 
 /**
  * Turn powers into normal scores in place: |V - background|^2 / (2 sigma^2) of pure noise is exponential with mean 1,
  * and its score is normal with mean 0 and variance 1, so that scores add up over anything (Stouffer et al. 1949).
- * Scores are of the nearest 1/32 of a unit of power and lie in LOWEST_SCORE..HIGHEST_SCORE; NaN becomes 0.
+ * Scores are of steps of 1/128 of a unit of power and at most HIGHEST_SCORE; NaN becomes 0.
  */
 export function fillScores(power: Float32Array, count: number): void {
   const top = SCORES.length - 1;
