@@ -1,24 +1,26 @@
 /** `visvet check`: survey, judge, print the text report, write the output files. */
-import type { CommandModule } from "yargs";
+import { command } from "./command.ts";
 
 interface CheckArguments {
-  dataset: string[];
-  plan: string | undefined;
-  out: string | undefined;
-  rules: string[] | undefined;
-  field: number | undefined;
-  strict: boolean;
-  quiet: boolean;
+  readonly dataset: readonly string[];
+  readonly plan: string | undefined;
+  readonly out: string | undefined;
+  readonly rules: readonly string[] | undefined;
+  readonly field: number | undefined;
+  readonly strict: boolean;
+  readonly quiet: boolean;
 }
 
-export const check: CommandModule<object, CheckArguments> = {
+export const check = command<CheckArguments>({
   command: "check <dataset..>",
   describe: "Judge whether a dataset can give the planned image; write the reports",
-  builder: (yargs) =>
+  examples: [
+    ["check night12.uvfits", "against an image derived from the data"],
+    ["check night12.uvfits --plan deep.yaml", "against the image you plan"],
+    ["check a.uvfits b.uvfits --out checks --strict", "several; a caution also exits with 1"],
+  ],
+  options: (yargs) =>
     yargs
-      .example("$0 check night12.uvfits", "judge it against an image derived from the data")
-      .example("$0 check night12.uvfits --plan deep-field.yaml", "judge it against the image you plan")
-      .example("$0 check a.uvfits b.uvfits --out checks --strict", "several; a caution also exits with 1")
       .positional("dataset", { type: "string", array: true, demandOption: true, describe: "FITS files" })
       .option("plan", { type: "string", requiresArg: true, describe: "The image you plan, a YAML file" })
       .option("out", {
@@ -34,9 +36,9 @@ export const check: CommandModule<object, CheckArguments> = {
       })
       .option("field", { type: "number", requiresArg: true, describe: "Judge this field alone, by its id" })
       .option("strict", { type: "boolean", default: false, describe: "Exit with 1 for a caution too" })
-      .option("quiet", { type: "boolean", default: false, describe: "Print the verdict alone" }) as never,
+      .option("quiet", { type: "boolean", default: false, describe: "Print the verdict alone" }),
   handler: async (given) => {
     const { runCheck } = await import("./run-check.ts");
     process.exitCode = await runCheck(given);
   },
-};
+});

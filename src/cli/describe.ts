@@ -1,18 +1,19 @@
 /** `visvet describe`: what is in a dataset; no judging. */
-import type { CommandModule } from "yargs";
+import { command } from "./command.ts";
 
-export const describe: CommandModule<object, { dataset: string }> = {
+export const describe = command<{ readonly dataset: string }>({
   command: "describe <dataset>",
   describe: "Show what is in a dataset; judge nothing",
-  builder: (yargs) =>
-    yargs
-      .example("$0 describe night12.uvfits", "array, times, fields, frequencies, sizes")
-      .example("$0 describe night12.uvfits.gz", "gzipped files are unpacked on the way")
-      .positional("dataset", { type: "string", demandOption: true, describe: "A FITS file" }),
+  examples: [
+    ["describe night12.uvfits", "array, times, fields, frequencies, sizes"],
+    ["describe night12.uvfits.gz", "gzipped files are unpacked on the way"],
+  ],
+  options: (yargs) =>
+    yargs.positional("dataset", { type: "string", demandOption: true, describe: "A FITS file" }),
   handler: async ({ dataset: path }) => {
     const { openDataset } = await import("../dataset/open.ts");
     const { describeText } = await import("../report/describe.ts");
     const dataset = await openDataset(path);
     process.stdout.write(describeText(dataset, { summary: dataset.summary }));
   },
-};
+});

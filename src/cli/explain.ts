@@ -1,26 +1,26 @@
 /** `visvet explain`: the rules in force, or one in full. */
-import type { CommandModule } from "yargs";
+import { command } from "./command.ts";
 
 interface ExplainArguments {
-  rule: string | undefined;
-  rules: string[] | undefined;
+  readonly rule: string | undefined;
+  readonly rules: readonly string[] | undefined;
 }
 
-export const explain: CommandModule<object, ExplainArguments> = {
+export const explain = command<ExplainArguments>({
   command: "explain [rule]",
   describe: "Show the rules in force, or one in full: question, limits, consequence, sources",
-  builder: (yargs) =>
-    yargs
-      .example("$0 explain", "every rule with its limits, by family")
-      .example("$0 explain phase-jump", "one rule in full")
-      .example("$0 explain --rules my-rules", "with the rules of a folder added")
-      .positional("rule", { type: "string", describe: "The id of a rule" })
-      .option("rules", {
-        type: "string",
-        array: true,
-        requiresArg: true,
-        describe: "Folders of rule files that add to ours, or replace them by id",
-      }) as never,
+  examples: [
+    ["explain", "every rule with its limits, by family"],
+    ["explain phase-jump", "one rule in full"],
+    ["explain --rules my-rules", "with the rules of a folder added"],
+  ],
+  options: (yargs) =>
+    yargs.positional("rule", { type: "string", describe: "The id of a rule" }).option("rules", {
+      type: "string",
+      array: true,
+      requiresArg: true,
+      describe: "Folders of rule files that add to ours, or replace them by id",
+    }),
   handler: async ({ rule, rules }) => {
     const { default: chalk } = await import("chalk");
     const { loadRules } = await import("../rules/load.ts");
@@ -29,4 +29,4 @@ export const explain: CommandModule<object, ExplainArguments> = {
     const options = { width: process.stdout.columns ?? 80, colour: chalk.level > 0 };
     process.stdout.write(rule === undefined ? explainRules(set, options) : explainRule(set, rule, options));
   },
-};
+});

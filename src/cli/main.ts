@@ -2,7 +2,7 @@
 /** The `visvet` command: finds the subcommand, and turns what is thrown into one line and an exit status. */
 import yargs from "yargs";
 import { hideBin } from "yargs/helpers";
-import { InputError } from "../util/errors.ts";
+import { InputError, nearest } from "../util/errors.ts";
 import { plainText } from "../util/terminal.ts";
 import { check } from "./check.ts";
 import { describe } from "./describe.ts";
@@ -11,6 +11,8 @@ import { simulate } from "./simulate.ts";
 
 /** Could not be judged: bad usage, unreadable or malformed input. */
 const EXIT_NOT_JUDGED = 2;
+
+const COMMANDS = [check, describe, explain, simulate].map(({ command }) => String(command).split(" ")[0]!);
 
 // A reader that has seen enough (`visvet check … | head`) is no error.
 process.stdout.on("error", (error: NodeJS.ErrnoException) => {
@@ -27,17 +29,23 @@ try {
     .command(explain)
     .command(simulate)
     .demandCommand(1, "Name a command")
-    .recommendCommands()
+    .strictCommands()
     .strict()
     .wrap(Math.min(100, process.stdout.columns ?? 100))
     .epilogue("visvet <command> --help shows examples first.")
     .fail((message, error) => {
-      throw error ?? new InputError(message, {}, "See visvet --help");
+      throw error ?? new InputError(message, {}, adviceFor(message));
     })
     .parseAsync();
 } catch (error) {
   process.exitCode = EXIT_NOT_JUDGED;
   process.stderr.write(`${plainText(lineOf(error))}\n`);
+}
+
+function adviceFor(message: string): string {
+  const unknown = /^Unknown command: (\S+)$/.exec(message)?.[1];
+  const meant = unknown === undefined ? undefined : nearest(unknown, COMMANDS);
+  return meant === undefined ? "See visvet --help" : `Did you mean ${meant}? See visvet --help`;
 }
 
 function lineOf(error: unknown): string {

@@ -1,26 +1,26 @@
 /** `visvet simulate`: write an invented dataset with known faults, and the truth beside it. */
-import type { CommandModule } from "yargs";
+import { command } from "./command.ts";
 
 interface SimulateArguments {
-  scenario: string;
-  out: string;
+  readonly scenario: string;
+  readonly out: string;
 }
 
-export const simulate: CommandModule<object, SimulateArguments> = {
+export const simulate = command<SimulateArguments>({
   command: "simulate <scenario>",
   describe: "Write an invented dataset with known faults, and the truth beside it",
-  builder: (yargs) =>
+  examples: [["simulate three-faults.scenario.yaml --out night.uvfits", "also night.truth.json"]],
+  options: (yargs) =>
     yargs
-      .example("$0 simulate three-faults.scenario.yaml --out night.uvfits", "also night.truth.json")
       .positional("scenario", { type: "string", demandOption: true, describe: "A scenario, a YAML file" })
       .option("out", {
         type: "string",
         demandOption: true,
         requiresArg: true,
         describe: "Random-groups FITS file to write; never one that is there already",
-      }) as never,
+      }),
   handler: async ({ scenario, out }) => {
     const { runSimulate } = await import("./run-simulate.ts");
     await runSimulate(scenario, out);
   },
-};
+});
