@@ -53,7 +53,7 @@ function placeText(place: Place): string {
 
 /**
  * The known word nearest to a misspelt one, or undefined when none is near.
- * Near: an edit distance of at most a third of its length (Levenshtein 1966).
+ * Near: an edit distance of at most a third of its length (Damerau 1964, Commun. ACM 7, 171).
  */
 export function nearest(word: string, known: Iterable<string>): string | undefined {
   let best: string | undefined;
@@ -68,15 +68,22 @@ export function nearest(word: string, known: Iterable<string>): string | undefin
   return best;
 }
 
+/** Insertions, deletions, substitutions and swaps of neighbours that turn one word into the other. */
 function editDistance(a: string, b: string): number {
-  let previous = Array.from({ length: b.length + 1 }, (_, j) => j);
+  let beforeLast: number[] = [];
+  let last = Array.from({ length: b.length + 1 }, (_, j) => j);
   for (let i = 1; i <= a.length; i++) {
     const current = [i];
     for (let j = 1; j <= b.length; j++) {
-      const substitution = previous[j - 1]! + (a[i - 1] === b[j - 1] ? 0 : 1);
-      current.push(Math.min(previous[j]! + 1, current[j - 1]! + 1, substitution));
+      const substitution = last[j - 1]! + (a[i - 1] === b[j - 1] ? 0 : 1);
+      let least = Math.min(last[j]! + 1, current[j - 1]! + 1, substitution);
+      if (i > 1 && j > 1 && a[i - 1] === b[j - 2] && a[i - 2] === b[j - 1]) {
+        least = Math.min(least, beforeLast[j - 2]! + 1);
+      }
+      current.push(least);
     }
-    previous = current;
+    beforeLast = last;
+    last = current;
   }
-  return previous[b.length]!;
+  return last[b.length]!;
 }

@@ -23,9 +23,10 @@ describe("InputError", () => {
 });
 
 describe("nearest", () => {
-  // Levenshtein 1966: "wterm" is one insertion from "w-term".
+  // Damerau 1964: "wterm" is one insertion from "w-term", "chekc" one swap of neighbours from "check".
   it("gives the right spelling of a near miss", () => {
     expect(nearest("wterm", ["coverage", "w-term", "weights"])).toBe("w-term");
+    expect(nearest("chekc", ["check", "describe"])).toBe("check");
   });
 
   it("gives nothing when no word is near", () => {
