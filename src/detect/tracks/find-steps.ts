@@ -6,8 +6,9 @@ import {
   fillSteps,
   type Series,
   type Steps,
+  localSignificance,
   significanceOf,
-  solveStep,
+  type Solver,
   stepsOf,
   WINDOWS,
 } from "./step-search.ts";
@@ -31,6 +32,9 @@ export interface StepSettings {
   /** radians that are worth telling */
   readonly least: number;
   readonly skip: ReadonlySet<number>;
+  readonly solve: Solver;
+  /** the steps are logarithms of gains rather than phases */
+  readonly gains: boolean;
 }
 
 const MOST_STEPS = 24;
@@ -53,6 +57,7 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
         grid,
         members.map((i) => series[i]!),
         window,
+        settings.solve,
       ),
     ),
   }));
@@ -60,19 +65,20 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
   for (let tries = 0; found.length < MOST_STEPS && tries < 4 * MOST_STEPS; tries++) {
     const best = strongest(grid, groups, settings);
     if (best === null) break;
-    const step = settle(grid, series, groups, best);
+    const step = settle(grid, series, groups, best, settings);
     if (!isSharp(grid, groups[best.group]!, step) || repeats(found, step) || Math.abs(step.phase) < settings.least) {
       passOver(grid, groups, best);
       continue;
     }
     found.push(step);
-    turnBack(grid, series, step);
+    turnBack(grid, series, step, settings.gains);
     for (const group of groups) {
       for (const steps of group.windows) {
         fillSteps(
           grid,
           group.members.map((i) => series[i]!),
           steps,
+          settings.solve,
           step.at - steps.window,
           step.at + steps.window + 1,
         );
@@ -116,6 +122,7 @@ function strongest(grid: Grid, groups: readonly Group[], settings: StepSettings)
         const significance = significanceOf(steps, antennas, at, antenna);
         if (significance < settings.threshold || significance <= (best?.significance ?? 0)) continue;
         if (settings.skip.has(antenna) || steps.agreement[i]! < LEAST_AGREEMENT) continue;
+        if (localSignificance(steps, antennas, at, antenna) < settings.threshold) continue;
         best = { group: g, window: w, at, antenna, significance };
       }
     }
@@ -158,7 +165,7 @@ function passOver(grid: Grid, groups: readonly Group[], { antenna, at, group, wi
 }
 
 /** Exact time, series concerned, size and error. */
-function settle(grid: Grid, series: readonly Series[], groups: readonly Group[], best: Candidate): FoundStep {
+function settle(grid: Grid, series: readonly Series[], groups: readonly Group[], best: Candidate, settings: StepSettings): FoundStep {
   const { members, windows } = groups[best.group]!;
   const chosen = windows[best.window]!;
   const at = sharpest(grid, windows, best);
@@ -166,7 +173,7 @@ function settle(grid: Grid, series: readonly Series[], groups: readonly Group[],
   const left: [number, number] = [Math.max(segment.start, at - chosen.window), at];
   const right: [number, number] = [at, Math.min(segment.end, at + chosen.window)];
   const measure = (which: readonly number[]) => {
-    const solved = solveStep(
+    const solved = settings.solve(
       grid,
       which.map((i) => series[i]!),
       left,
@@ -207,9 +214,13 @@ function sharpest(grid: Grid, windows: readonly Steps[], best: Candidate): numbe
   return best.at;
 }
 
-function turnBack(grid: Grid, series: readonly Series[], step: FoundStep): void {
+function turnBack(grid: Grid, series: readonly Series[], step: FoundStep, gains: boolean): void {
   const { baselines, first, times } = grid;
   for (const b of grid.touching[step.antenna]!) {
+    if (gains) {
+      scaleBack(step, series, baselines, b, times.length);
+      continue;
+    }
     const angle = first[b] === step.antenna ? -step.phase : step.phase;
     const [c, s] = [Math.cos(angle), Math.sin(angle)];
     for (const which of step.series) {
@@ -220,6 +231,19 @@ function turnBack(grid: Grid, series: readonly Series[], step: FoundStep): void 
         real[i] = x * c - y * s;
         imag[i] = x * s + y * c;
       }
+    }
+  }
+}
+
+function scaleBack(step: FoundStep, series: readonly Series[], baselines: number, b: number, times: number): void {
+  const factor = Math.exp(-step.phase);
+  for (const which of step.series) {
+    const { real, imag, variance } = series[which]!;
+    for (let t = step.at; t < times; t++) {
+      const i = t * baselines + b;
+      real[i]! *= factor;
+      imag[i]! *= factor;
+      variance[i]! *= factor * factor;
     }
   }
 }

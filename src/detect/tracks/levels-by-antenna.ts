@@ -32,7 +32,8 @@ export interface AntennaLevel {
 
 const COHERENT = 8;
 const NEIGHBOURS = 5;
-const MOST_POINTS = 3000;
+const MOST_POINTS = 1500;
+const MOST_OTHERS = 800;
 
 /** @param planes of one polarization @param ignore antennas that are no measure for others */
 export function levelsByAntenna(
@@ -41,34 +42,39 @@ export function levelsByAntenna(
   ignore: ReadonlySet<number>,
 ): AntennaLevel[] {
   const stretches = Math.max(1, Math.min(8, Math.floor(MOST_POINTS / Math.max(1, grid.baselines))));
-  const points = planes.flatMap((plane) => pointsOf(grid, plane, stretches));
+  const points = planes.map((plane) => pointsOf(grid, plane, stretches));
   return grid.antennas.map((_, antenna) => levelOf(grid, points, antenna, ignore));
 }
 
 function levelOf(
   grid: Grid,
-  points: readonly Point[],
+  planes: readonly (readonly Point[])[],
   antenna: number,
   ignore: ReadonlySet<number>,
 ): AntennaLevel {
   const touches = ({ baseline }: Point, a: number) =>
     grid.first[baseline] === a || grid.second[baseline] === a;
+  const ratios: number[] = [];
+  let [power, expected, variance] = [0, 0, 0];
+  for (const points of planes) {
   const own = points.filter((point) => touches(point, antenna) && !ignoredBut(grid, point, ignore, antenna));
-  const others = points.filter(
+  const all = points.filter(
     (point) =>
       !touches(point, antenna) &&
       !ignore.has(grid.first[point.baseline]!) &&
       !ignore.has(grid.second[point.baseline]!),
   );
-  const ratios: number[] = [];
-  let [power, expected, variance] = [0, 0, 0];
+  const stride = Math.ceil(all.length / MOST_OTHERS);
+  const others = all.filter((_, i) => i % stride === 0);
+  const outer = outerLevel(others);
   for (const point of own) {
-    const likely = median(nearestPowers(point, others));
+    const likely = likelyPower(point, others, outer);
     if (!(likely > 0)) continue;
     power += point.power;
     expected += likely;
     variance += point.error ** 2;
     ratios.push(Math.log(Math.max(point.power, point.error * 0.1) / likely) / 2);
+  }
   }
   const error = Math.sqrt(variance);
   return {
@@ -87,19 +93,56 @@ function ignoredBut(grid: Grid, { baseline }: Point, ignore: ReadonlySet<number>
   return ignore.has(other);
 }
 
-function nearestPowers(point: Point, others: readonly Point[]): number[] {
-  const near: { distance: number; power: number }[] = [];
+/** A source fading outwards makes the outermost baselines faint by nature. */
+interface Outer {
+  /** the longest spacing of others */
+  readonly radius: number;
+  /** power there over that of all */
+  readonly share: number;
+}
+
+const OUTER_SHARE = 0.2;
+const FLAT = 0.3;
+/** Neighbours further apart than this factor in power tell nothing. */
+const MOST_SPREAD = 6;
+
+function outerLevel(others: readonly Point[]): Outer {
+  const sorted = [...others].sort((a, b) => Math.hypot(b.u, b.v) - Math.hypot(a.u, a.v));
+  const far = sorted.slice(0, Math.max(1, Math.floor(OUTER_SHARE * sorted.length)));
+  const powers = (points: readonly Point[]) => median(points.map(({ power }) => power));
+  return {
+    radius: sorted.length === 0 ? 0 : Math.hypot(sorted[0]!.u, sorted[0]!.v),
+    share: powers(far) / powers(others),
+  };
+}
+
+/** NaN where the neighbours do not tell. */
+function likelyPower(point: Point, others: readonly Point[], outer: Outer): number {
+  const near = nearest(point, others);
+  const radius = Math.hypot(point.u, point.v);
+  const beyond = near.filter(({ u, v }) => Math.hypot(u, v) >= radius).length;
+  if (beyond < 2 && !(outer.share > FLAT)) return Number.NaN;
+  const powers = near.map(({ power }) => power).sort((a, b) => a - b);
+  if (powers.length === 0) return Number.NaN;
+  // One of five may itself be at fault.
+  const [low, high] = powers.length < 4 ? [0, powers.length - 1] : [1, powers.length - 1];
+  if (!(powers[high]! < MOST_SPREAD * powers[low]!)) return Number.NaN;
+  return median(powers);
+}
+
+function nearest(point: Point, others: readonly Point[]): Point[] {
+  const near: { distance: number; point: Point }[] = [];
   for (const other of others) {
     const distance = Math.min(
       Math.hypot(other.u - point.u, other.v - point.v),
       Math.hypot(other.u + point.u, other.v + point.v),
     );
     if (near.length === NEIGHBOURS && distance >= near[NEIGHBOURS - 1]!.distance) continue;
-    near.push({ distance, power: other.power });
+    near.push({ distance, point: other });
     near.sort((a, b) => a.distance - b.distance);
     if (near.length > NEIGHBOURS) near.pop();
   }
-  return near.map(({ power }) => power);
+  return near.map((one) => one.point);
 }
 
 function pointsOf(grid: Grid, plane: Plane, stretches: number): Point[] {

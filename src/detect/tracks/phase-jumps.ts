@@ -3,6 +3,7 @@ import type { DetectedEvent } from "../event.ts";
 import type { Grid } from "./grid.ts";
 import { wrap } from "./antenna-phases.ts";
 import { type FoundStep, findSteps } from "./find-steps.ts";
+import { phaseStep } from "./step-search.ts";
 import { clock, degrees, makeEvent, productsOf, spanOf } from "./make-event.ts";
 
 /** Sigmas out of family: of 10^5 trials on noise and wander none is. */
@@ -25,7 +26,7 @@ export function phaseJumps(grid: Grid, skip: ReadonlySet<number>): DetectedEvent
     imag: plane.imag.slice(),
   }));
   const least = (LEAST_DEGREES * Math.PI) / 180;
-  const steps = findSteps(grid, series, { threshold: JUMP_THRESHOLD, least, skip });
+  const steps = findSteps(grid, series, { threshold: JUMP_THRESHOLD, least, skip, solve: phaseStep, gains: false });
   return intervalsOf(steps).map((interval) => eventOf(grid, interval));
 }
 

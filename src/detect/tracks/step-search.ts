@@ -3,6 +3,7 @@
  * that of a window before it, R L*, solved for antennas.
  */
 import { median, robustSigma } from "../../util/statistics.ts";
+import { antennaGains, type BaselineRatios } from "./antenna-gains.ts";
 import { type AntennaPhases, antennaPhases, LEAST_VARIANCE } from "./antenna-phases.ts";
 import type { Grid } from "./grid.ts";
 
@@ -29,8 +30,16 @@ export interface Steps {
   readonly scale: Float64Array;
 }
 
+/** Solves a step between two ranges of integrations [start, end) for antennas. */
+export type Solver = (
+  grid: Grid,
+  series: readonly Series[],
+  left: readonly [number, number],
+  right: readonly [number, number],
+) => AntennaPhases;
+
 /** Steps over one window for the sum of some series. */
-export function stepsOf(grid: Grid, series: readonly Series[], window: number): Steps {
+export function stepsOf(grid: Grid, series: readonly Series[], window: number, solve: Solver): Steps {
   const { times, antennas } = grid;
   const size = times.length * antennas.length;
   const steps = {
@@ -40,7 +49,7 @@ export function stepsOf(grid: Grid, series: readonly Series[], window: number): 
     agreement: new Float32Array(size),
     scale: new Float64Array(antennas.length),
   };
-  fillSteps(grid, series, steps, 0, times.length);
+  fillSteps(grid, series, steps, solve, 0, times.length);
   fillScale(steps, antennas.length);
   return steps;
 }
@@ -49,6 +58,7 @@ export function fillSteps(
   grid: Grid,
   series: readonly Series[],
   steps: Steps,
+  solve: Solver,
   from: number,
   to: number,
 ): void {
@@ -57,7 +67,7 @@ export function fillSteps(
   for (const segment of grid.segments) {
     const last = Math.min(to, segment.end - window + 1);
     for (let t = Math.max(from, segment.start + window); t < last; t++) {
-      const solved = solveStep(grid, series, [t - window, t], [t, t + window]);
+      const solved = solve(grid, series, [t - window, t], [t, t + window]);
       for (let a = 0; a < antennas; a++) {
         steps.phase[t * antennas + a] = solved.phase[a]!;
         steps.error[t * antennas + a] = solved.error[a]!;
@@ -67,14 +77,41 @@ export function fillSteps(
   }
 }
 
-/** Antenna phases of the mean of one range of integrations over that of another; ranges are [start, end). */
-export function solveStep(
+/** Antenna phases of the mean of one range of integrations over that of another. */
+export const phaseStep: Solver = (grid, series, left, right) =>
+  antennaPhases(stepPhasors(grid, series, left, right), grid.antennas.length);
+
+/** Antenna gains, as natural logarithms, of the one over the other. */
+export const gainStep: Solver = (grid, series, left, right) =>
+  antennaGains(stepRatios(grid, series, left, right), grid.antennas.length);
+
+function stepRatios(
   grid: Grid,
   series: readonly Series[],
   left: readonly [number, number],
   right: readonly [number, number],
-): AntennaPhases {
-  return antennaPhases(stepPhasors(grid, series, left, right), grid.antennas.length);
+): BaselineRatios {
+  const { baselines } = grid;
+  const value = new Float64Array(baselines);
+  const weight = new Float64Array(baselines);
+  const l: Mean = { re: 0, im: 0, variance: 0 };
+  const r: Mean = { re: 0, im: 0, variance: 0 };
+  for (let b = 0; b < baselines; b++) {
+    let [sum, total] = [0, 0];
+    for (const one of series) {
+      if (!meanOf(one, baselines, b, left, l) || !meanOf(one, baselines, b, right, r)) continue;
+      const powerL = l.re * l.re + l.im * l.im - 2 * l.variance;
+      const powerR = r.re * r.re + r.im * r.im - 2 * r.variance;
+      // Below 4 sigma an amplitude is more noise than signal, and its logarithm no normal variable.
+      if (powerL < 16 * l.variance || powerR < 16 * r.variance) continue;
+      const w = 1 / Math.max(LEAST_VARIANCE, l.variance / powerL + r.variance / powerR);
+      sum += (w * Math.log(powerR / powerL)) / 2;
+      total += w;
+    }
+    if (total > 0) value[b] = sum / total;
+    weight[b] = total;
+  }
+  return { first: grid.first, second: grid.second, value, weight };
 }
 
 export function stepPhasors(
@@ -156,6 +193,29 @@ export function fillScale(steps: Steps, antennas: number): void {
   for (let a = 0; a < antennas; a++) {
     steps.scale[a] = Number.isNaN(typical) ? Number.NaN : Math.max(typical, own[a] || 0);
   }
+}
+
+/** Windows on either side that tell how quickly things move at the time. */
+const LOCAL_WINDOWS = 6;
+
+/** The same against what the antenna and the others do in the neighbourhood too. */
+export function localSignificance(steps: Steps, antennas: number, t: number, a: number): number {
+  const reach = LOCAL_WINDOWS * Math.max(2, steps.window);
+  const own: number[] = [];
+  const array: number[] = [];
+  for (let s = t - reach; s <= t + reach; s++) {
+    if (s < 0 || s * antennas >= steps.phase.length) continue;
+    for (let other = 0; other < antennas; other++) {
+      const value = Math.abs(steps.phase[s * antennas + other]!);
+      if (Number.isNaN(value)) continue;
+      if (other === a) {
+        if (Math.abs(s - t) > steps.window) own.push(value);
+      } else if (Math.abs(s - t) <= steps.window) array.push(value);
+    }
+  }
+  const scale = 1.4826 * Math.max(own.length < 4 ? 0 : median(own), array.length < 4 ? 0 : median(array));
+  const phase = Math.abs(steps.phase[t * antennas + a]!);
+  return Math.min(significanceOf(steps, antennas, t, a), scale > 0 ? phase / scale : Number.POSITIVE_INFINITY);
 }
 
 /** How far a step is out of family and above its error, sigmas; 0 where unknown. */
