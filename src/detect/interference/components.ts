@@ -1,4 +1,5 @@
 /** Regions of a mask of integrations by channels, and few rectangles that cover them. */
+import type { Band } from "../pass/bands.ts";
 import type { Rectangle } from "./grid.ts";
 
 /** A connected region: its cells as step * columns + column, ascending. */
@@ -8,7 +9,7 @@ export type Region = readonly number[];
 const BRIDGE_STEPS = 2;
 const BRIDGE_COLUMNS = 2;
 /** A rectangle may stand for a region that fills this much of it. */
-const LEAST_FILL = 0.85;
+const LEAST_FILL = 0.9;
 
 /** Connected regions of the cells with mask 1, largest first. */
 export function regionsOf(mask: Uint8Array, steps: number, columns: number): Region[] {
@@ -103,4 +104,9 @@ export function linesOf(
     }
   }
   return lines;
+}
+
+/** A rectangle of a band's own columns, by columns over all sub-bands. */
+export function shifted(rectangle: Rectangle, { first }: Band): Rectangle {
+  return { ...rectangle, low: rectangle.low + first, high: rectangle.high + first };
 }

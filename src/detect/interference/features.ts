@@ -1,9 +1,10 @@
 /** Features of interference: rectangles of integrations by channels, with those whom they hit. */
 import type { Band } from "../pass/bands.ts";
-import { area, boundsOf, coverOf, linesOf, type Region, regionsOf } from "./components.ts";
+import { area, boundsOf, coverOf, linesOf, type Region, regionsOf, shifted } from "./components.ts";
 import { settleEdges } from "./edges.ts";
 import { Finder } from "./find.ts";
 import { type Counts, type Grid, noCounts, type Rectangle } from "./grid.ts";
+import { refined } from "./refine.ts";
 import { likelihood, type Who, whoIsHit } from "./subset.ts";
 
 export type FeatureKind = "persistent-line" | "burst" | "drifting-line";
@@ -18,8 +19,12 @@ export interface Feature {
   readonly significance: number;
 }
 
-/** Fewer elevated samples than this share of a feature's are the background's fault. */
+/**
+ * Fewer elevated samples than this share of a feature's are the background's fault: it may fit some baselines badly, hardly
+ * all of them alike.
+ */
 const LEAST_ELEVATED = 0.12;
+const LEAST_ELEVATED_OF_SOME = 0.35;
 /** A feature must be this sure, sigmas. */
 const LEAST_SIGNIFICANCE = 7;
 const MOST_REGIONS = 256;
@@ -33,6 +38,7 @@ const DRIFT_CORRELATION = 0.9;
 const ALONE_OUTLYING = 0.5;
 const ALONE_BRIGHT = 0.05;
 const ALONE_SAMPLES = 8;
+const ALONE_SIGNIFICANCE = 10;
 
 /** Everything that stands out in a band; takes it out of the grid's marks. */
 export function featuresOf(grid: Grid, band: Band): Feature[] {
@@ -45,7 +51,9 @@ export function featuresOf(grid: Grid, band: Band): Feature[] {
     features.push(feature);
     take(grid, feature, mask);
   }
-  for (const region of regionsOf(mask, grid.steps, band.columns).slice(0, MOST_REGIONS)) {
+  for (const rough of regionsOf(mask, grid.steps, band.columns).slice(0, MOST_REGIONS)) {
+    const region = refined(grid, band, rough);
+    if (region.length === 0) continue;
     const rectangles = coverOf(region, band.columns).map((r) => shifted(r, band));
     const feature = settle(grid, band, kindOf(region, band.columns, grid.steps), rectangles);
     if (feature === null) continue;
@@ -92,7 +100,10 @@ export function featuresOfBaselines(grid: Grid, band: Band): Feature[] {
       const feature = weigh(grid, band, kindOf(region, columns, grid.steps), rectangles, who);
       const { usable, outlying, bright } = feature.counts;
       const sure =
-        outlying >= ALONE_SAMPLES && outlying >= ALONE_OUTLYING * usable && bright >= ALONE_BRIGHT * usable;
+        feature.significance > ALONE_SIGNIFICANCE &&
+        outlying >= ALONE_SAMPLES &&
+        outlying >= ALONE_OUTLYING * usable &&
+        bright >= ALONE_BRIGHT * usable;
       if (!sure) continue;
       features.push(feature);
       take(grid, feature, null);
@@ -111,7 +122,8 @@ function settle(grid: Grid, band: Band, kind: FeatureKind, rectangles: readonly 
   if (grid.pass.marks === null) return { ...weigh(grid, band, kind, settled, who), significance: Number.NaN };
   const feature = weigh(grid, band, kind, settled, who);
   const { usable, elevated } = feature.counts;
-  if (usable === 0 || elevated < LEAST_ELEVATED * usable) return null;
+  const least = who.kind === "all" ? LEAST_ELEVATED : LEAST_ELEVATED_OF_SOME;
+  if (usable === 0 || elevated < least * usable) return null;
   return feature.significance < LEAST_SIGNIFICANCE ? null : feature;
 }
 
@@ -170,10 +182,6 @@ function driftCorrelation(region: Region, columns: number): number {
     tt += t * t;
   }
   return st / Math.sqrt(ss * tt);
-}
-
-function shifted(r: Rectangle, { first }: Band): Rectangle {
-  return { ...r, low: r.low + first, high: r.high + first };
 }
 
 function runsOf(flags: Uint8Array): [low: number, high: number][] {
