@@ -41,6 +41,8 @@ export class CoverageTally {
   private readonly binsPerLog: number;
   /** (RADIAL_BINS + 1) differences of the counts from bin to bin */
   private readonly radial = new Int32Array(RADIAL_BINS + 1);
+  /** (RADIAL_BINS + 1) the same of the samples whose range goes through the whole bin */
+  private readonly through = new Int32Array(RADIAL_BINS + 1);
   /** (RADIAL_BINS) smallest and largest log radius of an end of a sample's range in the bin */
   private readonly least = new Float64Array(RADIAL_BINS).fill(Number.POSITIVE_INFINITY);
   private readonly most = new Float64Array(RADIAL_BINS).fill(Number.NEGATIVE_INFINITY);
@@ -69,8 +71,9 @@ export class CoverageTally {
    * @param direction of (u, v), north (v) through east (u), radians
    */
   add(low: number, high: number, direction: number, count = 1): void {
-    if (!(low > Number.NEGATIVE_INFINITY && high < Number.POSITIVE_INFINITY)) return;
-    this.addRadial(low, high, count);
+    // Spacings below the shortest are of antennas at one place.
+    if (!(high >= this.low && high < Number.POSITIVE_INFINITY)) return;
+    this.addRadial(Math.max(low, this.low), high, count);
     const first = Math.max(0, Math.floor((low - this.annulusLow) * this.annuliPerLog));
     const last = Math.min(this.annuli - 1, Math.floor((high - this.annulusLow) * this.annuliPerLog));
     if (first > last || high < this.annulusLow) return;
@@ -85,6 +88,10 @@ export class CoverageTally {
     const last = this.bin(high);
     this.radial[first]! += count;
     this.radial[last + 1]! -= count;
+    if (last > first + 1) {
+      this.through[first + 1]! += count;
+      this.through[last]! -= count;
+    }
     if (count < 0) return;
     if (low < this.least[first]!) this.least[first] = low;
     if (first === last) {
@@ -109,56 +116,51 @@ export class CoverageTally {
   without(other: CoverageTally): CoverageTally {
     const left = new CoverageTally(this.form);
     for (let i = 0; i < left.radial.length; i++) left.radial[i] = this.radial[i]! - other.radial[i]!;
+    // What is left has no edges of its own: every covered bin counts as a whole.
+    left.through.set(left.radial);
     for (let i = 0; i < left.directions.length; i++) {
       left.directions[i] = this.directions[i]! - other.directions[i]!;
     }
     return left;
   }
 
-  /** (RADIAL_BINS) whether a sample is there. */
-  private covered(): Uint8Array {
-    const covered = new Uint8Array(RADIAL_BINS);
-    let count = 0;
-    for (let i = 0; i < RADIAL_BINS; i++) {
-      count += this.radial[i]!;
-      covered[i] = count > 0 ? 1 : 0;
+  /** The log radii that each bin's samples reach from and to; NaN where it has none. */
+  private reaches(): { readonly from: Float64Array; readonly to: Float64Array } {
+    const from = new Float64Array(RADIAL_BINS).fill(Number.NaN);
+    const to = new Float64Array(RADIAL_BINS).fill(Number.NaN);
+    let [count, whole] = [0, 0];
+    for (let bin = 0; bin < RADIAL_BINS; bin++) {
+      count += this.radial[bin]!;
+      whole += this.through[bin]!;
+      if (count <= 0) continue;
+      const low = this.low + bin / this.binsPerLog;
+      const high = this.low + (bin + 1) / this.binsPerLog;
+      from[bin] = whole > 0 ? low : Math.max(low, this.least[bin]!);
+      to[bin] = whole > 0 ? high : Math.min(high, this.most[bin]!);
     }
-    return covered;
+    return { from, to };
   }
 
   /** Shortest and longest covered radius, wavelengths; NaN when nothing is. */
   extent(): { readonly shortest: number; readonly longest: number } {
-    const covered = this.covered();
-    const first = covered.indexOf(1);
-    if (first < 0) return { shortest: Number.NaN, longest: Number.NaN };
-    const last = covered.lastIndexOf(1);
-    return { shortest: Math.exp(this.lowEdge(first)), longest: Math.exp(this.highEdge(last)) };
-  }
-
-  private lowEdge(bin: number): number {
-    return Math.max(this.low + bin / this.binsPerLog, finite(this.least[bin]!, Number.NEGATIVE_INFINITY));
-  }
-
-  private highEdge(bin: number): number {
-    return Math.min(
-      this.low + (bin + 1) / this.binsPerLog,
-      finite(this.most[bin]!, Number.POSITIVE_INFINITY),
-    );
+    const { from, to } = this.reaches();
+    const known = (log: number) => !Number.isNaN(log);
+    return {
+      shortest: Math.exp(from.find(known) ?? Number.NaN),
+      longest: Math.exp(to.findLast(known) ?? Number.NaN),
+    };
   }
 
   /** Ranges without samples between the shortest and the longest, wider than `least` wavelengths. */
   radialGaps(least: number): RadialGap[] {
-    const covered = this.covered();
+    const { from, to } = this.reaches();
     const gaps: RadialGap[] = [];
-    let before = -1;
+    let before = Number.NaN;
     for (let bin = 0; bin < RADIAL_BINS; bin++) {
-      if (covered[bin] === 0) continue;
-      if (before >= 0) {
-        const from = Math.exp(this.highEdge(before));
-        const to = Math.exp(this.lowEdge(bin));
-        if (to - from > least) gaps.push({ from, to });
-      }
-      before = bin;
+      if (Number.isNaN(from[bin]!)) continue;
+      const gap = { from: Math.exp(before), to: Math.exp(from[bin]!) };
+      if (gap.to - gap.from > least) gaps.push(gap);
+      before = to[bin]!;
     }
     return gaps;
   }
@@ -212,10 +214,6 @@ function addInto(to: Int32Array, from: Int32Array): void {
 
 function sumOf(counts: Int32Array): number {
   return counts.reduce((sum, count) => sum + count, 0);
-}
-
-function finite(value: number, otherwise: number): number {
-  return Number.isFinite(value) ? value : otherwise;
 }
 
 /** Longest run of empty bins on the circle: its width less the half bin that each neighbour may reach into it. */
