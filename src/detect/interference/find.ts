@@ -2,7 +2,7 @@
 
 import type { Band } from "../pass/bands.ts";
 import { type CombinedScores, LENGTH_GROUPS } from "../pass/combined.ts";
-import { medianInPlace } from "../statistics/order.ts";
+import { medianInPlace, selectKth } from "../statistics/order.ts";
 import { SumThresholdRoom, sumThreshold } from "../statistics/sum-threshold.ts";
 
 const LONGEST = 64;
@@ -14,6 +14,11 @@ const LEAST_MEAN = 0.3;
 const LEAST_ROW_MEAN = 1.5;
 /** A channel's mean over all time must stand this many sigmas out of the band's. */
 const LEAST_CHANNEL = 8;
+/** Of a row's channels this share are taken to be quiet; normal deviates below it, in sigmas. */
+const QUIET_QUANTILE = 0.3;
+const QUIET_DEVIATE = -0.5244;
+/** Parts of the time in which a channel must stand out, all but one, to do so at all times. */
+const PARTS = 8;
 /** Share of the integrations at which a channel is hit all the time. */
 export const PERSISTENT_SHARE = 0.75;
 
@@ -86,11 +91,10 @@ export class Finder {
         samples += counts[i]!;
       }
       if (count < 2) continue;
-      const common = medianInPlace(work, count);
+      // A quantile from below, since interference may well fill half of the band; put back to where noise has it.
+      const common = selectKth(work, count, Math.floor(QUIET_QUANTILE * (count - 1))) - QUIET_DEVIATE;
       if (common <= 0 || common > LEAST_ROW_MEAN * Math.sqrt(samples / count)) continue;
-      for (let k = 0; k < count; k++) work[k] = Math.abs(work[k]! - common);
-      const above = Math.max(1, 1.4826 * medianInPlace(work, count));
-      for (let i = at; i < at + columns; i++) scores[i] = (scores[i]! - common) / above;
+      for (let i = at; i < at + columns; i++) scores[i]! -= common;
     }
   }
 
@@ -127,7 +131,40 @@ export class Finder {
     for (let k = 0; k < known; k++) work[k] = Math.abs(work[k]! - middle);
     const spread = Math.max(1, 1.4826 * medianInPlace(work, known));
     for (let c = 0; c < columns; c++) {
-      if (sums[c]! - middle > LEAST_CHANNEL * spread && means[c]! > LEAST_MEAN) persistent[c] = 1;
+      const clear = sums[c]! - middle > LEAST_CHANNEL * spread && means[c]! > LEAST_MEAN;
+      if (clear && lasts(scores, marks, counts, steps, columns, c)) persistent[c] = 1;
     }
   }
+}
+
+/** Whether a channel stands out in all parts of the time but one. */
+function lasts(
+  scores: Float32Array,
+  marks: Uint8Array,
+  counts: Float32Array,
+  steps: number,
+  columns: number,
+  column: number,
+): boolean {
+  const parts = Math.min(PARTS, steps);
+  let seen = 0;
+  let high = 0;
+  for (let part = 0; part < parts; part++) {
+    let weighted = 0;
+    let samples = 0;
+    for (
+      let step = Math.floor((part * steps) / parts);
+      step < Math.floor(((part + 1) * steps) / parts);
+      step++
+    ) {
+      const i = step * columns + column;
+      if (marks[i] === 2) continue;
+      weighted += scores[i]! * Math.sqrt(counts[i]!);
+      samples += counts[i]!;
+    }
+    if (samples === 0) continue;
+    seen += 1;
+    if (weighted > LEAST_MEAN * samples) high += 1;
+  }
+  return high >= Math.max(1, seen - 1);
 }

@@ -51,11 +51,14 @@ export function interferenceOf(
   return lone === null ? events : [...events, lone];
 }
 
+/** Fewer are what features leave at their edges. */
+const FEWEST_LONE = 10;
+
 /** Bright samples that no feature took. */
 function loneSamples({ pass: { marks }, survey }: Grid): DetectedEvent | null {
   if (marks === null) return null;
   const count = marks.bright.total();
-  if (count === 0) return null;
+  if (count < FEWEST_LONE) return null;
   const usable = marks.usable.total();
   const share = count / usable;
   return {

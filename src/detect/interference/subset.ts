@@ -18,6 +18,8 @@ export interface Who {
 
 /** Gain in log likelihood that a baseline more in a list must bring. */
 const PRICE_OF_BASELINE = 4;
+/** Largest share of the baselines that is named one by one. */
+const MOST_LISTED = 0.4;
 const ROUNDS = 2;
 
 /** log likelihood of the counts with a share q of the samples elevated, over that in noise. */
@@ -66,13 +68,9 @@ function baselinesHit(
   }
   const withData = order.filter((b) => counts[b]!.usable > 0);
   if (withData.length < 2) return everyone(grid);
-  const gain = (members: readonly number[]) => {
-    const [usable, elevated] = sumOf(counts, members);
-    return usable === 0 ? 0 : likelihood(usable, elevated, elevated / usable);
-  };
+  const gain = (members: readonly number[]) => gainOf(...sumOf(counts, members));
   let best: { who: Who; value: number } = { who: everyone(grid), value: gain(withData) };
-  const consider = (members: readonly number[], price: number, rest: Partial<Who>) => {
-    const value = gain(members) - price;
+  const consider = (members: readonly number[], value: number, rest: Partial<Who>) => {
     if (value <= best.value) return;
     const mask = new Uint8Array(baselines.length);
     for (const b of members) mask[b] = 1;
@@ -88,27 +86,31 @@ function baselinesHit(
   };
   const priceOfChoice = 3 + Math.log(baselines.length);
   const lengths = projectedLengths(grid.survey);
-  for (let n = 1; n < withData.length; n++) {
+  eachPrefix(counts, withData, withData.length - 1, (n, value) => {
     const shorterThan = lengths[withData[n]!]!;
-    if (Number.isNaN(shorterThan)) break;
-    consider(withData.slice(0, n), priceOfChoice, { kind: "short", shorterThan });
-  }
+    if (Number.isNaN(shorterThan)) return;
+    if (value - priceOfChoice <= best.value) return;
+    consider(withData.slice(0, n), value - priceOfChoice, { kind: "short", shorterThan });
+  });
   for (const antenna of grid.survey.antennasWithData) {
     const members = withData.filter(
       (b) => baselines[b]!.antenna1 === antenna || baselines[b]!.antenna2 === antenna,
     );
-    if (members.length > 1) consider(members, priceOfChoice, { kind: "antenna", antenna });
+    if (members.length > 1) consider(members, gain(members) - priceOfChoice, { kind: "antenna", antenna });
   }
   const byShare = [...withData].sort(
     (a, b) => counts[b]!.elevated / counts[b]!.usable - counts[a]!.elevated / counts[a]!.usable || a - b,
   );
-  for (let n = 1; n < byShare.length; n++) {
+  // A transmitter that half of the baselines see, in no order of length, is seen by all: some backgrounds took it in.
+  eachPrefix(counts, byShare, Math.floor(MOST_LISTED * byShare.length), (n, value) => {
+    const worth = value - PRICE_OF_BASELINE * n;
+    if (worth <= best.value) return;
     consider(
       byShare.slice(0, n).sort((a, b) => a - b),
-      PRICE_OF_BASELINE * Math.min(n, byShare.length - n + 2),
+      worth,
       {},
     );
-  }
+  });
   return best.who;
 }
 
@@ -150,4 +152,24 @@ function sumOf(counts: readonly Counts[], members: readonly number[]): [usable: 
     elevated += counts[i]!.elevated;
   }
   return [usable, elevated];
+}
+
+function gainOf(usable: number, elevated: number): number {
+  return usable === 0 ? 0 : likelihood(usable, elevated, elevated / usable);
+}
+
+/** The gain of the first n of an order, n from 1 to `most`. */
+function eachPrefix(
+  counts: readonly Counts[],
+  order: readonly number[],
+  most: number,
+  visit: (n: number, gain: number) => void,
+): void {
+  let usable = 0;
+  let elevated = 0;
+  for (let n = 1; n <= most; n++) {
+    usable += counts[order[n - 1]!]!.usable;
+    elevated += counts[order[n - 1]!]!.elevated;
+    visit(n, gainOf(usable, elevated));
+  }
 }
