@@ -37,6 +37,8 @@ export interface FlagSuggestion {
   /** what flagging costs the beam and the coverage is not computed here: NaN, for `withCosts` to fill */
   readonly flags: readonly FlagEntry[];
   readonly doubts: readonly Doubt[];
+  /** 1 - sqrt(sum of kept weights / sum of all) with all the flags applied: they may overlap */
+  readonly sensitivityLossFraction: number;
 }
 
 /** A candidate and what it holds. */
@@ -44,11 +46,11 @@ interface Counted extends Candidate {
   readonly count: SelectionCount;
 }
 
-/** Two passes over the weights, none when nothing is at fault. */
+/** Two passes over the weights; none where nothing is at fault. */
 export async function suggestFlags(request: FlagRequest): Promise<FlagSuggestion> {
   const { dataset, times, events, judged, rules } = request;
   const merged = mergeCandidates(flagCandidates(events, judged, rules), times);
-  if (merged.length === 0) return { flags: [], doubts: [] };
+  if (merged.length === 0) return { flags: [], doubts: [], sensitivityLossFraction: 0 };
   const { each, total } = await countOf(dataset, merged);
   const label = antennaLabels(dataset.array.antennas);
   const doubts: Doubt[] = [];
@@ -62,10 +64,11 @@ export async function suggestFlags(request: FlagRequest): Promise<FlagSuggestion
     else doubts.push({ selection: one.selection, rule: one.rule, reason: reasonOf(one, label), why });
   }
   const ranked = withoutInner(worthy).sort(byRank);
-  const flags = (await withoutCovered(dataset, ranked)).map((one, i) =>
-    entryOf(one, total, `F${i + 1}`, label),
-  );
-  return { flags, doubts };
+  const { each: ofRanked, union } = await countOf(dataset, ranked);
+  // Without those whose samples the ones before them take all together.
+  const uncovered = ranked.filter((_, i) => ofRanked[i]!.fresh > 0);
+  const flags = uncovered.map((one, i) => entryOf(one, total, `F${i + 1}`, label));
+  return { flags, doubts, sensitivityLossFraction: lossOf(union, total) };
 }
 
 function countOf(dataset: Dataset, candidates: readonly Candidate[]): Promise<SelectionCounts> {
@@ -73,13 +76,6 @@ function countOf(dataset: Dataset, candidates: readonly Candidate[]): Promise<Se
     dataset,
     candidates.map((one) => one.selection),
   );
-}
-
-/** In their order, without those whose samples the ones before them take all together. */
-async function withoutCovered(dataset: Dataset, ranked: readonly Counted[]): Promise<Counted[]> {
-  if (ranked.length < 2) return [...ranked];
-  const { each } = await countOf(dataset, ranked);
-  return ranked.filter((_, i) => each[i]!.fresh > 0);
 }
 
 /** By confidence times samples, largest first. */

@@ -60,6 +60,7 @@ export async function checkDataset(dataset: Dataset, request: CheckRequest): Pro
     after: second.judged,
     findings,
     flags,
+    sensitivityLossFraction: suggestion.sensitivityLossFraction,
     doubts: suggestion.doubts,
     image:
       second === first ? first.forecast.image : forecastAfter(first.forecast.image, second.forecast.image),

@@ -8,7 +8,6 @@ import type { Plan } from "../imaging/plan.ts";
 import type { Measure } from "../measure/table.ts";
 import type { Finding } from "../rules/finding.ts";
 import { frequencyRange } from "./dataset-facts.ts";
-import { sensitivityCost } from "./numbers.ts";
 import type { Check } from "./report.ts";
 import { tool } from "./tool.ts";
 import { exactly, jsonText } from "./trim.ts";
@@ -117,7 +116,7 @@ function planPart(plan: Plan): Readonly<Record<string, Plan[keyof Plan]>> {
 function flagsPart(check: Check): object {
   return {
     file: "flags.json",
-    sensitivityLossFraction: check.flags.length === 0 ? 0 : sensitivityCost(check.image),
+    sensitivityLossFraction: check.sensitivityLossFraction,
     entries: check.flags.map(flagPart),
     doubts: check.doubts.map(({ rule, reason, why, selection }) => ({
       rule,

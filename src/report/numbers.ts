@@ -187,10 +187,3 @@ function countTable(totals: Totals, check: Check): DataTable {
     ],
   };
 }
-
-/** Sensitivity that all suggested flags cost together, from the noise before and after; NaN where unknown. */
-export function sensitivityCost(image: ImageForecast): number {
-  const natural = image.weightings.find((result) => result.weighting === "natural") ?? image.weightings[0];
-  if (natural === undefined || natural.after === null) return Number.NaN;
-  return 1 - natural.before.noiseJy / natural.after.noiseJy;
-}

@@ -24,6 +24,8 @@ export interface Check {
   /** `before.findings` with verdicts softened where the flags mend them, flags linked; worst first */
   readonly findings: readonly Finding[];
   readonly flags: readonly FlagEntry[];
+  /** what all of them cost together, natural weighting */
+  readonly sensitivityLossFraction: number;
   /** samples that look at fault but whose flags would not be worth their cost: for a person to judge */
   readonly doubts: readonly Doubt[];
   readonly image: ImageForecast;

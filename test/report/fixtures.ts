@@ -409,6 +409,7 @@ export function faultyCheck(dataset: Dataset = fixtureDataset()): Check {
     after: judgement(67.9, "hold", findings),
     findings,
     flags: fixtureFlags(),
+    sensitivityLossFraction: 0.131,
     doubts: [
       {
         selection: { ...EVERYTHING, baselines: [[2, 9]] },
@@ -449,6 +450,7 @@ export function cleanCheck(): Check {
     after: judged,
     findings: ready,
     flags: [],
+    sensitivityLossFraction: 0,
     doubts: [],
     image: {
       ...check.image,
@@ -558,6 +560,7 @@ export function emptyCheck(): Check {
     after: judged,
     findings: [],
     flags: [],
+    sensitivityLossFraction: 0,
     doubts: [],
     image: {
       weightings: check.image.weightings.map((result) => ({

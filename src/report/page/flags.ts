@@ -1,7 +1,6 @@
 /** The suggested flags with what each costs. On a narrow page every flag is a block of lines. */
 import type { FlagEntry } from "../../flags/entry.ts";
 import { formatCount, formatPercent } from "../../util/units.ts";
-import { sensitivityCost } from "../numbers.ts";
 import { formatChange } from "../quantity.ts";
 import type { Check } from "../report.ts";
 import type { ScopeWords } from "../scope.ts";
@@ -37,10 +36,7 @@ function doubtList(check: Check, words: ScopeWords): Piece {
 
 function flagTable(check: Check, words: ScopeWords): Markup {
   const { flags } = check;
-  const loss = sensitivityCost(check.image);
-  const together = Number.isFinite(loss)
-    ? ` All together they cost ${formatPercent(Math.max(0, loss))} of the sensitivity.`
-    : "";
+  const together = ` All together they cost ${formatPercent(check.sensitivityLossFraction)} of the sensitivity.`;
   return html`<p class="note">${PROPOSALS}${together}</p>
 ${stackedTable(
   "Suggested flags and their cost",

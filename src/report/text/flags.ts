@@ -1,6 +1,5 @@
 /** The suggested flags and what each costs. */
 import { formatCount, formatPercent } from "../../util/units.ts";
-import { sensitivityCost } from "../numbers.ts";
 import { formatChange } from "../quantity.ts";
 import type { Check } from "../report.ts";
 import type { ScopeWords } from "../scope.ts";
@@ -25,9 +24,7 @@ export function flagsSection(paper: Paper, check: Check, words: ScopeWords): voi
 function flagTable(paper: Paper, check: Check, words: ScopeWords): void {
   const { flags } = check;
   paper.prose(PROPOSALS);
-  const loss = sensitivityCost(check.image);
-  if (Number.isFinite(loss))
-    paper.prose(`All together they cost ${formatPercent(Math.max(0, loss))} of the sensitivity.`);
+  paper.prose(`All together they cost ${formatPercent(check.sensitivityLossFraction)} of the sensitivity.`);
   paper.gap();
   paper.table(
     [
