@@ -1,7 +1,6 @@
 /** How strong a feature is, from how many of its samples noise and it together lift over the mark. */
 import { ELEVATED_SHARE } from "../pass/second-pass.ts";
 import type { Feature } from "./features.ts";
-import type { Grid } from "./grid.ts";
 
 /** Power over 2 sigma^2 that a share ELEVATED_SHARE of noise exceeds. */
 const ELEVATED_POWER = -Math.log(ELEVATED_SHARE);
@@ -9,7 +8,8 @@ const ELEVATED_POWER = -Math.log(ELEVATED_SHARE);
 const MOST = 8;
 
 /** Amplitude in sigmas of one component, 0 to 8; NaN where no marks were kept. */
-export function amplitudeOf(_grid: Grid, { counts }: Feature): number {
+export function amplitudeOf({ counts, amplitude }: Feature): number {
+  if (amplitude !== undefined) return Math.min(MOST, amplitude);
   if (counts.usable === 0) return Number.NaN;
   const [share, power] =
     counts.bright > 0.2 * counts.usable

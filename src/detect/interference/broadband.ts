@@ -4,7 +4,8 @@
  */
 
 import type { Band } from "../pass/bands.ts";
-import { medianInPlace } from "../statistics/order.ts";
+import { LENGTH_GROUPS } from "../pass/combined.ts";
+import { medianInPlace, selectKth } from "../statistics/order.ts";
 import type { Grid } from "./grid.ts";
 
 /** Noise power over the usual from which on an integration is hit. */
@@ -13,6 +14,9 @@ const LEAST_RATIO = 1.5;
 const LEAST_SIGNIFICANCE = 8;
 /** Baselines and products that a median needs. */
 const FEWEST = 6;
+/** Channels are unlike when the fainter ones have less than this share of the brighter ones' score, this surely. */
+const UNLIKE_SHARE = 0.35;
+const UNLIKE_SIGMAS = 8;
 /** Of all integrations at most so many are a burst. */
 const MOST_SHARE = 0.3;
 
@@ -24,7 +28,8 @@ export interface BroadbandBurst {
   readonly significance: number;
 }
 
-export function broadbandBursts(grid: Grid, { subband }: Band): BroadbandBurst[] {
+export function broadbandBursts(grid: Grid, band: Band): BroadbandBurst[] {
+  const { subband } = band;
   if (subband === null) return [];
   const ratios = ratiosOf(grid, subband);
   const known = ratios.filter((ratio) => !Number.isNaN(ratio));
@@ -44,7 +49,36 @@ export function broadbandBursts(grid: Grid, { subband }: Band): BroadbandBurst[]
     hit += last - step + 1;
     step = last;
   }
-  return hit <= MOST_SHARE * known.length ? bursts : [];
+  return hit <= MOST_SHARE * known.length ? bursts.filter((burst) => fillsBand(grid, band, burst)) : [];
+}
+
+/** Whether the channels of a band stand out alike, not some and others not. */
+function fillsBand(grid: Grid, band: Band, { firstStep, lastStep }: BroadbandBurst): boolean {
+  const { combined } = grid.pass;
+  const size = grid.steps * band.columns;
+  const scores = new Float32Array(size);
+  const marks = new Uint8Array(size);
+  const samples = new Float32Array(size);
+  combined.fill(LENGTH_GROUPS, band.first, band.columns, null, scores, marks, samples);
+  const means: number[] = [];
+  let most = 0;
+  for (let c = 0; c < band.columns; c++) {
+    let sum = 0;
+    let count = 0;
+    for (let i = firstStep * band.columns + c; i < (lastStep + 1) * band.columns; i += band.columns) {
+      if (marks[i] === 2) continue;
+      sum += scores[i]! * Math.sqrt(samples[i]!);
+      count += samples[i]!;
+    }
+    if (count > 0) means.push(sum / count);
+    most = Math.max(most, count);
+  }
+  if (means.length === 0) return false;
+  const work = Float64Array.from(means);
+  const low = selectKth(work, work.length, Math.floor(0.1 * (work.length - 1)));
+  const high = selectKth(work, work.length, Math.ceil(0.9 * (work.length - 1)));
+  const differ = (high - low) * Math.sqrt(most) > UNLIKE_SIGMAS;
+  return !(differ && low < UNLIKE_SHARE * high);
 }
 
 /** (steps) median over baselines and products of the noise over what the baseline has usually; NaN unknown. */

@@ -23,7 +23,7 @@ export function eventOf(grid: Grid, request: DetectRequest, feature: Feature): D
   // Where lines are what is looked for, one that stays may be the sky's.
   const doubtful = request.purpose === "line" && feature.kind === "persistent-line";
   const { counts, significance } = feature;
-  const amplitude = amplitudeOf(grid, feature);
+  const amplitude = amplitudeOf(feature);
   const only = feature.who.kind === "listed" && feature.who.baselines === 1;
   return {
     kind: feature.kind,
@@ -37,7 +37,11 @@ export function eventOf(grid: Grid, request: DetectRequest, feature: Feature): D
     significance,
     confidence: doubtful ? DOUBTFUL_LINE : confidenceOf(significance, counts.elevated / counts.usable),
     samples: counts.usable,
-    outlying: Math.round(aboveNoise(counts.elevated, counts.usable)),
+    // A burst that fills the band is in all of its samples, whatever each looks like.
+    outlying:
+      feature.amplitude === undefined
+        ? Math.round(aboveNoise(counts.elevated, counts.usable))
+        : counts.usable,
     evidence: evidenceOf(grid, feature, amplitude, doubtful),
     repair: null,
   };
@@ -63,10 +67,13 @@ function evidenceOf(grid: Grid, feature: Feature, amplitude: number, doubtful: b
       ? ""
       : ` in ${polarizations.filter((_, p) => who.subset.polarizations![p] === 1).join(" and ")}`;
   const shares =
-    counts.usable > 0
-      ? `; ${percent(counts.elevated / counts.usable)} of their ${counts.usable} samples exceed what ` +
-        `${percent(ELEVATED_SHARE)} of noise does`
-      : "; too many samples to keep a mark of each, so that only sums over baselines were looked at";
+    feature.amplitude !== undefined
+      ? `; the noise of these integrations is raised by ${(feature.amplitude ** 2 / 2 + 1).toFixed(1)} times in power on most ` +
+        "baselines at once"
+      : counts.usable > 0
+        ? `; ${percent(counts.elevated / counts.usable)} of their ${counts.usable} samples exceed what ` +
+          `${percent(ELEVATED_SHARE)} of noise does`
+        : "; too many samples to keep a mark of each, so that only sums over baselines were looked at";
   const doubt = doubtful ? "; it may be a line of the sky, which this observation looks for" : "";
   const size = amplitude >= 8 ? "8 sigma a sample or more" : `about ${amplitude.toFixed(1)} sigma a sample`;
   return (

@@ -1,11 +1,12 @@
 /** Features of interference: rectangles of integrations by channels, with those whom they hit. */
 import type { Band } from "../pass/bands.ts";
+import { broadbandBursts } from "./broadband.ts";
 import { area, boundsOf, coverOf, linesOf, type Region, regionsOf, shifted } from "./components.ts";
 import { settleEdges } from "./edges.ts";
 import { Finder } from "./find.ts";
 import { type Counts, type Grid, noCounts, type Rectangle } from "./grid.ts";
 import { refined } from "./refine.ts";
-import { likelihood, type Who, whoIsHit } from "./subset.ts";
+import { everyone, likelihood, type Who, whoIsHit } from "./subset.ts";
 
 export type FeatureKind = "persistent-line" | "burst" | "drifting-line";
 
@@ -17,6 +18,8 @@ export interface Feature {
   readonly counts: Counts;
   /** in sigmas: the square root of twice the log likelihood ratio against noise */
   readonly significance: number;
+  /** sigmas of one component a sample, where it is known otherwise than from counts */
+  readonly amplitude?: number;
 }
 
 /**
@@ -27,6 +30,7 @@ const LEAST_ELEVATED = 0.12;
 const LEAST_ELEVATED_OF_SOME = 0.35;
 /** A feature must be this sure, sigmas. */
 const LEAST_SIGNIFICANCE = 7;
+const LEAST_SIGNIFICANCE_OF_SOME = 12;
 const MOST_REGIONS = 256;
 /** A feature this long in time, as a share of the observation, and this narrow, is a line. */
 const LINE_DURATION = 0.4;
@@ -44,6 +48,13 @@ const ALONE_SIGNIFICANCE = 10;
 export function featuresOf(grid: Grid, band: Band): Feature[] {
   const { mask, persistent } = new Finder(grid.pass.combined).find(band);
   const features: Feature[] = [];
+  for (const burst of broadbandBursts(grid, band)) {
+    const { firstStep, lastStep, ratio, significance } = burst;
+    const rectangle = { firstStep, lastStep, low: band.first, high: band.first + band.columns - 1 };
+    const feature = weigh(grid, band, "burst", [rectangle], everyone(grid));
+    features.push({ ...feature, significance, amplitude: Math.sqrt(2 * (ratio - 1)) });
+    take(grid, feature, mask);
+  }
   for (const [low, high] of runsOf(persistent)) {
     const rectangle = shifted({ firstStep: 0, lastStep: grid.steps - 1, low, high }, band);
     const feature = settle(grid, band, "persistent-line", [rectangle]);
@@ -124,7 +135,8 @@ function settle(grid: Grid, band: Band, kind: FeatureKind, rectangles: readonly 
   const { usable, elevated } = feature.counts;
   const least = who.kind === "all" ? LEAST_ELEVATED : LEAST_ELEVATED_OF_SOME;
   if (usable === 0 || elevated < least * usable) return null;
-  return feature.significance < LEAST_SIGNIFICANCE ? null : feature;
+  const sure = who.kind === "all" ? LEAST_SIGNIFICANCE : LEAST_SIGNIFICANCE_OF_SOME;
+  return feature.significance < sure ? null : feature;
 }
 
 function weigh(

@@ -45,7 +45,7 @@ export function whoIsHit(grid: Grid, rectangles: readonly Rectangle[]): Who {
   return who;
 }
 
-function everyone(grid: Grid): Who {
+export function everyone(grid: Grid): Who {
   return {
     subset: ALL,
     kind: "all",
