@@ -2,12 +2,13 @@
 import type { Survey } from "../measure/survey-result.ts";
 import type { DetectedEvent } from "./event.ts";
 import type { DetectRequest } from "./request.ts";
+import { withoutShadows } from "./secondary.ts";
 import { antennaFaults } from "./tracks/antenna-faults.ts";
 
 /** Most significant first. @throws InputError where the dataset turns out to be malformed */
 export async function detect(survey: Survey, request: DetectRequest): Promise<DetectedEvent[]> {
   const antennas = antennaFaults(survey, request);
-  return inOrder(antennas);
+  return inOrder(withoutShadows(antennas, survey.integration));
 }
 
 /** The same order whatever found them first. */

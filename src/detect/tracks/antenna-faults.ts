@@ -2,15 +2,48 @@
 import type { Survey } from "../../measure/survey-result.ts";
 import type { DetectedEvent } from "../event.ts";
 import type { DetectRequest } from "../request.ts";
-import { gridOf } from "./grid.ts";
+import { closureFaults } from "./closure.ts";
+import { delaySlopes } from "./delays.ts";
+import { gainSteps } from "./gain-steps.ts";
+import { type Grid, gridOf } from "./grid.ts";
+import { exchangedHands, takeOutAntennas } from "./hands.ts";
 import { phaseJumps } from "./phase-jumps.ts";
+import { phaseNoise } from "./phase-noise.ts";
 import { silences } from "./silent.ts";
+import { noisyAntennas, weakAntennas, weightMismatches } from "./static-faults.ts";
+import { stuckZeros } from "./stuck-zeros.ts";
 
-export function antennaFaults(survey: Survey, _request: DetectRequest): DetectedEvent[] {
+export function antennaFaults(survey: Survey, request: DetectRequest): DetectedEvent[] {
   const grid = gridOf(survey);
-  if (grid.planes.length === 0) return [];
-  const events: DetectedEvent[] = [];
-  events.push(...silences(grid));
-  events.push(...phaseJumps(grid, new Set()));
-  return events;
+  if (grid.antennas.length === 0) return [];
+  const zeros = stuckZeros(grid);
+  if (grid.planes.length === 0) return zeros;
+  const hands = exchangedHands(grid);
+  takeOutAntennas(grid, hands.antennas);
+  const silent = silences(grid);
+  const noisy = noisyAntennas(grid);
+  const weak = weakAntennas(grid, named(grid, [...hands.events, ...silent]));
+  const noise = phaseNoise(grid);
+  const jumps = phaseJumps(grid, noise.antennas);
+  const weights = weightMismatches(grid, new Set(noisy.flatMap(({ scope }) => scope.antennas ?? [])));
+  return [
+    ...zeros,
+    ...hands.events,
+    ...silent,
+    ...noisy,
+    ...weak,
+    ...noise.events,
+    ...jumps,
+    ...gainSteps(grid),
+    ...delaySlopes(grid),
+    ...closureFaults(grid, request),
+    ...weights,
+  ];
+}
+
+/** Indices of the antennas that events name. */
+function named(grid: Grid, events: readonly DetectedEvent[]): Set<number> {
+  return new Set(
+    events.flatMap(({ scope }) => scope.antennas ?? []).map((antenna) => grid.antennas.indexOf(antenna)),
+  );
 }

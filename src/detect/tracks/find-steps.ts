@@ -4,11 +4,11 @@ import { wrap } from "./antenna-phases.ts";
 import type { Grid } from "./grid.ts";
 import {
   fillSteps,
-  type Series,
-  type Steps,
   localSignificance,
-  significanceOf,
+  type Series,
   type Solver,
+  type Steps,
+  significanceOf,
   stepsOf,
   WINDOWS,
 } from "./step-search.ts";
@@ -66,7 +66,11 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
     const best = strongest(grid, groups, settings);
     if (best === null) break;
     const step = settle(grid, series, groups, best, settings);
-    if (!isSharp(grid, groups[best.group]!, step) || repeats(found, step) || Math.abs(step.phase) < settings.least) {
+    if (
+      !isSharp(grid, groups[best.group]!, step) ||
+      repeats(found, step) ||
+      Math.abs(step.phase) < settings.least
+    ) {
       passOver(grid, groups, best);
       continue;
     }
@@ -165,7 +169,13 @@ function passOver(grid: Grid, groups: readonly Group[], { antenna, at, group, wi
 }
 
 /** Exact time, series concerned, size and error. */
-function settle(grid: Grid, series: readonly Series[], groups: readonly Group[], best: Candidate, settings: StepSettings): FoundStep {
+function settle(
+  grid: Grid,
+  series: readonly Series[],
+  groups: readonly Group[],
+  best: Candidate,
+  settings: StepSettings,
+): FoundStep {
   const { members, windows } = groups[best.group]!;
   const chosen = windows[best.window]!;
   const at = sharpest(grid, windows, best);
@@ -235,7 +245,13 @@ function turnBack(grid: Grid, series: readonly Series[], step: FoundStep, gains:
   }
 }
 
-function scaleBack(step: FoundStep, series: readonly Series[], baselines: number, b: number, times: number): void {
+function scaleBack(
+  step: FoundStep,
+  series: readonly Series[],
+  baselines: number,
+  b: number,
+  times: number,
+): void {
   const factor = Math.exp(-step.phase);
   for (const which of step.series) {
     const { real, imag, variance } = series[which]!;

@@ -38,7 +38,9 @@ export function gainSteps(grid: Grid): DetectedEvent[] {
     // Two antennas share what their baseline shows.
     const size = Math.exp(few ? 2 * log : log);
     const flag =
-      back === null && step.at < times.length - step.at ? { ...scope, time: spanOf(grid, 0, step.at) } : scope;
+      back === null && step.at < times.length - step.at
+        ? { ...scope, time: spanOf(grid, 0, step.at) }
+        : scope;
     const who = few ? "the baseline" : `antenna ${antennas[step.antenna]!}`;
     const from = clock(times[step.at]!);
     const until = back === null ? "on" : `to ${clock(times[end - 1]!)}`;

@@ -57,24 +57,26 @@ function levelOf(
   const ratios: number[] = [];
   let [power, expected, variance] = [0, 0, 0];
   for (const points of planes) {
-  const own = points.filter((point) => touches(point, antenna) && !ignoredBut(grid, point, ignore, antenna));
-  const all = points.filter(
-    (point) =>
-      !touches(point, antenna) &&
-      !ignore.has(grid.first[point.baseline]!) &&
-      !ignore.has(grid.second[point.baseline]!),
-  );
-  const stride = Math.ceil(all.length / MOST_OTHERS);
-  const others = all.filter((_, i) => i % stride === 0);
-  const outer = outerLevel(others);
-  for (const point of own) {
-    const likely = likelyPower(point, others, outer);
-    if (!(likely > 0)) continue;
-    power += point.power;
-    expected += likely;
-    variance += point.error ** 2;
-    ratios.push(Math.log(Math.max(point.power, point.error * 0.1) / likely) / 2);
-  }
+    const own = points.filter(
+      (point) => touches(point, antenna) && !ignoredBut(grid, point, ignore, antenna),
+    );
+    const all = points.filter(
+      (point) =>
+        !touches(point, antenna) &&
+        !ignore.has(grid.first[point.baseline]!) &&
+        !ignore.has(grid.second[point.baseline]!),
+    );
+    const stride = Math.ceil(all.length / MOST_OTHERS);
+    const others = all.filter((_, i) => i % stride === 0);
+    const outer = outerLevel(others);
+    for (const point of own) {
+      const likely = likelyPower(point, others, outer);
+      if (!(likely > 0)) continue;
+      power += point.power;
+      expected += likely;
+      variance += point.error ** 2;
+      ratios.push(Math.log(Math.max(point.power, point.error * 0.1) / likely) / 2);
+    }
   }
   const error = Math.sqrt(variance);
   return {

@@ -1,10 +1,10 @@
 /** Phase jumps and half turns of antennas, each with the interval it holds for. */
 import type { DetectedEvent } from "../event.ts";
-import type { Grid } from "./grid.ts";
 import { wrap } from "./antenna-phases.ts";
 import { type FoundStep, findSteps } from "./find-steps.ts";
-import { phaseStep } from "./step-search.ts";
+import type { Grid } from "./grid.ts";
 import { clock, degrees, makeEvent, productsOf, spanOf } from "./make-event.ts";
+import { phaseStep } from "./step-search.ts";
 
 /** Sigmas out of family: of 10^5 trials on noise and wander none is. */
 export const JUMP_THRESHOLD = 6.5;
@@ -26,7 +26,13 @@ export function phaseJumps(grid: Grid, skip: ReadonlySet<number>): DetectedEvent
     imag: plane.imag.slice(),
   }));
   const least = (LEAST_DEGREES * Math.PI) / 180;
-  const steps = findSteps(grid, series, { threshold: JUMP_THRESHOLD, least, skip, solve: phaseStep, gains: false });
+  const steps = findSteps(grid, series, {
+    threshold: JUMP_THRESHOLD,
+    least,
+    skip,
+    solve: phaseStep,
+    gains: false,
+  });
   return intervalsOf(steps).map((interval) => eventOf(grid, interval));
 }
 

@@ -1,11 +1,11 @@
 /** Antennas that see noise without fringes: always, for a time, now and then, or in one hand only. */
 import type { Polarization } from "../../dataset/dataset.ts";
+import { EVERYTHING } from "../../dataset/selection.ts";
 import { median } from "../../util/statistics.ts";
 import type { DetectedEvent } from "../event.ts";
 import type { Grid, Plane } from "./grid.ts";
 import { type AntennaLevel, levelsByAntenna } from "./levels-by-antenna.ts";
 import { clock, makeEvent, samplesOf, spanOf } from "./make-event.ts";
-import { EVERYTHING } from "../../dataset/selection.ts";
 
 /** Expected power must be this far above its noise. */
 const LEAST_EXPECTED = 8;

@@ -215,7 +215,10 @@ export function localSignificance(steps: Steps, antennas: number, t: number, a: 
   }
   const scale = 1.4826 * Math.max(own.length < 4 ? 0 : median(own), array.length < 4 ? 0 : median(array));
   const phase = Math.abs(steps.phase[t * antennas + a]!);
-  return Math.min(significanceOf(steps, antennas, t, a), scale > 0 ? phase / scale : Number.POSITIVE_INFINITY);
+  return Math.min(
+    significanceOf(steps, antennas, t, a),
+    scale > 0 ? phase / scale : Number.POSITIVE_INFINITY,
+  );
 }
 
 /** How far a step is out of family and above its error, sigmas; 0 where unknown. */
