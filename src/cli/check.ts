@@ -1,17 +1,8 @@
 /** `visvet check`: survey, judge, print the text report, write the output files. */
 import { command } from "./command.ts";
+import type { CheckOptions } from "./run-check.ts";
 
-interface CheckArguments {
-  readonly dataset: readonly string[];
-  readonly plan: string | undefined;
-  readonly out: string | undefined;
-  readonly rules: readonly string[] | undefined;
-  readonly field: number | undefined;
-  readonly strict: boolean;
-  readonly quiet: boolean;
-}
-
-export const check = command<CheckArguments>({
+export const check = command<CheckOptions>({
   command: "check <dataset..>",
   describe: "Judge whether a dataset can give the planned image; write the reports",
   examples: [

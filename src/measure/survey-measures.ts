@@ -1,15 +1,12 @@
 /** Every measure of the survey, by name. */
 import type { SurveyPart } from "./survey-part.ts";
-import type { Survey } from "./survey-result.ts";
+import type { BareSurvey } from "./survey-result.ts";
 import type { Measures } from "./table.ts";
 import { antennaMeasure } from "./tables/antenna.ts";
 import { channelMeasure, polarizationMeasure, subbandMeasure } from "./tables/band.ts";
 import { baselineFacts, baselineMeasure } from "./tables/baseline.ts";
 import { datasetMeasure } from "./tables/dataset.ts";
 import { fieldMeasure, integrationMeasure, scanMeasure } from "./tables/time.ts";
-
-/** A survey before its measures. */
-export type BareSurvey = Omit<Survey, "measures">;
 
 export function surveyMeasures(survey: BareSurvey, part: SurveyPart): Measures {
   const facts = baselineFacts(survey);

@@ -103,3 +103,6 @@ export interface Totals {
   readonly badTimeRows: number;
   readonly badUvwRows: number;
 }
+
+/** A survey before its measures. */
+export type BareSurvey = Omit<Survey, "measures">;

@@ -6,7 +6,7 @@ import { open } from "node:fs/promises";
 import { pipeline, Readable } from "node:stream";
 import { createGunzip, type Gunzip } from "node:zlib";
 import { InputError } from "../../util/errors.ts";
-import type { ByteSource, Cursor } from "./source.ts";
+import type { ByteSource, Cursor } from "./byte-source.ts";
 
 const PACKED_CHUNK = 128 * 1024;
 const UNPACKED_CHUNK = 256 * 1024;

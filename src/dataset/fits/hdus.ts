@@ -3,8 +3,8 @@
  */
 import { InputError, type Place } from "../../util/errors.ts";
 import { Notes } from "../notes.ts";
+import type { ByteSource, Cursor } from "./byte-source.ts";
 import { type Header, readHeader } from "./header.ts";
-import type { ByteSource, Cursor } from "./source.ts";
 import { BLOCK } from "./write-header.ts";
 
 export type HduKind = "random groups" | "image" | "binary table" | "text table" | "other";

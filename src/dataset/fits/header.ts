@@ -3,8 +3,8 @@
  * Getters give undefined for a missing keyword and refuse a value of the wrong kind, naming its byte.
  */
 import { InputError, type Place } from "../../util/errors.ts";
+import type { Cursor } from "./byte-source.ts";
 import { type Card, type CardValue, parseCard } from "./cards.ts";
-import type { Cursor } from "./source.ts";
 import { BLOCK, CARD } from "./write-header.ts";
 
 /** Longest header read, bytes: 200 000 cards. More is a file without END, or an attack on memory. */

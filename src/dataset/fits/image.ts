@@ -1,8 +1,8 @@
 /** The array of a primary or IMAGE HDU, in runs of any length. FITS Standard 4.0, sections 5 and 7.1. */
 
+import type { Cursor } from "./byte-source.ts";
 import { axisLengths, bitpixOf, type Hdu } from "./hdus.ts";
 import type { Header } from "./header.ts";
-import type { Cursor } from "./source.ts";
 import { readStored } from "./stored.ts";
 
 export interface ImageLayout {

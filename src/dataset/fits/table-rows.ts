@@ -3,7 +3,7 @@
  * Numbers come scaled (TSCALn, TZEROn); TNULLn becomes NaN. FITS Standard 4.0, section 7.3.3.
  */
 import { InputError } from "../../util/errors.ts";
-import type { Cursor } from "./source.ts";
+import type { Cursor } from "./byte-source.ts";
 import { type Column, cellBytes, type ElementCode, type TableLayout } from "./table-layout.ts";
 
 /** Largest table held, bytes of rows and heap. Antennas, fields and frequencies take kilobytes. */

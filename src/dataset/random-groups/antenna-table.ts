@@ -1,7 +1,7 @@
 /** One AN table as it stands in the file: numbers, names, positions, Earth orientation. */
 import { mjdFromDate, SECONDS_PER_DAY } from "../../util/dates.ts";
+import type { Cursor } from "../fits/byte-source.ts";
 import type { Hdu } from "../fits/hdus.ts";
-import type { Cursor } from "../fits/source.ts";
 import { type Column, findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable, type Table } from "../fits/table-rows.ts";
 import type { Notes } from "../notes.ts";

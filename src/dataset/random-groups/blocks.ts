@@ -1,7 +1,7 @@
 /** The rows of a file in blocks: one buffer is filled from the file while the block before it is used. */
 import { InputError } from "../../util/errors.ts";
 import type { BlockRequest, SampleBlock } from "../dataset.ts";
-import type { ByteSource, Cursor } from "../fits/source.ts";
+import type { ByteSource, Cursor } from "../fits/byte-source.ts";
 import { newBlock } from "../new-block.ts";
 import type { TableFlags } from "../table-flags.ts";
 import type { GroupLayout } from "./layout.ts";

@@ -1,8 +1,8 @@
 /** Fields: the SU table, or the one field that the primary header names. */
 import type { Field } from "../dataset.ts";
+import type { Cursor } from "../fits/byte-source.ts";
 import type { Hdu } from "../fits/hdus.ts";
 import type { Header } from "../fits/header.ts";
-import type { Cursor } from "../fits/source.ts";
 import { findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable } from "../fits/table-rows.ts";
 import type { Notes } from "../notes.ts";

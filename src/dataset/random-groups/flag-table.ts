@@ -1,7 +1,7 @@
 /** The FG table: flags that were never put into the weights. By the visibility convention (Greisen 2016, recalled). */
 import type { Setup, Shape } from "../dataset.ts";
+import type { Cursor } from "../fits/byte-source.ts";
 import type { Hdu } from "../fits/hdus.ts";
-import type { Cursor } from "../fits/source.ts";
 import { type Column, findColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable, type Table } from "../fits/table-rows.ts";
 import type { Notes } from "../notes.ts";

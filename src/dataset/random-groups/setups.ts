@@ -1,7 +1,7 @@
 /** Frequencies: the FREQ axis, and the FQ table's sub-bands around it. */
 import type { Setup } from "../dataset.ts";
+import type { Cursor } from "../fits/byte-source.ts";
 import type { Hdu } from "../fits/hdus.ts";
-import type { Cursor } from "../fits/source.ts";
 import { type Column, findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable, type Table } from "../fits/table-rows.ts";
 import type { Notes } from "../notes.ts";

@@ -2,7 +2,7 @@
 import { median } from "../../util/statistics.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { ANTENNA } from "../forms.ts";
-import type { BareSurvey } from "../survey-measures.ts";
+import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import type { BaselineFacts } from "./baseline.ts";
 import { Counts } from "./counts.ts";

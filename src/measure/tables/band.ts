@@ -5,7 +5,7 @@ import type { ChannelCounts } from "../channel-counts.ts";
 import { fillMeasure, type MeasureForm, type Row } from "../fill-measure.ts";
 import { CHANNEL, POLARIZATION, SUBBAND } from "../forms.ts";
 import { BAD, FLAGGED, USABLE, ZERO } from "../prepared.ts";
-import type { BareSurvey } from "../survey-measures.ts";
+import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import { Counts } from "./counts.ts";
 import { parallelProducts } from "./products.ts";

@@ -3,7 +3,7 @@ import { SPEED_OF_LIGHT } from "../../util/constants.ts";
 import { median, robustSigma } from "../../util/statistics.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { BASELINE } from "../forms.ts";
-import type { BareSurvey } from "../survey-measures.ts";
+import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import { Counts } from "./counts.ts";
 import { parallelProducts } from "./products.ts";

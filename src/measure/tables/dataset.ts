@@ -4,7 +4,7 @@ import { SECONDS_A_DAY } from "../../util/constants.ts";
 import { median } from "../../util/statistics.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { DATASET } from "../forms.ts";
-import type { BareSurvey } from "../survey-measures.ts";
+import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import { Counts } from "./counts.ts";
 import { parallelProducts } from "./products.ts";

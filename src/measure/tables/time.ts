@@ -3,7 +3,7 @@ import { SECONDS_A_DAY } from "../../util/constants.ts";
 import { median } from "../../util/statistics.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { FIELD, INTEGRATION, SCAN } from "../forms.ts";
-import type { BareSurvey } from "../survey-measures.ts";
+import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import { TIME_STEP_DAYS } from "../time-order.ts";
 import type { BaselineFacts } from "./baseline.ts";

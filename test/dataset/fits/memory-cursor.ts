@@ -1,5 +1,5 @@
 /** A cursor over bytes in memory, for tests of what reads through one. */
-import type { ByteSource, Cursor } from "../../../src/dataset/fits/source.ts";
+import type { ByteSource, Cursor } from "../../../src/dataset/fits/byte-source.ts";
 
 export function memoryCursor(bytes: Uint8Array): Cursor {
   return {

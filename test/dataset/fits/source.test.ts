@@ -3,7 +3,8 @@ import { dirname, join } from "node:path";
 import { constants, gzipSync } from "node:zlib";
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
-import { type ByteSource, openSource } from "../../../src/dataset/fits/source.ts";
+import type { ByteSource } from "../../../src/dataset/fits/byte-source.ts";
+import { openSource } from "../../../src/dataset/fits/source.ts";
 import { fileMaker } from "../group-file.ts";
 import { lineOfError } from "../read-all.ts";
 

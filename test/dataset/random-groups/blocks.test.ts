@@ -2,8 +2,9 @@
 import { truncateSync } from "node:fs";
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
+import type { ByteSource } from "../../../src/dataset/fits/byte-source.ts";
 import { openFits } from "../../../src/dataset/fits/hdus.ts";
-import { type ByteSource, openSource } from "../../../src/dataset/fits/source.ts";
+import { openSource } from "../../../src/dataset/fits/source.ts";
 import { groupsHeader } from "../../../src/dataset/fits/write.ts";
 import { Notes } from "../../../src/dataset/notes.ts";
 import { openDataset } from "../../../src/dataset/open.ts";
