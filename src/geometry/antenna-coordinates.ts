@@ -69,6 +69,38 @@ export function solveDifferences(
   });
 }
 
+/**
+ * Solve value(pair) = x(first) + x(second) in the least-squares sense: logs of amplitudes, to which two antennas
+ * contribute a factor each. Antennas without a pair get 0.
+ *
+ * @param weight (pairs) >= 0
+ * @returns (antennas); null where the pairs do not determine it, as two antennas alone do not
+ */
+export function solveSums(
+  graph: Graph,
+  weight: ArrayLike<number>,
+  values: ArrayLike<number>,
+): Float64Array | null {
+  const { antennas, first, second } = graph;
+  const matrix = new Float64Array(antennas * antennas);
+  const right = new Float64Array(antennas);
+  for (let p = 0; p < first.length; p++) {
+    const t = weight[p]!;
+    if (t === 0) continue;
+    const [i, j] = [first[p]!, second[p]!];
+    matrix[i * antennas + i]! += t;
+    matrix[j * antennas + j]! += t;
+    matrix[i * antennas + j]! += t;
+    matrix[j * antennas + i]! += t;
+    right[i]! += t * values[p]!;
+    right[j]! += t * values[p]!;
+  }
+  for (let i = 0; i < antennas; i++) if (matrix[i * antennas + i] === 0) matrix[i * antennas + i] = 1;
+  if (!choleskyInPlace(matrix, antennas)) return null;
+  solveCholesky(matrix, antennas, right);
+  return right;
+}
+
 /** Lower triangle L of A = L L^T, in place; false when A is not positive definite. */
 function choleskyInPlace(a: Float64Array, n: number): boolean {
   const smallest = 1e-12 * Math.max(...Array.from({ length: n }, (_, i) => a[i * n + i]!));

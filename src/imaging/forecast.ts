@@ -10,6 +10,7 @@ import type { Survey } from "../measure/survey-result.ts";
 import type { Measure } from "../measure/table.ts";
 import { adviceOf, type DropW } from "./advice.ts";
 import { BeamMaker, gridFormOf, pictureOf, reportBeam } from "./beams.ts";
+import { calibratorLimits, calibratorMeasures, judgeCalibrator } from "./calibrator.ts";
 import { costsOf, type GriddedImage, type SelectionCost } from "./cost.ts";
 import { coverageFormOf, judgeCoverage } from "./coverage.ts";
 import { CoverageTally } from "./coverage-tally.ts";
@@ -88,7 +89,10 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
   const smearing = smearingAt(samples, radius, sampling.field.declination);
   const coverage = judgeCoverage(gridded.coverage, cells, plan);
   const level = sourceLevel(sampling);
+  const calibrator =
+    plan.purpose.value === "calibrator" ? await judgeCalibrator(image, sampling, variance) : null;
   const limits = [
+    ...calibratorLimits(calibrator),
     ...(await eventLimits(image, events, level)),
     ...standingLimits({ plan, planned, wTerm, wLoss: loss, smearing, samples, radius, level }),
   ].sort((a, b) => a.dynamicRangeFraction - b.dynamicRangeFraction);
@@ -117,6 +121,7 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
     measures: [
       ...imageMeasures(parts, snapshots, wByAntenna(baselines)),
       ...geometryMeasures(sampling, geometry, radius),
+      ...calibratorMeasures(calibrator, plan.dynamicRange.value),
     ],
     costs: (selections) => costsOf(image, selections),
   };

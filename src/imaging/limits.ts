@@ -6,6 +6,7 @@
  * how far Earth rotation and bandwidth spread the error.
  * @see Perley 1999, Synthesis Imaging in Radio Astronomy II, ASP Conf. Ser. 180, chapter 13
  */
+import type { Selection } from "../dataset/selection.ts";
 import type { DetectedEvent, EventKind } from "../detect/event.ts";
 import { formatNumber, formatPercent } from "../util/units.ts";
 import { cellFactors, imagingWeight, truncated } from "./cell-weights.ts";
@@ -52,10 +53,38 @@ export interface SourceLevel {
   readonly bandwidth: number;
 }
 
-/**
- * Limits by events, each as if it were alone.
- * @param planned natural, uniform or robust factors come from the plan of `image`
- */
+/** An error on some samples. */
+export interface SpoiledSamples {
+  readonly scope: Selection;
+  readonly error: EventError;
+  /** how many samples the error is independent on; of no account where it is the same on all */
+  readonly samples: number;
+}
+
+/** Peak over rms that each error alone allows, at the planned weighting; Infinity where it touches no sample. */
+export async function capsOf(image: GriddedImage, spoiled: readonly SpoiledSamples[]): Promise<number[]> {
+  if (spoiled.length === 0) return [];
+  const cells = truncated(image.cells, 0);
+  const factors = cellFactors(cells, image.plan.weighting.value);
+  const total = imagingWeight(cells, factors);
+  const place = fieldCells(cells);
+  const factorOf = (iu: number, iv: number) => factors[place(iu, iv)] ?? 0;
+  const caps: number[] = [];
+  await eachSelection(
+    image,
+    spoiled.map(({ scope }) => scope),
+    (index, taken) => {
+      const { error, samples } = spoiled[index]!;
+      const { rms, weight } = errorRms(taken, factorOf);
+      // Errors of their own on each sample add in squares.
+      const sum = error.coherent ? rms : weight / Math.sqrt(2 * Math.max(1, samples));
+      caps[index] = total / (error.size * sum);
+    },
+  );
+  return caps;
+}
+
+/** Limits by events, each as if it were alone; events that leave a point source as it is have none. */
 export async function eventLimits(
   image: GriddedImage,
   events: readonly DetectedEvent[],
@@ -66,27 +95,17 @@ export async function eventLimits(
     .filter(({ error }) => error.size > 0)
     .sort((a, b) => b.event.significance - a.event.significance || a.eventIndex - b.eventIndex)
     .slice(0, MOST_EVENTS);
-  if (ranked.length === 0) return [];
-  const cells = truncated(image.cells, 0);
-  const factors = cellFactors(cells, image.plan.weighting.value);
-  const total = imagingWeight(cells, factors);
-  const place = fieldCells(cells);
-  const factorOf = (iu: number, iv: number) => factors[place(iu, iv)] ?? 0;
-  const limits: RankedLimit[] = [];
-  await eachSelection(
+  const caps = await capsOf(
     image,
-    ranked.map(({ event }) => event.scope),
-    (index, taken) => {
-      const { event, eventIndex, error } = ranked[index]!;
-      const range = total / spoiled(errorRms(taken, factorOf), event, error);
-      if (Number.isFinite(range)) limits.push({ ...limitOf(event, error, range), eventIndex });
-    },
+    ranked.map(({ event, error }) => ({ scope: event.scope, error, samples: event.samples })),
   );
-  return limits;
+  return ranked.flatMap(({ event, eventIndex, error }, i) =>
+    Number.isFinite(caps[i]!) ? [{ ...limitOf(event, error, caps[i]!), eventIndex }] : [],
+  );
 }
 
 /** How an event spoils its samples. */
-interface EventError {
+export interface EventError {
   /** phase in radians or amplitude as a fraction of the source's; 0: it does not spoil the image */
   readonly size: number;
   /** the same on all of them, or its own on each */
@@ -147,12 +166,6 @@ function errorOf(event: DetectedEvent, level: SourceLevel): EventError {
 function amplitudeError(ratio: number): EventError {
   const size = Math.abs(ratio - 1);
   return { size, coherent: true, what: `an amplitude error of ${formatPercent(size)}` };
-}
-
-/** What the source's peak is divided by: the same error on all samples, or its own on each, which add in squares. */
-function spoiled(sums: { rms: number; weight: number }, event: DetectedEvent, error: EventError): number {
-  if (error.coherent) return error.size * sums.rms;
-  return (error.size * sums.weight) / Math.sqrt(2 * Math.max(1, event.samples));
 }
 
 const CAUSES: Partial<Record<EventKind, string>> = {

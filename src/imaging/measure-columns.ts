@@ -271,6 +271,37 @@ export const LIMIT: MeasureForm = {
   ],
 };
 
+export const CALIBRATOR_ANTENNA: MeasureForm = {
+  name: "calibrator_antenna",
+  each: "antenna",
+  title:
+    "Antennas against a point source at the phase centre; filled when the plan's purpose is a calibrator",
+  columns: [
+    column("antenna", "", "antenna number"),
+    column("amplitude_ratio", "", "amplitude of its visibilities over that of most antennas'"),
+    column("amplitude_error", "", "1 sigma error of the ratio"),
+    column("phase_deg", "deg", "phase of its visibilities against most antennas'; 0 expected"),
+    column("phase_error_deg", "deg", "1 sigma error of the phase"),
+    column("dynamic_range", "", "peak over rms that its departure alone allows"),
+    column("dynamic_range_ratio", "", "planned dynamic range over that"),
+  ],
+};
+
+export const CALIBRATOR_BASELINE: MeasureForm = {
+  name: "calibrator_baseline",
+  each: "baseline",
+  title: "What the antennas leave of each baseline's departure from a point source at the phase centre",
+  columns: [
+    column("antenna1", "", "antenna number"),
+    column("antenna2", "", "antenna number"),
+    column("amplitude_ratio", "", "amplitude over that of the source and its two antennas"),
+    column("amplitude_error", "", "1 sigma error of the ratio"),
+    column("phase_deg", "deg", "phase that the two antennas do not explain"),
+    column("phase_error_deg", "deg", "1 sigma error of the phase"),
+    column("significance", "", "departure over its error, of the larger of the two"),
+  ],
+};
+
 /** Every measure of this folder. */
 export const IMAGING_MEASURES: readonly MeasureForm[] = [
   IMAGE,
@@ -284,4 +315,6 @@ export const IMAGING_MEASURES: readonly MeasureForm[] = [
   ANTENNA_GEOMETRY,
   BASELINE_GEOMETRY,
   LIMIT,
+  CALIBRATOR_ANTENNA,
+  CALIBRATOR_BASELINE,
 ];
