@@ -1,123 +1,87 @@
-/** Amplitude sketches by baseline, sub-band, channel group and polarization. */
-
+/** Amplitude sketches by baseline, sub-band, channel and polarization, and the usable samples that they hold. */
 import type { Shape } from "../dataset/dataset.ts";
 import type { Accumulator } from "./accumulator.ts";
-import type { BaselineIndex } from "./baseline-index.ts";
-import { BUCKET_SHIFT, BUCKETS, sketchQuantile, windowStart } from "./buckets.ts";
-import { AUTOCORRELATION, type PreparedBlock, USABLE } from "./prepared.ts";
-import type { SurveySettings } from "./settings.ts";
+import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
+import { SketchBank, sharingLadder } from "./sketch-bank.ts";
+
+/** 32 buckets an octave: a quantile is within 1/65 of the exact one. */
+const MANTISSA_BITS = 5;
 
 export class AmplitudeSketches implements Accumulator {
-  private readonly shape: Shape;
-  private readonly settings: SurveySettings;
-  private readonly index: BaselineIndex;
-  private readonly start: number;
-  /** (channels) group that a channel belongs to */
-  private readonly groupOf: Int32Array;
-  /** by sketch owner: (buckets x subbands x groups x polarizations) */
-  private readonly sketches = new Map<number, Uint32Array>();
-  /** by baseline: (subbands x channels x polarizations) usable samples */
-  private readonly counts: Uint32Array[] = [];
+  private readonly samples: number;
+  private readonly bank: SketchBank;
+  /** by baseline */
+  private readonly rows: number[] = [];
+  /** by baseline, only where there are any: (samples of a row) samples that are not usable */
+  private readonly unusable: (Uint32Array | undefined)[] = [];
 
-  constructor(shape: Shape, settings: SurveySettings, index: BaselineIndex) {
-    this.shape = shape;
-    this.settings = settings;
-    this.index = index;
-    this.start = windowStart(settings.typicalPower);
-    this.groupOf = Int32Array.from({ length: shape.channels }, (_, channel) =>
-      Math.floor((channel * settings.channelGroups) / shape.channels),
-    );
-  }
-
-  private owner(baseline: number): number {
-    return this.settings.sketchByBaseline ? baseline : this.index.baselines[baseline]!.antenna1;
-  }
-
-  private sketchOf(owner: number): Uint32Array {
-    let sketch = this.sketches.get(owner);
-    if (sketch === undefined) {
-      const { subbands, polarizations } = this.shape;
-      sketch = new Uint32Array(subbands * this.settings.channelGroups * polarizations * BUCKETS);
-      this.sketches.set(owner, sketch);
-    }
-    return sketch;
-  }
-
-  private countsOf(baseline: number): Uint32Array {
-    let counts = this.counts[baseline];
-    if (counts === undefined) {
-      const { subbands, channels, polarizations } = this.shape;
-      counts = new Uint32Array(subbands * channels * polarizations);
-      this.counts[baseline] = counts;
-    }
-    return counts;
+  /**
+   * @param budget     bytes of the sketches: where they would take more, neighbouring channels share one
+   * @param baselines  how many there will be, as far as the dataset tells
+   */
+  constructor(shape: Shape, budget: number, baselines: number) {
+    this.samples = shape.subbands * shape.channels * shape.polarizations;
+    this.bank = new SketchBank(sharingLadder(shape), MANTISSA_BITS, budget, baselines);
   }
 
   add(prepared: PreparedBlock): void {
-    const { subbands, channels, polarizations } = this.shape;
-    const { kind, powerBits, rowSamples } = prepared;
-    const { start, groupOf } = this;
-    const groups = this.settings.channelGroups;
-    const width = subbands * groups * polarizations;
+    const { samples, bank, rows } = this;
+    const { baseline: baselines, bits, whole } = prepared;
     for (let row = 0; row < prepared.rows; row++) {
-      const baseline = prepared.baseline[row]!;
+      const baseline = baselines[row]!;
       if (baseline === AUTOCORRELATION) continue;
-      const sketches = this.sketchOf(this.owner(baseline));
-      const counts = this.countsOf(baseline);
-      let i = row * rowSamples;
-      let at = 0;
-      for (let s = 0; s < subbands; s++) {
-        for (let c = 0; c < channels; c++) {
-          let sketch = (s * groups + groupOf[c]!) * polarizations;
-          for (let p = 0; p < polarizations; p++, i++, at++, sketch++) {
-            if (kind[i] !== USABLE) continue;
-            let bucket = (powerBits[i]! >> BUCKET_SHIFT) - start;
-            if (bucket < 0) bucket = 0;
-            else if (bucket >= BUCKETS) bucket = BUCKETS - 1;
-            sketches[bucket * width + sketch]! += 1;
-            counts[at]! += 1;
-          }
-        }
-      }
+      const start = row * samples;
+      bank.add(baseline, bits, start);
+      rows[baseline] = (rows[baseline] ?? 0) + 1;
+      if (whole[row] === 1) continue;
+      const unusable = this.unusableOf(baseline);
+      for (let i = 0; i < samples; i++) if (bits[start + i]! < 0) unusable[i]! += 1;
     }
+  }
+
+  private unusableOf(baseline: number): Uint32Array {
+    let unusable = this.unusable[baseline];
+    if (unusable === undefined) {
+      unusable = new Uint32Array(this.samples);
+      this.unusable[baseline] = unusable;
+    }
+    return unusable;
   }
 
   merge(other: this, baselines: Int32Array): void {
-    for (const [owner, counts] of other.sketches) {
-      const ours = this.settings.sketchByBaseline ? baselines[owner]! : owner;
-      addInto(this.sketchOf(ours), counts);
-    }
-    for (const [baseline, counts] of other.counts.entries()) {
-      if (counts !== undefined) addInto(this.countsOf(baselines[baseline]!), counts);
+    this.bank.merge(other.bank, baselines);
+    for (const [theirs, rows] of other.rows.entries()) {
+      if (rows === undefined) continue;
+      const ours = baselines[theirs]!;
+      this.rows[ours] = (this.rows[ours] ?? 0) + rows;
+      const counts = other.unusable[theirs];
+      if (counts === undefined) continue;
+      const unusable = this.unusableOf(ours);
+      for (let i = 0; i < this.samples; i++) unusable[i]! += counts[i]!;
     }
   }
 
-  /** @param median out (subbands x channels x polarizations) amplitude, NaN where nothing is usable */
-  fillMedians(baseline: number, median: Float32Array): void {
-    const { subbands, channels, polarizations } = this.shape;
-    const sketch = this.sketches.get(this.owner(baseline));
-    median.fill(Number.NaN);
-    if (sketch === undefined) return;
-    const groups = this.settings.channelGroups;
-    const ofSketch = Float32Array.from({ length: subbands * groups * polarizations }, (_, i) =>
-      sketchQuantile(sketch, i, this.start, 0.5),
-    );
-    let at = 0;
-    for (let s = 0; s < subbands; s++) {
-      for (let c = 0; c < channels; c++) {
-        for (let p = 0; p < polarizations; p++, at++) {
-          median[at] = ofSketch[(s * groups + this.groupOf[c]!) * polarizations + p]!;
-        }
+  /**
+   * Levels of one baseline.
+   *
+   * @param median  out (samples of a row) median amplitude; NaN where nothing is usable. Channels that share a sketch
+   *                share its median.
+   * @param count   out (samples of a row) usable samples
+   */
+  fill(baseline: number, median: Float32Array, count: Uint32Array): void {
+    const rows = this.rows[baseline] ?? 0;
+    const unusable = this.unusable[baseline];
+    const shared = this.bank.map.sketch;
+    const known = new Float32Array(this.bank.map.sketches);
+    const asked = new Uint8Array(this.bank.map.sketches);
+    for (let i = 0; i < this.samples; i++) {
+      const sketch = shared[i]!;
+      if (asked[sketch] === 0) {
+        asked[sketch] = 1;
+        known[sketch] = this.bank.quantile(baseline, sketch, 0.5);
       }
+      count[i] = rows - (unusable === undefined ? 0 : unusable[i]!);
+      median[i] = count[i]! > 0 ? known[sketch]! : Number.NaN;
     }
   }
-
-  /** (subbands x channels x polarizations) usable samples of a baseline */
-  usable(baseline: number): Uint32Array {
-    return this.countsOf(baseline);
-  }
-}
-
-export function addInto(ours: Uint32Array, theirs: Uint32Array): void {
-  for (let i = 0; i < ours.length; i++) ours[i]! += theirs[i]!;
 }

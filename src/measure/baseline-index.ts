@@ -1,31 +1,67 @@
 /** Baselines in the order they are met, lower antenna number first. */
+import { InputError } from "../util/errors.ts";
 import type { Baseline } from "./survey-result.ts";
 
-/** Antenna numbers are below this in every encoding the readers know. */
-const NUMBERS = 2 ** 26;
+/** Of 1448 antennas: beyond, antenna numbers are damaged more likely than real. */
+const MOST_BASELINES = 1 << 20;
+/** A pair of 32-bit numbers is an exact double while the first is below this. */
+const EXACT = 1 << 21;
 
 export class BaselineIndex {
   readonly baselines: Baseline[] = [];
-  private readonly known = new Map<number, number>();
-  // Rows of one baseline often follow each other, and those of one integration come in the same order each time.
-  private lastKey = -1;
-  private lastIndex = -1;
+  private readonly known = new Map<number | string, number>();
+  private low = new Int32Array(64);
+  private high = new Int32Array(64);
+  /** the baseline that last followed each: rows of one integration come in the same order each time */
+  private follower = new Int32Array(64);
+  private last = 0;
 
-  /** Index of the baseline, which may be new. Either way round is the same one. */
+  /**
+   * Index of the baseline, which may be new. Either way round is the same one.
+   * @throws InputError when there are more baselines than any array has
+   */
   indexOf(antenna1: number, antenna2: number): number {
     const low = Math.min(antenna1, antenna2);
     const high = Math.max(antenna1, antenna2);
-    const key = low * NUMBERS + high;
-    if (key === this.lastKey) return this.lastIndex;
-    let index = this.known.get(key);
-    if (index === undefined) {
-      index = this.baselines.length;
-      this.baselines.push({ antenna1: low, antenna2: high });
-      this.known.set(key, index);
+    let index = this.last;
+    if (this.low[index] !== low || this.high[index] !== high) index = this.follower[index]!;
+    if (this.low[index] !== low || this.high[index] !== high || this.baselines.length === 0) {
+      index = this.find(low, high);
+      this.follower[this.last] = index;
     }
-    this.lastKey = key;
-    this.lastIndex = index;
+    this.last = index;
     return index;
+  }
+
+  private find(low: number, high: number): number {
+    const key = Math.abs(low) < EXACT ? low * 2 ** 32 + high : `${low} ${high}`;
+    const known = this.known.get(key);
+    if (known !== undefined) return known;
+    const index = this.baselines.length;
+    if (index === MOST_BASELINES) {
+      throw new InputError(
+        `the rows name more than ${MOST_BASELINES} baselines: expected at most those of 1448 antennas`,
+        {},
+        "The antenna numbers are damaged",
+      );
+    }
+    if (index === this.low.length) this.grow();
+    this.low[index] = low;
+    this.high[index] = high;
+    this.baselines.push({ antenna1: low, antenna2: high });
+    this.known.set(key, index);
+    return index;
+  }
+
+  private grow(): void {
+    const longer = (array: Int32Array<ArrayBuffer>) => {
+      const grown = new Int32Array(2 * array.length);
+      grown.set(array);
+      return grown;
+    };
+    this.low = longer(this.low);
+    this.high = longer(this.high);
+    this.follower = longer(this.follower);
   }
 
   /** New index of each baseline when they are sorted by antenna1, then antenna2. */

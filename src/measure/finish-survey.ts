@@ -1,84 +1,100 @@
 /** From the state of a survey to its result: everything in a fixed order, whatever order the rows came in. */
-import { finishTracks } from "./finish-tracks.ts";
+import { InputError } from "../util/errors.ts";
 import { finishLevels } from "./levels.ts";
-import { findScans, typicalIntegration } from "./scans.ts";
 import { surveyMeasures } from "./survey-measures.ts";
 import type { SurveyPart } from "./survey-part.ts";
 import type { Baseline, Survey, Totals, Tracks } from "./survey-result.ts";
-import { TIME_STEP_DAYS } from "./time-order.ts";
+import { BaselineCounts } from "./tables/baseline-counts.ts";
+import { findScans, integrationsOf, typicalIntegration } from "./times.ts";
 
+/** Bytes of the levels of one sample of a row on one baseline, and the most that all of them may take. */
+const LEVEL_BYTES = 12;
+const MOST_LEVEL_BYTES = 8e9;
+
+/** @throws InputError when the array and band are too large for the memory of any machine at hand */
 export function finishSurvey(part: SurveyPart): Survey {
-  const { dataset, settings, index } = part;
+  const { dataset, index, gathered } = part;
   const places = index.sortedPlaces();
-  const baselines = new Array<Baseline>(places.length);
-  for (const [i, baseline] of index.baselines.entries()) baselines[places[i]!] = baseline;
-  const times = part.order.integrations;
-  const bare = finishTracks(part.tracks, places, settings.binSeconds);
-  const integration = typicalIntegration(bare.integration, times);
-  const { scans, ofCell } = findScans(bare.time, bare.field, integration);
+  requireRoom(part, places.length);
+  // The number that the accumulators know each baseline by, in the order of the result.
+  const order = new Int32Array(places.length);
+  for (const [number, place] of places.entries()) order[place] = number;
+  const baselines: readonly Baseline[] = Array.from(order, (number) => index.baselines[number]!);
+  const fields = gathered.order.fields;
+  const said = gathered.order.integration;
+  const integrations = integrationsOf(fields, said);
+  const integration = typicalIntegration(said, integrations.centre);
+  const bare = gathered.tracks.tracks(places);
+  const { scans, ofCell } = findScans(fields, integrations, integration, bare);
   const tracks: Tracks = { ...bare, scan: ofCell };
-  const levels = finishLevels(part, places, tracks);
-  const result = {
+  const { levels, channelNoise } = finishLevels(
+    dataset.shape,
+    gathered.amplitudes,
+    gathered.noise,
+    gathered.baselines,
+    order,
+    tracks,
+  );
+  const counts = new BaselineCounts(gathered.baselines, order);
+  const duplicateRows = gathered.tracks.duplicates(bare, integrations.centre);
+  const survey = {
     dataset,
     baselines,
-    antennasWithData: antennasWithData(baselines, tracks, part.tracks.products),
+    antennasWithData: antennasWithData(baselines, counts),
     tracks,
     levels,
-    times,
+    times: integrations.centre,
     integration,
     scans,
-    totals: totalsOf(part, tracks),
+    totals: totalsOf(part, counts, duplicateRows),
   };
-  return { ...result, measures: surveyMeasures(result, part) };
+  const { channels } = gathered;
+  return {
+    ...survey,
+    measures: surveyMeasures(survey, {
+      counts,
+      channels,
+      channelNoise,
+      integrations,
+      wKnown: gathered.order.wKnown,
+    }),
+  };
 }
 
-function antennasWithData(baselines: readonly Baseline[], tracks: Tracks, products: number): number[] {
+function requireRoom({ dataset }: SurveyPart, baselines: number): void {
+  const { subbands, channels, polarizations } = dataset.shape;
+  const bytes = baselines * subbands * channels * polarizations * LEVEL_BYTES;
+  if (bytes <= MOST_LEVEL_BYTES) return;
+  throw new InputError(
+    `${baselines} baselines of ${subbands * channels * polarizations} samples a row need ` +
+      `${Math.ceil(bytes / 1e9)} GB for their levels: expected at most ${MOST_LEVEL_BYTES / 1e9} GB`,
+    {},
+    "Average channels or split the sub-bands into several files, and check each",
+  );
+}
+
+function antennasWithData(baselines: readonly Baseline[], counts: BaselineCounts): number[] {
   const numbers = new Set<number>();
   for (const [b, { antenna1, antenna2 }] of baselines.entries()) {
-    const [first, last] = [tracks.firstCell[b]! * products, tracks.firstCell[b + 1]! * products];
-    if (!tracks.usable.subarray(first, last).some((count) => count > 0)) continue;
-    numbers.add(antenna1).add(antenna2);
+    if (counts.of(b).usable > 0) numbers.add(antenna1).add(antenna2);
   }
   return [...numbers].sort((a, b) => a - b);
 }
 
-function totalsOf(part: SurveyPart, tracks: Tracks): Totals {
-  const { order, channels } = part;
-  const sum = (counts: Uint32Array) => counts.reduce((total, count) => total + count, 0);
-  const [usable, flagged, bad, zero] = [tracks.usable, tracks.flagged, tracks.bad, tracks.zero].map(sum) as [
-    number,
-    number,
-    number,
-    number,
-  ];
+function totalsOf({ gathered }: SurveyPart, counts: BaselineCounts, duplicateRows: number): Totals {
+  const { order, baselines } = gathered;
+  const { samples, usable, flagged, bad, zero } = counts.all;
   return {
     rows: order.rows,
-    autocorrelationRows: channels.autocorrelationRows,
-    samples: usable + flagged + bad + zero,
+    autocorrelationRows: baselines.autocorrelationRows,
+    samples,
     usable,
     flagged,
     bad,
     zero,
-    duplicateRows: tracks.binSeconds > 0 ? Number.NaN : duplicates(tracks),
+    duplicateRows,
     outOfOrderRows: order.backwardRows,
     badTimeRows: order.badTimeRows,
     badUvwRows: order.badUvwRows,
   };
-}
-
-/** Cells, one a row, that repeat the one before them in everything but their samples. */
-function duplicates(tracks: Tracks): number {
-  const { baseline, time, field, setup, subarray } = tracks;
-  let count = 0;
-  for (let cell = 1; cell < tracks.cells; cell++) {
-    const before = cell - 1;
-    const same =
-      baseline[cell] === baseline[before] &&
-      time[cell]! - time[before]! <= TIME_STEP_DAYS &&
-      field[cell] === field[before] &&
-      setup[cell] === setup[before] &&
-      subarray[cell] === subarray[before];
-    if (same) count += 1;
-  }
-  return count;
 }

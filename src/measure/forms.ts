@@ -45,14 +45,20 @@ export const DATASET: MeasureForm = {
     column("duration_s", "s", "from the first integration centre to the last"),
     column("integration_s", "s", "typical integration time"),
     column("gaps", "", "breaks in time longer than five integrations and a minute, inside one field"),
-    column("largest_gap_s", "s", "longest time without any data"),
+    column("largest_gap_s", "s", "longest time between neighbouring integration centres"),
+    column("gap_fraction", "", "of the duration, taken by breaks longer than five integrations and a minute"),
+    column("missing_integrations", "", "integrations that would fit into shorter breaks"),
     column(
       "duplicate_rows",
       "",
-      "rows that repeat an earlier baseline and time; NaN where rows are too many to compare",
+      "rows that repeat an earlier baseline and time; where rows are too many to keep, at least so many",
     ),
     column("duplicate_fraction", "", "of the rows"),
-    column("out_of_order_rows", "", "rows earlier than the row before them"),
+    column(
+      "out_of_order_rows",
+      "",
+      "rows earlier than the row before them; in a dataset sorted by baseline, than that of the same baseline",
+    ),
     column("out_of_order_fraction", "", "of the rows"),
     column("bad_time_rows", "", "rows without a time"),
     column("bad_uvw_rows", "", "rows with u, v or w not finite"),
@@ -60,10 +66,15 @@ export const DATASET: MeasureForm = {
     column(
       "sensitivity_lost",
       "",
-      "1 - sqrt(usable samples over those the file has room for, absent products apart)",
+      "1 - sqrt(usable weight over all weight, flagged and bad included), parallel hands",
     ),
     column("noise_sigma", "", "typical noise of a sample, in the dataset's unit"),
     column("amplitude_median", "", "typical amplitude of a sample, in the dataset's unit"),
+    column(
+      "weight_scale",
+      "",
+      "noise squared times weight, median of the baselines: 1 where weights are 1/sigma^2",
+    ),
     column("header_faults", "", "faults noted while reading the headers and tables"),
     column("has_weights", "", "0 when the file carries no weights"),
     column("w_known", "", "1 when any w is not zero"),
@@ -94,10 +105,16 @@ export const ANTENNA: MeasureForm = {
       "median over its baselines of the amplitude against what the other antennas make likely",
     ),
     column(
+      "hand_ratio",
+      "",
+      "amplitude of the first parallel hand over the second, over that of the array; NaN without two",
+    ),
+    column(
       "coherence",
       "",
       "|vector mean| over scalar mean of neighbouring integrations, median of its baselines",
     ),
+    column("coherence_ratio", "", "coherence over the median one of the antennas"),
     column(
       "weight_scatter_ratio",
       "",
@@ -122,8 +139,14 @@ export const BASELINE: MeasureForm = {
     column("uv_min_m", "m", "shortest projected spacing"),
     column("uv_max_m", "m", "longest projected spacing"),
     column("w_max_m", "m", "largest |w|"),
+    column("w_max_wavelengths", "", "the same at the highest frequency, wavelengths"),
     ...LEVELS,
     column("amplitude_scatter", "", "robust scatter of the amplitude in time over its median"),
+    column(
+      "amplitude_tail",
+      "",
+      "standard deviation of the amplitude in time over its robust scatter: 1 without outliers",
+    ),
     column("coherence", "", "|vector mean| over scalar mean of neighbouring integrations"),
     column("weight_scatter_ratio", "", "noise times sqrt(weight), over the array's median"),
   ],
@@ -161,6 +184,7 @@ export const POLARIZATION: MeasureForm = {
     ...LEVELS,
     column("parallel", "", "1 for a parallel-hand product or Stokes I"),
     column("amplitude_ratio", "", "amplitude over the mean of the parallel hands; NaN for other products"),
+    column("cross_ratio", "", "the same of the other products; NaN for the parallel hands"),
   ],
 };
 
@@ -200,8 +224,8 @@ export const INTEGRATION: MeasureForm = {
   each: "time",
   title: "Each integration of the array",
   columns: [
-    column("time_start", "d", "MJD (UTC) of its centre"),
-    column("time_end", "d", "the same"),
+    column("time_start", "d", "MJD (UTC) of the centre, earliest row"),
+    column("time_end", "d", "MJD (UTC) of the centre, latest row: the same but for the rounding of times"),
     column("scan", "", "from 0"),
     column("baselines", "", "rows in it"),
     ...COUNTS,
@@ -210,5 +234,21 @@ export const INTEGRATION: MeasureForm = {
       "",
       "median over the baselines of the scalar amplitude over the baseline's own median",
     ),
+  ],
+};
+
+export const GAP_IN_TIME: MeasureForm = {
+  name: "gap_in_time",
+  each: "gap",
+  title: "Breaks in time of the whole array, longer than five integrations and a minute",
+  columns: [
+    column("time_start", "d", "MJD (UTC) of the last integration before it"),
+    column("time_end", "d", "MJD (UTC) of the first integration after it"),
+    column("seconds", "s", "without data"),
+    column("integrations", "", "that would fit"),
+    column("gap_ratio", "", "over the typical (median) gap"),
+    column("field_before", "", "id of the field observed before it, null unknown"),
+    column("field_after", "", "id of the field observed after it, null unknown"),
+    column("in_field", "", "1 when they are the same"),
   ],
 };

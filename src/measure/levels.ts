@@ -1,93 +1,109 @@
-/** Robust levels of the samples from the sketches, and from the tracks where a sub-band has too few channels. */
-import { MAD_TO_SIGMA, median } from "../util/statistics.ts";
-import type { SurveyPart } from "./survey-part.ts";
+/** Robust levels of the samples, from the sketches and, where channels tell no noise, from the tracks. */
+import type { Shape } from "../dataset/dataset.ts";
+import { median, RAYLEIGH_MEDIAN } from "../util/statistics.ts";
+import type { AmplitudeSketches } from "./amplitude-sketches.ts";
+import type { BaselineTally } from "./baseline-tally.ts";
+import { type ChannelNoise, NoiseReader } from "./channel-noise.ts";
+import type { NoiseSketches } from "./noise-sketches.ts";
 import type { Levels, Tracks } from "./survey-result.ts";
 
 /** Variance of a second difference of white noise over that of one value. */
-const SECOND_DIFFERENCE = 6;
-/** Second differences in time that a noise needs. */
-const FEWEST_DIFFERENCES = 3;
+const SECOND = 6;
+/** Differences that a noise needs. */
+const FEWEST = 5;
+/** From this many on, differences in time are trusted against those along the channels. */
+const ENOUGH_IN_TIME = 30;
+/** How even the weights of the channels must be for the noise of their mean to tell that of one. */
+const EVEN = 0.9;
+/** Channels whose signal varies faster than a second difference follows show at least this much more than time does. */
+const STRUCTURED = 1.4;
 
-/** @param places  new number of each baseline */
-export function finishLevels(part: SurveyPart, places: Int32Array, tracks: Tracks): Levels {
-  const { subbands, channels, polarizations } = part.dataset.shape;
+export interface LevelsOfChannels {
+  readonly levels: Levels;
+  /** (subbands x polarizations) */
+  readonly channelNoise: readonly ChannelNoise[];
+}
+
+/** @param order  the sketches' number of each baseline, in the order of the result */
+export function finishLevels(
+  shape: Shape,
+  amplitudes: AmplitudeSketches,
+  noise: NoiseSketches,
+  tally: BaselineTally,
+  order: Int32Array,
+  tracks: Tracks,
+): LevelsOfChannels {
+  const { subbands, channels, polarizations } = shape;
   const each = subbands * channels * polarizations;
+  const products = subbands * polarizations;
   const levels = {
-    median: new Float32Array(places.length * each),
-    sigma: new Float32Array(places.length * each),
-    count: new Uint32Array(places.length * each),
+    median: new Float32Array(order.length * each),
+    sigma: new Float32Array(order.length * each),
+    count: new Uint32Array(order.length * each),
   };
-  const shape = channelShape(part);
-  for (let index = 0; index < places.length; index++) {
-    const place = places[index]!;
+  const reader = new NoiseReader(noise);
+  const channelNoise = Array.from({ length: products }, (_, product) =>
+    reader.ofChannels(Math.floor(product / polarizations), product % polarizations),
+  );
+  for (const [place, number] of order.entries()) {
     const first = place * each;
-    part.amplitudes.fillMedians(index, levels.median.subarray(first, first + each));
-    levels.count.set(part.amplitudes.usable(index), first);
-    const sigma = part.noise.baselineSigma(index, shape);
-    for (let s = 0; s < subbands; s++) {
-      for (let p = 0; p < polarizations; p++) {
-        const product = s * polarizations + p;
-        const known =
-          sigma[product]! > 0
-            ? sigma[product]!
-            : sigmaInTime(tracks, place, product, subbands * polarizations);
-        for (let c = 0; c < channels; c++) {
-          const at = (s * channels + c) * polarizations + p;
-          levels.sigma[first + at] = known * shape[at]!;
-        }
-      }
-    }
-  }
-  return levels;
-}
-
-/** Channels on either side whose median is a channel's noise: more than a narrow line and its neighbours take. */
-const AROUND = 5;
-
-/**
- * (subbands x channels x polarizations) noise of a channel over the typical one of its sub-band and polarization:
- * smooth along the band, as a passband is and a narrow line is not.
- */
-function channelShape(part: SurveyPart): Float64Array {
-  const { subbands, channels, polarizations } = part.dataset.shape;
-  const sigma = part.noise.channelSigma();
-  const shape = new Float64Array(sigma.length).fill(1);
-  for (let s = 0; s < subbands; s++) {
-    for (let p = 0; p < polarizations; p++) {
-      const at = (c: number) => (s * channels + c) * polarizations + p;
-      const along = Float64Array.from({ length: channels }, (_, c) => sigma[at(c)]!);
-      const typical = median(along);
-      if (!(typical > 0)) continue;
+    const last = first + each;
+    amplitudes.fill(number, levels.median.subarray(first, last), levels.count.subarray(first, last));
+    for (let product = 0; product < products; product++) {
+      const subband = Math.floor(product / polarizations);
+      const polarization = product % polarizations;
+      const { odd, trend } = channelNoise[product]!;
+      const along = reader.ofBaseline(number, subband, polarization, odd, FEWEST);
+      const even = tally.evenness(number, product) > EVEN;
+      const sigma = settle(along, sigmaInTime(tracks, place, product, products), even);
       for (let c = 0; c < channels; c++) {
-        // Shorter towards the ends, so that a passband's edge is not flattened; the outermost have no noise of their own.
-        const reach = Math.max(1, Math.min(AROUND, c, channels - 1 - c));
-        const ratio = median(along.subarray(Math.max(0, c - reach), c + reach + 1)) / typical;
-        if (ratio > 0) shape[at(c)] = ratio;
+        const at = first + (subband * channels + c) * polarizations + polarization;
+        levels.sigma[at] = levels.count[at] === 0 ? Number.NaN : sigma * trend[c]!;
       }
     }
   }
-  return shape;
+  return { levels, channelNoise };
 }
 
-/** Noise of one sample from second differences in time of the channel averages; NaN where there are too few. */
-function sigmaInTime(tracks: Tracks, baseline: number, product: number, products: number): number {
+interface InTime {
+  readonly sigma: number;
+  readonly count: number;
+}
+
+/** Structure of the sky adds to either estimate and takes from neither: where they differ much, the smaller is noise. */
+function settle(along: number, time: InTime, even: boolean): number {
+  if (Number.isNaN(along)) return time.count >= FEWEST ? time.sigma : Number.NaN;
+  return even && time.count >= ENOUGH_IN_TIME && time.sigma * STRUCTURED < along ? time.sigma : along;
+}
+
+/** Noise of one sample from second differences in time of the channel averages, whose noise is 1/sqrt(n) of it. */
+function sigmaInTime(tracks: Tracks, baseline: number, product: number, products: number): InTime {
+  const { usable, real, imag } = tracks;
   const differences: number[] = [];
   const last = tracks.firstCell[baseline + 1]!;
   for (let cell = tracks.firstCell[baseline]! + 2; cell < last; cell++) {
-    if (tracks.scan[cell] !== tracks.scan[cell - 2] || tracks.setup[cell] !== tracks.setup[cell - 2])
-      continue;
-    const [a, b, c] = [
-      (cell - 2) * products + product,
-      (cell - 1) * products + product,
-      cell * products + product,
-    ];
-    // The noise of one sample: that of the mean of n channels times sqrt(n).
-    const channels = Math.sqrt(Math.min(tracks.usable[a]!, tracks.usable[b]!, tracks.usable[c]!));
-    const re = tracks.real[a]! - 2 * tracks.real[b]! + tracks.real[c]!;
-    const im = tracks.imag[a]! - 2 * tracks.imag[b]! + tracks.imag[c]!;
-    if (!Number.isNaN(re)) differences.push(Math.abs(re) * channels);
-    if (!Number.isNaN(im)) differences.push(Math.abs(im) * channels);
+    if (!follow(tracks, cell - 2, cell)) continue;
+    const a = (cell - 2) * products + product;
+    const b = a + products;
+    const c = b + products;
+    if (usable[a] === 0 || usable[b] === 0 || usable[c] === 0) continue;
+    const variance = 1 / usable[a]! + 4 / usable[b]! + 1 / usable[c]!;
+    const re = real[a]! - 2 * real[b]! + real[c]!;
+    const im = imag[a]! - 2 * imag[b]! + imag[c]!;
+    differences.push(Math.sqrt((re * re + im * im) * (SECOND / variance)));
   }
-  if (differences.length < FEWEST_DIFFERENCES) return Number.NaN;
-  return (MAD_TO_SIGMA * median(differences)) / Math.sqrt(SECOND_DIFFERENCE);
+  return {
+    sigma: median(differences) / (RAYLEIGH_MEDIAN * Math.sqrt(SECOND)),
+    count: differences.length,
+  };
+}
+
+/** Cells of one run of integrations: nothing between them but what lies between them in the list. */
+function follow({ scan, setup, subarray, field }: Tracks, first: number, last: number): boolean {
+  return (
+    scan[first] === scan[last] &&
+    setup[first] === setup[last] &&
+    subarray[first] === subarray[last] &&
+    field[first] === field[last]
+  );
 }

@@ -1,207 +1,154 @@
 /**
- * Noise of one sample from second differences along the channels, V(c-k) - 2 V(c) + V(c+k), which cancel a constant
- * and a slope. Their median is robust against interference in fewer than half of the channels. With k = 2 beside k = 1,
- * spectra smoothed over neighbouring channels are told and corrected for.
+ * What the noise is measured from: differences between neighbouring channels, in which a smooth sky and passband
+ * cancel. Their medians are later turned into noise by `channel-noise.ts` and `levels.ts`.
+ *
+ * The main one is the second difference V(c-1) - 2 V(c) + V(c+1), which a constant and a slope leave at 0. Its modulus
+ * is Rayleigh distributed for noise, one number of which says as much as its real and imaginary parts apart. First
+ * differences over one, two and three channels, of all baselines together, tell whether channels were smoothed.
  */
 import type { Shape } from "../dataset/dataset.ts";
-import { MAD_TO_SIGMA, median } from "../util/statistics.ts";
 import type { Accumulator } from "./accumulator.ts";
-import { addInto } from "./amplitude-sketches.ts";
-import type { BaselineIndex } from "./baseline-index.ts";
-import { BUCKET_SHIFT, BUCKETS, sketchQuantile, windowStart } from "./buckets.ts";
-import { AUTOCORRELATION, type PreparedBlock, USABLE } from "./prepared.ts";
+import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
 import type { SurveySettings } from "./settings.ts";
+import { SketchBank, type SketchMap, sharingLadder } from "./sketch-bank.ts";
 
-/** Variance of a second difference over that of one sample: white noise, 1 + 4 + 1. */
-const WHITE_FACTOR = 6;
-/**
- * The same for noise smoothed by (1/4, 1/2, 1/4), whose correlations are 2/3 and 1/6 at lags 1 and 2: at lag 1
- * 6 - 8 (2/3) + 2 (1/6) = 1, at lag 2 6 - 8 (1/6) = 14/3.
- */
-const SMOOTHED_LAG2_FACTOR = 14 / 3;
-/** Ratio of lag-2 to lag-1 rms: 1 for white noise, sqrt(14/3) = 2.16 when smoothed. */
-const SMOOTHED_RATIO: readonly [number, number] = [1.9, 2.5];
-
-/** Of those rows, the ones whose lag-2 differences are taken: one in this many is plenty for a ratio. */
-const LAG2_EVERY = 8;
+/** 64 buckets an octave, and the place inside the bucket by rank. */
+const MANTISSA_BITS = 6;
+/** Spans of first differences, channels. */
+export const SPANS = [1, 2, 3] as const;
 
 export class NoiseSketches implements Accumulator {
-  private readonly shape: Shape;
-  private readonly start: number;
-  private readonly index: BaselineIndex;
-  private readonly settings: SurveySettings;
-  /** (channels) segment of the sub-band that a channel belongs to */
-  private readonly segmentOf: Int32Array;
-  /** by sketch owner: (buckets x subbands x segments x polarizations) */
-  private readonly byOwner = new Map<number, Uint32Array>();
-  /** (buckets x subbands x channels x polarizations) over all baselines */
-  private readonly byChannel: Uint32Array;
-  /** (buckets x 2 lags x subbands x polarizations) */
-  private readonly lags: Uint32Array;
-  private readonly scratch = new Float32Array(2);
-  private readonly scratchBits = new Int32Array(this.scratch.buffer);
+  readonly shape: Shape;
+  private readonly samples: number;
+  private readonly every: number;
+  private readonly channelEvery: number;
+  private readonly spansEvery: number;
+  /** sketches by baseline, sub-band and polarization */
+  private readonly byBaseline: SketchBank;
+  /** sketches by sub-band, channel and polarization; one owner */
+  private readonly byChannel: SketchBank;
+  /** owners: the second difference, then the spans; sketches by sub-band */
+  private readonly bySpan: SketchBank;
+  private readonly differences: Float32Array;
+  private readonly bits: Int32Array;
 
-  constructor(shape: Shape, settings: SurveySettings, index: BaselineIndex) {
+  constructor(
+    shape: Shape,
+    budget: number,
+    { baselines, noiseEvery, channelEvery, spansEvery }: SurveySettings,
+  ) {
     this.shape = shape;
-    this.settings = settings;
-    this.index = index;
-    this.segmentOf = Int32Array.from({ length: shape.channels }, (_, channel) =>
-      Math.floor((channel * settings.noiseSegments) / shape.channels),
+    this.samples = shape.subbands * shape.channels * shape.polarizations;
+    this.every = noiseEvery;
+    this.channelEvery = channelEvery;
+    this.spansEvery = spansEvery;
+    this.byBaseline = new SketchBank(
+      sharingLadder(shape, shape.channels),
+      MANTISSA_BITS,
+      budget / 2,
+      baselines,
     );
-    this.start = windowStart(settings.typicalPower);
-    const { subbands, channels, polarizations } = shape;
-    this.byChannel = new Uint32Array(subbands * channels * polarizations * BUCKETS);
-    this.lags = new Uint32Array(2 * subbands * polarizations * BUCKETS);
-  }
-
-  private owner(baseline: number): number {
-    return this.settings.sketchByBaseline ? baseline : this.index.baselines[baseline]!.antenna1;
-  }
-
-  private ofOwner(owner: number): Uint32Array {
-    let sketch = this.byOwner.get(owner);
-    if (sketch === undefined) {
-      const { subbands, polarizations } = this.shape;
-      sketch = new Uint32Array(subbands * this.settings.noiseSegments * polarizations * BUCKETS);
-      this.byOwner.set(owner, sketch);
-    }
-    return sketch;
+    this.byChannel = new SketchBank(sharingLadder(shape), MANTISSA_BITS, budget / 4, 1);
+    this.bySpan = new SketchBank([bySubband(shape)], MANTISSA_BITS, budget / 4, 1 + SPANS.length);
+    this.differences = new Float32Array(this.samples);
+    this.bits = new Int32Array(this.differences.buffer);
   }
 
   add(prepared: PreparedBlock): void {
-    if (this.shape.channels < 3) return;
+    if (this.shape.channels < 2) return;
+    const { baseline, block } = prepared;
     for (let row = 0; row < prepared.rows; row++) {
-      const baseline = prepared.baseline[row]!;
-      if (baseline === AUTOCORRELATION) continue;
-      const drawn = scattered(prepared.block.firstRow + row);
-      if (drawn % this.settings.noiseEvery !== 0) continue;
-      const toLags = Math.floor(drawn / this.settings.noiseEvery) % LAG2_EVERY === 0;
-      this.addRow(prepared, row, this.ofOwner(this.owner(baseline)), 1, toLags);
-      if (toLags) this.addRow(prepared, row, null, 2, true);
+      if (baseline[row] === AUTOCORRELATION) continue;
+      // By the row's place in the dataset, so that the choice is the same in any partition; scattered, so that no
+      // baseline is left out.
+      const chance = Math.imul(block.firstRow + row, 0x9e3779b1) >>> 8;
+      if ((chance & (this.every - 1)) !== 0) continue;
+      this.takeSecond(prepared, row);
+      this.byBaseline.add(baseline[row]!, this.bits, 0);
+      if ((chance & (this.every * this.channelEvery - 1)) === 0) this.byChannel.add(0, this.bits, 0);
+      if ((chance & (this.every * this.spansEvery - 1)) !== 0) continue;
+      this.bySpan.add(0, this.bits, 0);
+      for (const [k, span] of SPANS.entries()) {
+        this.takeFirst(prepared, row, span);
+        this.bySpan.add(1 + k, this.bits, 0);
+      }
     }
   }
 
-  /** @param sketch the baseline's; null: this row goes to the sums of lags alone */
-  private addRow(
-    prepared: PreparedBlock,
-    row: number,
-    sketch: Uint32Array | null,
-    lag: number,
-    toLags: boolean,
-  ): void {
+  /** Second differences of a row, each at its middle channel; of two channels the first difference at the first. */
+  private takeSecond(prepared: PreparedBlock, row: number): void {
+    const { channels } = this.shape;
+    if (channels === 2) this.takeFirst(prepared, row, 1);
+    else this.take(prepared, row, 1, 1);
+  }
+
+  private takeFirst(prepared: PreparedBlock, row: number, span: number): void {
+    this.take(prepared, row, 0, span);
+  }
+
+  /** |V(c-before) - (1 or 2) V(c) + (0 or V(c+after))|: with nothing before, the first difference V(c+after) - V(c). */
+  private take(prepared: PreparedBlock, row: number, before: number, after: number): void {
+    const { differences, bits, samples } = this;
     const { subbands, channels, polarizations } = this.shape;
     const { real, imag } = prepared.block;
-    const { kind } = prepared;
-    const { scratch, scratchBits, start, byChannel, lags, segmentOf } = this;
-    const segments = this.settings.noiseSegments;
-    const ownWidth = subbands * segments * polarizations;
-    const channelWidth = subbands * channels * polarizations;
-    const lagWidth = 2 * subbands * polarizations;
-    const step = lag * polarizations;
+    const kinds = prepared.bits;
+    const offset = row * samples;
+    const down = before * polarizations;
+    const up = after * polarizations;
+    // Without a channel before, the middle one takes its place: V(c) - 2 V(c) + V(c+after).
+    bits.fill(-1);
     for (let s = 0; s < subbands; s++) {
-      const subband = row * prepared.rowSamples + s * channels * polarizations;
-      for (let c = lag; c < channels - lag; c++) {
-        for (let p = 0; p < polarizations; p++) {
-          const i = subband + c * polarizations + p;
-          if (kind[i]! + kind[i - step]! + kind[i + step]! !== 3 * USABLE) continue;
-          const re = real[i - step]! - 2 * real[i]! + real[i + step]!;
-          const im = imag[i - step]! - 2 * imag[i]! + imag[i + step]!;
-          scratch[0] = re * re;
-          scratch[1] = im * im;
-          for (let part = 0; part < 2; part++) {
-            let bucket = (scratchBits[part]! >> BUCKET_SHIFT) - start;
-            if (bucket < 0) bucket = 0;
-            else if (bucket >= BUCKETS) bucket = BUCKETS - 1;
-            if (sketch !== null) {
-              sketch[bucket * ownWidth + (s * segments + segmentOf[c]!) * polarizations + p]! += 1;
-              byChannel[bucket * channelWidth + (s * channels + c) * polarizations + p]! += 1;
-            }
-            if (toLags) lags[bucket * lagWidth + ((lag - 1) * subbands + s) * polarizations + p]! += 1;
-          }
-        }
+      const first = (s * channels + before) * polarizations;
+      const end = (s * channels + channels - after) * polarizations;
+      for (let i = first; i < end; i++) {
+        const at = offset + i;
+        if ((kinds[at - down]! | kinds[at]! | kinds[at + up]!) < 0) continue;
+        const re = real[at - down]! - 2 * real[at]! + real[at + up]!;
+        const im = imag[at - down]! - 2 * imag[at]! + imag[at + up]!;
+        differences[i] = Math.sqrt(re * re + im * im);
       }
     }
   }
 
   merge(other: this, baselines: Int32Array): void {
-    addInto(this.byChannel, other.byChannel);
-    addInto(this.lags, other.lags);
-    for (const [owner, counts] of other.byOwner) {
-      addInto(this.ofOwner(this.settings.sketchByBaseline ? baselines[owner]! : owner), counts);
-    }
+    this.byBaseline.merge(other.byBaseline, baselines);
+    this.byChannel.merge(other.byChannel, [0]);
+    this.bySpan.merge(other.bySpan, [0, 1, 2, 3]);
   }
 
-  /** sigma over the median second difference of a sub-band and polarization. */
-  private factor(subband: number, polarization: number): number {
-    const { subbands, polarizations } = this.shape;
-    const at = (lag: number) => ((lag - 1) * subbands + subband) * polarizations + polarization;
-    const ratio =
-      sketchQuantile(this.lags, at(2), this.start, 0.5) / sketchQuantile(this.lags, at(1), this.start, 0.5);
-    const smoothed = ratio > SMOOTHED_RATIO[0] && ratio < SMOOTHED_RATIO[1];
-    return smoothed
-      ? (MAD_TO_SIGMA * ratio) / Math.sqrt(SMOOTHED_LAG2_FACTOR)
-      : MAD_TO_SIGMA / Math.sqrt(WHITE_FACTOR);
+  /** Numbers in a baseline's sketch of a sub-band and polarization. */
+  count(baseline: number, subband: number, polarization: number): number {
+    return this.byBaseline.count(baseline, this.baselineSketch(subband, polarization));
   }
 
-  /**
-   * (subbands x polarizations) rms of the real (or imaginary) part of one sample of a baseline in a channel of typical
-   * noise: the median over segments of the sub-band, which a few bad channels do not move. NaN where no three
-   * neighbouring channels are usable.
-   *
-   * @param shape  (subbands x channels x polarizations) noise of a channel over the typical one
-   */
-  baselineSigma(baseline: number, shape: Float64Array): Float64Array {
-    const { subbands, polarizations } = this.shape;
-    const segments = this.settings.noiseSegments;
-    const sketch = this.byOwner.get(this.owner(baseline));
-    const sigma = new Float64Array(subbands * polarizations).fill(Number.NaN);
-    if (sketch === undefined) return sigma;
-    for (let s = 0; s < subbands; s++) {
-      for (let p = 0; p < polarizations; p++) {
-        const ofSegments = Float64Array.from({ length: segments }, (_, segment) => {
-          const middle = sketchQuantile(
-            sketch,
-            (s * segments + segment) * polarizations + p,
-            this.start,
-            0.5,
-          );
-          return middle / this.segmentShape(shape, s, segment, p);
-        });
-        sigma[s * polarizations + p] = this.factor(s, p) * median(ofSegments);
-      }
-    }
-    return sigma;
+  /** Quantile of the second differences of a baseline's sub-band and polarization; NaN without any. */
+  ofBaseline(baseline: number, subband: number, polarization: number, share: number): number {
+    return this.byBaseline.smoothQuantile(baseline, this.baselineSketch(subband, polarization), share);
   }
 
-  private segmentShape(shape: Float64Array, subband: number, segment: number, polarization: number): number {
+  private baselineSketch(subband: number, polarization: number): number {
     const { channels, polarizations } = this.shape;
-    const of: number[] = [];
-    for (let c = 1; c < channels - 1; c++) {
-      if (this.segmentOf[c] === segment)
-        of.push(shape[(subband * channels + c) * polarizations + polarization]!);
-    }
-    return median(of);
+    return this.byBaseline.map.sketch[subband * channels * polarizations + polarization]!;
   }
 
-  /** (subbands x channels x polarizations) the rms over all baselines; NaN in the outermost channels. */
-  channelSigma(): Float64Array {
-    const { subbands, channels, polarizations } = this.shape;
-    const sigma = new Float64Array(subbands * channels * polarizations);
-    for (let i = 0; i < sigma.length; i++) {
-      const subband = Math.floor(i / (channels * polarizations));
-      sigma[i] = this.factor(subband, i % polarizations) * sketchQuantile(this.byChannel, i, this.start, 0.5);
-    }
-    return sigma;
+  /** Median and number of the second differences about a channel, over all baselines. */
+  ofChannel(sample: number): { median: number; count: number } {
+    const sketch = this.byChannel.map.sketch[sample]!;
+    return { median: this.byChannel.smoothQuantile(0, sketch, 0.5), count: this.byChannel.count(0, sketch) };
+  }
+
+  /** Medians of the second difference and of first ones over 1, 2 and 3 channels, all baselines together. */
+  ofSpans(subband: number): { count: number; medians: readonly number[] } {
+    const sketch = Math.min(subband, this.bySpan.map.sketches - 1);
+    return {
+      count: this.bySpan.count(SPANS.length, sketch),
+      medians: [0, 1, 2, 3].map((owner) => this.bySpan.smoothQuantile(owner, sketch, 0.5)),
+    };
   }
 }
 
-/**
- * A number from a row's place in the dataset, so that a choice of rows is the same in any partition and does not fall in
- * step with the order of the baselines: the finalizer of MurmurHash3 (Appleby 2011).
- */
-function scattered(place: number): number {
-  let h = (place ^ Math.floor(place / 2 ** 32)) >>> 0;
-  h = Math.imul(h ^ (h >>> 16), 0x85ebca6b);
-  h = Math.imul(h ^ (h >>> 13), 0xc2b2ae35);
-  return (h ^ (h >>> 16)) >>> 0;
+function bySubband({ subbands, channels, polarizations }: Shape): SketchMap {
+  const each = channels * polarizations;
+  const sketch = Uint32Array.from({ length: subbands * each }, (_, i) => Math.floor(i / each));
+  return { sketches: subbands, sketch };
 }

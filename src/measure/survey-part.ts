@@ -6,37 +6,56 @@ import type { Dataset, SampleBlock } from "../dataset/dataset.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { AmplitudeSketches } from "./amplitude-sketches.ts";
 import { BaselineIndex } from "./baseline-index.ts";
+import { BaselineTally } from "./baseline-tally.ts";
+import { BinnedRows } from "./binned-rows.ts";
 import { ChannelCounts } from "./channel-counts.ts";
+import { KeptRows } from "./kept-rows.ts";
 import { NoiseSketches } from "./noise-sketches.ts";
 import { PreparedBlock } from "./prepared.ts";
-import type { SurveySettings } from "./settings.ts";
+import { type SurveySettings, settleSurvey } from "./settings.ts";
 import { TimeOrder } from "./time-order.ts";
-import { TrackCells } from "./track-cells.ts";
+import { CELL_BYTES, PRODUCT_BYTES } from "./track-columns.ts";
+import type { TrackKeeper } from "./track-keeper.ts";
 
-export class SurveyPart {
-  readonly dataset: Dataset;
-  readonly settings: SurveySettings;
-  readonly index = new BaselineIndex();
+/** Of the memory for sketches, the share of those of the amplitudes. */
+const AMPLITUDE_SHARE = 0.75;
+
+/** What is gathered of the rows, by kind. The survey adds and merges all of them alike. */
+export interface Gathered {
   readonly amplitudes: AmplitudeSketches;
   readonly noise: NoiseSketches;
   readonly channels: ChannelCounts;
-  readonly order = new TimeOrder();
-  readonly tracks: TrackCells;
+  readonly baselines: BaselineTally;
+  readonly order: TimeOrder;
+  readonly tracks: TrackKeeper;
+}
+
+function gatherers({ shape, rows }: Dataset, settings: SurveySettings): Gathered {
+  const { sketchBytes, trackBytes } = settings;
+  const rowBytes = CELL_BYTES + PRODUCT_BYTES * shape.subbands * shape.polarizations;
+  return {
+    amplitudes: new AmplitudeSketches(shape, AMPLITUDE_SHARE * sketchBytes, settings.baselines),
+    noise: new NoiseSketches(shape, (1 - AMPLITUDE_SHARE) * sketchBytes, settings),
+    channels: new ChannelCounts(shape),
+    baselines: new BaselineTally(shape),
+    order: new TimeOrder(),
+    tracks: rows * rowBytes <= trackBytes ? new KeptRows(shape) : new BinnedRows(shape, trackBytes),
+  };
+}
+
+export class SurveyPart {
+  readonly dataset: Dataset;
+  readonly index = new BaselineIndex();
+  readonly gathered: Gathered;
+  private readonly accumulators: readonly Accumulator[];
   private readonly prepared: PreparedBlock;
 
-  constructor(dataset: Dataset, settings: SurveySettings) {
-    const { shape } = dataset;
+  /** @param memory bytes that the state may take; parts to be joined need the same */
+  constructor(dataset: Dataset, memory?: number) {
     this.dataset = dataset;
-    this.settings = settings;
-    this.prepared = new PreparedBlock(shape);
-    this.amplitudes = new AmplitudeSketches(shape, settings, this.index);
-    this.noise = new NoiseSketches(shape, settings, this.index);
-    this.channels = new ChannelCounts(shape);
-    this.tracks = new TrackCells(shape, settings);
-  }
-
-  private get accumulators(): readonly Accumulator[] {
-    return [this.amplitudes, this.noise, this.channels, this.order, this.tracks];
+    this.prepared = new PreparedBlock(dataset.shape);
+    this.gathered = gatherers(dataset, settleSurvey(dataset, memory));
+    this.accumulators = Object.values(this.gathered);
   }
 
   add(block: SampleBlock): void {
@@ -44,11 +63,13 @@ export class SurveyPart {
     for (const accumulator of this.accumulators) accumulator.add(this.prepared);
   }
 
+  /** Take over a part of other rows of the same dataset, which is not to be used any more. */
   merge(other: SurveyPart): void {
     const baselines = Int32Array.from(other.index.baselines, ({ antenna1, antenna2 }) =>
       this.index.indexOf(antenna1, antenna2),
     );
-    const theirs = other.accumulators;
-    for (const [i, accumulator] of this.accumulators.entries()) accumulator.merge(theirs[i]!, baselines);
+    for (const [i, accumulator] of this.accumulators.entries()) {
+      accumulator.merge(other.accumulators[i]!, baselines);
+    }
   }
 }

@@ -1,13 +1,17 @@
 /** The surveying pass: read the dataset once in blocks and fill the measures. */
 import type { Dataset } from "../dataset/dataset.ts";
 import { finishSurvey } from "./finish-survey.ts";
-import { settleSurvey } from "./settings.ts";
 import { SurveyPart } from "./survey-part.ts";
 import type { Survey } from "./survey-result.ts";
 
 export interface SurveyOptions {
   readonly onProgress?: (rowsDone: number, rows: number) => void;
-  /** bytes that the survey's state may take; see SurveySettings for what gives when they do not suffice */
+  /** rows to survey, [first, last) from 0; default all */
+  readonly rows?: readonly [number, number];
+  /**
+   * Bytes that the survey's state may take, default 512 MB. Where they do not suffice, neighbouring channels share
+   * amplitude levels, and time bins take the place of integrations in the tracks.
+   */
   readonly memory?: number;
   readonly blockRows?: number;
 }
@@ -17,16 +21,28 @@ const BLOCK_SAMPLES = 1 << 15;
 
 /** @throws InputError where the dataset turns out to be malformed */
 export async function surveyDataset(dataset: Dataset, options: SurveyOptions = {}): Promise<Survey> {
-  const settings = await settleSurvey(dataset, options.memory);
-  const part = new SurveyPart(dataset, settings);
+  return finishSurvey(await surveyPart(dataset, options));
+}
+
+/** The state of a survey of some rows, to be merged with that of the others. */
+export async function surveyPart(dataset: Dataset, options: SurveyOptions = {}): Promise<SurveyPart> {
   const { subbands, channels, polarizations } = dataset.shape;
-  const blockRows =
-    options.blockRows ?? Math.max(1, Math.floor(BLOCK_SAMPLES / (subbands * channels * polarizations)));
+  const rowSamples = subbands * channels * polarizations;
+  const rows = options.rows ?? [0, dataset.rows];
+  const blockRows = options.blockRows ?? Math.max(1, Math.floor(BLOCK_SAMPLES / rowSamples));
+  const part = new SurveyPart(dataset, options.memory);
   let done = 0;
-  for await (const block of dataset.blocks({ want: "samples", blockRows })) {
+  for await (const block of dataset.blocks({ want: "samples", rows, blockRows })) {
     part.add(block);
     done += block.rows;
-    options.onProgress?.(done, dataset.rows);
+    options.onProgress?.(done, rows[1] - rows[0]);
   }
-  return finishSurvey(part);
+  return part;
+}
+
+/** One part of several, which share out the rows between them. They are used up. */
+export function joinParts(parts: readonly [SurveyPart, ...SurveyPart[]]): SurveyPart {
+  const [first, ...others] = parts;
+  for (const other of others) first.merge(other);
+  return first;
 }

@@ -1,93 +1,231 @@
-/** The integrations of a dataset and the order of its rows. */
+/** The order of the rows in time, and the times at which each field was observed. */
+import { SECONDS_A_DAY } from "../util/constants.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
+import { TimeList } from "./time-list.ts";
 
 /** A float32 day fraction near 0.6 resolves 5.15 ms: times closer than this are one integration. */
-export const TIME_STEP_DAYS = 5.2e-3 / 86_400;
+export const TIME_STEP_DAYS = 5.2e-3 / SECONDS_A_DAY;
 
-/** Rows that followed each other. */
+/** Rows that follow each other in the dataset; of its cross-correlations with a time, the first and the last. */
 interface Run {
-  first: number;
-  last: number;
+  readonly firstRow: number;
+  endRow: number;
   firstTime: number;
+  firstBaseline: number;
   lastTime: number;
+  lastBaseline: number;
+  /** rows earlier than the row before them, of another baseline and of the same one */
   backward: number;
+  backwardSame: number;
+  /** rows of the same baseline as the row before them */
+  same: number;
+}
+
+/** Times of one field and sub-array. */
+export interface Visits {
+  readonly field: number;
+  readonly subarray: number;
+  readonly times: TimeList;
 }
 
 export class TimeOrder implements Accumulator {
   private runs: Run[] = [];
-  /** earliest time of each step of the clock */
-  private readonly times = new Map<number, number>();
+  private readonly visits = new Map<string, Visits>();
+  private readonly integrations = new IntegrationCounts();
   rows = 0;
   badTimeRows = 0;
   badUvwRows = 0;
+  wKnown = false;
 
   add(prepared: PreparedBlock): void {
-    const { block } = prepared;
-    let run = this.runs.at(-1);
-    if (prepared.rows > 0 && (run === undefined || run.last + 1 !== block.firstRow)) {
-      run = {
-        first: block.firstRow,
-        last: block.firstRow - 1,
-        firstTime: Number.NaN,
-        lastTime: Number.NaN,
-        backward: 0,
-      };
-      this.runs.push(run);
-    }
-    // Rows of one integration follow each other: only an earlier time of the same step is news.
-    let lastStep = Number.NaN;
-    let earliest = Number.NaN;
-    for (let row = 0; row < prepared.rows; row++) {
-      const time = block.time[row]!;
-      if (time < run!.lastTime - TIME_STEP_DAYS) run!.backward += 1;
-      if (!Number.isNaN(time)) run!.lastTime = time;
-      if (Number.isNaN(run!.firstTime)) run!.firstTime = time;
-      run!.last += 1;
-      if (prepared.baseline[row] === AUTOCORRELATION) continue;
+    const { block, baseline, rows } = prepared;
+    const run = newRun(block.firstRow, rows);
+    let visits: Visits | undefined;
+    let lastVisit = Number.NaN;
+    for (let row = 0; row < rows; row++) {
+      if (baseline[row] === AUTOCORRELATION) continue;
       this.rows += 1;
-      if (Number.isNaN(time)) this.badTimeRows += 1;
-      if (!Number.isFinite(block.u[row]! + block.v[row]! + block.w[row]!)) this.badUvwRows += 1;
-      const step = Math.round(time / TIME_STEP_DAYS);
-      if (Number.isNaN(time) || (step === lastStep && time >= earliest)) continue;
-      lastStep = step;
-      earliest = time;
-      this.note(step, time);
+      this.noteUvw(block.u[row]!, block.v[row]!, block.w[row]!);
+      const time = block.time[row]!;
+      if (!Number.isFinite(time)) {
+        this.badTimeRows += 1;
+        continue;
+      }
+      step(run, time, baseline[row]!);
+      this.integrations.add(block.integration[row]!, 1);
+      if (
+        visits === undefined ||
+        visits.field !== block.field[row] ||
+        visits.subarray !== block.subarray[row]
+      ) {
+        visits = this.visitsOf(block.field[row]!, block.subarray[row]!);
+      } else if (time === lastVisit) continue;
+      visits.times.add(time);
+      lastVisit = time;
     }
+    this.runs.push(run);
+    this.joinRuns();
   }
 
-  private note(step: number, time: number): void {
-    const known = this.times.get(step);
-    if (known === undefined || time < known) this.times.set(step, time);
+  private noteUvw(u: number, v: number, w: number): void {
+    if (!Number.isFinite(u + v + w)) this.badUvwRows += 1;
+    if (w !== 0 && Number.isFinite(w)) this.wKnown = true;
   }
 
-  merge(other: this): void {
-    this.runs.push(...other.runs.map((run) => ({ ...run })));
-    for (const [step, time] of other.times) this.note(step, time);
+  private visitsOf(field: number, subarray: number): Visits {
+    const key = `${field} ${subarray}`;
+    let visits = this.visits.get(key);
+    if (visits === undefined) {
+      visits = { field, subarray, times: new TimeList() };
+      this.visits.set(key, visits);
+    }
+    return visits;
+  }
+
+  merge(other: this, baselines: Int32Array): void {
+    for (const run of other.runs) {
+      const known = (baseline: number) => (baseline < 0 ? baseline : baselines[baseline]!);
+      this.runs.push({
+        ...run,
+        firstBaseline: known(run.firstBaseline),
+        lastBaseline: known(run.lastBaseline),
+      });
+    }
+    this.joinRuns();
+    for (const { field, subarray, times } of other.visits.values()) {
+      this.visitsOf(field, subarray).times.merge(times);
+    }
+    this.integrations.merge(other.integrations);
     this.rows += other.rows;
     this.badTimeRows += other.badTimeRows;
     this.badUvwRows += other.badUvwRows;
+    this.wKnown ||= other.wKnown;
   }
 
-  /** Rows earlier than the row before them. */
+  /** Make one run of those that follow each other. */
+  private joinRuns(): void {
+    this.runs.sort((a, b) => a.firstRow - b.firstRow);
+    const joined: Run[] = [];
+    for (const run of this.runs) {
+      const before = joined.at(-1);
+      if (before?.endRow === run.firstRow) follow(before, run);
+      else joined.push(run);
+    }
+    this.runs = joined;
+  }
+
+  /**
+   * Rows earlier than the row before them. In a dataset sorted by baseline, where each begins again at the first time,
+   * only those of the same baseline count.
+   */
   get backwardRows(): number {
-    const runs = [...this.runs].sort((a, b) => a.first - b.first);
-    let backward = 0;
-    let lastTime = Number.NaN;
-    for (const run of runs) {
-      backward += run.backward + (run.firstTime < lastTime - TIME_STEP_DAYS ? 1 : 0);
-      if (!Number.isNaN(run.lastTime)) lastTime = run.lastTime;
-    }
-    return backward;
+    const all = newRun(0, 0);
+    // Parts of a dataset that is not there whole follow each other too.
+    for (const run of this.runs) follow(all, run);
+    const byBaseline = all.same > this.rows / 2;
+    return all.backwardSame + (byBaseline ? 0 : all.backward);
   }
 
-  /** Integration centres, MJD ascending; of times within a step of each other the earliest. */
-  get integrations(): Float64Array {
-    const all = Float64Array.from(this.times.values()).sort();
-    const kept: number[] = [];
-    for (const time of all) {
-      if (kept.length === 0 || time - kept.at(-1)! > TIME_STEP_DAYS) kept.push(time);
+  /** By field, then sub-array. */
+  get fields(): readonly Visits[] {
+    return [...this.visits.values()].sort((a, b) => a.field - b.field || a.subarray - b.subarray);
+  }
+
+  /** Median of what the rows say, seconds; NaN where they do not. */
+  get integration(): number {
+    return this.integrations.median;
+  }
+}
+
+function newRun(firstRow: number, rows: number): Run {
+  return {
+    firstRow,
+    endRow: firstRow + rows,
+    firstTime: Number.NaN,
+    firstBaseline: -1,
+    lastTime: Number.NaN,
+    lastBaseline: -1,
+    backward: 0,
+    backwardSame: 0,
+    same: 0,
+  };
+}
+
+/** Note the next row with a time. */
+function step(run: Run, time: number, baseline: number): void {
+  const isSame = baseline === run.lastBaseline;
+  if (isSame) run.same += 1;
+  if (time < run.lastTime - TIME_STEP_DAYS) {
+    if (isSame) run.backwardSame += 1;
+    else run.backward += 1;
+  }
+  if (run.firstBaseline < 0) {
+    run.firstTime = time;
+    run.firstBaseline = baseline;
+  }
+  run.lastTime = time;
+  run.lastBaseline = baseline;
+}
+
+/** Lengthen a run by the one that follows it. */
+function follow(run: Run, next: Run): void {
+  run.endRow = next.endRow;
+  if (next.firstBaseline < 0) return;
+  step(run, next.firstTime, next.firstBaseline);
+  run.lastTime = next.lastTime;
+  run.lastBaseline = next.lastBaseline;
+  run.same += next.same;
+  run.backward += next.backward;
+  run.backwardSame += next.backwardSame;
+}
+
+/** Mantissa bits that tell integration times apart: two thousandths of an octave. */
+const KEPT_BITS = 12;
+const MERGED = 1 << (23 - KEPT_BITS);
+
+/** How often each integration time occurs. */
+class IntegrationCounts {
+  private readonly value = new Float32Array(1);
+  private readonly bits = new Int32Array(this.value.buffer);
+  /** by the leading bits of the time: rows, the least and the largest */
+  private readonly counts = new Map<number, { rows: number; least: number; most: number }>();
+  private last = { rows: 0, least: Number.NaN, most: Number.NaN };
+
+  add(seconds: number, rows: number): void {
+    if (seconds === this.last.least && seconds === this.last.most) {
+      this.last.rows += rows;
+      return;
     }
-    return Float64Array.from(kept);
+    if (!(seconds > 0 && seconds < Number.POSITIVE_INFINITY)) return;
+    this.value[0] = seconds;
+    const key = Math.floor(this.bits[0]! / MERGED);
+    let entry = this.counts.get(key);
+    if (entry === undefined) {
+      entry = { rows: 0, least: seconds, most: seconds };
+      this.counts.set(key, entry);
+    }
+    entry.rows += rows;
+    entry.least = Math.min(entry.least, seconds);
+    entry.most = Math.max(entry.most, seconds);
+    this.last = entry;
+  }
+
+  merge(other: IntegrationCounts): void {
+    for (const { rows, least, most } of other.counts.values()) {
+      this.add(least, rows);
+      this.add(most, 0);
+    }
+  }
+
+  get median(): number {
+    const sorted = [...this.counts].sort(([a], [b]) => a - b).map(([, entry]) => entry);
+    const rows = sorted.reduce((sum, entry) => sum + entry.rows, 0);
+    let below = 0;
+    for (const { rows: own, least, most } of sorted) {
+      below += own;
+      if (2 * below >= rows) return (least + most) / 2;
+    }
+    return Number.NaN;
   }
 }

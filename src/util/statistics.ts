@@ -1,5 +1,5 @@
 /** Robust and circular statistics that skip what is not a number. */
-import { medianAbsoluteDeviation, median as medianOf } from "simple-statistics";
+import { medianAbsoluteDeviation, median as medianOf, sampleStandardDeviation } from "simple-statistics";
 
 /** sigma of a normal distribution over its MAD: 1 / Phi^-1(3/4) */
 export const MAD_TO_SIGMA = 1.482602218505602;
@@ -21,6 +21,12 @@ export function mad(values: ArrayLike<number>): number {
 /** The standard deviation that a normal distribution of this MAD has. */
 export function robustSigma(values: ArrayLike<number>): number {
   return MAD_TO_SIGMA * mad(values);
+}
+
+/** Standard deviation of a sample, with n - 1; NaN of fewer than two numbers. */
+export function standardDeviation(values: ArrayLike<number>): number {
+  const numbers = numbersOf(values);
+  return numbers.length < 2 ? Number.NaN : sampleStandardDeviation(numbers);
 }
 
 /** Smallest and largest of the numbers among the values; NaN of none. */

@@ -1,12 +1,7 @@
 import { describe, expect, it } from "vitest";
-import {
-  BUCKETS,
-  RELATIVE_ERROR,
-  rawBucket,
-  sketchQuantile,
-  windowStart,
-} from "../../src/measure/buckets.ts";
-import { exactQuantum, toMultiple } from "../../src/util/exact-sum.ts";
+import { ExactSums } from "../../src/measure/exact-sums.ts";
+import { SketchBank, sharingLadder } from "../../src/measure/sketch-bank.ts";
+import { TIME_STEP_DAYS } from "../../src/measure/time-order.ts";
 import {
   circularMean,
   MAD_TO_SIGMA,
@@ -15,6 +10,7 @@ import {
   modifiedZ,
   RAYLEIGH_MEDIAN,
   robustSigma,
+  standardDeviation,
 } from "../../src/util/statistics.ts";
 import { itIsFresh, stored } from "../support/fresh.ts";
 
@@ -41,13 +37,15 @@ interface Entry {
 const checkValues = stored<{ entries: Entry[] }>("statistics-check-values").entries;
 const entry = (id: string) => checkValues.find((one) => one.id === id)!;
 
-function sketchOf(amplitudes: readonly number[], start: number): Uint32Array {
-  const counts = new Uint32Array(BUCKETS);
-  for (const amplitude of amplitudes) counts[rawBucket(amplitude * amplitude) - start]! += 1;
-  return counts;
+/** The amplitudes in a bank of one sketch, with as many buckets as those of the survey. */
+function sketchOf(amplitudes: readonly number[]): SketchBank {
+  const bank = new SketchBank(sharingLadder({ subbands: 1, channels: 1, polarizations: 1 }), 5, 1e6, 1);
+  const bits = new Int32Array(Float32Array.from(amplitudes).buffer);
+  for (let i = 0; i < bits.length; i++) bank.add(0, bits, i);
+  return bank;
 }
 
-/** A float32 power rounds by 2^-24, its root by half of that. */
+/** A float32 rounds by 2^-24. */
 const FLOAT32 = 2 ** -24;
 
 describe("sketch quantiles", () => {
@@ -56,10 +54,10 @@ describe("sketch quantiles", () => {
     "agree with NumPy within the proven relative error: %s",
     (name) => {
       const { values, q, expected } = reference["numpy.quantile"][name]!;
-      const start = windowStart(median(values) ** 2);
+      const bank = sketchOf(values);
       for (const [i, share] of q.entries()) {
-        const said = sketchQuantile(sketchOf(values, start), 0, start, share);
-        expect(Math.abs(said / expected[i]! - 1)).toBeLessThan(RELATIVE_ERROR + FLOAT32);
+        const said = bank.quantile(0, 0, share);
+        expect(Math.abs(said / expected[i]! - 1)).toBeLessThan(bank.relativeError + FLOAT32);
       }
     },
   );
@@ -71,9 +69,23 @@ describe("sketch quantiles", () => {
       ([nu, rice]) => [`Rice, nu/sigma ${nu}`, rice] as const,
     ),
   ] as const)("give the median amplitude of a %s distribution", (_, { amplitudes, median: expected }) => {
-    const start = windowStart(1);
-    const said = sketchQuantile(sketchOf(amplitudes, start), 0, start, 0.5);
-    expect(Math.abs(said / expected - 1)).toBeLessThan(RELATIVE_ERROR + 0.003);
+    const bank = sketchOf(amplitudes);
+    expect(Math.abs(bank.quantile(0, 0, 0.5) / expected - 1)).toBeLessThan(bank.relativeError + 0.003);
+    // Inside the bucket by rank, the shape of the bucket's edges is all that is left.
+    expect(Math.abs(bank.smoothQuantile(0, 0, 0.5) / expected - 1)).toBeLessThan(0.006);
+  });
+
+  // The sheet's worked example, 1 to 100: exact order statistics of rank floor(q (n - 1)).
+  it("agree with the worked example of log buckets", () => {
+    const bank = sketchOf(Array.from({ length: 100 }, (_, i) => i + 1));
+    const expected = entry("ddsketch-quantiles").expected as unknown as Record<
+      string,
+      { lower_exact: number }
+    >;
+    for (const [share, { lower_exact }] of Object.entries(expected)) {
+      const said = bank.quantile(0, 0, Number(share));
+      expect(Math.abs(said / lower_exact - 1)).toBeLessThan(bank.relativeError + FLOAT32);
+    }
   });
 
   it("know SciPy's median of a Rayleigh distribution", () => {
@@ -124,6 +136,22 @@ describe("circular statistics", () => {
     expect(1 - said.resultant).toBeCloseTo(variance, 12);
     expect((said.deviation * 180) / Math.PI).toBeCloseTo(deviation, 9);
   });
+
+  it("have no resultant for angles spread evenly", () => {
+    const { inputs, expected } = entry("circular-c") as unknown as {
+      inputs: { angles_deg: number[] };
+      expected: { circular_variance: number };
+    };
+    const said = circularMean(inputs.angles_deg.map((angle) => (angle * Math.PI) / 180));
+    expect(1 - said.resultant).toBeCloseTo(expected.circular_variance, 12);
+  });
+});
+
+// NumPy's spacing of float32 at 0.6 day.
+it("times a float32 step apart are one integration", () => {
+  const { expected } = entry("float32-dayfraction-spacing") as unknown as { expected: number };
+  expect(TIME_STEP_DAYS * 86_400).toBeGreaterThan(expected);
+  expect(TIME_STEP_DAYS * 86_400).toBeLessThan(1.02 * expected);
 });
 
 describe("exact sums", () => {
@@ -135,22 +163,33 @@ describe("exact sums", () => {
     "nist-Lew": entry("nist-Lew").inputs.series as number[],
     "nist-Michelso": entry("nist-Michelso").inputs.series as number[],
   };
-  // NIST Statistical Reference Datasets, univariate: certified means and standard deviations. The quantum leaves at least
-  // 2^52 / n steps below the largest value, so a mean is good to 2^-52 n of that value.
+  // NIST Statistical Reference Datasets, univariate: certified means and standard deviations.
   it.each(Object.keys(series))("give the certified mean and standard deviation of %s in any order", (id) => {
     const values = series[id]!;
     const n = values.length;
-    const quantum = exactQuantum(Math.max(...values.map(Math.abs)), n);
-    const sum = (terms: readonly number[]) =>
-      terms.reduce((total, term) => total + toMultiple(term, quantum), 0);
+    const sum = (terms: readonly number[]) => {
+      const sums = new ExactSums(1);
+      for (const term of terms) sums.add(0, term);
+      return sums.value(0);
+    };
     const mean = sum(values) / n;
-    expect(Math.abs(mean / entry(id).expected.mean! - 1)).toBeLessThan(n * 2 ** -50);
+    // A rounding of the inputs, of the sum's lowest piece and of the quotient.
+    expect(Math.abs(mean / entry(id).expected.mean! - 1)).toBeLessThan(4 * Number.EPSILON);
     expect(sum([...values].reverse())).toBe(sum(values));
-    const squares = values.map((value) => (value - mean) ** 2);
-    const fine = exactQuantum(Math.max(...squares), n);
-    const deviation = Math.sqrt(squares.reduce((total, term) => total + toMultiple(term, fine), 0) / (n - 1));
     // NumAcc4's inputs round to doubles 1.9e-9 apart: no method can have more than 7 digits.
-    expect(Math.abs(deviation / entry(id).expected.sd! - 1)).toBeLessThan(1e-7);
+    expect(Math.abs(standardDeviation(values) / entry(id).expected.sd! - 1)).toBeLessThan(1e-7);
+  });
+
+  // Merging of moments by Chan, Golub & LeVeque 1979, which a sum that merges exactly must agree with.
+  it("merge to the mean of all", () => {
+    const { a, b } = entry("variance-merge").inputs as unknown as Record<"a" | "b", number[]>;
+    const [left, right] = [new ExactSums(1), new ExactSums(1)];
+    for (const value of a) left.add(0, value);
+    for (const value of b) right.add(0, value);
+    left.merge(0, right, 0);
+    expect(left.value(0) / (a.length + b.length)).toBeCloseTo(entry("variance-merge").expected.mean!, 5);
+    const deviation = standardDeviation([...a, ...b]);
+    expect(deviation ** 2).toBeCloseTo(entry("variance-merge").expected.sample_variance!, 8);
   });
 });
 

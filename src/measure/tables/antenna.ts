@@ -30,6 +30,11 @@ export function antennaMeasure(survey: BareSurvey, facts: readonly BaselineFacts
     median(own.get(antenna)!.map((b) => value(facts[b]!)));
   const sigmas = new Map(antennas.map((antenna) => [antenna, ofOwn(antenna, ({ sigma }) => sigma)]));
   const typicalSigma = median([...sigmas.values()]);
+  const coherences = new Map(
+    antennas.map((antenna) => [antenna, ofOwn(antenna, ({ coherence }) => coherence)]),
+  );
+  const typicalCoherence = median([...coherences.values()]);
+  const typicalHands = median(facts.map(({ handRatio }) => handRatio));
   const typicalWeightScatter = median(facts.map(({ weightScatter }) => weightScatter));
   const rows = antennas.map((antenna) => ({
     antenna,
@@ -42,7 +47,9 @@ export function antennaMeasure(survey: BareSurvey, facts: readonly BaselineFacts
     noise_sigma: sigmas.get(antenna)!,
     noise_ratio: sigmas.get(antenna)! / typicalSigma,
     amplitude_ratio: gains.get(antenna)!,
-    coherence: ofOwn(antenna, ({ coherence }) => coherence),
+    hand_ratio: ofOwn(antenna, ({ handRatio }) => handRatio) / typicalHands,
+    coherence: coherences.get(antenna)!,
+    coherence_ratio: coherences.get(antenna)! / typicalCoherence,
     weight_scatter_ratio: ofOwn(antenna, ({ weightScatter }) => weightScatter) / typicalWeightScatter,
   }));
   return fillMeasure(ANTENNA, rows);
@@ -50,12 +57,7 @@ export function antennaMeasure(survey: BareSurvey, facts: readonly BaselineFacts
 
 function countsOf(own: readonly number[], facts: readonly BaselineFacts[]): Counts {
   const counts = new Counts();
-  for (const b of own) {
-    counts.usable += facts[b]!.counts.usable;
-    counts.flagged += facts[b]!.counts.flagged;
-    counts.bad += facts[b]!.counts.bad;
-    counts.zero += facts[b]!.counts.zero;
-  }
+  for (const b of own) counts.add(facts[b]!.counts);
   return counts;
 }
 

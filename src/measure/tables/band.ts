@@ -2,71 +2,62 @@
 
 import { median } from "../../util/statistics.ts";
 import type { ChannelCounts } from "../channel-counts.ts";
-import { fillMeasure, type MeasureForm, type Row } from "../fill-measure.ts";
+import { runningMedian } from "../channel-noise.ts";
+import { fillMeasure, type Row } from "../fill-measure.ts";
 import { CHANNEL, POLARIZATION, SUBBAND } from "../forms.ts";
+import type { Gleanings } from "../gleanings.ts";
 import { BAD, FLAGGED, USABLE, ZERO } from "../prepared.ts";
 import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import { Counts } from "./counts.ts";
 import { parallelProducts } from "./products.ts";
 
-/** Channels on either side that the running median looks at. */
+/** Channels on either side that the running median of the amplitude looks at. */
 const AROUND = 8;
 /** Baselines whose levels make the medians of the whole array; more would not change them and cost time. */
 const MOST_BASELINES = 2000;
 
-/** Which samples of a row, by (subband, channel, polarization), a table's row is of. */
-type Picks = (subband: number, channel: number, polarization: number) => boolean;
-
+/** Numbers of the array as a whole, (subbands x channels x polarizations). */
 class Band {
-  private readonly survey: BareSurvey;
-  private readonly channels: ChannelCounts;
+  readonly channels: number;
+  readonly polarizations: number;
   readonly parallel: readonly boolean[];
-  /** (subbands x channels x polarizations) medians over the baselines */
-  private readonly amplitude: Float64Array;
-  private readonly sigma: Float64Array;
+  private readonly counted: ChannelCounts;
+  /** medians over the baselines */
+  readonly amplitude: Float64Array;
+  readonly sigma: Float64Array;
 
-  constructor(survey: BareSurvey, channels: ChannelCounts) {
-    this.survey = survey;
-    this.channels = channels;
-    this.parallel = parallelProducts(survey.dataset.polarizations);
+  constructor(survey: BareSurvey, { channels }: Gleanings) {
+    const { shape, polarizations } = survey.dataset;
+    this.channels = shape.channels;
+    this.polarizations = shape.polarizations;
+    this.parallel = parallelProducts(polarizations);
+    this.counted = channels;
     this.amplitude = overBaselines(survey, survey.levels.median);
     this.sigma = overBaselines(survey, survey.levels.sigma);
   }
 
-  /** Counts of the samples picked. */
-  counts(picks: Picks): Counts {
+  /** @param samples  numbers of samples of a row */
+  counts(samples: readonly number[]): Counts {
     const counts = new Counts();
-    this.each((s, c, p, at) => {
-      if (!picks(s, c, p)) return;
-      counts.usable += this.channels.of(USABLE, at);
-      counts.flagged += this.channels.of(FLAGGED, at);
-      counts.bad += this.channels.of(BAD, at);
-      counts.zero += this.channels.of(ZERO, at);
-    });
+    for (const at of samples) {
+      counts.usable += this.counted.of(USABLE, at);
+      counts.flagged += this.counted.of(FLAGGED, at);
+      counts.bad += this.counted.of(BAD, at);
+      counts.zero += this.counted.of(ZERO, at);
+    }
     return counts;
   }
 
-  /** Medians of the levels picked; of the parallel hands alone unless a polarization is asked for. */
-  levels(picks: Picks, allHands = false): { amplitude: number; sigma: number } {
-    const amplitudes: number[] = [];
-    const sigmas: number[] = [];
-    this.each((s, c, p, at) => {
-      if (!picks(s, c, p) || !(allHands || this.parallel[p])) return;
-      amplitudes.push(this.amplitude[at]!);
-      sigmas.push(this.sigma[at]!);
-    });
-    return { amplitude: median(amplitudes), sigma: median(sigmas) };
+  /** Median of the parallel hands among the samples. */
+  level(values: Float64Array, samples: readonly number[]): number {
+    return median(samples.filter((at) => this.parallel[at % this.polarizations]).map((at) => values[at]!));
   }
 
-  private each(visit: (s: number, c: number, p: number, at: number) => void): void {
-    const { subbands, channels, polarizations } = this.survey.dataset.shape;
-    let at = 0;
-    for (let s = 0; s < subbands; s++) {
-      for (let c = 0; c < channels; c++) {
-        for (let p = 0; p < polarizations; p++) visit(s, c, p, at++);
-      }
-    }
+  /** Samples of a sub-band's channels from `first` up to, not including, `end`. */
+  samples(subband: number, first: number, end: number): number[] {
+    const from = (subband * this.channels + first) * this.polarizations;
+    return Array.from({ length: (end - first) * this.polarizations }, (_, i) => from + i);
   }
 }
 
@@ -75,95 +66,103 @@ function overBaselines(survey: BareSurvey, values: Float32Array): Float64Array {
   const each = subbands * channels * polarizations;
   const baselines = survey.baselines.length;
   const stride = Math.max(1, Math.ceil(baselines / MOST_BASELINES));
-  const picked = Array.from({ length: Math.ceil(baselines / stride) }, (_, i) => i * stride);
-  return Float64Array.from({ length: each }, (_, at) => median(picked.map((b) => values[b * each + at]!)));
+  const picked = new Float64Array(Math.ceil(baselines / stride));
+  return Float64Array.from({ length: each }, (_, at) => {
+    for (let i = 0; i < picked.length; i++) picked[i] = values[i * stride * each + at]!;
+    return median(picked);
+  });
 }
 
-interface Described {
-  readonly key: Row;
-  readonly counts: Counts;
-  readonly amplitude: number;
-  readonly sigma: number;
+/** The columns of counts and levels. */
+function row(band: Band, samples: readonly number[], noiseRatio: number): Row {
+  return {
+    ...band.counts(samples).row,
+    amplitude_median: band.level(band.amplitude, samples),
+    noise_sigma: band.level(band.sigma, samples),
+    noise_ratio: noiseRatio,
+  };
 }
 
-function rowsOf(described: readonly Described[]): Row[] {
+export function channelMeasure(survey: BareSurvey, gleanings: Gleanings): Measure {
+  const { shape, setups } = survey.dataset;
+  const { subbands, channels } = shape;
+  const band = new Band(survey, gleanings);
+  const rows: Row[] = [];
+  for (let s = 0; s < subbands; s++) {
+    const samples = Array.from({ length: channels }, (_, c) => band.samples(s, c, c + 1));
+    const amplitude = Float64Array.from(samples, (own) => band.level(band.amplitude, own));
+    const around = runningMedian(amplitude, AROUND);
+    const noise = noiseOfChannels(band, gleanings, s);
+    for (let c = 0; c < channels; c++) {
+      const columns = row(band, samples[c]!, noise[c]!);
+      rows.push({
+        subband: s,
+        channel: c,
+        frequency_hz: setups[0]?.frequencies[s * channels + c] ?? Number.NaN,
+        ...columns,
+        // What was measured, where the levels hold what is likely of noise alone.
+        noise_sigma: band.level(band.sigma, band.samples(s, 0, channels)) * noise[c]!,
+        amplitude_ratio: amplitude[c]! / around[c]!,
+      });
+    }
+  }
+  const typicalFlagged = median(rows.map(({ flagged_fraction }) => flagged_fraction as number));
+  return fillMeasure(
+    CHANNEL,
+    rows.map((one) => ({
+      ...one,
+      flagged_beyond_typical: (one.flagged_fraction as number) - typicalFlagged,
+    })),
+  );
+}
+
+/** (channels) noise over the typical one of the sub-band, median of its parallel hands. */
+function noiseOfChannels(band: Band, { channelNoise }: Gleanings, subband: number): Float64Array {
+  const hands = channelNoise
+    .slice(subband * band.polarizations, (subband + 1) * band.polarizations)
+    .filter((_, p) => band.parallel[p]);
+  return Float64Array.from({ length: band.channels }, (_, c) => median(hands.map(({ own }) => own[c]!)));
+}
+
+export function subbandMeasure(survey: BareSurvey, gleanings: Gleanings): Measure {
+  const { subbands, channels } = survey.dataset.shape;
+  const band = new Band(survey, gleanings);
+  const samples = Array.from({ length: subbands }, (_, s) => band.samples(s, 0, channels));
+  const sigmas = samples.map((own) => band.level(band.sigma, own));
+  const typical = median(sigmas);
+  return fillMeasure(
+    SUBBAND,
+    samples.map((own, subband) => ({ subband, ...row(band, own, sigmas[subband]! / typical) })),
+  );
+}
+
+export function polarizationMeasure(survey: BareSurvey, gleanings: Gleanings): Measure {
+  const { dataset } = survey;
+  const { subbands, channels } = dataset.shape;
+  const band = new Band(survey, gleanings);
+  const all = Array.from({ length: subbands }, (_, s) => band.samples(s, 0, channels)).flat();
+  const described = dataset.polarizations.map((polarization, p) => {
+    const samples = all.filter((at) => at % band.polarizations === p);
+    return {
+      polarization,
+      counts: band.counts(samples),
+      amplitude: median(samples.map((at) => band.amplitude[at]!)),
+      sigma: median(samples.map((at) => band.sigma[at]!)),
+      parallel: band.parallel[p]!,
+    };
+  });
+  const hands = described.filter(({ parallel }) => parallel);
+  const mean = hands.reduce((sum, { amplitude }) => sum + amplitude, 0) / hands.length;
   const typical = median(described.map(({ sigma }) => sigma));
-  return described.map(({ key, counts, amplitude, sigma }) => ({
-    ...key,
+  const rows = described.map(({ polarization, counts, amplitude, sigma, parallel }) => ({
+    polarization,
     ...counts.row,
     amplitude_median: amplitude,
     noise_sigma: sigma,
     noise_ratio: sigma / typical,
-  }));
-}
-
-function plainMeasure(form: MeasureForm, described: readonly Described[]): Measure {
-  return fillMeasure(form, rowsOf(described));
-}
-
-export function channelMeasure(survey: BareSurvey, counted: ChannelCounts): Measure {
-  const { subbands, channels } = survey.dataset.shape;
-  const band = new Band(survey, counted);
-  const described = Array.from({ length: subbands * channels }, (_, i) => {
-    const [subband, channel] = [Math.floor(i / channels), i % channels];
-    const picks: Picks = (s, c) => s === subband && c === channel;
-    const key = { subband, channel, frequency_hz: survey.dataset.setups[0]?.frequencies[i] ?? Number.NaN };
-    return { key, counts: oneChannel(counted, survey, i), ...band.levels(picks) };
-  });
-  const amplitudes = described.map(({ amplitude }) => amplitude);
-  const typicalFlagged = median(described.map(({ counts }) => counts.flaggedFraction));
-  const rows = rowsOf(described).map((row, i) => ({
-    ...row,
-    flagged_beyond_typical: described[i]!.counts.flaggedFraction - typicalFlagged,
-    amplitude_ratio: amplitudes[i]! / runningMedian(amplitudes, i, channels),
-  }));
-  return fillMeasure(CHANNEL, rows);
-}
-
-/** Counts of a channel, without looking at all the others. */
-function oneChannel(counted: ChannelCounts, survey: BareSurvey, subbandChannel: number): Counts {
-  const { polarizations } = survey.dataset.shape;
-  const counts = new Counts();
-  for (let p = 0; p < polarizations; p++) {
-    const at = subbandChannel * polarizations + p;
-    counts.usable += counted.of(USABLE, at);
-    counts.flagged += counted.of(FLAGGED, at);
-    counts.bad += counted.of(BAD, at);
-    counts.zero += counted.of(ZERO, at);
-  }
-  return counts;
-}
-
-/** Median of the channels of the same sub-band around channel `i`, itself left out. */
-function runningMedian(amplitudes: readonly number[], i: number, channels: number): number {
-  const first = Math.floor(i / channels) * channels;
-  const from = Math.max(first, i - AROUND);
-  const to = Math.min(first + channels, i + AROUND + 1);
-  return median([...amplitudes.slice(from, i), ...amplitudes.slice(i + 1, to)]);
-}
-
-export function subbandMeasure(survey: BareSurvey, counted: ChannelCounts): Measure {
-  const band = new Band(survey, counted);
-  const described = Array.from({ length: survey.dataset.shape.subbands }, (_, subband) => {
-    const picks: Picks = (s) => s === subband;
-    return { key: { subband }, counts: band.counts(picks), ...band.levels(picks) };
-  });
-  return plainMeasure(SUBBAND, described);
-}
-
-export function polarizationMeasure(survey: BareSurvey, counted: ChannelCounts): Measure {
-  const band = new Band(survey, counted);
-  const described = survey.dataset.polarizations.map((polarization, index) => {
-    const picks: Picks = (_s, _c, p) => p === index;
-    return { key: { polarization }, counts: band.counts(picks), ...band.levels(picks, true) };
-  });
-  const mean =
-    described.reduce((sum, { amplitude }, p) => sum + (band.parallel[p] ? amplitude : 0), 0) /
-    band.parallel.filter(Boolean).length;
-  const rows = rowsOf(described).map((row, p) => ({
-    ...row,
-    parallel: band.parallel[p] ? 1 : 0,
-    amplitude_ratio: band.parallel[p] ? described[p]!.amplitude / mean : Number.NaN,
+    parallel: parallel ? 1 : 0,
+    amplitude_ratio: parallel ? amplitude / mean : Number.NaN,
+    cross_ratio: parallel ? Number.NaN : amplitude / mean,
   }));
   return fillMeasure(POLARIZATION, rows);
 }

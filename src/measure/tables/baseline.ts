@@ -1,12 +1,13 @@
 /** The `baseline` measure, and the facts of each baseline that other tables build on. */
 import { SPEED_OF_LIGHT } from "../../util/constants.ts";
-import { median, robustSigma } from "../../util/statistics.ts";
+import { median, robustSigma, standardDeviation } from "../../util/statistics.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { BASELINE } from "../forms.ts";
 import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
-import { Counts } from "./counts.ts";
-import { parallelProducts } from "./products.ts";
+import type { BaselineCounts } from "./baseline-counts.ts";
+import type { Counts } from "./counts.ts";
+import { parallelNumbers, parallelProducts } from "./products.ts";
 
 export interface BaselineFacts {
   readonly counts: Counts;
@@ -15,6 +16,9 @@ export interface BaselineFacts {
   readonly sigma: number;
   readonly coherence: number;
   readonly scatter: number;
+  readonly tail: number;
+  /** amplitude of the first parallel hand over the second; NaN without two */
+  readonly handRatio: number;
   /** typical noise times the square root of the typical weight of a sample */
   readonly weightScatter: number;
   readonly uvMin: number;
@@ -22,34 +26,39 @@ export interface BaselineFacts {
   readonly wMax: number;
 }
 
+/** Integrations that tell whether a scatter has long tails. */
+const FEWEST_FOR_TAIL = 10;
 /** Integrations whose vector mean is held against their scalar mean. */
 const COHERENCE_WINDOW = 8;
 
 /** By number of the baseline. */
-export function baselineFacts(survey: BareSurvey): BaselineFacts[] {
-  return survey.baselines.map((_, baseline) => factsOf(survey, baseline));
+export function baselineFacts(survey: BareSurvey, counts: BaselineCounts): BaselineFacts[] {
+  return survey.baselines.map((_, baseline) => factsOf(survey, counts, baseline));
 }
 
-function factsOf(survey: BareSurvey, baseline: number): BaselineFacts {
+function factsOf(survey: BareSurvey, counts: BaselineCounts, baseline: number): BaselineFacts {
   const { tracks, levels, dataset } = survey;
   const { subbands, channels, polarizations } = dataset.shape;
   const products = subbands * polarizations;
   const each = products * channels;
   const parallel = parallelProducts(dataset.polarizations);
-  const counts = new Counts();
   const [first, last] = [tracks.firstCell[baseline]!, tracks.firstCell[baseline + 1]!];
-  for (let i = first * products; i < last * products; i++) counts.addProduct(tracks, i);
-  const ofParallel = (values: Float32Array) =>
-    values.subarray(baseline * each, (baseline + 1) * each).filter((_, i) => parallel[i % polarizations]);
+  const own = (values: Float32Array) => values.subarray(baseline * each, (baseline + 1) * each);
+  const ofParallel = (values: Float32Array) => own(values).filter((_, i) => parallel[i % polarizations]);
+  const ofHand = (hand: number) => median(own(levels.median).filter((_, i) => i % polarizations === hand));
+  const hands = parallel.flatMap((isParallel, p) => (isParallel ? [p] : []));
   const sigma = median(ofParallel(levels.sigma));
   const inTime = timeFacts(survey, first, last, parallel);
   return {
-    counts,
+    counts: counts.of(baseline),
     amplitude: median(ofParallel(levels.median)),
     sigma,
     coherence: inTime.coherence,
     scatter: inTime.scatter,
-    weightScatter: sigma * Math.sqrt(inTime.sampleWeight),
+    tail: inTime.tail,
+    handRatio: hands.length === 2 ? ofHand(hands[0]!) / ofHand(hands[1]!) : Number.NaN,
+    weightScatter:
+      sigma * Math.sqrt(counts.meanWeight(baseline, parallelNumbers(subbands, dataset.polarizations))),
     ...spacings(survey, first, last),
   };
 }
@@ -61,7 +70,7 @@ function timeFacts(survey: BareSurvey, first: number, last: number, parallel: re
   const products = subbands * polarizations;
   const coherence: number[] = [];
   const scatter: number[] = [];
-  const sampleWeight: number[] = [];
+  const tail: number[] = [];
   for (let k = 0; k < products; k++) {
     if (!parallel[k % polarizations]) continue;
     const amplitudes: number[] = [];
@@ -69,12 +78,14 @@ function timeFacts(survey: BareSurvey, first: number, last: number, parallel: re
       const i = cell * products + k;
       if (tracks.usable[i] === 0) continue;
       amplitudes.push(tracks.amplitude[i]!);
-      sampleWeight.push(tracks.weight[i]! / tracks.usable[i]!);
     }
-    scatter.push(robustSigma(amplitudes) / median(amplitudes));
+    const sigma = robustSigma(amplitudes);
+    scatter.push(sigma / median(amplitudes));
+    // A sample of two has no scatter to speak of, and three no tail.
+    tail.push(amplitudes.length < FEWEST_FOR_TAIL ? Number.NaN : standardDeviation(amplitudes) / sigma);
     coherence.push(coherenceOf(survey, first, last, k, products));
   }
-  return { coherence: median(coherence), scatter: median(scatter), sampleWeight: median(sampleWeight) };
+  return { coherence: median(coherence), scatter: median(scatter), tail: median(tail) };
 }
 
 function coherenceOf(
@@ -129,8 +140,18 @@ function flaggedByAntenna(survey: BareSurvey, facts: readonly BaselineFacts[]): 
   return new Map([...fractions].map(([antenna, list]) => [antenna, median(list)]));
 }
 
+/** Of the channels of all setups, Hz; NaN without any. */
+function highestFrequency({ dataset }: BareSurvey): number {
+  let highest = Number.NaN;
+  for (const { frequencies } of dataset.setups) {
+    for (const frequency of frequencies) if (!(frequency <= highest)) highest = frequency;
+  }
+  return highest;
+}
+
 export function baselineMeasure(survey: BareSurvey, facts: readonly BaselineFacts[]): Measure {
   const ofAntenna = flaggedByAntenna(survey, facts);
+  const highest = highestFrequency(survey);
   const typicalSigma = median(facts.map(({ sigma }) => sigma));
   const typicalWeightScatter = median(facts.map(({ weightScatter }) => weightScatter));
   const rows = facts.map((fact, b) => ({
@@ -143,10 +164,12 @@ export function baselineMeasure(survey: BareSurvey, facts: readonly BaselineFact
     uv_min_m: fact.uvMin,
     uv_max_m: fact.uvMax,
     w_max_m: fact.wMax,
+    w_max_wavelengths: (fact.wMax * highest) / SPEED_OF_LIGHT,
     amplitude_median: fact.amplitude,
     noise_sigma: fact.sigma,
     noise_ratio: fact.sigma / typicalSigma,
     amplitude_scatter: fact.scatter,
+    amplitude_tail: fact.tail,
     coherence: fact.coherence,
     weight_scatter_ratio: fact.weightScatter / typicalWeightScatter,
   }));

@@ -8,6 +8,13 @@ export class Counts {
   bad = 0;
   zero = 0;
 
+  add(other: Counts): void {
+    this.usable += other.usable;
+    this.flagged += other.flagged;
+    this.bad += other.bad;
+    this.zero += other.zero;
+  }
+
   /** Add a product of a track cell. */
   addProduct(tracks: Tracks, i: number): void {
     this.usable += tracks.usable[i]!;

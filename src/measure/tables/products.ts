@@ -8,3 +8,11 @@ export function parallelProducts(polarizations: readonly Polarization[]): boolea
   const parallel = polarizations.map((name) => PARALLEL.has(name));
   return parallel.includes(true) ? parallel : parallel.map(() => true);
 }
+
+/** The same as numbers (subband x polarizations + polarization) of the products of a row. */
+export function parallelNumbers(subbands: number, polarizations: readonly Polarization[]): number[] {
+  const parallel = parallelProducts(polarizations);
+  return Array.from({ length: subbands * parallel.length }, (_, product) => product).filter(
+    (product) => parallel[product % parallel.length],
+  );
+}

@@ -6,28 +6,10 @@ import { FIELD, INTEGRATION, SCAN } from "../forms.ts";
 import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import { TIME_STEP_DAYS } from "../time-order.ts";
+import { type Integrations, nearestTime } from "../times.ts";
 import type { BaselineFacts } from "./baseline.ts";
 import { countCells } from "./counts.ts";
 import { parallelProducts } from "./products.ts";
-
-/** Longest time between neighbouring integrations, seconds; 0 of fewer than two. */
-export function largestGap(times: Float64Array): number {
-  let largest = 0;
-  for (let i = 1; i < times.length; i++) largest = Math.max(largest, times[i]! - times[i - 1]!);
-  return largest * SECONDS_A_DAY;
-}
-
-/** Index of the integration that a time belongs to; -1 for none. */
-export function integrationOf(times: Float64Array, time: number): number {
-  let low = 0;
-  let high = times.length;
-  while (low < high) {
-    const middle = (low + high) >>> 1;
-    if (times[middle]! <= time + 1e-12) low = middle + 1;
-    else high = middle;
-  }
-  return Number.isNaN(time) ? -1 : Math.max(0, low - 1);
-}
 
 const productsOf = (survey: BareSurvey) => survey.dataset.shape.subbands * survey.dataset.shape.polarizations;
 
@@ -83,7 +65,7 @@ function distinctTimes(
 ) {
   const seen = Array.from({ length: groups }, () => new Set<number>());
   for (let cell = 0; cell < survey.tracks.cells; cell++) {
-    const at = integrationOf(times, survey.tracks.time[cell]!);
+    const at = nearestTime(times, survey.tracks.time[cell]!);
     if (at >= 0) seen[groupOf(cell)]?.add(at);
   }
   return seen.map((set) => set.size);
@@ -112,9 +94,13 @@ export function scanMeasure(survey: BareSurvey): Measure {
   return fillMeasure(SCAN, rows);
 }
 
-export function integrationMeasure(survey: BareSurvey, facts: readonly BaselineFacts[]): Measure {
+export function integrationMeasure(
+  survey: BareSurvey,
+  facts: readonly BaselineFacts[],
+  { earliest, latest }: Integrations,
+): Measure {
   const { tracks, times } = survey;
-  const of = Int32Array.from(tracks.time, (time) => integrationOf(times, time));
+  const of = Int32Array.from(tracks.time, (time) => nearestTime(times, time));
   const counts = countCells(tracks, productsOf(survey), times.length, (cell) => [of[cell]!]);
   const own = Float64Array.from(facts, ({ amplitude }) => amplitude);
   const typical = amplitudes(survey, times.length, (cell) => of[cell]!, own);
@@ -126,9 +112,10 @@ export function integrationMeasure(survey: BareSurvey, facts: readonly BaselineF
     scan[at] = tracks.scan[cell]!;
     baselines[at]! += 1;
   }
-  const rows = Array.from(times, (time, i) => ({
-    time_start: time,
-    time_end: time,
+  const rows = Array.from(times, (_, i) => ({
+    // From its earliest row to its latest, so that the range selects all of them.
+    time_start: earliest[i]!,
+    time_end: latest[i]!,
     scan: scan[i]!,
     baselines: baselines[i]!,
     ...counts[i]!.row,

@@ -1,0 +1,108 @@
+/** Samples of each baseline, sub-band and polarization by what they are, and their weights. */
+import type { Shape } from "../dataset/dataset.ts";
+import type { Accumulator } from "./accumulator.ts";
+import { ExactSums } from "./exact-sums.ts";
+import {
+  AUTOCORRELATION,
+  FLAGGED_WEIGHT,
+  KINDS,
+  type PreparedBlock,
+  SUM_SQUARE,
+  SUM_WEIGHT,
+  SUMS,
+  USABLE,
+} from "./prepared.ts";
+
+/** Sums a product: weight of usable samples, |weight| of flagged ones, effective number of usable ones. */
+const WEIGHTS = 3;
+
+export class BaselineTally implements Accumulator {
+  readonly products: number;
+  autocorrelationRows = 0;
+  /** (baselines x products x KINDS); doubles hold counts beyond 2^32 exactly */
+  private counts = new Float64Array(0);
+  /** (baselines x products x WEIGHTS) */
+  private readonly weights = new ExactSums(0);
+
+  constructor(shape: Shape) {
+    this.products = shape.subbands * shape.polarizations;
+  }
+
+  add(prepared: PreparedBlock): void {
+    const { products, weights } = this;
+    for (let row = 0; row < prepared.rows; row++) {
+      const baseline = prepared.baseline[row]!;
+      if (baseline === AUTOCORRELATION) {
+        this.autocorrelationRows += 1;
+        continue;
+      }
+      this.reserve(baseline);
+      const from = row * products;
+      const to = baseline * products;
+      for (let k = 0; k < products * KINDS; k++) {
+        this.counts[to * KINDS + k]! += prepared.counts[from * KINDS + k]!;
+      }
+      for (let k = 0; k < products; k++) {
+        const sum = (from + k) * SUMS;
+        const first = WEIGHTS * (to + k);
+        const weight = prepared.sums[sum + SUM_WEIGHT]!;
+        weights.add(first, weight);
+        weights.add(first + 1, prepared.sums[sum + FLAGGED_WEIGHT]!);
+        if (weight > 0) weights.add(first + 2, (weight * weight) / prepared.sums[sum + SUM_SQUARE]!);
+      }
+    }
+  }
+
+  private reserve(baseline: number): void {
+    const needed = (baseline + 1) * this.products;
+    if (this.counts.length >= needed * KINDS) return;
+    const room = Math.max(needed, 64 * this.products, Math.ceil((1.5 * this.counts.length) / KINDS));
+    const counts = new Float64Array(room * KINDS);
+    counts.set(this.counts);
+    this.counts = counts;
+    this.weights.grow(WEIGHTS * room);
+  }
+
+  merge(other: this, baselines: Int32Array): void {
+    const { products } = this;
+    this.autocorrelationRows += other.autocorrelationRows;
+    for (const [theirs, ours] of baselines.entries()) {
+      this.reserve(ours);
+      for (let k = 0; k < products; k++) {
+        const from = theirs * products + k;
+        const to = ours * products + k;
+        if (from * KINDS >= other.counts.length) continue;
+        for (let kind = 0; kind < KINDS; kind++) {
+          this.counts[to * KINDS + kind]! += other.counts[from * KINDS + kind]!;
+        }
+        for (let i = 0; i < WEIGHTS; i++)
+          this.weights.merge(WEIGHTS * to + i, other.weights, WEIGHTS * from + i);
+      }
+    }
+  }
+
+  /** Samples of a baseline's product that are of a kind. */
+  count(baseline: number, product: number, kind: number): number {
+    return this.counts[(baseline * this.products + product) * KINDS + kind] ?? 0;
+  }
+
+  /** Sum of the weights of usable samples. */
+  usableWeight(baseline: number, product: number): number {
+    return this.weightAt(baseline, product, 0);
+  }
+
+  /** Sum of |weight| of flagged samples. */
+  flaggedWeight(baseline: number, product: number): number {
+    return this.weightAt(baseline, product, 1);
+  }
+
+  /** How even the weights along the channels are: 1 where they are equal (Kish's effective number over the number). */
+  evenness(baseline: number, product: number): number {
+    return this.weightAt(baseline, product, 2) / this.count(baseline, product, USABLE);
+  }
+
+  private weightAt(baseline: number, product: number, which: number): number {
+    const index = WEIGHTS * (baseline * this.products + product) + which;
+    return index < this.weights.length ? this.weights.value(index) : 0;
+  }
+}

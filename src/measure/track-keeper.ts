@@ -1,0 +1,10 @@
+/** What keeps the channel averages of the rows until they become Tracks. */
+import type { Accumulator } from "./accumulator.ts";
+import type { TracksWithoutScans } from "./track-columns.ts";
+
+export interface TrackKeeper extends Accumulator {
+  /** Sorted by baseline, then time. @param places  new number of each baseline */
+  tracks(places: Int32Array): TracksWithoutScans;
+  /** Rows that repeat an earlier (time, baseline, field, setup, sub-array). */
+  duplicates(tracks: TracksWithoutScans, times: Float64Array): number;
+}
