@@ -1,8 +1,9 @@
 /** Find the rule files in force: ours, and those of the folders the user names, which add to ours or replace them. */
-import { lstat, readdir, readFile, stat } from "node:fs/promises";
+import { lstat, readdir, stat } from "node:fs/promises";
 import { join } from "node:path";
 import { fileURLToPath } from "node:url";
 import { InputError, nearest, type Place } from "../util/errors.ts";
+import { readSmallText } from "../util/small-text.ts";
 import { requireKnownNames } from "./catalogue.ts";
 import { FAMILIES } from "./finding.ts";
 import type { Rule, RuleSet } from "./rule.ts";
@@ -15,6 +16,7 @@ export type { Rule, RuleSet } from "./rule.ts";
 const OUR_RULES = fileURLToPath(new URL("../../rules", import.meta.url));
 export const OURS = "ours";
 
+/** Characters. */
 const LARGEST_FILE = 64 * 1024;
 const MOST_FILES = 1000;
 const DEEPEST_FOLDER = 4;
@@ -98,20 +100,12 @@ export function parseRule(text: string, file: string, from: string = file): Retu
 }
 
 async function readRuleFile(file: string): Promise<string> {
-  const { size } = await stat(file);
-  if (size > LARGEST_FILE) {
-    throw new InputError(
-      `a rule file of ${size} bytes: at most ${LARGEST_FILE}`,
-      { file },
-      "One rule a file",
-    );
+  const text = await readSmallText(file, "rule");
+  if (text.length > LARGEST_FILE) {
+    const found = `a rule of ${text.length} characters: at most ${LARGEST_FILE}`;
+    throw new InputError(found, { file }, "Write one rule a file");
   }
-  const bytes = await readFile(file);
-  try {
-    return new TextDecoder("utf-8", { fatal: true }).decode(bytes);
-  } catch (error) {
-    throw new InputError("not UTF-8 text", { file }, "Save it as UTF-8", { cause: error });
-  }
+  return text;
 }
 
 /** Files ending in .yaml or .yml, by path; links are not followed below the folder named. */

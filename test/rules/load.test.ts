@@ -178,7 +178,7 @@ describe("loadRules", () => {
     await writeFile(join(folder, "a.yaml"), `# ${"x".repeat(70000)}`);
     await expect(loadRules([folder])).rejects.toThrow("at most 65536");
     await writeFile(join(folder, "a.yaml"), Buffer.from([0xff, 0xfe, 0x00]));
-    await expect(loadRules([folder])).rejects.toThrow("not UTF-8");
+    await expect(loadRules([folder])).rejects.toThrow("not UTF-8 text");
   });
 
   it("does not follow links round in a circle", async () => {
