@@ -16,7 +16,10 @@ const MISFIT = 1.5;
 const BAD = 1.06;
 /** A row whose mean power exceeds that of noise by this many standard errors is fitted again, robustly. */
 const SUSPICIOUS = 3;
-const ROBUST_ROUNDS = 5;
+const ROBUST_ROUNDS = 4;
+const ROUNDS_AGAIN = 2;
+/** Share of a row's samples that agree on its amplitude when it is right. */
+const MOST = 0.75;
 const SHAPE_ROUNDS = 2;
 /** Channels from which on the amplitude of a row may change along the band, */
 const TILT_COLUMNS = 8;
@@ -25,20 +28,19 @@ const LEAST_RUN = 0.15;
 /** Power beyond which a sample does not count for the amplitude of its row. */
 const INLIER = 5;
 
-/** Of the shape's square, of V times the shape's conjugate (real, imaginary), and the same times the place in the band. */
-type Sums = [number, number, number, number, number, number, number];
-
 export class Background {
   readonly bandpass = new Bandpass();
   private readonly delays = new DelayTerms();
   private workReal = new Float64Array(0);
   private workImag = new Float64Array(0);
   private kept: Pick<Plane, "modelReal" | "modelImag" | "power"> = new Plane();
-  /** normal equations of a row */
+  /** normal equations of a row: the shape's square; V times its conjugate, real and imaginary; the same times the place in the band */
   private readonly sums = new Float64Array(7);
   /** (columns) -1..1 along the band */
   private along = new Float64Array(0);
   private tilted = false;
+  /** (columns) noise of a sample over what is left of it */
+  private leverage = new Float64Array(0);
   /** (rows) complex amplitudes that describe a row */
   private terms = new Uint8Array(0);
   private keptTerms = new Uint8Array(0);
@@ -47,7 +49,7 @@ export class Background {
   private counts = new Int32Array(0);
 
   /**
-   * Fill the plane's model and `power`, |V - model|^2.
+   * Fill the plane's model and `power`, |V - model|^2 made up for the noise that the model took.
    *
    * @param noise    2 sigma^2 of a sample, about
    * @param steepest (rows) radians a column that a source in sight can cause
@@ -63,16 +65,41 @@ export class Background {
       this.workReal = new Float64Array(columns);
       this.workImag = new Float64Array(columns);
       this.along = new Float64Array(columns);
+      this.leverage = new Float64Array(columns);
       this.norms = new Float64Array(columns);
       this.limits = new Float64Array(columns);
       this.counts = new Int32Array(columns);
     }
     this.fitShapes(plane, noise, steepest, swiftest);
-    // Every term takes its share of the noise: what is left counts for all of it.
+    this.fillLeverage(columns);
+    const { leverage, terms } = this;
+    const base = this.tilted ? 2 : 1;
     for (let row = 0; row < rows; row++) {
-      if (this.terms[row] === 1) continue;
-      const scale = (columns - 1) / Math.max(1, columns - this.terms[row]!);
-      for (let i = row * columns; i < (row + 1) * columns; i++) plane.power[i]! *= scale;
+      const sloped = terms[row]! > base;
+      const even = columns / Math.max(1, columns - terms[row]!);
+      for (let c = 0, i = row * columns; c < columns; c++, i++) {
+        plane.power[i]! *= sloped ? even : leverage[c]!;
+      }
+    }
+  }
+
+  /** What is left of noise once a row's amplitude is taken out is less, most of all where the channel tells most of it. */
+  private fillLeverage(columns: number): void {
+    const { leverage, along, tilted } = this;
+    const { size } = this.bandpass;
+    let s0 = 0;
+    let s1 = 0;
+    let s2 = 0;
+    for (let c = 0; c < columns; c++) {
+      s0 += size[c]!;
+      s1 += size[c]! * along[c]!;
+      s2 += size[c]! * along[c]! ** 2;
+    }
+    const middle = s1 / s0;
+    const spread = s2 - s1 * middle;
+    for (let c = 0; c < columns; c++) {
+      const tilt = tilted && spread > 0 ? (along[c]! - middle) ** 2 / spread : 0;
+      leverage[c] = 1 / Math.max(0.1, 1 - size[c]! * (1 / s0 + tilt));
     }
   }
 
@@ -88,7 +115,7 @@ export class Background {
     this.fitRows(plane, noise);
     for (let round = 0; this.bandpass.fitted && round < SHAPE_ROUNDS; round++) {
       this.refineBandpass(plane, noise);
-      this.fitRows(plane, noise);
+      this.fitRows(plane, noise, true);
     }
     this.addDelays(plane, noise, steepest);
     const shaped = misfit(plane, 0, rows, noise);
@@ -101,9 +128,26 @@ export class Background {
     if (misfit(plane, 0, rows, noise).cost > shaped.cost) this.restoreShaped(plane);
   }
 
-  private fitRows(plane: Plane, noise: number): void {
+  /** @param again the rows have been fitted before with nearly this shape: few will need all the care */
+  private fitRows(plane: Plane, noise: number, again = false): void {
     this.terms.fill(this.tilted ? 2 : 1, 0, plane.rows);
-    for (let row = 0; row < plane.rows; row++) this.fitRow(plane, row, noise);
+    for (let row = 0; row < plane.rows; row++) {
+      const power = this.fitRow(plane, row);
+      if (!isSuspicious(power, plane.usable[row]!, noise)) continue;
+      if (again) {
+        this.weighRow(plane, row, noise, ROUNDS_AGAIN);
+        if (this.inliers(plane, row, noise) > MOST * plane.usable[row]!) continue;
+      }
+      this.fitRowRobustly(plane, row, noise);
+    }
+  }
+
+  private inliers({ columns, marks, power }: Plane, row: number, noise: number): number {
+    let count = 0;
+    for (let i = row * columns; i < (row + 1) * columns; i++) {
+      if (marks[i] === 0 && power[i]! < INLIER * noise) count += 1;
+    }
+    return count;
   }
 
   private addDelays(plane: Plane, noise: number, steepest: (row: number) => number): void {
@@ -146,34 +190,46 @@ export class Background {
     this.bandpass.restore(columns);
   }
 
-  /** One amplitude, and where the plane is `tilted` its change along the band, to one row; robustly where something sticks out. */
-  private fitRow(plane: Plane, row: number, noise: number): void {
-    const { columns, real, imag, marks, usable } = plane;
+  /**
+   * One amplitude, and where the plane is `tilted` its change along the band, to one row by least squares.
+   * @returns the summed power of what is left
+   */
+  private fitRow(plane: Plane, row: number): number {
+    const { columns, real, imag, marks } = plane;
     const { real: br, imag: bi, size } = this.bandpass;
-    const { sums, along, tilted } = this;
+    const { sums, along } = this;
     const at = row * columns;
-    sums.fill(0);
+    let s0 = 0;
+    let r0 = 0;
+    let i0 = 0;
+    let s1 = 0;
+    let s2 = 0;
+    let r1 = 0;
+    let i1 = 0;
     for (let c = 0; c < columns; c++) {
       if (marks[at + c] !== 0) continue;
       const x = real[at + c]!;
       const y = imag[at + c]!;
+      const weight = size[c]!;
+      const step = along[c]!;
       const re = br[c]! * x + bi[c]! * y;
       const im = br[c]! * y - bi[c]! * x;
-      sums[0]! += size[c]!;
-      sums[1]! += re;
-      sums[2]! += im;
-      if (!tilted) continue;
-      const step = along[c]!;
-      sums[3]! += size[c]! * step;
-      sums[4]! += size[c]! * step * step;
-      sums[5]! += re * step;
-      sums[6]! += im * step;
+      s0 += weight;
+      r0 += re;
+      i0 += im;
+      s1 += weight * step;
+      s2 += weight * step * step;
+      r1 += re * step;
+      i1 += im * step;
     }
-    const power = this.setRow(plane, row);
-    const count = usable[row]!;
-    if (count > 2 && power > noise * (count + SUSPICIOUS * Math.sqrt(count))) {
-      this.fitRowRobustly(plane, row, noise);
-    }
+    sums[0] = s0;
+    sums[1] = r0;
+    sums[2] = i0;
+    sums[3] = s1;
+    sums[4] = s2;
+    sums[5] = r1;
+    sums[6] = i1;
+    return this.setRow(plane, row);
   }
 
   /** Set a row's model from the sums of its normal equations. @returns the summed power of what is left */
@@ -181,7 +237,13 @@ export class Background {
     const { columns, real, imag, modelReal, modelImag, marks, power } = plane;
     const { real: br, imag: bi } = this.bandpass;
     const { sums, along } = this;
-    const [s0, r0, i0, s1, s2, r1, i1] = sums as unknown as Sums;
+    const s0 = sums[0]!;
+    const r0 = sums[1]!;
+    const i0 = sums[2]!;
+    const s1 = sums[3]!;
+    const s2 = sums[4]!;
+    const r1 = sums[5]!;
+    const i1 = sums[6]!;
     const determinant = s0 * s2 - s1 * s1;
     const two = this.tilted && determinant > 1e-6 * s0 * s0;
     const scale = two ? 1 / determinant : s0 > 0 ? 1 / s0 : 0;
@@ -208,9 +270,9 @@ export class Background {
 
   /** From the median amplitude of the channels to the one that most of them agree on (redescending weights). */
   private fitRowRobustly(plane: Plane, row: number, noise: number): void {
-    const { columns, real, imag, marks, power } = plane;
+    const { columns, real, imag, marks } = plane;
     const { real: br, imag: bi, size } = this.bandpass;
-    const { workReal, workImag, sums, along } = this;
+    const { workReal, workImag, sums } = this;
     const at = row * columns;
     let count = 0;
     for (let c = 0; c < columns; c++) {
@@ -226,12 +288,21 @@ export class Background {
     sums[1] = medianInPlace(workReal, count);
     sums[2] = medianInPlace(workImag, count);
     this.setRow(plane, row);
-    for (let round = 0; round <= ROBUST_ROUNDS; round++) {
+    this.weighRow(plane, row, noise, ROBUST_ROUNDS);
+  }
+
+  /** Least squares by what the powers say: ever less weight for what sticks out, and in the end none. */
+  private weighRow(plane: Plane, row: number, noise: number, rounds: number): void {
+    const { columns, real, imag, marks, power } = plane;
+    const { real: br, imag: bi, size } = this.bandpass;
+    const { sums, along } = this;
+    const at = row * columns;
+    for (let round = 0; round <= rounds; round++) {
       sums.fill(0);
       for (let c = 0; c < columns; c++) {
         if (marks[at + c] !== 0) continue;
         const p = power[at + c]! / noise;
-        const weight = round === ROBUST_ROUNDS ? (p < INLIER ? 1 : 0) : 1 / (1 + 0.5 * p);
+        const weight = round === rounds ? (p < INLIER ? 1 : 0) : 1 / (1 + 0.5 * p);
         const re = weight * (br[c]! * real[at + c]! + bi[c]! * imag[at + c]!);
         const im = weight * (br[c]! * imag[at + c]! - bi[c]! * real[at + c]!);
         const step = along[c]!;
@@ -288,4 +359,9 @@ export class Background {
       size[c] = br[c]! * br[c]! + bi[c]! * bi[c]!;
     }
   }
+}
+
+/** Whether the powers left in a row are more than noise leaves. */
+function isSuspicious(power: number, samples: number, noise: number): boolean {
+  return samples > 2 && power > noise * (samples + SUSPICIOUS * Math.sqrt(samples));
 }

@@ -6,10 +6,12 @@ import { selectKth } from "../statistics/order.ts";
 import type { Plane } from "./plane.ts";
 
 /** Rows that are looked at, spread evenly: enough for the shape, cheap for long planes. */
-const MOST_ROWS = 48;
+const MOST_ROWS = 32;
 /** Fewer rows cannot tell the shape of the band from what is in it at the moment. */
 const FEWEST_ROWS = 8;
-const ROUNDS = 5;
+const ROUNDS = 4;
+/** Amplitudes that the clip rests on. */
+const CLIP_SAMPLES = 256;
 /** Amplitudes are clipped at this many times their median, lest interference be the shape. */
 const CLIP = 3;
 /**
@@ -96,34 +98,41 @@ export class Bandpass {
   }
 
   /** Rows spread over the plane, clipped. @returns how many */
-  private takeSample({ rows, columns, real, imag, marks, usable }: Plane): number {
-    const { sampleReal, sampleImag, amplitudes } = this;
+  private takeSample({ rows, columns, real, imag, usable }: Plane): number {
+    const { sampleReal, sampleImag } = this;
     const step = Math.max(1, rows / MOST_ROWS);
     let taken = 0;
-    let count = 0;
     for (let at = 0; at < rows && taken < MOST_ROWS; at += step) {
       const row = Math.floor(at);
       if (usable[row]! * 2 < columns) continue;
       const from = row * columns;
       const to = taken * columns;
       for (let c = 0; c < columns; c++) {
-        const re = real[from + c]!;
-        const im = imag[from + c]!;
-        sampleReal[to + c] = re;
-        sampleImag[to + c] = im;
-        if (marks[from + c] === 0) amplitudes[count++] = re * re + im * im;
+        sampleReal[to + c] = real[from + c]!;
+        sampleImag[to + c] = imag[from + c]!;
       }
       taken += 1;
     }
-    const limit = CLIP * CLIP * selectKth(amplitudes, count, count >>> 1);
-    for (let i = 0; i < taken * columns; i++) {
+    this.clip(taken * columns);
+    return taken;
+  }
+
+  private clip(count: number): void {
+    const { sampleReal, sampleImag, amplitudes } = this;
+    const step = Math.max(1, Math.floor(count / CLIP_SAMPLES)) | 1;
+    let known = 0;
+    for (let i = 0; i < count; i += step) {
+      const power = sampleReal[i]! * sampleReal[i]! + sampleImag[i]! * sampleImag[i]!;
+      if (power > 0) amplitudes[known++] = power;
+    }
+    const limit = CLIP * CLIP * selectKth(amplitudes, known, known >>> 1);
+    for (let i = 0; i < count; i++) {
       const power = sampleReal[i]! * sampleReal[i]! + sampleImag[i]! * sampleImag[i]!;
       if (!(power > limit)) continue;
       const factor = Math.sqrt(limit / power);
       sampleReal[i]! *= factor;
       sampleImag[i]! *= factor;
     }
-    return taken;
   }
 
   private flatPower(rows: number, columns: number): number {

@@ -17,6 +17,12 @@ export class SampleBits {
     this.bits[cell * this.words + (sample >>> 5)]! |= 1 << (sample & 31);
   }
 
+  /** Set the places of a cell that are set in `mask`, (words). */
+  setAll(cell: number, mask: Uint32Array): void {
+    const at = cell * this.words;
+    for (let w = 0; w < mask.length; w++) this.bits[at + w]! |= mask[w]!;
+  }
+
   clear(cell: number, sample: number): void {
     this.bits[cell * this.words + (sample >>> 5)]! &= ~(1 << (sample & 31));
   }

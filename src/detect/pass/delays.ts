@@ -11,14 +11,17 @@ const TERMS = MOST_SLOPES + 1;
 /** Steps of the search in units of a turn over the band. */
 const STEPS_PER_TURN = 4;
 const MOST_STEPS = 64;
-/** A tilt of the whole band must explain this share of what the block has in excess of noise. */
-const LEAST_TILT = 0.25;
-/** All slopes together must explain this share, */
+/** All slopes together must explain this share of what the block has in excess of noise, */
 const LEAST_EXPLAINED = 0.6;
+/** the first of them this one, */
+const LEAST_FIRST = 0.2;
 /** besides what one more amplitude a row, and a slope, explain of pure noise. */
 const TERM_COST = 0.5;
 const SLOPE_COST = 3;
 const POLISH_ROUNDS = 3;
+const FIT_ROUNDS = 2;
+/** Rows of a block in which slopes are sought. */
+const WAVE_ROWS = 16;
 /** Over noise: then nothing more is sought. */
 const ENOUGH = 1.05;
 /** Residuals are clipped at this power while slopes are sought. */
@@ -60,6 +63,10 @@ export class DelayTerms {
   ): number {
     const before = misfit(plane, first, last, noise);
     const rows = last - first;
+    const tilt = tiltOf(plane, bandpass, first, last);
+    this.slopes = [];
+    const known = this.steepestPower(plane, bandpass, first, last, noise, steepest);
+    if (known === null && wavePower(plane, bandpass, first, last, noise, tilt) < leastPower(rows)) return 0;
     const refit = (slopes: number[]): number => {
       this.slopes = slopes;
       this.fillBasis(bandpass, plane.columns);
@@ -71,25 +78,36 @@ export class DelayTerms {
       this.amplitudeReal = new Float64Array(rows * TERMS);
       this.amplitudeImag = new Float64Array(rows * TERMS);
     }
-    // An antenna's delay may have changed: then the whole band is tilted, by anything.
-    let cost = refit([tiltOf(plane, bandpass, first, last)]);
-    if (cost > before.cost - LEAST_TILT * (before.cost - before.floor)) cost = refit([0]);
-    while (this.slopes.length < TERMS && cost > ENOUGH * before.floor) {
-      const slope = this.steepestPower(plane, bandpass, first, last, noise, steepest);
-      if (slope === null) break;
-      cost = refit([...this.slopes, slope]);
-      for (let round = 0; round < POLISH_ROUNDS && cost > ENOUGH * before.floor; round++) {
-        const known = this.slopes;
-        const better = refit(this.polished(plane, first, last));
-        if (better >= cost) {
-          cost = refit(known);
-          break;
+    const excess = before.cost - before.floor;
+    const search = (base: number): number => {
+      let cost = refit([base]);
+      while (this.slopes.length < TERMS && cost > ENOUGH * before.floor) {
+        const slope = this.steepestPower(plane, bandpass, first, last, noise, steepest);
+        if (slope === null) break;
+        cost = refit([...this.slopes, slope]);
+        // The first source away from the centre tells most of what is there, if it is sources.
+        if (before.cost - cost < LEAST_FIRST * excess) break;
+        for (let round = 0; round < POLISH_ROUNDS && cost > ENOUGH * before.floor; round++) {
+          const slopes = this.slopes;
+          const better = refit(this.polished(plane, first, last));
+          if (better >= cost) {
+            cost = refit(slopes);
+            break;
+          }
+          cost = better;
         }
-        cost = better;
       }
+      return cost;
+    };
+    let cost = search(0);
+    if (cost > ENOUGH * before.floor) {
+      // An antenna's delay may have changed: then the whole band is tilted, by anything.
+      const upright = this.slopes;
+      const tilted = search(tilt);
+      cost = tilted < cost ? tilted : refit(upright);
     }
     const spent = TERM_COST * rows * (this.slopes.length - 1) + SLOPE_COST * this.slopes.length;
-    if (before.cost - cost < LEAST_EXPLAINED * (before.cost - before.floor) + spent) {
+    if (before.cost - cost < LEAST_EXPLAINED * excess + spent) {
       this.restore(plane, first, last);
       return 0;
     }
@@ -118,7 +136,7 @@ export class DelayTerms {
       best = value;
       found = slope;
     }
-    if (best <= 1 + 5 / Math.sqrt(last - first)) return null;
+    if (best < leastPower(last - first)) return null;
     for (let step = steepest / half / 2; step > coarse / 16; step /= 2) {
       for (const slope of [found - step, found + step]) {
         const value = power(slope);
@@ -177,13 +195,13 @@ export class DelayTerms {
     }
   }
 
-  /** All terms to one row, least squares twice: plain, then with what sticks out counting less. */
+  /** All terms to one row, by least squares: plain, then with what sticks out counting less. */
   private fitRow(plane: Plane, row: number, keptAt: number, noise: number): void {
     const { columns, real, imag, modelReal, modelImag, marks, power } = plane;
     const { basisReal, basisImag, matrixReal, matrixImag, rightReal, rightImag } = this;
     const terms = this.slopes.length;
     const at = row * columns;
-    for (let round = 0; round < 3; round++) {
+    for (let round = 0; round < FIT_ROUNDS; round++) {
       matrixReal.fill(0);
       matrixImag.fill(0);
       rightReal.fill(0);
@@ -289,6 +307,11 @@ export class DelayTerms {
   }
 }
 
+/** Power over that of noise that the best of many slopes must have in a block of so many rows. */
+function leastPower(rows: number): number {
+  return 1 + 5 / Math.sqrt(Math.min(rows, WAVE_ROWS));
+}
+
 /** Power of the clipped residual in waves of one slope, over that of noise. */
 function wavePower(
   plane: Plane,
@@ -304,7 +327,9 @@ function wavePower(
   const turnImag = Math.sin(slope);
   let total = 0;
   let expected = 0;
-  for (let row = first; row < last; row++) {
+  // Many rows tell no more of a slope than some of them.
+  const step = Math.max(1, Math.floor((last - first) / WAVE_ROWS));
+  for (let row = first; row < last; row += step) {
     let re = 0;
     let im = 0;
     let waveReal = 1;

@@ -2,6 +2,7 @@
  * The second pass over the samples: each baseline's planes against their own background and noise. It leaves bits of
  * what stands out, scores added over baselines, and tracks without what stands out.
  */
+import type { Shape } from "../../dataset/dataset.ts";
 import { EARTH_ROTATION_RATE } from "../../geometry/sidereal.ts";
 import { SPEED_OF_LIGHT } from "../../geometry/uvw.ts";
 import type { Survey } from "../../measure/survey-result.ts";
@@ -73,6 +74,8 @@ class SampleScan {
   private readonly marks: SampleMarks | null;
   private readonly combined: CombinedScores;
   private readonly clean: CleanTracks;
+  /** by first sample: the samples of a row that a band and polarization take */
+  private readonly masks: readonly Uint32Array[];
   private readonly plane = new Plane();
   private readonly background = new Background();
   private readonly normaliser = new Normaliser();
@@ -95,6 +98,7 @@ class SampleScan {
       tracks.cells * rowSamples > MOST_BITS
         ? null
         : { usable: bits(), elevated: bits(), outlying: bits(), bright: bits() };
+    this.masks = rowMasks(this.bands, dataset.shape);
     this.combined = new CombinedScores(survey);
     this.clean = new CleanTracks(survey);
     this.noise = surveyedNoise(survey, this.bands);
@@ -140,7 +144,7 @@ class SampleScan {
       (row) => steepness * length(row),
       this.swiftness[run.setup]! * length(0) * (spacing || 0),
     );
-    const typical = normaliser.apply(plane, background.bandpass.size);
+    const typical = normaliser.apply(plane, background.bandpass);
     const size = plane.rows * plane.columns;
     fillScores(plane.power, size);
     sumThreshold(plane.power, plane.marks, plane.rows, plane.columns, ON_BASELINE, this.room);
@@ -168,6 +172,7 @@ class SampleScan {
     const { plane, marks, combined, survey } = this;
     const { columns, power } = plane;
     const { polarizations } = survey.dataset.shape;
+    const mask = this.masks[band.first * polarizations + polarization]!;
     let timeIndex = 0;
     for (let row = 0; row < run.rows; row++) {
       const r = tile.order[run.first + row]!;
@@ -176,17 +181,18 @@ class SampleScan {
       combined.add(run.baseline, timeIndex, band.first, polarization, power, plane.marks, at, columns);
       if (marks === null) continue;
       const cell = tile.cell[r]!;
+      const whole = plane.usable[row] === columns;
+      if (whole) marks.usable.setAll(cell, mask);
       let sample = band.first * polarizations + polarization;
       for (let i = at; i < at + columns; i++, sample += polarizations) {
         const mark = plane.marks[i]!;
-        if (mark === 2) continue;
-        marks.usable.set(cell, sample);
         const score = power[i]!;
+        if (mark === 0 && whole && score <= ELEVATED_SCORE) continue;
+        if (mark === 2) continue;
+        if (!whole) marks.usable.set(cell, sample);
         if (mark === 1) marks.outlying.set(cell, sample);
-        if (score > ELEVATED_SCORE) {
-          marks.elevated.set(cell, sample);
-          if (score > SINGLE_SCORE) marks.bright.set(cell, sample);
-        }
+        if (score > ELEVATED_SCORE) marks.elevated.set(cell, sample);
+        if (score > SINGLE_SCORE) marks.bright.set(cell, sample);
       }
     }
   }
@@ -195,6 +201,19 @@ class SampleScan {
     this.clean.finish();
     return { bands: this.bands, marks: this.marks, combined: this.combined, clean: this.clean };
   }
+}
+
+function rowMasks(bands: readonly Band[], { subbands, channels, polarizations }: Shape): Uint32Array[] {
+  const masks: Uint32Array[] = [];
+  const whole: Band = { first: 0, columns: subbands * channels, subband: null };
+  for (const { first, columns } of bands.length > 0 ? bands : [whole]) {
+    for (let p = 0; p < polarizations; p++) {
+      const row = new SampleBits(1, subbands * channels * polarizations);
+      for (let c = first; c < first + columns; c++) row.set(0, c * polarizations + p);
+      masks[first * polarizations + p] = row.bits;
+    }
+  }
+  return masks;
 }
 
 /** Index of the integration that a time belongs to: the last that does not begin after it. */

@@ -53,14 +53,27 @@ export function sumThreshold(
 ): void {
   room.fit(rows, columns);
   const size = rows * columns;
+  // Most planes have nothing missing and nothing found: their runs need no counting.
+  let clean = true;
+  for (let i = 0; i < size && clean; i++) clean = marks[i] === 0;
   for (let length = 1; length <= Math.max(rows, columns); length *= 2) {
     const alongTime = length <= rows && length <= settings.longestTime;
     const alongFrequency = length > 1 && length <= columns && length <= settings.longestFrequency;
     if (!alongTime && !alongFrequency) continue;
     const threshold = runThreshold(settings, length);
     if (length === 1) {
-      for (let i = 0; i < size; i++) if (marks[i] === 0 && scores[i]! > threshold) marks[i] = 1;
+      for (let i = 0; i < size; i++) {
+        if (!(scores[i]! > threshold) || marks[i] !== 0) continue;
+        marks[i] = 1;
+        clean = false;
+      }
       continue;
+    }
+    if (clean) {
+      clean =
+        !(alongTime && anyRunInTime(scores, rows, columns, length, threshold, room.sums)) &&
+        !(alongFrequency && anyRunInFrequency(scores, rows, columns, length, threshold));
+      if (clean) continue;
     }
     const { fresh } = room;
     let found = 0;
@@ -70,6 +83,56 @@ export function sumThreshold(
     if (found === 0) continue;
     for (let i = 0; i < size; i++) if (fresh[i] === 1 && marks[i] === 0) marks[i] = 1;
   }
+}
+
+/** Whether any run along time exceeds the threshold, all samples being good. */
+function anyRunInTime(
+  scores: Float32Array,
+  rows: number,
+  columns: number,
+  length: number,
+  threshold: number,
+  sums: Float64Array,
+): boolean {
+  const limit = threshold * length;
+  sums.fill(0, 0, columns);
+  for (let i = 0, end = (length - 1) * columns; i < end; i += columns) {
+    for (let column = 0; column < columns; column++) sums[column]! += scores[i + column]!;
+  }
+  let highest = limit;
+  for (let row = length - 1; row < rows; row++) {
+    const at = row * columns;
+    const leaving = at - (length - 1) * columns;
+    for (let column = 0; column < columns; column++) {
+      const sum = sums[column]! + scores[at + column]!;
+      if (sum > highest) highest = sum;
+      sums[column] = sum - scores[leaving + column]!;
+    }
+  }
+  return highest > limit;
+}
+
+/** The same along frequency. */
+function anyRunInFrequency(
+  scores: Float32Array,
+  rows: number,
+  columns: number,
+  length: number,
+  threshold: number,
+): boolean {
+  const limit = threshold * length;
+  let highest = limit;
+  for (let row = 0; row < rows; row++) {
+    const start = row * columns;
+    let sum = 0;
+    for (let i = start; i < start + length - 1; i++) sum += scores[i]!;
+    for (let i = start + length - 1; i < start + columns; i++) {
+      sum += scores[i]!;
+      if (sum > highest) highest = sum;
+      sum -= scores[i - length + 1]!;
+    }
+  }
+  return highest > limit;
 }
 
 function runsInTime(
