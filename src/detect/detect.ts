@@ -1,22 +1,36 @@
 /** Every detector in its order. */
+import type { Selection } from "../dataset/selection.ts";
 import type { Survey } from "../measure/survey-result.ts";
-import type { DetectedEvent } from "./event.ts";
+import type { DetectedEvent, EventKind } from "./event.ts";
+import { detectInterference } from "./interference/interference.ts";
 import type { DetectRequest } from "./request.ts";
 import { withoutShadows } from "./secondary.ts";
 import { antennaFaults } from "./tracks/antenna-faults.ts";
 
 /** Most significant first. @throws InputError where the dataset turns out to be malformed */
 export async function detect(survey: Survey, request: DetectRequest): Promise<DetectedEvent[]> {
-  const antennas = antennaFaults(survey, request);
-  return inOrder(withoutShadows(antennas, survey.integration));
+  const antennas = withoutShadows(antennaFaults(survey, request), survey.integration);
+  const interference = await detectInterference(survey, request, antennas.flatMap(explainedBy));
+  return inOrder(withoutShadows([...antennas, ...interference], survey.integration));
+}
+
+/** Kinds whose samples hold amplitudes that are no interference's doing. */
+const EXPLAIN: ReadonlySet<EventKind> = new Set<EventKind>([
+  "silent-antenna",
+  "stuck-zeros",
+  "dropout",
+  "hand-off",
+  "exchanged-hands",
+]);
+
+function explainedBy({ kind, flag, alsoFlag }: DetectedEvent): Selection[] {
+  return EXPLAIN.has(kind) && flag !== null ? [flag, ...(alsoFlag ?? [])] : [];
 }
 
 /** The same order whatever found them first. */
 function inOrder(events: readonly DetectedEvent[]): DetectedEvent[] {
+  const text = (event: DetectedEvent) => `${event.kind} ${JSON.stringify(event.scope)}`;
   return [...events].sort(
-    (a, b) =>
-      b.significance - a.significance ||
-      a.kind.localeCompare(b.kind) ||
-      JSON.stringify(a.scope).localeCompare(JSON.stringify(b.scope)),
+    (a, b) => b.significance - a.significance || (text(a) < text(b) ? -1 : text(a) > text(b) ? 1 : 0),
   );
 }
