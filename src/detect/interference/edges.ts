@@ -21,7 +21,7 @@ export function settleEdges(grid: Grid, rectangle: Rectangle, subset: Subset, ba
   const value = (line: Rectangle) => {
     const counts = noCounts();
     grid.count(line, subset, [counts], () => 0);
-    return likelihood(counts.usable, counts.elevated, share);
+    return likelihood(counts, share);
   };
   for (const side of SIDES) {
     let moved = 0;

@@ -27,6 +27,7 @@ export interface Feature {
  * all of them alike.
  */
 const LEAST_ELEVATED = 0.12;
+const LEAST_ELEVATED_OF_SHORT = 0.25;
 const LEAST_ELEVATED_OF_SOME = 0.35;
 /** A feature must be this sure, sigmas. */
 const LEAST_SIGNIFICANCE = 7;
@@ -42,7 +43,7 @@ const DRIFT_CORRELATION = 0.9;
 const ALONE_OUTLYING = 0.5;
 const ALONE_BRIGHT = 0.05;
 const ALONE_SAMPLES = 8;
-const ALONE_SIGNIFICANCE = 10;
+const ALONE_SIGNIFICANCE = 16;
 
 /** Everything that stands out in a band; takes it out of the grid's marks. */
 export function featuresOf(grid: Grid, band: Band): Feature[] {
@@ -133,7 +134,12 @@ function settle(grid: Grid, band: Band, kind: FeatureKind, rectangles: readonly 
   if (grid.pass.marks === null) return { ...weigh(grid, band, kind, settled, who), significance: Number.NaN };
   const feature = weigh(grid, band, kind, settled, who);
   const { usable, elevated } = feature.counts;
-  const least = who.kind === "all" ? LEAST_ELEVATED : LEAST_ELEVATED_OF_SOME;
+  const least =
+    who.kind === "all"
+      ? LEAST_ELEVATED
+      : who.kind === "short"
+        ? LEAST_ELEVATED_OF_SHORT
+        : LEAST_ELEVATED_OF_SOME;
   if (usable === 0 || elevated < least * usable) return null;
   const sure = who.kind === "all" ? LEAST_SIGNIFICANCE : LEAST_SIGNIFICANCE_OF_SOME;
   return feature.significance < sure ? null : feature;
@@ -148,7 +154,7 @@ function weigh(
 ): Feature {
   const counts = noCounts();
   for (const rectangle of rectangles) grid.count(rectangle, who.subset, [counts], () => 0);
-  const gain = likelihood(counts.usable, counts.elevated, counts.elevated / Math.max(1, counts.usable));
+  const gain = likelihood(counts, counts.elevated / Math.max(1, counts.usable));
   return { kind, band, rectangles, who, counts, significance: Math.sqrt(Math.max(0, 2 * gain)) };
 }
 

@@ -4,7 +4,8 @@ import { newBlock } from "../../dataset/new-block.ts";
 import type { Selection } from "../../dataset/selection.ts";
 import { compileSelections } from "../../dataset/selection-matcher.ts";
 import type { Survey } from "../../measure/survey-result.ts";
-import { indexOfTime, type SecondPass } from "../pass/second-pass.ts";
+import { ones } from "../pass/bits.ts";
+import { ELEVATED_SHARE, indexOfTime, type SecondPass } from "../pass/second-pass.ts";
 
 /** Integrations [firstStep, lastStep] by columns [low, high], ends included; columns count over all sub-bands. */
 export interface Rectangle {
@@ -24,16 +25,29 @@ export interface Subset {
 
 export const ALL: Subset = { baselines: null, polarizations: null };
 
+/** No baseline's noise is known better than to this share of elevated samples. */
+const LEAST_NOISE_SHARE = 0.005;
+
 /** Samples by what the second pass saw. */
 export interface Counts {
   usable: number;
   elevated: number;
   outlying: number;
   bright: number;
+  /** log likelihood of `elevated` of `usable` where there is only noise */
+  noise: number;
 }
 
 export function noCounts(): Counts {
-  return { usable: 0, elevated: 0, outlying: 0, bright: 0 };
+  return { usable: 0, elevated: 0, outlying: 0, bright: 0, noise: 0 };
+}
+
+export function addCounts(to: Counts, from: Counts): void {
+  to.usable += from.usable;
+  to.elevated += from.elevated;
+  to.outlying += from.outlying;
+  to.bright += from.bright;
+  to.noise += from.noise;
 }
 
 /** The cells of the tracks in order of their integrations. */
@@ -49,6 +63,8 @@ export class Grid {
   readonly firstOfStep: Int32Array;
   /** cells ordered by step */
   readonly cells: Int32Array;
+  /** (baselines) share of its samples that are elevated in noise: ELEVATED_SHARE, or less where its noise is overestimated */
+  readonly noiseShare: Float64Array;
 
   constructor(survey: Survey, pass: SecondPass) {
     this.survey = survey;
@@ -68,6 +84,7 @@ export class Grid {
     const next = this.firstOfStep.slice();
     this.cells = new Int32Array(tracks.cells);
     for (let cell = 0; cell < tracks.cells; cell++) this.cells[next[this.stepOfCell[cell]!]!++] = cell;
+    this.noiseShare = noiseShares(survey, pass);
   }
 
   /** MJD of the first and of the last integration of steps, ends included. */
@@ -116,8 +133,10 @@ export class Grid {
           const to = key(baseline, step, column, p);
           if (to < 0) continue;
           const into = counts[to]!;
+          const elevated = marks.elevated.has(cell, sample);
           into.usable += 1;
-          if (marks.elevated.has(cell, sample)) into.elevated += 1;
+          if (elevated) into.elevated += 1;
+          into.noise += Math.log(elevated ? this.noiseShare[baseline]! : 1 - this.noiseShare[baseline]!);
           if (marks.outlying.has(cell, sample)) into.outlying += 1;
           if (marks.bright.has(cell, sample)) into.bright += 1;
         }
@@ -175,4 +194,20 @@ export class Grid {
     marks.outlying.clear(cell, sample);
     marks.bright.clear(cell, sample);
   }
+}
+
+function noiseShares({ tracks, baselines }: Survey, { marks }: SecondPass): Float64Array {
+  const shares = new Float64Array(baselines.length).fill(ELEVATED_SHARE);
+  if (marks === null) return shares;
+  const { words } = marks.usable;
+  for (let b = 0; b < baselines.length; b++) {
+    let usable = 0;
+    let elevated = 0;
+    for (let w = tracks.firstCell[b]! * words; w < tracks.firstCell[b + 1]! * words; w++) {
+      usable += ones(marks.usable.bits[w]!);
+      elevated += ones(marks.elevated.bits[w]!);
+    }
+    if (usable > 0) shares[b] = Math.min(ELEVATED_SHARE, Math.max(LEAST_NOISE_SHARE, elevated / usable));
+  }
+  return shares;
 }

@@ -1,7 +1,7 @@
 /** Features that are one thing: in the same channels again and again, or in the same place on several baselines. */
 
 import type { Feature } from "./features.ts";
-import { noCounts } from "./grid.ts";
+import { addCounts, noCounts } from "./grid.ts";
 
 /** Channels by which the edges of what recurs may differ. */
 const SLACK = 1;
@@ -34,10 +34,7 @@ function joined(group: readonly Feature[], steps: number): Feature {
     .sort((a, b) => a.firstStep - b.firstStep || a.low - b.low);
   const counts = noCounts();
   for (const feature of group) {
-    counts.usable += feature.counts.usable;
-    counts.elevated += feature.counts.elevated;
-    counts.outlying += feature.counts.outlying;
-    counts.bright += feature.counts.bright;
+    addCounts(counts, feature.counts);
   }
   const filled = rectangles.reduce((sum, r) => sum + r.lastStep - r.firstStep + 1, 0);
   return {

@@ -1,13 +1,17 @@
 /** Cells of a region chosen again by the samples of those whom it hits, since the runs that found it reach over edges. */
 import type { Band } from "../pass/bands.ts";
 import { boundsOf, linesOf, type Region, shifted } from "./components.ts";
-import { type Grid, noCounts } from "./grid.ts";
+import { addCounts, type Grid, noCounts } from "./grid.ts";
 import { likelihood, whoIsHit } from "./subset.ts";
 
 /** Steps and columns around a region that are looked at too. */
 const MARGIN = 2;
 /** Samples of a cell that tell whether it is hit. */
 const FEWEST_IN_CELL = 16;
+const ROUNDS = 3;
+/** Weight of a neighbour's gain against a cell's own, and the most of it that counts. */
+const NEIGHBOURS = 0.5;
+const MOST_OF_NEIGHBOUR = 4;
 
 /** The region as it is where a cell has too few samples to tell; possibly empty. */
 export function refined(grid: Grid, band: Band, region: Region): Region {
@@ -28,18 +32,36 @@ export function refined(grid: Grid, band: Band, region: Region): Region {
   const counts = Array.from({ length: width * (bounds.lastStep - bounds.firstStep + 1) }, noCounts);
   const placeOf = (step: number, column: number) => (step - bounds.firstStep) * width + column - bounds.low;
   grid.count(shifted(bounds, band), subset, counts, (_, step, column) => placeOf(step, column - band.first));
-  const inside = noCounts();
-  for (const cell of region) {
-    const { usable, elevated } = counts[placeOf(Math.floor(cell / columns), cell % columns)]!;
-    inside.usable += usable;
-    inside.elevated += elevated;
+  let cells: Region = region;
+  for (let round = 0; round < ROUNDS && cells.length > 0; round++) {
+    const inside = noCounts();
+    for (const cell of cells) {
+      addCounts(inside, counts[placeOf(Math.floor(cell / columns), cell % columns)]!);
+    }
+    if (inside.usable < FEWEST_IN_CELL * cells.length) return cells;
+    const share = inside.elevated / inside.usable;
+    const gains = Float64Array.from(counts, (count) => likelihood(count, share));
+    const next: number[] = [];
+    for (let place = 0; place < gains.length; place++) {
+      if (gains[place]! + NEIGHBOURS * aroundOf(gains, place, width) <= 0) continue;
+      next.push((bounds.firstStep + Math.floor(place / width)) * columns + bounds.low + (place % width));
+    }
+    cells = next;
   }
-  if (inside.usable < FEWEST_IN_CELL * region.length) return region;
-  const share = inside.elevated / inside.usable;
-  const cells: number[] = [];
-  counts.forEach(({ usable, elevated }, place) => {
-    if (likelihood(usable, elevated, share) <= 0) return;
-    cells.push((bounds.firstStep + Math.floor(place / width)) * columns + bounds.low + (place % width));
-  });
   return cells;
+}
+
+/** Sum over the neighbours before and after in time and in frequency, each kept from deciding alone. */
+function aroundOf(gains: Float64Array, place: number, width: number): number {
+  const column = place % width;
+  let sum = 0;
+  if (place >= width) sum += clipped(gains[place - width]!);
+  if (place + width < gains.length) sum += clipped(gains[place + width]!);
+  if (column > 0) sum += clipped(gains[place - 1]!);
+  if (column + 1 < width) sum += clipped(gains[place + 1]!);
+  return sum;
+}
+
+function clipped(gain: number): number {
+  return Math.max(-MOST_OF_NEIGHBOUR, Math.min(MOST_OF_NEIGHBOUR, gain));
 }

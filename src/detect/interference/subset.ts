@@ -4,7 +4,7 @@
  */
 import { lengthOrder, projectedLengths } from "../pass/lengths.ts";
 import { ELEVATED_SHARE } from "../pass/second-pass.ts";
-import { ALL, type Counts, type Grid, noCounts, type Rectangle, type Subset } from "./grid.ts";
+import { ALL, addCounts, type Counts, type Grid, noCounts, type Rectangle, type Subset } from "./grid.ts";
 
 export interface Who {
   readonly subset: Subset;
@@ -18,16 +18,15 @@ export interface Who {
 
 /** Gain in log likelihood that a baseline more in a list must bring. */
 const PRICE_OF_BASELINE = 4;
-/** Largest share of the baselines that is named one by one. */
-const MOST_LISTED = 0.4;
+/** Most baselines that are named one by one: these, or this share. */
+const MOST_LISTED = 3;
+const LISTED_SHARE = 1 / 12;
 const ROUNDS = 2;
 
-/** log likelihood of the counts with a share q of the samples elevated, over that in noise. */
-export function likelihood(usable: number, elevated: number, share: number): number {
+/** Log likelihood of counts with a share of the samples elevated, over that in noise. */
+export function likelihood({ usable, elevated, noise }: Counts, share: number): number {
   const q = Math.min(0.98, Math.max(share, 1.5 * ELEVATED_SHARE));
-  return (
-    elevated * Math.log(q / ELEVATED_SHARE) + (usable - elevated) * Math.log((1 - q) / (1 - ELEVATED_SHARE))
-  );
+  return elevated * Math.log(q) + (usable - elevated) * Math.log(1 - q) - noise;
 }
 
 /** Who is hit in some rectangles. */
@@ -68,7 +67,7 @@ function baselinesHit(
   }
   const withData = order.filter((b) => counts[b]!.usable > 0);
   if (withData.length < 2) return everyone(grid);
-  const gain = (members: readonly number[]) => gainOf(...sumOf(counts, members));
+  const gain = (members: readonly number[]) => gainOf(sumOf(counts, members));
   let best: { who: Who; value: number } = { who: everyone(grid), value: gain(withData) };
   const consider = (members: readonly number[], value: number, rest: Partial<Who>) => {
     if (value <= best.value) return;
@@ -101,16 +100,21 @@ function baselinesHit(
   const byShare = [...withData].sort(
     (a, b) => counts[b]!.elevated / counts[b]!.usable - counts[a]!.elevated / counts[a]!.usable || a - b,
   );
-  // A transmitter that half of the baselines see, in no order of length, is seen by all: some backgrounds took it in.
-  eachPrefix(counts, byShare, Math.floor(MOST_LISTED * byShare.length), (n, value) => {
-    const worth = value - PRICE_OF_BASELINE * n;
-    if (worth <= best.value) return;
-    consider(
-      byShare.slice(0, n).sort((a, b) => a - b),
-      worth,
-      {},
-    );
-  });
+  // What many baselines see, in no order of length, all see: the backgrounds of some took it in.
+  eachPrefix(
+    counts,
+    byShare,
+    Math.min(byShare.length - 1, Math.max(MOST_LISTED, Math.floor(LISTED_SHARE * byShare.length))),
+    (n, value) => {
+      const worth = value - PRICE_OF_BASELINE * n;
+      if (worth <= best.value) return;
+      consider(
+        byShare.slice(0, n).sort((a, b) => a - b),
+        worth,
+        {},
+      );
+    },
+  );
   return best.who;
 }
 
@@ -127,15 +131,13 @@ function productsHit(
     grid.count(rectangle, { baselines, polarizations: null }, counts, (_, __, ___, p) => p);
   }
   const whole = Uint8Array.from(counts, () => 1);
-  const [usable, elevated] = sumOf(counts, [...whole.keys()]);
-  let best = usable === 0 ? 0 : likelihood(usable, elevated, elevated / usable);
+  let best = gainOf(sumOf(counts, [...whole.keys()]));
   let chosen: Uint8Array | null = null;
   const share = (p: number) => counts[p]!.elevated / Math.max(1, counts[p]!.usable);
   const order = [...whole.keys()].sort((a, b) => share(b) - share(a) || a - b);
   for (let n = 1; n < polarizations; n++) {
     const members = order.slice(0, n);
-    const [u, e] = sumOf(counts, members);
-    const value = u === 0 ? 0 : likelihood(u, e, e / u) - PRICE_OF_BASELINE;
+    const value = gainOf(sumOf(counts, members)) - PRICE_OF_BASELINE;
     if (value <= best) continue;
     best = value;
     chosen = new Uint8Array(polarizations);
@@ -144,18 +146,14 @@ function productsHit(
   return chosen;
 }
 
-function sumOf(counts: readonly Counts[], members: readonly number[]): [usable: number, elevated: number] {
-  let usable = 0;
-  let elevated = 0;
-  for (const i of members) {
-    usable += counts[i]!.usable;
-    elevated += counts[i]!.elevated;
-  }
-  return [usable, elevated];
+function sumOf(counts: readonly Counts[], members: readonly number[]): Counts {
+  const sum = noCounts();
+  for (const i of members) addCounts(sum, counts[i]!);
+  return sum;
 }
 
-function gainOf(usable: number, elevated: number): number {
-  return usable === 0 ? 0 : likelihood(usable, elevated, elevated / usable);
+function gainOf(counts: Counts): number {
+  return counts.usable === 0 ? 0 : likelihood(counts, counts.elevated / counts.usable);
 }
 
 /** The gain of the first n of an order, n from 1 to `most`. */
@@ -165,11 +163,9 @@ function eachPrefix(
   most: number,
   visit: (n: number, gain: number) => void,
 ): void {
-  let usable = 0;
-  let elevated = 0;
+  const sum = noCounts();
   for (let n = 1; n <= most; n++) {
-    usable += counts[order[n - 1]!]!.usable;
-    elevated += counts[order[n - 1]!]!.elevated;
-    visit(n, gainOf(usable, elevated));
+    addCounts(sum, counts[order[n - 1]!]!);
+    visit(n, gainOf(sum));
   }
 }
