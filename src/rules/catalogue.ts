@@ -2,6 +2,7 @@
 import { EVENT_FORM, INTERFERENCE_FORM } from "../detect/event-table.ts";
 import { IMAGING_MEASURES } from "../imaging/measure-columns.ts";
 import * as survey from "../measure/forms.ts";
+import type { Column } from "../measure/table.ts";
 import { InputError, nearest } from "../util/errors.ts";
 import { EVENT_LIMIT_COLUMNS } from "./event-limits.ts";
 import type { Expression, Source } from "./expression.ts";
@@ -9,16 +10,25 @@ import type { Rule } from "./rule.ts";
 import { templateExpressions } from "./template.ts";
 import type { Path, YamlDocument } from "./yaml-document.ts";
 
-/** Columns by measure. */
-export const CATALOGUE: ReadonlyMap<string, ReadonlySet<string>> = new Map([
-  ...[...Object.values(survey), ...IMAGING_MEASURES].map(({ name, columns }) => entry(name, columns)),
-  entry("event", [...EVENT_FORM, ...EVENT_LIMIT_COLUMNS]),
-  entry("interference", INTERFERENCE_FORM),
+/** What a rule's author may count on, whatever the dataset. */
+export interface KnownMeasure {
+  readonly title: string;
+  readonly columns: readonly Column[];
+}
+
+/** By name. */
+export const KNOWN_MEASURES: ReadonlyMap<string, KnownMeasure> = new Map<string, KnownMeasure>([
+  ...[...Object.values(survey), ...IMAGING_MEASURES].map((form): [string, KnownMeasure] => [form.name, form]),
+  [
+    "event",
+    { title: "What happened to some of the samples", columns: [...EVENT_FORM, ...EVENT_LIMIT_COLUMNS] },
+  ],
+  ["interference", { title: "Interference as a whole, one row", columns: INTERFERENCE_FORM }],
 ]);
 
-function entry(name: string, columns: readonly { readonly name: string }[]): [string, Set<string>] {
-  return [name, new Set(columns.map((column) => column.name))];
-}
+const CATALOGUE: ReadonlyMap<string, ReadonlySet<string>> = new Map(
+  [...KNOWN_MEASURES].map(([name, { columns }]) => [name, new Set(columns.map((column) => column.name))]),
+);
 
 /** @throws InputError at the line and column of a measure or column that there is none of */
 export function requireKnownNames(rule: Rule, document: YamlDocument): void {
