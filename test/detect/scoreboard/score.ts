@@ -1,0 +1,138 @@
+/** One game: a simulated dataset surveyed and searched, and what was found held against the truth. */
+
+import type { Selection } from "../../../src/dataset/selection.ts";
+import { compileSelections } from "../../../src/dataset/selection-matcher.ts";
+import { detect } from "../../../src/detect/detect.ts";
+import type { DetectedEvent } from "../../../src/detect/event.ts";
+import { surveyDataset } from "../../../src/measure/survey.ts";
+import type { Simulated } from "../../../src/simulate/simulate.ts";
+import type { TrueFault } from "../../../src/simulate/truth.ts";
+import type { Case } from "./cases.ts";
+
+export interface Score {
+  /** share of the samples that faults touched which flags would take; NaN without faults of values */
+  readonly recall: number;
+  /** share of the samples that flags would take which faults touched; NaN without flags */
+  readonly precision: number;
+  /** share of all samples that flags would take */
+  readonly flagged: number;
+  /** selections of all flags */
+  readonly selections: number;
+  /** faults that an event of an accepted kind names with the right antenna, baseline or channels */
+  readonly named: number;
+  readonly faults: number;
+  /** events that name no fault */
+  readonly falseAlarms: number;
+  /** by jump found: integrations its time is off, and its size's error in its own sigmas */
+  readonly jumps: readonly { readonly integrations: number; readonly sigmas: number }[];
+  readonly events: readonly DetectedEvent[];
+}
+
+export async function playCase(game: Case, seed: number): Promise<Score> {
+  return score(game.make(seed), game);
+}
+
+export async function score(
+  { dataset, truth }: Simulated,
+  { accept, plan }: Pick<Case, "accept" | "plan">,
+): Promise<Score> {
+  const survey = await surveyDataset(dataset);
+  const events = await detect(survey, {
+    purpose: plan?.purpose ?? "continuum",
+    lineChannels: plan?.lineChannels ?? [],
+  });
+  const flags = events.flatMap((event) =>
+    event.flag === null ? [] : [event.flag, ...(event.alsoFlag ?? [])],
+  );
+  const counts = await countSamples({ dataset, truth } as Simulated, flags);
+  const naming = truth.faults.map((fault, i) =>
+    events.filter((event) => accept[i]!.includes(event.kind) && sameSubject(event, fault)),
+  );
+  const explained = new Set(naming.flat());
+  return {
+    recall: counts.touched === 0 ? Number.NaN : counts.both / counts.touched,
+    precision: counts.flagged === 0 ? Number.NaN : counts.both / counts.flagged,
+    flagged: counts.flagged / counts.samples,
+    selections: flags.length,
+    named: naming.filter((named, i) => named.length > 0 || accept[i]!.length === 0).length,
+    faults: truth.faults.length,
+    falseAlarms: events.filter((event) => !explained.has(event)).length,
+    jumps: truth.faults.flatMap((fault, i) =>
+      fault.kind === "phase-jump" && naming[i]!.length > 0
+        ? [jumpError(naming[i]![0]!, fault, survey.times)]
+        : [],
+    ),
+    events,
+  };
+}
+
+/** Samples that faults touched, that flags take, and both. */
+async function countSamples(
+  { dataset, truth }: Simulated,
+  flags: readonly Selection[],
+): Promise<{ samples: number; touched: number; flagged: number; both: number }> {
+  const matcher = compileSelections(dataset, flags);
+  const { subbands, channels, polarizations } = dataset.shape;
+  const rowSamples = subbands * channels * polarizations;
+  const taken = new Uint8Array(rowSamples);
+  const total = { samples: 0, touched: 0, flagged: 0, both: 0 };
+  for await (const block of dataset.blocks({ want: "rows", blockRows: 1024 })) {
+    const mask = truth.mask(block);
+    for (let row = 0; row < block.rows; row++) {
+      taken.fill(0);
+      const count = matcher.matchRow(block, row);
+      for (let m = 0; m < count; m++) {
+        const runs = matcher.runs[matcher.matched[m]!]!;
+        for (let r = 0; r < runs.length; r += 2) taken.fill(1, runs[r]!, runs[r + 1]!);
+      }
+      for (let i = 0; i < rowSamples; i++) {
+        const touched = mask[row * rowSamples + i]!;
+        total.samples += 1;
+        total.touched += touched;
+        total.flagged += taken[i]!;
+        total.both += touched & taken[i]!;
+      }
+    }
+  }
+  return total;
+}
+
+/** Whether an event is about what a fault is about: the antenna, the baseline, or channels and times that meet. */
+function sameSubject({ scope }: DetectedEvent, { cause, selection }: TrueFault): boolean {
+  if (cause === "antenna") return String(scope.antennas) === String(selection.antennas);
+  if (cause === "correlator") return String(scope.baselines) === String(selection.baselines);
+  return meet(scope.channels, selection.channels) && meet(listed(scope.time), listed(selection.time));
+}
+
+type Ranges = readonly (readonly [number, number])[] | null;
+
+function listed(range: readonly [number, number] | null): Ranges {
+  return range === null ? null : [range];
+}
+
+function meet(a: Ranges, b: Ranges): boolean {
+  return (
+    a === null ||
+    b === null ||
+    a.some(([low, high]) => b.some(([from, to]) => low <= to + 1e-9 && from <= high + 1e-9))
+  );
+}
+
+function jumpError(
+  event: DetectedEvent,
+  fault: TrueFault,
+  times: Float64Array,
+): { integrations: number; sigmas: number } {
+  const place = (time: number) => times.findIndex((at) => at >= time - 1e-7);
+  const truth = fault.selection.time ?? [times[0]!, times[times.length - 1]!];
+  const found = event.scope.time ?? [times[0]!, times[times.length - 1]!];
+  // A jump that stays may be told by the side before it: its edge is the integration after its end.
+  const [from, to] = [place(truth[0]), place(truth[1])];
+  const edges = [place(found[0]), place(found[1]) + 1];
+  const start = Math.min(...edges.map((edge) => Math.abs(edge - from)));
+  const stays = to === times.length - 1;
+  const end = stays ? 0 : Math.min(...edges.map((edge) => Math.abs(edge - to - 1)));
+  const sign = edges[0] === 0 && stays ? -1 : 1;
+  const off = Math.min(Math.abs(sign * event.size - fault.size), Math.abs(event.size - fault.size));
+  return { integrations: Math.max(start, end), sigmas: off / event.sizeError };
+}
