@@ -1,65 +1,105 @@
+import fc from "fast-check";
 import { describe, expect, it } from "vitest";
-import { circularMean, mad, median, modifiedZ, range, robustSigma } from "../../src/util/statistics.ts";
+import {
+  circularMean,
+  mad,
+  median,
+  modifiedZ,
+  range,
+  robustSigma,
+  standardDeviation,
+} from "../../src/util/statistics.ts";
 
-const NASTY = {
-  empty: [],
-  "one sample": [3],
-  "all equal": [2, 2, 2, 2],
-  "NaN alone": [Number.NaN, Number.NaN],
-  "NaN among numbers": [1, Number.NaN, 3],
-  "huge offset": [1e15, 1e15 + 1, 1e15 + 2],
-  denormal: [5e-324, 1e-323, 1.5e-323],
-} as const;
+const NAN = Number.NaN;
+const HUGE = 1e15;
+/** Columns that trip statistics up, and what their median, MAD and standard deviation are. */
+const NASTY: Record<string, { values: number[]; median: number; mad: number; deviation: number }> = {
+  empty: { values: [], median: NAN, mad: NAN, deviation: NAN },
+  "one sample": { values: [3], median: 3, mad: 0, deviation: NAN },
+  "all equal": { values: [2, 2, 2, 2], median: 2, mad: 0, deviation: 0 },
+  "nothing but NaN": { values: [NAN, NAN], median: NAN, mad: NAN, deviation: NAN },
+  "NaN among numbers": { values: [NAN, 1, NAN, 2, 6], median: 2, mad: 1, deviation: Math.sqrt(7) },
+  "a huge offset": { values: [HUGE + 1, HUGE + 2, HUGE + 3], median: HUGE + 2, mad: 1, deviation: 1 },
+  denormal: { values: [5e-324, 1e-323, 1.5e-323], median: 1e-323, mad: 5e-324, deviation: 0 },
+};
 
-describe("median and MAD", () => {
-  it.each([
-    ["empty", Number.NaN, Number.NaN],
-    ["one sample", 3, 0],
-    ["all equal", 2, 0],
-    ["NaN alone", Number.NaN, Number.NaN],
-    ["NaN among numbers", 2, 1],
-    ["huge offset", 1e15 + 1, 1],
-    ["denormal", 1e-323, 5e-324],
-  ] as const)("of %s", (name, middle, deviation) => {
-    expect(median(NASTY[name])).toBe(middle);
-    expect(mad(NASTY[name])).toBe(deviation);
-  });
-
-  it("leave their input as it was", () => {
-    const values = Float64Array.of(3, 1, 2);
-    median(values);
-    robustSigma(values);
-    expect([...values]).toEqual([3, 1, 2]);
-  });
-});
-
-describe("range", () => {
-  it("is of the numbers alone", () => {
-    expect(range([Number.NaN, 4, -1])).toEqual([-1, 4]);
-    expect(range(NASTY.empty)).toEqual([Number.NaN, Number.NaN]);
+describe("nasty columns", () => {
+  it.each(Object.entries(NASTY))("%s", (_, column) => {
+    const before = [...column.values];
+    expect(median(column.values)).toBe(column.median);
+    expect(mad(column.values)).toBe(column.mad);
+    // A standard deviation squares: of denormals nothing is left.
+    const deviation = standardDeviation(column.values);
+    if (Number.isNaN(column.deviation)) expect(deviation).toBeNaN();
+    else expect(deviation).toBeCloseTo(column.deviation, 12);
+    expect(column.values).toEqual(before);
   });
 });
 
-describe("modifiedZ", () => {
-  it("calls nothing an outlier where all values are equal", () => {
-    expect([...modifiedZ(NASTY["all equal"])]).toEqual([0, 0, 0, 0]);
+describe("the median", () => {
+  it("of an even count is the mean of the two in the middle", () => {
+    expect(median([4, 1, 3, 2])).toBe(2.5);
+    expect(median(Float32Array.of(1, 2))).toBe(1.5);
   });
 
-  it("leaves what is not a number so", () => {
-    expect([...modifiedZ(NASTY["NaN among numbers"])].map(Number.isNaN)).toEqual([false, true, false]);
+  it("does not depend on the order, and lies between the extremes", () => {
+    fc.assert(
+      fc.property(fc.array(fc.double({ min: -1e9, max: 1e9, noNaN: true }), { minLength: 1 }), (values) => {
+        const middle = median(values);
+        expect(median([...values].reverse())).toBe(middle);
+        const [low, high] = range(values);
+        expect(middle).toBeGreaterThanOrEqual(low);
+        expect(middle).toBeLessThanOrEqual(high);
+      }),
+    );
   });
 });
 
-describe("circularMean", () => {
-  it("has no deviation where all angles agree", () => {
-    expect(circularMean([1, 1, 1]).deviation).toBeCloseTo(0, 7);
+describe("robust scale", () => {
+  it("is not moved by less than half of wild values", () => {
+    const tame = [10, 11, 9, 10, 12, 8, 10];
+    expect(robustSigma([...tame, 1e12, -1e12])).toBeLessThan(2 * robustSigma(tame));
+  });
+});
+
+describe("the modified z", () => {
+  it("is 0 where values do not differ, and unknown where the value is", () => {
+    expect([...modifiedZ([4, 4, 4])]).toEqual([0, 0, 0]);
+    expect(modifiedZ([1, NAN, 2, 3])[1]).toBeNaN();
+    expect([...modifiedZ([])]).toEqual([]);
+  });
+});
+
+describe("the mean of angles", () => {
+  it("knows that a circle closes", () => {
+    expect(circularMean([Math.PI - 0.1, -Math.PI + 0.1]).mean).toBeCloseTo(Math.PI, 12);
+    expect(circularMean([0.2]).resultant).toBeCloseTo(1, 14);
   });
 
-  it("knows nothing of no angles", () => {
-    expect(circularMean([Number.NaN])).toEqual({
-      mean: Number.NaN,
-      resultant: Number.NaN,
-      deviation: Number.NaN,
-    });
+  it("turns with the angles", () => {
+    fc.assert(
+      fc.property(
+        fc.array(fc.double({ min: -0.5, max: 0.5, noNaN: true }), { minLength: 1, maxLength: 30 }),
+        fc.double({ min: -10, max: 10, noNaN: true }),
+        (angles, turn) => {
+          const still = circularMean(angles);
+          const turned = circularMean(angles.map((angle) => angle + turn));
+          expect(Math.cos(turned.mean - still.mean - turn)).toBeCloseTo(1, 9);
+          expect(turned.resultant).toBeCloseTo(still.resultant, 9);
+        },
+      ),
+    );
+  });
+
+  it("is unknown of nothing", () => {
+    expect(circularMean([NAN]).mean).toBeNaN();
+    expect(circularMean([]).resultant).toBeNaN();
+  });
+});
+
+describe("the range", () => {
+  it("leaves out what is no number", () => {
+    expect(range([NAN, 3, -1])).toEqual([-1, 3]);
+    expect(range([])).toEqual([NAN, NAN]);
   });
 });
