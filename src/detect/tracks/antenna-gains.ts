@@ -38,7 +38,7 @@ export function antennaGains(ratios: BaselineRatios, antennas: number): AntennaP
     for (let a = 0; a < antennas; a++) {
       if (total[a]! > 0) gain[a] = 0.5 * gain[a]! + (0.5 * sum[a]!) / total[a]!;
     }
-    if (sweep < 2) continue;
+    if (sweep !== 2 && sweep !== 5) continue;
     const scaled: number[] = [];
     for (let b = 0; b < first.length; b++) {
       if (weight[b]! > 0) scaled.push(Math.abs(residual(b)) * Math.sqrt(weight[b]!));

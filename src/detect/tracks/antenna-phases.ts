@@ -72,7 +72,7 @@ export function antennaPhases(phasors: BaselinePhasors, antennas: number): Anten
       gr[a] = re / norm;
       gi[a] = im / norm;
     }
-    if (sweep >= 2) lowerOutliers(phasors, trust, ur, ui, gr, gi);
+    if (sweep === 2 || sweep === 5) lowerOutliers(phasors, trust, ur, ui, gr, gi);
   }
   return phasesOf(phasors, antennas, ur, ui, gr, gi, { sumR, sumI, total });
 }
@@ -103,14 +103,30 @@ function lowerOutliers(
   const scaled: number[] = [];
   for (let b = 0; b < trust.length; b++) {
     if (!(trust[b]! > 0)) continue;
-    scaled.push(Math.abs(residual(b, p, ur, ui, gr, gi)) * Math.sqrt(p.weight[b]!));
+    scaled.push(distance(b, p, ur, ui, gr, gi) * Math.sqrt(p.weight[b]!));
   }
-  const scale = Math.max(1, 1.4826 * median(scaled));
+  const scale = 2.5 * Math.max(1, 1.4826 * median(scaled));
+  let next = 0;
   for (let b = 0; b < trust.length; b++) {
     if (!(trust[b]! > 0)) continue;
-    const z = (residual(b, p, ur, ui, gr, gi) * Math.sqrt(p.weight[b]!)) / (2.5 * scale);
+    const z = scaled[next++]! / scale;
     trust[b] = Math.max(1e-12, p.weight[b]! / (1 + z * z));
   }
+}
+
+/** Chord between a baseline's phasor and that of its antennas: the angle, where it is small. */
+function distance(
+  b: number,
+  p: BaselinePhasors,
+  ur: Float64Array,
+  ui: Float64Array,
+  gr: Float64Array,
+  gi: Float64Array,
+): number {
+  const [i, j] = [p.first[b]!, p.second[b]!];
+  const mr = gr[i]! * gr[j]! + gi[i]! * gi[j]!;
+  const mi = gi[i]! * gr[j]! - gr[i]! * gi[j]!;
+  return Math.hypot(ur[b]! - mr, ui[b]! - mi);
 }
 
 interface Room {

@@ -77,15 +77,9 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
     found.push(step);
     turnBack(grid, series, step, settings.gains);
     for (const group of groups) {
+      const members = group.members.map((i) => series[i]!);
       for (const steps of group.windows) {
-        fillSteps(
-          grid,
-          group.members.map((i) => series[i]!),
-          steps,
-          settings.solve,
-          step.at - steps.window,
-          step.at + steps.window + 1,
-        );
+        fillSteps(grid, members, steps, settings.solve, [step.at - steps.window, step.at + steps.window + 1]);
       }
     }
   }
@@ -125,7 +119,8 @@ function strongest(grid: Grid, groups: readonly Group[], settings: StepSettings)
         const at = (i - antenna) / antennas;
         const significance = significanceOf(steps, antennas, at, antenna);
         if (significance < settings.threshold || significance <= (best?.significance ?? 0)) continue;
-        if (settings.skip.has(antenna) || steps.agreement[i]! < LEAST_AGREEMENT) continue;
+        if (steps.barred[i] === 1 || settings.skip.has(antenna) || steps.agreement[i]! < LEAST_AGREEMENT)
+          continue;
         if (localSignificance(steps, antennas, at, antenna) < settings.threshold) continue;
         best = { group: g, window: w, at, antenna, significance };
       }
@@ -162,7 +157,7 @@ function passOver(grid: Grid, groups: readonly Group[], { antenna, at, group, wi
     for (const steps of windows) {
       if (steps.window < reach) continue;
       for (let t = Math.max(0, at - reach); t <= Math.min(grid.times.length - 1, at + reach); t++) {
-        steps.phase[t * antennas + antenna] = Number.NaN;
+        steps.barred[t * antennas + antenna] = 1;
       }
     }
   }
@@ -178,6 +173,12 @@ function settle(
 ): FoundStep {
   const { members, windows } = groups[best.group]!;
   const chosen = windows[best.window]!;
+  const all = members.map((i) => series[i]!);
+  for (const steps of windows) {
+    if (steps.window > chosen.window) break;
+    const reach = chosen.window;
+    fillSteps(grid, all, steps, settings.solve, [best.at - reach, best.at + reach + 1], true);
+  }
   const at = sharpest(grid, windows, best);
   const segment = grid.segments.find(({ start, end }) => at > start && at < end)!;
   const left: [number, number] = [Math.max(segment.start, at - chosen.window), at];

@@ -26,6 +26,8 @@ export interface Steps {
   readonly phase: Float32Array;
   readonly error: Float32Array;
   readonly agreement: Float32Array;
+  /** 1 where a step was looked at and is none */
+  readonly barred: Uint8Array;
   /** (antennas) robust sigma of the steps of the antenna, at least that of the array: noise and wander both */
   readonly scale: Float64Array;
 }
@@ -47,32 +49,43 @@ export function stepsOf(grid: Grid, series: readonly Series[], window: number, s
     phase: new Float32Array(size).fill(Number.NaN),
     error: new Float32Array(size).fill(Number.NaN),
     agreement: new Float32Array(size),
+    barred: new Uint8Array(size),
     scale: new Float64Array(antennas.length),
   };
-  fillSteps(grid, series, steps, solve, 0, times.length);
+  fillSteps(grid, series, steps, solve, [0, times.length]);
   fillScale(steps, antennas.length);
   return steps;
 }
 
+/** Long windows change little from one instant to the next. */
+function strideOf(window: number): number {
+  return Math.max(1, window / 4);
+}
+
+/** Fill instants [from, to) anew: every one, or those that the window's stride keeps, and NaN between. */
 export function fillSteps(
   grid: Grid,
   series: readonly Series[],
   steps: Steps,
   solve: Solver,
-  from: number,
-  to: number,
+  [from, to]: readonly [number, number],
+  every = false,
 ): void {
   const antennas = grid.antennas.length;
   const { window } = steps;
+  const stride = every ? 1 : strideOf(window);
   for (const segment of grid.segments) {
     const last = Math.min(to, segment.end - window + 1);
     for (let t = Math.max(from, segment.start + window); t < last; t++) {
-      const solved = solve(grid, series, [t - window, t], [t, t + window]);
-      for (let a = 0; a < antennas; a++) {
-        steps.phase[t * antennas + a] = solved.phase[a]!;
-        steps.error[t * antennas + a] = solved.error[a]!;
-        steps.agreement[t * antennas + a] = solved.agreement[a]!;
+      const at = t * antennas;
+      if ((t - segment.start - window) % stride !== 0) {
+        steps.phase.fill(Number.NaN, at, at + antennas);
+        continue;
       }
+      const solved = solve(grid, series, [t - window, t], [t, t + window]);
+      steps.phase.set(solved.phase, at);
+      steps.error.set(solved.error, at);
+      steps.agreement.set(solved.agreement, at);
     }
   }
 }
