@@ -30,6 +30,7 @@ export class BeamTransform {
   private readonly fft: FFT;
   private readonly input: Float64Array;
   private readonly output: Float64Array;
+  private scratch = new Float64Array(0);
 
   constructor(size: number) {
     this.size = size;
@@ -65,7 +66,7 @@ export class BeamTransform {
   ): Float64Array {
     const { order, half } = cells.form;
     const columns = half + 1;
-    const along = new Float64Array(2 * (order + 1) * (reach + 1) * columns);
+    const along = this.clearedScratch(2 * (order + 1) * (reach + 1) * columns);
     for (let start = 0; start < cells.count; ) {
       const iu = cells.iu[start]!;
       let end = start;
@@ -81,6 +82,13 @@ export class BeamTransform {
       start = end;
     }
     return along;
+  }
+
+  /** Megabytes that every beam of a size needs again. */
+  private clearedScratch(length: number): Float64Array {
+    if (this.scratch.length < length) this.scratch = new Float64Array(length);
+    else this.scratch.fill(0, 0, length);
+    return this.scratch;
   }
 
   /** Two moments of one column at once, as the real and the imaginary part. */

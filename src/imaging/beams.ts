@@ -20,9 +20,14 @@ const LARGEST_SIZE = 2048;
 const LEAST_SIZE = 64;
 /** Samples a period of the finest fringe: 4 where they are cheap, never below 2 (Nyquist). */
 const FINE_SAMPLING = 4;
-const COARSE_SAMPLING = 2.2;
-/** Tracks of many integrations fill so many cells that fewer moments of each give the same beam. */
-const MANY_TRACK_CELLS = 5000;
+const COARSE_SAMPLING = 2.05;
+/** By samples (rows x channels): many fill so many cells that fewer moments of each give the same beam. */
+const ORDERS = [
+  { samples: 2e4, order: 5 },
+  { samples: 1e6, order: 4 },
+  { samples: 3e7, order: 3 },
+] as const;
+const LEAST_ORDER = 2;
 const PICTURE_PIXELS = 161;
 const PICTURE_PIXELS_PER_BEAM = 5;
 
@@ -41,11 +46,17 @@ export function gridFormOf(sampling: Sampling, plan: Plan, noiseBound: number): 
   return {
     field: whole > MOST_HALF ? (MOST_HALF - 2) / extent : wanted,
     half,
-    order: sampling.survey.tracks.cells > MANY_TRACK_CELLS ? 4 : 5,
+    order: orderFor(sampling),
     // The sums of the survey are of 32-bit floats.
     weightBound: sampling.totalWeight * 1.01,
     noiseBound,
   };
+}
+
+function orderFor({ survey }: Sampling): number {
+  const { subbands, channels } = survey.dataset.shape;
+  const samples = survey.totals.rows * subbands * channels;
+  return ORDERS.find((limit) => samples < limit.samples)?.order ?? LEAST_ORDER;
 }
 
 /** Beams of one grid form; keeps the transform's tables. */

@@ -30,6 +30,21 @@ export interface GriddedImage {
   /** every usable sample */
   readonly cells: FilledCells;
   readonly maker: BeamMaker;
+  /** what selections are taken from, with its beam; made when the first cost is asked for */
+  readonly whole: { current: Whole | null };
+}
+
+interface Whole {
+  readonly cells: FilledCells;
+  readonly beam: MadeBeam;
+}
+
+function wholeOf({ whole, cells, maker, plan }: GriddedImage): Whole {
+  if (whole.current === null) {
+    const few = truncated(cells, Math.min(SELECTION_ORDER, cells.form.order));
+    whole.current = { cells: few, beam: maker.make(few, plan.weighting.value) };
+  }
+  return whole.current;
 }
 
 /** Selections gridded together hold no more than this. */
@@ -59,11 +74,10 @@ export async function costsOf(
   selections: readonly Selection[],
 ): Promise<SelectionCost[]> {
   if (selections.length === 0) return [];
-  const { cells, maker, plan, gridded } = image;
+  const { maker, plan, gridded } = image;
   const weighting = plan.weighting.value;
-  const few = truncated(cells, SELECTION_ORDER);
-  const before = maker.make(few, weighting);
-  const all = sumOf(cells.weight, cells.count);
+  const { cells: few, beam: before } = wholeOf(image);
+  const all = sumOf(few.weight, few.count);
   const gapBefore = largestGap(gridded.coverage, plan);
   const costs: SelectionCost[] = [];
   await eachSelection(image, selections, (index, taken, lost) => {

@@ -67,6 +67,7 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
     gridded,
     cells,
     maker,
+    whole: { current: null },
   };
   const weightings = compared(plan.weighting.value).map(
     (weighting): NamedBeam => ({

@@ -83,7 +83,9 @@ export class MomentGrid {
   private placeOf = new Int32Array(1024);
   private sums: Float64Array;
   private places = 0;
-  private readonly alongU: Float64Array;
+  private readonly field: number;
+  private readonly half: number;
+  private readonly order: number;
   private readonly alongV: Float64Array;
   private readonly roundWeight: number;
   private readonly roundNoise: number;
@@ -96,7 +98,9 @@ export class MomentGrid {
     this.moments = momentCount(form.order);
     this.stride = this.moments + 1;
     this.sums = new Float64Array(256 * this.stride);
-    this.alongU = new Float64Array(form.order + 1);
+    this.field = form.field;
+    this.half = form.half;
+    this.order = form.order;
     this.alongV = new Float64Array(form.order + 1);
     this.roundWeight = rounder(form.weightBound);
     this.roundNoise = rounder(form.noiseBound);
@@ -108,7 +112,7 @@ export class MomentGrid {
    * @param noise weight^2 x variance of the sample, or 0 where unknown
    */
   add(u: number, v: number, weight: number, noise: number): void {
-    const { field, half, order } = this.form;
+    const { field, half, order } = this;
     let x = u * field;
     let y = v * field;
     if (x < 0 || (x === 0 && y < 0)) {
@@ -128,16 +132,22 @@ export class MomentGrid {
       return;
     }
     let at = this.place(this.index.slot(iu, iv));
-    const { alongU, alongV, sums, roundWeight } = this;
-    fillLegendre(2 * (x - iu), order, alongU);
+    const { alongV, sums, roundWeight } = this;
     fillLegendre(2 * (y - iv), order, alongV);
+    const t = 2 * (x - iu);
+    // P_a(t) by its recurrence, from P_0 and P_-1.
+    let part = weight;
+    let before = 0;
     for (let a = 0; a <= order; a++) {
-      const part = weight * alongU[a]!;
-      for (let b = 0; b <= order - a; b++) {
+      const last = order - a;
+      for (let b = 0; b <= last; b++) {
         // Adding a large number and taking it away rounds to its last place.
         sums[at]! += part * alongV[b]! + roundWeight - roundWeight;
         at += 1;
       }
+      const next = ((2 * a + 1) * t * part - a * before) / (a + 1);
+      before = part;
+      part = next;
     }
     sums[at]! += noise + this.roundNoise - this.roundNoise;
   }

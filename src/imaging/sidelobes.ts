@@ -59,12 +59,18 @@ export function findSidelobes(
       candidate,
       (column, row) => interpolatedPixel(beam, column, row),
       beam.reach - KERNEL,
+      0.5,
     );
     if (Math.abs(closer.value) > Math.abs(best.value)) best = closer;
   }
   if (best.value !== 0) {
     const start = { ...best, value: exact(best.column * beam.cell, best.row * beam.cell) };
-    best = climb(start, (column, row) => exact(column * beam.cell, row * beam.cell), beam.reach - KERNEL);
+    best = climb(
+      start,
+      (column, row) => exact(column * beam.cell, row * beam.cell),
+      beam.reach - KERNEL,
+      0.2,
+    );
   }
   return {
     peak: best.value,
@@ -118,11 +124,17 @@ interface Extremum {
 /**
  * From a place near an extremum to its top, by parabolas through its neighbours.
  * @param reach pixels from the centre beyond which nothing is asked
+ * @param firstStep pixels to the neighbours, halved until it is a tenth
  */
-function climb(start: Extremum, at: (column: number, row: number) => number, reach: number): Extremum {
+function climb(
+  start: Extremum,
+  at: (column: number, row: number) => number,
+  reach: number,
+  firstStep: number,
+): Extremum {
   const sign = Math.sign(start.value);
   let best = start;
-  for (let step = 0.5; step > 0.1; step /= 2) {
+  for (let step = firstStep; step > 0.1; step /= 2) {
     const { column, row } = best;
     if (Math.max(Math.abs(column), Math.abs(row)) + 2 * step > reach) break;
     const centre = sign * best.value;

@@ -19,10 +19,10 @@ function scattered(count: number, seed: number, extent: number): Samples {
   return { u: of(extent), v: of(extent), weight: Array.from({ length: count }, () => 0.5 + random()) };
 }
 
-function gridded(samples: Samples, field: number, extent: number): FilledCells {
+function gridded(samples: Samples, field: number, extent: number, order = 5): FilledCells {
   const total = samples.weight.reduce((sum, weight) => sum + weight, 0);
   const half = Math.ceil(extent * field) + 1;
-  const grid = new MomentGrid({ field, half, order: 5, weightBound: total * 2, noiseBound: total * 2 });
+  const grid = new MomentGrid({ field, half, order, weightBound: total * 2, noiseBound: total * 2 });
   for (const [k, u] of samples.u.entries())
     grid.add(u, samples.v[k]!, samples.weight[k]!, samples.weight[k]!);
   expect(grid.outside).toBe(0);
@@ -35,10 +35,11 @@ function worst(
   imaging: number[],
   beam: ReturnType<BeamTransform["beam"]>,
   field: number,
+  steps = 9,
 ): number {
   let largest = 0;
   const edge = Math.floor(field / 2 / beam.cell);
-  const step = Math.max(1, Math.floor(edge / 9));
+  const step = Math.max(1, Math.floor(edge / steps));
   for (let row = -edge; row <= edge; row += step) {
     for (let column = -edge; column <= edge; column += step) {
       if (Math.hypot(row, column) * beam.cell > field / 2) continue;
@@ -73,6 +74,21 @@ describe("BeamTransform", () => {
       const beam = transform.beam(cells, cellFactors(cells, plan), size / 2);
       expect(beamPixel(beam, 0, 0)).toBeCloseTo(1, 12);
       expect(worst(samples, imaging, beam, field)).toBeLessThan(BEAM_TOLERANCE);
+    }
+  });
+
+  it.each([
+    [2, 60_000],
+    [3, 8000],
+  ])("agrees with moments up to order %i where samples are many", (order, count) => {
+    const field = 0.01;
+    const extent = 60 / field;
+    const samples = scattered(count, 11, extent);
+    const cells = gridded(samples, field, extent, order);
+    for (const weighting of ["natural", "uniform"] as const) {
+      const imaging = directWeights(samples, field, weighting);
+      const beam = new BeamTransform(256).beam(cells, cellFactors(cells, { kind: weighting }), 128);
+      expect(worst(samples, imaging, beam, field, 4)).toBeLessThan(BEAM_TOLERANCE);
     }
   });
 });
