@@ -1,7 +1,7 @@
 /** What might be flagged: the cure of each event, and the scope of each row that a rule with `suggests: flag` finds. */
 import { EVERYTHING, type Selection } from "../dataset/selection.ts";
-import { type DetectedEvent, INTERFERENCE_KINDS } from "../detect/event.ts";
-import type { Measure, Measures } from "../measure/table.ts";
+import type { DetectedEvent } from "../detect/event.ts";
+import type { Measures } from "../measure/table.ts";
 import type { Hit, Judged } from "../rules/hit.ts";
 import type { RuleSet } from "../rules/rule.ts";
 import type { Candidate } from "./candidate.ts";
@@ -9,7 +9,6 @@ import { contains } from "./selection-algebra.ts";
 
 /** The measure whose row i is event i. */
 const EVENT_MEASURE = "event";
-const INTERFERENCE: ReadonlySet<string> = INTERFERENCE_KINDS;
 /** Rows of these kinds are no samples that could be dropped. */
 const NO_SAMPLES: ReadonlySet<string> = new Set(["dataset", "event", "gap", "weighting"]);
 /** What a rule finds on a measure is surer the further it goes: common practice, no source. */
@@ -57,28 +56,11 @@ function fromEvents(events: readonly DetectedEvent[], judged: Judged, rules: Rul
 /** By row of the measure of events, the rms that it adds to the image over the thermal noise; null: not known. */
 function excessReader(measures: Measures): (row: number) => number | null {
   const events = measures.get(EVENT_MEASURE);
-  const limits = measures.get("limit");
-  const names = new Set(events?.table.columnNames());
-  const read = (name: string, row: number) =>
-    names.has(name) ? Number(events!.table.get(name, row)) : Number.NaN;
-  const thermal = limits === undefined ? Number.NaN : thermalRange(limits);
+  if (events === undefined || !events.table.columnNames().includes("excess")) return () => null;
   return (row) => {
-    const byRange = thermal / read("dynamic_range", row);
-    if (Number.isFinite(byRange)) return byRange;
-    if (!names.has("kind") || !INTERFERENCE.has(String(events!.table.get("kind", row)))) return null;
-    // n of N samples, each off by s of its noise: s sqrt(n/N).
-    const added = read("size", row) * Math.sqrt(read("outlying_fraction", row) * read("fraction", row));
-    return Number.isFinite(added) ? added : null;
+    const excess = Number(events.table.get("excess", row));
+    return Number.isFinite(excess) ? excess : null;
   };
-}
-
-/** Peak over rms that the thermal noise allows; NaN unknown. */
-function thermalRange(limits: Measure): number {
-  for (let row = 0; row < limits.table.numRows(); row++) {
-    if (limits.table.get("cause", row) === "thermal-noise")
-      return Number(limits.table.get("dynamic_range", row));
-  }
-  return Number.NaN;
 }
 
 function fromHits(hits: readonly Hit[]): Candidate[] {

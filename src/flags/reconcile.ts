@@ -1,5 +1,6 @@
 /** Findings of the data as they are, softened where the suggested flags mend them: by the second judgement, not by word. */
 import { EVERYTHING, type Selection } from "../dataset/selection.ts";
+import { INTERFERENCE_KINDS } from "../detect/event.ts";
 import type { Finding, Verdict } from "../rules/finding.ts";
 import type { Judged } from "../rules/hit.ts";
 import { datasetVerdict, verdictOf } from "../rules/severity.ts";
@@ -12,6 +13,9 @@ export interface Reconciled {
   readonly verdict: Verdict;
 }
 
+/** The rule on the measure of all interference together. */
+const INTERFERENCE_RULE = "interference-share";
+const INTERFERENCE: ReadonlySet<string> = INTERFERENCE_KINDS;
 const ORDER: Readonly<Record<Verdict, number>> = { hold: 0, caution: 1, ready: 2 };
 
 /**
@@ -37,16 +41,30 @@ function reconciled(finding: Finding, after: Judged, flags: readonly FlagEntry[]
   const scope: Selection = { ...EVERYTHING, ...finding.scope };
   const left = severityLeft(finding, scope, after, flags);
   const better = verdictOf(left) !== finding.verdict && left < finding.severity;
-  const linked = flags.filter(
-    (flag) => sameConcern(flag, scope) && (flag.rule === finding.rule || left < finding.severity),
-  );
   return {
     ...finding,
     // What the flags leave is worth a caution even when it is nothing: the flags have to be accepted first.
     verdict: better && finding.verdict === "hold" ? "caution" : finding.verdict,
     mendedByFlags: better,
-    flags: linked.map((flag) => flag.id),
+    flags: linkedFlags(finding, scope, flags, better),
   };
+}
+
+/** The flags that a finding's own rule suggests for its samples; where it suggests none, those that mend it. */
+function linkedFlags(
+  finding: Finding,
+  scope: Selection,
+  flags: readonly FlagEntry[],
+  mended: boolean,
+): string[] {
+  const near = flags.filter((flag) => sameConcern(flag, scope));
+  const own = near.filter(({ rule }) => rule === finding.rule);
+  if (own.length > 0) return own.map(({ id }) => id);
+  if (!mended) return [];
+  // Interference as a whole is mended by the flags of its kinds, whatever else is flagged.
+  const kinds = near.filter(({ rule }) => INTERFERENCE.has(rule));
+  const some = finding.rule === INTERFERENCE_RULE && kinds.length > 0 ? kinds : near;
+  return some.map(({ id }) => id);
 }
 
 /** What the same rule says of the same samples with the flags applied, 0..1. */

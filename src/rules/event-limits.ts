@@ -15,9 +15,15 @@ export const EVENT_LIMIT_COLUMNS: readonly Column[] = [
     meaning: "planned dynamic range over the one that this event alone allows",
   },
   {
+    name: "excess",
+    unit: "fraction",
+    meaning: "rms that it adds to the image, over the thermal noise of the image",
+  },
+  {
     name: "allowed_size",
     unit: "",
-    meaning: "|size| that the planned dynamic range allows, in the event's unit",
+    meaning:
+      "|size| that the planned dynamic range allows, in the event's unit; of interference where the brightness is not known, what adds the thermal noise once more",
   },
   { name: "allowed_error", unit: "fraction", meaning: "error that the planned dynamic range allows" },
   {
@@ -32,23 +38,28 @@ export function withEventLimits(measures: Measures): Measures {
   const events = measures.get(EVENT);
   const limits = measures.get(LIMIT);
   if (events === undefined || limits === undefined) return measures;
-  if (events.table.columnNames().includes("dynamic_range_ratio")) return measures;
-  const ratios = new Array<number>(events.table.numRows()).fill(Number.NaN);
-  const ranges = [...ratios];
-  for (let row = 0; row < limits.table.numRows(); row++) {
-    const event: unknown = limits.table.get("event", row);
-    if (typeof event !== "number" || !(event >= 0 && event < ratios.length)) continue;
-    ranges[event] = Number(limits.table.get("dynamic_range", row));
-    ratios[event] = Number(limits.table.get("ratio", row));
-  }
-  const errors = ratios.map((ratio, row) => Number(events.table.get("error", row)) / ratio);
+  const names = new Set(events.table.columnNames());
+  if (names.has("dynamic_range_ratio")) return measures;
+  const read = (name: string, row: number) =>
+    names.has(name) ? Number(events.table.get(name, row)) : Number.NaN;
+  const { ranges, ratios, thermal } = rangesOf(limits, events.table.numRows());
+  const excess = ranges.map((range, row) => {
+    const byRange = thermal / range;
+    if (!Number.isNaN(byRange) || !INTERFERENCE.has(String(events.table.get("kind", row)))) return byRange;
+    // n of N samples, each with s sigmas of any phase: s/sqrt 2 of its real part, s sqrt(n/2N) of the noise of the mean.
+    return read("size", row) * Math.sqrt((read("outlying_fraction", row) * read("fraction", row)) / 2);
+  });
+  const errors = ratios.map((ratio, row) => read("error", row) / ratio);
   const joined: Measure = {
     ...events,
     columns: [...events.columns, ...EVENT_LIMIT_COLUMNS],
     table: events.table.assign({
       dynamic_range: ranges,
       dynamic_range_ratio: ratios,
-      allowed_size: ratios.map((ratio, row) => allowedSize(events, row, ratio)),
+      excess,
+      allowed_size: ratios.map(
+        (ratio, row) => Math.abs(read("size", row)) / (Number.isNaN(ratio) ? excess[row]! : ratio),
+      ),
       allowed_error: errors,
       allowed_phase_deg: errors.map(phaseOfError),
     }),
@@ -56,12 +67,20 @@ export function withEventLimits(measures: Measures): Measures {
   return new Map([...measures, [EVENT, joined]]);
 }
 
-function allowedSize({ table }: Measure, row: number, ratio: number): number {
-  const read = (name: string) => Number(table.get(name, row));
-  if (!Number.isNaN(ratio) || !INTERFERENCE.has(String(table.get("kind", row))))
-    return Math.abs(read("size")) / ratio;
-  // n of N samples, each off by s of its noise, add s sqrt(n/N) of the thermal noise to the mean of all.
-  return 1 / Math.sqrt(read("outlying_fraction") * read("fraction"));
+/** By event, the dynamic range it allows and the planned one over that; and the one that the thermal noise allows. */
+function rangesOf({ table }: Measure, events: number) {
+  const ranges = new Array<number>(events).fill(Number.NaN);
+  const ratios = [...ranges];
+  let thermal = Number.NaN;
+  for (let row = 0; row < table.numRows(); row++) {
+    const event: unknown = table.get("event", row);
+    const range = Number(table.get("dynamic_range", row));
+    if (table.get("cause", row) === "thermal-noise") thermal = range;
+    if (typeof event !== "number" || !(event >= 0 && event < events)) continue;
+    ranges[event] = range;
+    ratios[event] = Number(table.get("ratio", row));
+  }
+  return { ranges, ratios, thermal };
 }
 
 /** The phase whose error |exp(i phase) - 1| this is, degrees. */

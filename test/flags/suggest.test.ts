@@ -2,6 +2,7 @@ import { describe, expect, it } from "vitest";
 import { flaggedView } from "../../src/dataset/flagged-view.ts";
 import { EVERYTHING, type Selection } from "../../src/dataset/selection.ts";
 import type { DetectedEvent } from "../../src/detect/event.ts";
+import type { FlagEntry } from "../../src/flags/entry.ts";
 import { reconcile } from "../../src/flags/reconcile.ts";
 import { suggestFlags, withCosts } from "../../src/flags/suggest.ts";
 import { judge } from "../../src/rules/judge.ts";
@@ -229,6 +230,22 @@ describe("suggestFlags", () => {
 });
 
 describe("reconcile", () => {
+  const entry: FlagEntry = {
+    ...EVERYTHING,
+    id: "F1",
+    rule: "burst",
+    reason: "x",
+    samples: 1,
+    fraction: 0.1,
+    confidence: 1,
+    cost: {
+      sensitivityLossFraction: 0,
+      beamMajorChangeFraction: 0,
+      beamMinorChangeFraction: 0,
+      peakSidelobeChangeFraction: 0,
+      largestGapChangeFraction: 0,
+    },
+  };
   const events = [
     event({ antennas: [1], subbands: [0] }),
     event({ antennas: [2], subbands: [1] }, { size: 7 }),
@@ -253,6 +270,29 @@ describe("reconcile", () => {
     expect(verdict).toBe("caution");
   });
 
+  it("links a finding that others' flags mend to those, and one that they hardly touch to none", () => {
+    const share = rule({
+      id: "interference-share",
+      measure: "interference",
+      each: "dataset",
+      value: "d.share",
+      limits: "{ caution: 0.1, hold: 0.5 }",
+      consequence: "x",
+    });
+    const of = (value: number) =>
+      judge(ruleSet(share), measures(measure("interference", "dataset", { share: [value] })), PLAN);
+    const flag = (id: string, by: string) => ({ ...entry, id, rule: by });
+    const flags = [flag("F1", "burst"), flag("F2", "phase-jump")];
+    expect(reconcile(of(0.3), of(0), flags).findings[0]).toMatchObject({
+      mendedByFlags: true,
+      flags: ["F1"],
+    });
+    expect(reconcile(of(0.3), of(0.29), flags).findings[0]).toMatchObject({
+      mendedByFlags: false,
+      flags: [],
+    });
+  });
+
   it("leaves a hold that the second judgement still finds", async () => {
     const { flags } = await suggested(events);
     const { findings, verdict } = reconcile(before, judged([events[0]!]), flags);
@@ -270,21 +310,10 @@ describe("reconcile", () => {
       judge(rules, measures(measure("antenna", "antenna", { antenna: [1, 2], flagged })), PLAN);
     const bad = antennas([0.9, 0.9]);
     const flag = {
-      ...EVERYTHING,
+      ...entry,
       antennas: [1],
       id: "F1",
       rule: "made-up",
-      reason: "x",
-      samples: 1,
-      fraction: 0.1,
-      confidence: 1,
-      cost: {
-        sensitivityLossFraction: 0,
-        beamMajorChangeFraction: 0,
-        beamMinorChangeFraction: 0,
-        peakSidelobeChangeFraction: 0,
-        largestGapChangeFraction: 0,
-      },
     };
     const { findings } = reconcile(bad, antennas([Number.NaN, Number.NaN]), [flag]);
     const of = (antenna: number) => findings.find(({ scope }) => scope.antennas?.[0] === antenna);

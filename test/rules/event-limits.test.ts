@@ -43,8 +43,13 @@ describe("withEventLimits", () => {
   });
 
   it("allows interference of unknown effect as much as doubles the noise power", () => {
-    // 4 of 100 samples, each off by s: s sqrt(4/100) = 1.
-    expect(column("allowed_size")[0]).toBeCloseTo(5, 12);
+    // 4 of 100 samples, each off by s in any phase: s sqrt(4/200) = 1.
+    expect(column("allowed_size")[0]).toBeCloseTo(Math.sqrt(50), 12);
+    expect(column("excess")[0]).toBeCloseTo(10 / Math.sqrt(50), 12);
+  });
+
+  it("gives what the thermal noise over the event's share of the rms is", () => {
+    expect(column("excess")[1]).toBeCloseTo(5000 / 250, 12);
   });
 
   it("leaves measures alone that lack one of the two, or have been joined", () => {
@@ -82,8 +87,8 @@ describe("the rules on events", () => {
     expect(of("burst")).toMatchObject({
       verdict: "hold",
       measured: { value: 10, unit: "sigma" },
-      consequence: { value: 2, unit: "fraction" },
+      consequence: { unit: "fraction" },
     });
-    expect(of("burst").limits.caution).toBeCloseTo(1.5, 12);
+    expect(of("burst").limits.caution).toBeCloseTo(0.3 * Math.sqrt(50), 12);
   });
 });
