@@ -5,6 +5,7 @@
  */
 import type { Bandpass } from "./bandpass.ts";
 import type { Plane } from "./plane.ts";
+import { leastPower, misfit, tiltOf, wavePower } from "./waves.ts";
 
 const MOST_SLOPES = 3;
 const TERMS = MOST_SLOPES + 1;
@@ -20,17 +21,13 @@ const TERM_COST = 0.5;
 const SLOPE_COST = 3;
 const POLISH_ROUNDS = 3;
 const FIT_ROUNDS = 2;
-/** Rows of a block in which slopes are sought. */
-const WAVE_ROWS = 16;
 /** Over noise: then nothing more is sought. */
 const ENOUGH = 1.05;
-/** Residuals are clipped at this power while slopes are sought. */
-const CLIP = 9;
-/** Mean of ln(1 + p/2) over exponential p: e^2 E1(2). */
-export const NOISE_COST = 0.36132862;
 
 export class DelayTerms {
-  private slopes: number[] = [];
+  private slopes: readonly number[] = [];
+  /** by first row of a block of the plane at hand */
+  private readonly bySlopes = new Map<number, readonly number[]>();
   /** (terms x columns) */
   private basisReal = new Float64Array(0);
   private basisImag = new Float64Array(0);
@@ -51,7 +48,7 @@ export class DelayTerms {
    *
    * @param noise 2 sigma^2
    * @param steepest radians a column that a source in sight can cause
-   * @returns slopes that describe the block now, 0 when it was left alone
+   * @returns the slopes that describe the block now; none when it was left alone
    */
   improve(
     plane: Plane,
@@ -60,24 +57,15 @@ export class DelayTerms {
     last: number,
     noise: number,
     steepest: number,
-  ): number {
+  ): readonly number[] {
     const before = misfit(plane, first, last, noise);
     const rows = last - first;
     const tilt = tiltOf(plane, bandpass, first, last);
     this.slopes = [];
     const known = this.steepestPower(plane, bandpass, first, last, noise, steepest);
-    if (known === null && wavePower(plane, bandpass, first, last, noise, tilt) < leastPower(rows)) return 0;
-    const refit = (slopes: number[]): number => {
-      this.slopes = slopes;
-      this.fillBasis(bandpass, plane.columns);
-      for (let row = first; row < last; row++) this.fitRow(plane, row, (row - first) * TERMS, noise);
-      return misfit(plane, first, last, noise).cost;
-    };
-    this.save(plane, first, last);
-    if (this.amplitudeReal.length < rows * TERMS) {
-      this.amplitudeReal = new Float64Array(rows * TERMS);
-      this.amplitudeImag = new Float64Array(rows * TERMS);
-    }
+    if (known === null && wavePower(plane, bandpass, first, last, noise, tilt) < leastPower(rows)) return [];
+    const refit = (slopes: readonly number[]) => this.refit(plane, bandpass, first, last, noise, slopes);
+    this.begin(plane, first, last);
     const excess = before.cost - before.floor;
     const search = (base: number): number => {
       let cost = refit([base]);
@@ -109,9 +97,70 @@ export class DelayTerms {
     const spent = TERM_COST * rows * (this.slopes.length - 1) + SLOPE_COST * this.slopes.length;
     if (before.cost - cost < LEAST_EXPLAINED * excess + spent) {
       this.restore(plane, first, last);
-      return 0;
+      return [];
     }
-    return this.slopes.length;
+    this.bySlopes.set(first, this.slopes);
+    return this.slopes;
+  }
+
+  /**
+   * Try the slopes of a neighbouring block, which need explain no more than the amplitudes that they add would of noise.
+   * @returns the slopes that describe the block now; none when it was left alone
+   */
+  adopt(
+    plane: Plane,
+    bandpass: Bandpass,
+    first: number,
+    last: number,
+    noise: number,
+    slopes: readonly number[],
+  ): readonly number[] {
+    const before = misfit(plane, first, last, noise);
+    this.begin(plane, first, last);
+    const refit = (tried: readonly number[]) => this.refit(plane, bandpass, first, last, noise, tried);
+    let cost = refit(slopes);
+    const better = refit(this.polished(plane, first, last));
+    if (better < cost) cost = better;
+    else cost = refit(slopes);
+    if (before.cost - cost < TERM_COST * (last - first) * Math.max(1, slopes.length - 1)) {
+      this.restore(plane, first, last);
+      return [];
+    }
+    this.bySlopes.set(first, this.slopes);
+    return this.slopes;
+  }
+
+  /** Forget the blocks of the plane before. */
+  reset(): void {
+    this.bySlopes.clear();
+  }
+
+  /** Slopes found for the block that begins at a row of the plane at hand. */
+  slopesOf(first: number): readonly number[] {
+    return this.bySlopes.get(first) ?? [];
+  }
+
+  private begin(plane: Plane, first: number, last: number): void {
+    this.save(plane, first, last);
+    const size = (last - first) * TERMS;
+    if (this.amplitudeReal.length >= size) return;
+    this.amplitudeReal = new Float64Array(size);
+    this.amplitudeImag = new Float64Array(size);
+  }
+
+  /** Fit the block with these slopes. @returns its misfit */
+  private refit(
+    plane: Plane,
+    bandpass: Bandpass,
+    first: number,
+    last: number,
+    noise: number,
+    slopes: readonly number[],
+  ): number {
+    this.slopes = slopes;
+    this.fillBasis(bandpass, plane.columns);
+    for (let row = first; row < last; row++) this.fitRow(plane, row, (row - first) * TERMS, noise);
+    return misfit(plane, first, last, noise).cost;
   }
 
   /** The slope whose waves hold most of the residual's power, or null when it is what noise holds. */
@@ -150,14 +199,14 @@ export class DelayTerms {
 
   /** The slopes moved to where the residual says they should be: one step of Gauss and Newton, each by itself. */
   private polished(plane: Plane, first: number, last: number): number[] {
-    const { columns, real, imag, modelReal, modelImag, marks } = plane;
+    const { columns, real, imag, modelReal, modelImag, held } = plane;
     const terms = this.slopes.length;
     const middle = (columns - 1) / 2;
     const along = new Float64Array(terms);
     const norm = new Float64Array(terms);
     for (let row = first; row < last; row++) {
       for (let c = 0, i = row * columns; c < columns; c++, i++) {
-        if (marks[i] !== 0) continue;
+        if (held[i] !== 0) continue;
         const x = real[i]! - modelReal[i]!;
         const y = imag[i]! - modelImag[i]!;
         for (let j = 0; j < terms; j++) {
@@ -197,7 +246,7 @@ export class DelayTerms {
 
   /** All terms to one row, by least squares: plain, then with what sticks out counting less. */
   private fitRow(plane: Plane, row: number, keptAt: number, noise: number): void {
-    const { columns, real, imag, modelReal, modelImag, marks, power } = plane;
+    const { columns, real, imag, modelReal, modelImag, held, power } = plane;
     const { basisReal, basisImag, matrixReal, matrixImag, rightReal, rightImag } = this;
     const terms = this.slopes.length;
     const at = row * columns;
@@ -207,7 +256,7 @@ export class DelayTerms {
       rightReal.fill(0);
       rightImag.fill(0);
       for (let c = 0; c < columns; c++) {
-        if (marks[at + c] !== 0) continue;
+        if (held[at + c] !== 0) continue;
         const weight = round === 0 ? 1 : 1 / (1 + power[at + c]! / (2 * noise));
         for (let j = 0; j < terms; j++) {
           const jr = basisReal[j * columns + c]! * weight;
@@ -305,102 +354,4 @@ export class DelayTerms {
     plane.modelImag.set(this.savedImag.subarray(0, to - from), from);
     plane.power.set(this.savedPower.subarray(0, to - from), from);
   }
-}
-
-/** Power over that of noise that the best of many slopes must have in a block of so many rows. */
-function leastPower(rows: number): number {
-  return 1 + 5 / Math.sqrt(Math.min(rows, WAVE_ROWS));
-}
-
-/** Power of the clipped residual in waves of one slope, over that of noise. */
-function wavePower(
-  plane: Plane,
-  { real: bandReal, imag: bandImag, size }: Bandpass,
-  first: number,
-  last: number,
-  noise: number,
-  slope: number,
-): number {
-  const { columns, real, imag, modelReal, modelImag, marks, power } = plane;
-  const clip = CLIP * noise;
-  const turnReal = Math.cos(slope);
-  const turnImag = Math.sin(slope);
-  let total = 0;
-  let expected = 0;
-  // Many rows tell no more of a slope than some of them.
-  const step = Math.max(1, Math.floor((last - first) / WAVE_ROWS));
-  for (let row = first; row < last; row += step) {
-    let re = 0;
-    let im = 0;
-    let waveReal = 1;
-    let waveImag = 0;
-    for (let c = 0, i = row * columns; c < columns; c++, i++) {
-      if (marks[i] === 0) {
-        const scale = power[i]! > clip ? Math.sqrt(clip / power[i]!) : 1;
-        const x = (real[i]! - modelReal[i]!) * scale;
-        const y = (imag[i]! - modelImag[i]!) * scale;
-        const br = bandReal[c]! * waveReal - bandImag[c]! * waveImag;
-        const bi = bandReal[c]! * waveImag + bandImag[c]! * waveReal;
-        re += br * x + bi * y;
-        im += br * y - bi * x;
-        expected += size[c]!;
-      }
-      const next = waveReal * turnReal - waveImag * turnImag;
-      waveImag = waveReal * turnImag + waveImag * turnReal;
-      waveReal = next;
-    }
-    total += re * re + im * im;
-  }
-  return total / (expected * noise);
-}
-
-/** Mean step of phase from channel to channel over the shape of the band, radians. */
-function tiltOf(
-  { columns, real, imag, marks }: Plane,
-  { real: br, imag: bi }: Bandpass,
-  first: number,
-  last: number,
-): number {
-  let re = 0;
-  let im = 0;
-  for (let row = first; row < last; row++) {
-    let beforeRe = 0;
-    let beforeIm = 0;
-    for (let c = 0, i = row * columns; c < columns; c++, i++) {
-      const good = marks[i] === 0;
-      const x = good ? br[c]! * real[i]! + bi[c]! * imag[i]! : 0;
-      const y = good ? br[c]! * imag[i]! - bi[c]! * real[i]! : 0;
-      re += x * beforeRe + y * beforeIm;
-      im += y * beforeRe - x * beforeIm;
-      beforeRe = x;
-      beforeIm = y;
-    }
-  }
-  return Math.atan2(im, re);
-}
-
-/**
- * How badly rows [first, last) are described: the sum of ln(1 + p/2) of their powers over noise, which goes on falling as
- * a bad fit gets better but does not let one outlier decide; and what noise alone would give.
- */
-export function misfit(
-  { columns, marks, power }: Plane,
-  first: number,
-  last: number,
-  noise: number,
-): { cost: number; floor: number } {
-  const scale = 0.5 / noise;
-  let samples = 0;
-  // One logarithm for a run of samples: their product stays far from the largest double.
-  let cost = 0;
-  let product = 1;
-  for (let i = first * columns; i < last * columns; i++) {
-    if (marks[i] !== 0) continue;
-    product *= 1 + power[i]! * scale;
-    samples += 1;
-    if (product < 1e150) continue;
-    cost += Math.log(product);
-    product = 1;
-  }
-  return { cost: cost + Math.log(product), floor: NOISE_COST * samples };
 }

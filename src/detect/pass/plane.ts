@@ -10,6 +10,8 @@ export class Plane {
   imag = new Float32Array(0);
   /** 0 a sample, 1 marked as outlying, 2 no sample */
   marks = new Uint8Array(0);
+  /** 0 where a sample tells the background, else not */
+  held = new Uint8Array(0);
   /** |V - background|^2, then over its noise, then as normal score */
   power = new Float32Array(0);
   /** the background */
@@ -26,6 +28,7 @@ export class Plane {
       this.real = new Float32Array(size);
       this.imag = new Float32Array(size);
       this.marks = new Uint8Array(size);
+      this.held = new Uint8Array(size);
       this.power = new Float32Array(size);
       this.modelReal = new Float32Array(size);
       this.modelImag = new Float32Array(size);
@@ -36,7 +39,7 @@ export class Plane {
   /** Take a run's samples of one band and polarization out of the tile. */
   take(tile: Tile, run: RowRun, band: Band, polarization: number, polarizations: number): void {
     this.resize(run.rows, band.columns);
-    const { real, imag, marks, usable, columns } = this;
+    const { real, imag, marks, held, usable, columns } = this;
     for (let row = 0; row < run.rows; row++) {
       let from = tile.order[run.first + row]! * tile.rowSamples + band.first * polarizations + polarization;
       const start = row * columns;
@@ -46,6 +49,7 @@ export class Plane {
         imag[i] = tile.imag[from]!;
         const mark = tile.missing[from]!;
         marks[i] = mark;
+        held[i] = mark;
         if (mark === 0) count += 1;
       }
       usable[row] = count;
