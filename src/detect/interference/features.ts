@@ -27,8 +27,17 @@ export interface Feature {
  * all of them alike.
  */
 const LEAST_ELEVATED = 0.12;
-const LEAST_ELEVATED_OF_SHORT = 0.25;
-const LEAST_ELEVATED_OF_SOME = 0.35;
+const LEAST_ELEVATED_OF_SHORT = 0.16;
+const LEAST_ELEVATED_OF_ANTENNA = 0.35;
+/** A few baselines alone: nearly everything must stand out, in few pieces, as it does in interference and not in misfits. */
+const LEAST_ELEVATED_OF_LISTED = 0.9;
+const MOST_PIECES_OF_LISTED = 4;
+const LEAST: Readonly<Record<Who["kind"], number>> = {
+  all: LEAST_ELEVATED,
+  short: LEAST_ELEVATED_OF_SHORT,
+  antenna: LEAST_ELEVATED_OF_ANTENNA,
+  listed: LEAST_ELEVATED_OF_LISTED,
+};
 /** A feature must be this sure, sigmas. */
 const LEAST_SIGNIFICANCE = 7;
 const LEAST_SIGNIFICANCE_OF_SOME = 12;
@@ -113,6 +122,8 @@ export function featuresOfBaselines(grid: Grid, band: Band): Feature[] {
       const { usable, outlying, bright } = feature.counts;
       const sure =
         feature.significance > ALONE_SIGNIFICANCE &&
+        feature.counts.elevated >= LEAST_ELEVATED_OF_LISTED * usable &&
+        rectangles.length <= MOST_PIECES_OF_LISTED &&
         outlying >= ALONE_SAMPLES &&
         outlying >= ALONE_OUTLYING * usable &&
         bright >= ALONE_BRIGHT * usable;
@@ -134,12 +145,8 @@ function settle(grid: Grid, band: Band, kind: FeatureKind, rectangles: readonly 
   if (grid.pass.marks === null) return { ...weigh(grid, band, kind, settled, who), significance: Number.NaN };
   const feature = weigh(grid, band, kind, settled, who);
   const { usable, elevated } = feature.counts;
-  const least =
-    who.kind === "all"
-      ? LEAST_ELEVATED
-      : who.kind === "short"
-        ? LEAST_ELEVATED_OF_SHORT
-        : LEAST_ELEVATED_OF_SOME;
+  const least = LEAST[who.kind];
+  if (who.kind === "listed" && settled.length > MOST_PIECES_OF_LISTED) return null;
   if (usable === 0 || elevated < least * usable) return null;
   const sure = who.kind === "all" ? LEAST_SIGNIFICANCE : LEAST_SIGNIFICANCE_OF_SOME;
   return feature.significance < sure ? null : feature;

@@ -54,10 +54,12 @@ export function interferenceOf(
 /** Fewer are what features leave at their edges. */
 const FEWEST_LONE = 10;
 
-/** Bright samples that no feature took. */
-function loneSamples({ pass: { marks }, survey }: Grid): DetectedEvent | null {
+/** Bright samples that no feature took and that stand alone. */
+function loneSamples(grid: Grid): DetectedEvent | null {
+  const { survey } = grid;
+  const { marks } = grid.pass;
   if (marks === null) return null;
-  const count = marks.bright.total();
+  const count = countLone(grid);
   if (count < FEWEST_LONE) return null;
   const usable = marks.usable.total();
   const share = count / usable;
@@ -78,6 +80,30 @@ function loneSamples({ pass: { marks }, survey }: Grid): DetectedEvent | null {
       `background of their baseline, spread over ${survey.baselines.length} baselines`,
     repair: `clip what stands more than ${SINGLE_SCORE} sigma out of each baseline's background`,
   };
+}
+
+/** Bright samples with at most one elevated neighbour of four: more of them tell of a background that does not fit. */
+function countLone({ pass: { marks }, survey, polarizations }: Grid): number {
+  if (marks === null || marks.bright.total() < FEWEST_LONE) return 0;
+  const { tracks, baselines } = survey;
+  const { rowSamples } = marks.bright;
+  let count = 0;
+  for (let b = 0; b < baselines.length; b++) {
+    const [first, end] = [tracks.firstCell[b]!, tracks.firstCell[b + 1]!];
+    for (let cell = first; cell < end; cell++) {
+      for (let sample = 0; sample < rowSamples; sample++) {
+        if (!marks.bright.has(cell, sample)) continue;
+        let near = 0;
+        if (cell > first && marks.elevated.has(cell - 1, sample)) near += 1;
+        if (cell + 1 < end && marks.elevated.has(cell + 1, sample)) near += 1;
+        if (sample >= polarizations && marks.elevated.has(cell, sample - polarizations)) near += 1;
+        const after = sample + polarizations;
+        if (after < rowSamples && marks.elevated.has(cell, after)) near += 1;
+        if (near <= 1) count += 1;
+      }
+    }
+  }
+  return count;
 }
 
 function percent(share: number): string {

@@ -21,6 +21,8 @@ const PRICE_OF_BASELINE = 4;
 /** Most baselines that are named one by one: these, or this share. */
 const MOST_LISTED = 3;
 const LISTED_SHARE = 1 / 12;
+/** No list where the other baselines together gain this too. */
+const GAIN_OF_REST = 10;
 const ROUNDS = 2;
 
 /** Log likelihood of counts with a share of the samples elevated, over that in noise. */
@@ -107,7 +109,7 @@ function baselinesHit(
     Math.min(byShare.length - 1, Math.max(MOST_LISTED, Math.floor(LISTED_SHARE * byShare.length))),
     (n, value) => {
       const worth = value - PRICE_OF_BASELINE * n;
-      if (worth <= best.value) return;
+      if (worth <= best.value || gain(byShare.slice(n)) > GAIN_OF_REST) return;
       consider(
         byShare.slice(0, n).sort((a, b) => a - b),
         worth,
