@@ -7,7 +7,7 @@ import type { LineRange, PlanRequest } from "../dataset/plan-request.ts";
 import { SPEED_OF_LIGHT } from "../geometry/uvw.ts";
 import type { Survey } from "../measure/survey-result.ts";
 import { InputError } from "../util/errors.ts";
-import { formatAngle, formatFlux, formatFrequency, formatLength, formatNumber } from "../util/units.ts";
+import { formatFlux, formatFrequency, formatLength, formatNumber } from "../util/units.ts";
 import type { Plan, PlanValue } from "./plan.ts";
 import { type Sampling, samplingOf } from "./sampling.ts";
 import { brightness, naturalNoise } from "./thermal.ts";
@@ -191,9 +191,4 @@ export function scaleOfSpacing(wavelengths: number): number {
 /** "robust(0.5)", as in plan.yaml. */
 export function weightingName(weighting: Plan["weighting"]["value"]): string {
   return weighting.kind === "robust" ? `robust(${weighting.robust})` : weighting.kind;
-}
-
-/** "30 arcmin (given in the plan)". */
-export function planAngle(value: PlanValue<number>): string {
-  return `${formatAngle(value.value)} (${value.how})`;
 }

@@ -1,13 +1,13 @@
 /**
  * The pass over a dataset's weights that fills uv grids: every usable sample at the (u, v) of its own channel.
  */
-import type { SampleBlock } from "../dataset/dataset.ts";
+import type { Dataset, SampleBlock } from "../dataset/dataset.ts";
 import type { Selection } from "../dataset/selection.ts";
 import { compileSelections } from "../dataset/selection-matcher.ts";
 import type { CoverageTally } from "./coverage-tally.ts";
 import { type CellIndex, type GridForm, MomentGrid } from "./moment-grid.ts";
 import { RowDeposit } from "./row-deposit.ts";
-import { RowWeights } from "./row-weights.ts";
+import { type RowPart, RowWeights } from "./row-weights.ts";
 import type { Sampling } from "./sampling.ts";
 
 /** Moments kept of all the data: beams to 4e-4 of a cell's share at the very edge of the field. */
@@ -96,42 +96,38 @@ export async function gridSelections(
   const form = { ...request.form, order: SELECTION_ORDER };
   const grids = selections.map(() => ({ grid: new MomentGrid(form, index), lost: request.coverage() }));
   const matcher = compileSelections(dataset, selections);
-  const { subbands, channels, polarizations } = dataset.shape;
-  const rowSamples = subbands * channels * polarizations;
-  const taken = new Float32Array(rowSamples);
-  const kept = new Float32Array(rowSamples);
+  const parts = matcher.runs.map((bounds) => partOf(dataset, bounds));
+  const whole = new RowWeights(dataset, sampling.products);
   const row = new RowWeights(dataset, sampling.products);
   const deposit = new RowDeposit(dataset, form.order);
   await eachRow(request, (block, at, rowFrom, levelFrom) => {
     const count = matcher.matchRow(block, at);
+    if (count === 0) return;
+    deposit.place(block, at);
+    whole.fill(block.weight, rowFrom, variance, levelFrom);
     for (let i = 0; i < count; i++) {
       const s = matcher.matched[i]!;
+      const part = parts[s]!;
       const { grid, lost } = grids[s]!;
-      const weights = block.weight.subarray(rowFrom, rowFrom + rowSamples);
-      split(weights, matcher.runs[s]!, taken, kept);
-      deposit.place(block, at);
-      row.fill(taken, 0, variance, levelFrom);
+      row.fillPart(block.weight, rowFrom, variance, levelFrom, part, 1);
       deposit.addTo(grid, row);
       // A row loses what it covered with everything, less what it still covers.
-      row.fill(weights, 0, variance, levelFrom);
-      deposit.cover(lost, row, 1);
-      row.fill(kept, 0, variance, levelFrom);
+      deposit.cover(lost, whole, 1, part.first, part.last);
+      row.fillPart(block.weight, rowFrom, variance, levelFrom, part, 0);
       deposit.cover(lost, row, -1);
     }
   });
   return grids;
 }
 
-/** The weights of a row inside and outside the [start, end) pairs of `bounds`. */
-function split(weights: Float32Array, bounds: Int32Array, taken: Float32Array, kept: Float32Array): void {
-  taken.fill(0);
-  kept.set(weights);
-  for (let b = 0; b < bounds.length; b += 2) {
-    const start = bounds[b]!;
-    const end = bounds[b + 1]!;
-    taken.set(weights.subarray(start, end), start);
-    kept.fill(0, start, end);
-  }
+/** @param bounds [start, end) pairs of sample offsets in a row */
+function partOf(dataset: Dataset, bounds: Int32Array): RowPart {
+  const { subbands, channels, polarizations } = dataset.shape;
+  const mask = new Uint8Array(subbands * channels * polarizations);
+  for (let b = 0; b < bounds.length; b += 2) mask.fill(1, bounds[b]!, bounds[b + 1]!);
+  const subband = (sample: number) => Math.floor(sample / (channels * polarizations));
+  if (bounds.length === 0) return { mask, first: 0, last: 0 };
+  return { mask, first: subband(bounds[0]!), last: subband(bounds.at(-1)! - 1) + 1 };
 }
 
 /** Visit the rows of the image with the offsets of their samples in the block and in the levels. */

@@ -118,16 +118,12 @@ const NO_ERROR: EventError = { size: 0, coherent: true, what: "" };
 function errorOf(event: DetectedEvent, level: SourceLevel): EventError {
   const size = Math.abs(event.size);
   switch (event.kind) {
-    case "phase-jump":
     case "closure":
-    case "half-turn": {
-      const degrees = event.kind === "half-turn" ? 180 : size;
-      return {
-        size: 2 * Math.abs(Math.sin((degrees * Math.PI) / 360)),
-        coherent: true,
-        what: `a phase error of ${formatNumber(degrees)} degrees`,
-      };
-    }
+      return event.unit === "ratio" ? amplitudeError(event.size) : phaseError(size);
+    case "phase-jump":
+      return phaseError(size);
+    case "half-turn":
+      return phaseError(180);
     case "phase-noise":
       return {
         size: Math.min((size * Math.PI) / 180, Math.SQRT2),
@@ -142,10 +138,21 @@ function errorOf(event: DetectedEvent, level: SourceLevel): EventError {
     case "weak-antenna":
     case "hand-off":
       return amplitudeError(event.size);
-    case "silent-antenna":
+    case "silent-antenna": {
+      // What is left of the source, where it says so.
+      const lost = event.unit === "ratio" ? Math.abs(1 - Math.min(size, 1)) : 1;
+      return { size: lost, coherent: true, what: `${formatPercent(lost)} of the source missing` };
+    }
     case "stuck-zeros":
-    case "dropout":
       return { size: 1, coherent: true, what: "samples without the source" };
+    case "dropout": {
+      const share = event.unit === "fraction" ? Math.min(size, 1) : 1;
+      return {
+        size: share,
+        coherent: true,
+        what: `the source missing for ${formatPercent(share)} of the time`,
+      };
+    }
     case "persistent-line":
     case "burst":
     case "drifting-line":
@@ -160,6 +167,15 @@ function errorOf(event: DetectedEvent, level: SourceLevel): EventError {
       // Noise, weights and polarization of the cross hands leave a point source where it is.
       return NO_ERROR;
   }
+}
+
+/** The same phase on all samples, of any size: |exp(i phase) - 1|. */
+function phaseError(degrees: number): EventError {
+  return {
+    size: 2 * Math.abs(Math.sin((degrees * Math.PI) / 360)),
+    coherent: true,
+    what: `a phase error of ${formatNumber(degrees)} degrees`,
+  };
 }
 
 /** A gain of `ratio` times the others'. */

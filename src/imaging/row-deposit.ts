@@ -6,7 +6,6 @@ import type { RowWeights } from "./row-weights.ts";
 import { fillNodeWeights, lagrangeCoefficients } from "./run-nodes.ts";
 
 export class RowDeposit {
-  private readonly subbands: number;
   private readonly channels: number;
   /** by setup: (subbands x channels) Hz, and its natural log */
   private readonly frequencies: readonly Float64Array[];
@@ -20,7 +19,6 @@ export class RowDeposit {
   private setup = 0;
 
   constructor(dataset: Dataset, order: number) {
-    this.subbands = dataset.shape.subbands;
     this.channels = dataset.shape.channels;
     this.frequencies = dataset.setups.map((setup) => setup.frequencies);
     this.logs = this.frequencies.map((frequencies) => frequencies.map(Math.log));
@@ -37,13 +35,13 @@ export class RowDeposit {
     this.setup = block.setup[row]!;
   }
 
-  /** Count (or with -1 take out) what the row covers. */
-  cover(coverage: CoverageTally, row: RowWeights, count: 1 | -1): void {
+  /** Count (or with -1 take out) what the row covers in the sub-bands that were filled. */
+  cover(coverage: CoverageTally, row: RowWeights, count: 1 | -1, first = row.first, last = row.last): void {
     const { channels } = this;
     const radius = Math.log(Math.hypot(this.u, this.v));
     const direction = Math.atan2(this.u, this.v);
     const logs = this.logs[this.setup]!;
-    for (let s = 0; s < this.subbands; s++) {
+    for (let s = first; s < last; s++) {
       let low = Number.POSITIVE_INFINITY;
       let high = Number.NEGATIVE_INFINITY;
       for (let c = s * channels; c < (s + 1) * channels; c++) {
@@ -59,7 +57,7 @@ export class RowDeposit {
     const { u, v, channels, nodes } = this;
     const frequencies = this.frequencies[this.setup]!;
     const reach = Math.max(Math.abs(u), Math.abs(v)) * grid.form.field;
-    for (let s = 0; s < this.subbands; s++) {
+    for (let s = row.first; s < row.last; s++) {
       const first = s * channels;
       const step = channels > 1 ? Math.abs(frequencies[first + 1]! - frequencies[first]!) : 0;
       // Gathering pays where a cell holds more channels than a run becomes points.

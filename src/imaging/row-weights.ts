@@ -1,12 +1,26 @@
 /** The weights and noise of one row of a dataset, the products of an image added. */
 import type { Dataset } from "../dataset/dataset.ts";
 
-/** (subbands x channels) each; 0 where nothing is usable. */
+/** Which samples of a row count. */
+export interface RowPart {
+  /** (samples of a row) 1 for those that count */
+  readonly mask: Uint8Array;
+  /** sub-bands that hold any: first, and one past the last */
+  readonly first: number;
+  readonly last: number;
+}
+
+/** (subbands x channels) each; 0 where nothing is usable or counts. Outside the part's sub-bands they are stale. */
 export class RowWeights {
   readonly weight: Float64Array;
   readonly noise: Float64Array;
+  /** sub-bands that were filled last */
+  first = 0;
+  last = 0;
   private readonly products: Int32Array;
   private readonly polarizations: number;
+  private readonly channels: number;
+  private readonly subbands: number;
 
   constructor(dataset: Dataset, products: Int32Array) {
     const { subbands, channels, polarizations } = dataset.shape;
@@ -14,10 +28,14 @@ export class RowWeights {
     this.noise = new Float64Array(subbands * channels);
     this.products = products;
     this.polarizations = polarizations;
+    this.channels = channels;
+    this.subbands = subbands;
   }
 
   /** @param from,varianceFrom first sample of the row in `weights` and of the baseline in `variance` */
   fill(weights: Float32Array, from: number, variance: Float64Array, varianceFrom: number): void {
+    this.first = 0;
+    this.last = this.subbands;
     const { products, polarizations, weight, noise } = this;
     for (let c = 0; c < weight.length; c++) {
       let sum = 0;
@@ -26,6 +44,33 @@ export class RowWeights {
         const offset = c * polarizations + products[i]!;
         const value = weights[from + offset]!;
         if (!(value > 0 && value < Number.POSITIVE_INFINITY)) continue;
+        sum += value;
+        noiseSum += value * variance[varianceFrom + offset]!;
+      }
+      weight[c] = sum;
+      noise[c] = noiseSum;
+    }
+  }
+
+  /** The same for the samples of a part, or, with `inside` 0, for the others in the part's sub-bands. */
+  fillPart(
+    weights: Float32Array,
+    from: number,
+    variance: Float64Array,
+    varianceFrom: number,
+    part: RowPart,
+    inside: 0 | 1,
+  ): void {
+    this.first = part.first;
+    this.last = part.last;
+    const { products, polarizations, weight, noise } = this;
+    for (let c = part.first * this.channels; c < part.last * this.channels; c++) {
+      let sum = 0;
+      let noiseSum = 0;
+      for (let i = 0; i < products.length; i++) {
+        const offset = c * polarizations + products[i]!;
+        const value = weights[from + offset]!;
+        if (part.mask[offset] !== inside || !(value > 0 && value < Number.POSITIVE_INFINITY)) continue;
         sum += value;
         noiseSum += value * variance[varianceFrom + offset]!;
       }
