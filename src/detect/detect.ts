@@ -2,15 +2,21 @@
 import type { Selection } from "../dataset/selection.ts";
 import type { Survey } from "../measure/survey-result.ts";
 import type { DetectedEvent, EventKind } from "./event.ts";
-import { detectInterference } from "./interference/interference.ts";
+import { interferenceOf } from "./interference/interference.ts";
+import { secondPass } from "./pass/second-pass.ts";
 import type { DetectRequest } from "./request.ts";
 import { withoutShadows } from "./secondary.ts";
 import { antennaFaults } from "./tracks/antenna-faults.ts";
 
 /** Most significant first. @throws InputError where the dataset turns out to be malformed */
 export async function detect(survey: Survey, request: DetectRequest): Promise<DetectedEvent[]> {
-  const antennas = withoutShadows(antennaFaults(survey, request), survey.integration);
-  const interference = await detectInterference(survey, request, antennas.flatMap(explainedBy));
+  if (survey.tracks.cells === 0) return [];
+  // The pass over the samples first: interference must not turn an antenna's phase.
+  const pass = await secondPass(survey, request.onProgress);
+  // Too few channels for a background leave nothing to put in place of what stands out.
+  const cleaned = pass.bands.length === 0 ? null : pass.clean;
+  const antennas = withoutShadows(antennaFaults(survey, request, cleaned), survey.integration);
+  const interference = interferenceOf(survey, pass, request, antennas.flatMap(explainedBy));
   return inOrder(withoutShadows([...antennas, ...interference], survey.integration));
 }
 

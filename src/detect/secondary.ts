@@ -42,7 +42,7 @@ const SHADOWS: Partial<Record<EventKind, readonly EventKind[]>> = {
     "weight-mismatch",
   ],
   noisy: ["weight-mismatch"],
-  "gain-step": ["weight-mismatch", "weak-antenna", "closure"],
+  "gain-step": ["noisy", "weight-mismatch", "weak-antenna", "closure"],
   "phase-jump": ["closure"],
   "half-turn": ["closure"],
   "phase-noise": ["gain-step", "closure", "phase-jump"],

@@ -5,7 +5,7 @@ import type { DetectRequest } from "../request.ts";
 import { closureFaults } from "./closure.ts";
 import { delaySlopes } from "./delays.ts";
 import { gainSteps } from "./gain-steps.ts";
-import { type Grid, gridOf } from "./grid.ts";
+import { type Cleaned, type Grid, gridOf } from "./grid.ts";
 import { exchangedHands, takeOutAntennas } from "./hands.ts";
 import { phaseJumps } from "./phase-jumps.ts";
 import { phaseNoise } from "./phase-noise.ts";
@@ -13,8 +13,13 @@ import { silences } from "./silent.ts";
 import { noisyAntennas, weakAntennas, weightMismatches } from "./static-faults.ts";
 import { stuckZeros } from "./stuck-zeros.ts";
 
-export function antennaFaults(survey: Survey, request: DetectRequest): DetectedEvent[] {
-  const grid = gridOf(survey);
+/** @param cleaned channel averages without interference, where they are there */
+export function antennaFaults(
+  survey: Survey,
+  request: DetectRequest,
+  cleaned: Cleaned | null = null,
+): DetectedEvent[] {
+  const grid = gridOf(survey, cleaned);
   if (grid.antennas.length === 0) return [];
   const zeros = stuckZeros(grid);
   if (grid.planes.length === 0) return zeros;

@@ -53,7 +53,18 @@ export interface Segment {
 /** Integration centres closer than this are the same: the time of a row is written to a few milliseconds. */
 const SAME_TIME = 0.02 / SECONDS_PER_DAY;
 
-export function gridOf(survey: Survey): Grid {
+/** Channel averages without interference, (cells x subbands x polarizations); NaN where the survey's own are to stand. */
+export interface Cleaned {
+  readonly real: Float32Array;
+  readonly imag: Float32Array;
+  /** mean over channels of V(c+1) V*(c) */
+  readonly slopeReal: Float32Array;
+  readonly slopeImag: Float32Array;
+  /** samples that the mean rests on */
+  readonly count: Float32Array;
+}
+
+export function gridOf(survey: Survey, cleaned: Cleaned | null = null): Grid {
   const { tracks, baselines } = survey;
   const times = timesOf(survey);
   const cellOf = new Int32Array(times.length * baselines.length).fill(-1);
@@ -73,7 +84,11 @@ export function gridOf(survey: Survey): Grid {
     touching[second[b]!]!.push(b);
   }
   const bare = { survey, times, baselines: baselines.length, cellOf, antennas, first, second, touching };
-  return { ...bare, segments: segmentsOf(survey, times, cellOf), planes: planesOf(survey, times, cellOf) };
+  return {
+    ...bare,
+    segments: segmentsOf(survey, times, cellOf),
+    planes: planesOf(survey, cleaned, times, cellOf),
+  };
 }
 
 function timesOf({ tracks }: Survey): Float64Array {
@@ -120,7 +135,7 @@ function segmentsOf({ tracks, baselines }: Survey, times: Float64Array, cellOf: 
   return segments;
 }
 
-function planesOf(survey: Survey, times: Float64Array, cellOf: Int32Array): Plane[] {
+function planesOf(survey: Survey, cleaned: Cleaned | null, times: Float64Array, cellOf: Int32Array): Plane[] {
   const { dataset, baselines } = survey;
   const { subbands, polarizations } = dataset.shape;
   const parallel = parallelProducts(dataset.polarizations);
@@ -128,7 +143,7 @@ function planesOf(survey: Survey, times: Float64Array, cellOf: Int32Array): Plan
   for (let subband = 0; subband < subbands; subband++) {
     for (let product = 0; product < polarizations; product++) {
       if (!parallel[product]) continue;
-      const plane = planeOf(survey, times.length * baselines.length, cellOf, subband, product);
+      const plane = planeOf(survey, cleaned, times.length * baselines.length, cellOf, subband, product);
       if (plane !== null) planes.push(plane);
     }
   }
@@ -138,6 +153,7 @@ function planesOf(survey: Survey, times: Float64Array, cellOf: Int32Array): Plan
 /** @returns null where nothing is usable */
 export function planeOf(
   survey: Survey,
+  cleaned: Cleaned | null,
   size: number,
   cellOf: Int32Array,
   subband: number,
@@ -169,6 +185,17 @@ export function planeOf(
     any = true;
     const own = sigma[i % baselines.length]!;
     const noise = own > 0 ? own : typical;
+    const count = cleaned?.count[at] ?? 0;
+    if (cleaned !== null && count > 0 && Number.isFinite(cleaned.real[at]! + cleaned.imag[at]!)) {
+      const pairs = Math.max(0, count - 1);
+      plane.real[i] = cleaned.real[at]!;
+      plane.imag[i] = cleaned.imag[at]!;
+      plane.variance[i] = (noise * noise) / count;
+      plane.slopeReal[i] = cleaned.slopeReal[at]! * pairs;
+      plane.slopeImag[i] = cleaned.slopeImag[at]! * pairs;
+      plane.usable[i] = Math.round(count);
+      continue;
+    }
     plane.real[i] = tracks.real[at]!;
     plane.imag[i] = tracks.imag[at]!;
     plane.variance[i] = (noise * noise) / usable;

@@ -13,7 +13,7 @@ export function exchangedHands(grid: Grid): { events: DetectedEvent[]; antennas:
   for (let subband = 0; subband < survey.dataset.shape.subbands; subband++) {
     for (const [product, name] of names.entries()) {
       if (!CROSS.has(name)) continue;
-      const plane = planeOf(survey, grid.cellOf.length, grid.cellOf, subband, product);
+      const plane = planeOf(survey, null, grid.cellOf.length, grid.cellOf, subband, product);
       if (plane !== null) crossed.push(plane);
     }
   }

@@ -28,6 +28,9 @@ export interface AntennaLevel {
   /** expected power over its error by noise */
   readonly expected: number;
   readonly stretches: number;
+  /** share of the stretches without signal, and the baselines they are on */
+  readonly silent: number;
+  readonly baselines: number;
 }
 
 const COHERENT = 8;
@@ -55,7 +58,8 @@ function levelOf(
   const touches = ({ baseline }: Point, a: number) =>
     grid.first[baseline] === a || grid.second[baseline] === a;
   const ratios: number[] = [];
-  let [power, expected, variance] = [0, 0, 0];
+  let [power, expected, variance, silent] = [0, 0, 0, 0];
+  const told = new Set<number>();
   for (const points of planes) {
     const own = points.filter(
       (point) => touches(point, antenna) && !ignoredBut(grid, point, ignore, antenna),
@@ -75,6 +79,8 @@ function levelOf(
       power += point.power;
       expected += likely;
       variance += point.error ** 2;
+      if (point.power < Math.max(0.05 * likely, 4 * point.error)) silent += 1;
+      told.add(point.baseline);
       ratios.push(Math.log(Math.max(point.power, point.error * 0.1) / likely) / 2);
     }
   }
@@ -87,6 +93,8 @@ function levelOf(
     below: ratios.filter((ratio) => ratio < 0).length / Math.max(1, ratios.length),
     expected: error > 0 ? expected / error : 0,
     stretches: ratios.length,
+    silent: silent / Math.max(1, ratios.length),
+    baselines: told.size,
   };
 }
 

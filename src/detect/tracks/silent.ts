@@ -8,10 +8,11 @@ import { type AntennaLevel, levelsByAntenna } from "./levels-by-antenna.ts";
 import { clock, makeEvent, samplesOf, spanOf } from "./make-event.ts";
 
 /** Expected power must be this far above its noise. */
-const LEAST_EXPECTED = 8;
+const LEAST_EXPECTED = 20;
 /** An antenna keeps no more than this power when silent. */
 const SILENT_POWER = 0.03;
 const FEWEST_ANTENNAS = 4;
+const FEWEST_BASELINES = 2;
 
 /** One antenna in one polarization, silent over some runs of integrations [start, end). */
 interface Silence {
@@ -40,24 +41,25 @@ export function silences(grid: Grid): DetectedEvent[] {
 function silencesOf(grid: Grid, polarization: Polarization, planes: readonly Plane[]): Silence[] {
   const silent = new Set<number>();
   const found: Silence[] = [];
-  // A silent antenna is no measure for others, so once more without those found.
-  for (let round = 0; round < 3; round++) {
+  // A silent antenna is no measure for others: one after the other, and each without those found.
+  while (2 * (silent.size + 1) < grid.antennas.length) {
     const levels = levelsByAntenna(grid, planes, silent);
     const typical = median(levels.filter((_, a) => !silent.has(a)).map(({ power }) => power));
-    const now = levels
-      .map((level, antenna) => ({ level, antenna }))
-      .filter(({ level, antenna }) => !silent.has(antenna) && isSilent(level, typical));
-    if (now.length === 0 || 2 * (silent.size + now.length) > grid.antennas.length) break;
-    for (const { level, antenna } of now) {
-      silent.add(antenna);
-      found.push({
-        antenna,
-        polarization,
-        runs: [[0, grid.times.length]],
-        power: Math.max(0, level.power),
-        significance: level.expected,
-      });
+    let worst = -1;
+    for (const [a, level] of levels.entries()) {
+      if (silent.has(a) || !isSilent(level, typical)) continue;
+      if (worst < 0 || level.silent * level.expected > levels[worst]!.silent * levels[worst]!.expected)
+        worst = a;
     }
+    if (worst < 0) break;
+    silent.add(worst);
+    found.push({
+      antenna: worst,
+      polarization,
+      runs: [[0, grid.times.length]],
+      power: Math.max(0, levels[worst]!.power),
+      significance: levels[worst]!.expected,
+    });
   }
   return [...found, ...gapsOf(grid, polarization, planes, silent)];
 }
@@ -66,8 +68,9 @@ function isSilent(level: AntennaLevel, typical: number): boolean {
   return (
     level.expected > LEAST_EXPECTED &&
     typical > 0.3 &&
-    level.power < Math.max(SILENT_POWER, 4 * level.powerError) &&
-    level.power < 0.3
+    level.power < Math.max(SILENT_POWER, 3 * level.powerError) &&
+    level.silent > 0.85 &&
+    level.baselines >= FEWEST_BASELINES
   );
 }
 

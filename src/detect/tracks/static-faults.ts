@@ -10,6 +10,8 @@ const FEWEST_ANTENNAS = 4;
 
 /** Gains below this are called weak. */
 const WEAK = 0.7;
+/** Neighbours in the uv plane tell a level no better than this. */
+const LEAST_ERROR = 0.01;
 
 /** @param skip antennas (indices) that another event explains */
 export function weakAntennas(grid: Grid, skip: ReadonlySet<number>): DetectedEvent[] {
@@ -31,7 +33,7 @@ export function weakAntennas(grid: Grid, skip: ReadonlySet<number>): DetectedEve
         const error = Math.max(level.scatter / Math.sqrt(level.stretches / 2), 0.5 * level.powerError);
         const z = -log / Math.max(family, error, 0.03);
         if (z < THRESHOLD || log > Math.log(WEAK) || level.below < 0.9 || level.expected < 8) continue;
-        weak.set(a, { log, error: Math.max(error, family / Math.sqrt(grid.antennas.length)), z });
+        weak.set(a, { log, error: Math.max(error, family, LEAST_ERROR), z });
         more = true;
       }
       if (!more) break;
@@ -43,7 +45,7 @@ export function weakAntennas(grid: Grid, skip: ReadonlySet<number>): DetectedEve
     if (own.length === 0) return [];
     const facts = own.map(({ weak }) => weak.get(a)!);
     const size = Math.exp(median(facts.map(({ log }) => log)));
-    const error = (size * median(facts.map((fact) => fact.error))) / Math.sqrt(facts.length);
+    const error = size * median(facts.map((fact) => fact.error));
     const all = own.length === polarizations.length;
     const hands = own.map(({ polarization }) => polarization);
     return [
