@@ -1,6 +1,7 @@
 import { describe, expect, it } from "vitest";
 import { EVERYTHING } from "../../../src/dataset/selection.ts";
-import { detectInterference } from "../../../src/detect/interference/interference.ts";
+import { detectInterference, interferenceOf } from "../../../src/detect/interference/interference.ts";
+import { secondPass } from "../../../src/detect/pass/second-pass.ts";
 import { surveyDataset } from "../../../src/measure/survey.ts";
 import { CLEAN, FAULTY, TRAPS, withFaults } from "../../support/scenarios.ts";
 import { CONTINUUM, scoreOf } from "./score.ts";
@@ -121,6 +122,40 @@ describe("detectInterference", () => {
     const small = { ...dataset, blocks: (r: Parameters<typeof blocks>[0]) => blocks({ ...r, blockRows: 7 }) };
     const of = async (some: typeof dataset) => detectInterference(await surveyDataset(some), CONTINUUM, []);
     expect(await of(small)).toEqual(await of(dataset));
+  });
+
+  it("finds it by sums over baselines where marks of samples are too many to keep", async () => {
+    const survey = await surveyDataset(FAULTY.burst().dataset);
+    const pass = { ...(await secondPass(survey)), marks: null };
+    const [event, ...others] = interferenceOf(survey, pass, CONTINUUM, []);
+    expect(others).toEqual([]);
+    expect([event!.kind, event!.flag!.channels]).toEqual(["burst", [[3, 9]]]);
+    expect(event!.samples).toBe(6048);
+    expect(event!.significance).toBeGreaterThan(100);
+    expect(event!.evidence).toContain("only sums over all baselines");
+  });
+
+  it("finds nothing by sums over baselines in good data", async () => {
+    const survey = await surveyDataset(CLEAN.circular().dataset);
+    const pass = { ...(await secondPass(survey)), marks: null };
+    expect(interferenceOf(survey, pass, CONTINUUM, [])).toEqual([]);
+  });
+
+  it("names one baseline that alone is hit", async () => {
+    const { events, recall, precision } = await scoreOf(
+      withFaults([
+        {
+          kind: "burst",
+          channels: "3-6",
+          time: ["12min", "14min"],
+          amplitude: "8 sigma",
+          baselines: [[2, 6]],
+        },
+      ]),
+    );
+    expect(events.map(({ cause, flag }) => [cause, flag!.baselines])).toEqual([["baseline", [[2, 6]]]]);
+    expect(recall).toBeGreaterThan(RECALL);
+    expect(precision).toBeGreaterThan(PRECISION);
   });
 
   it("finds nothing where there is one channel", async () => {
