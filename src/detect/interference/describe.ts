@@ -60,25 +60,31 @@ function confidenceOf(significance: number, share: number): number {
 }
 
 function evidenceOf(grid: Grid, feature: Feature, amplitude: number, doubtful: boolean): string {
-  const { counts, who, kind } = feature;
+  const { who, kind } = feature;
   const { polarizations } = grid.survey.dataset;
   const products =
     who.subset.polarizations === null
       ? ""
       : ` in ${polarizations.filter((_, p) => who.subset.polarizations![p] === 1).join(" and ")}`;
-  const shares =
-    feature.amplitude !== undefined
-      ? `; the noise of these integrations is raised by ${(feature.amplitude ** 2 / 2 + 1).toFixed(1)} times in power on most ` +
-        "baselines at once"
-      : counts.usable > 0
-        ? `; ${percent(counts.elevated / counts.usable)} of their ${counts.usable} samples exceed what ` +
-          `${percent(ELEVATED_SHARE)} of noise does`
-        : "; too many samples to keep a mark of each, so that only sums over baselines were looked at";
+  const shares = shareWords(grid, feature);
   const doubt = doubtful ? "; it may be a line of the sky, which this observation looks for" : "";
   const size = amplitude >= 8 ? "8 sigma a sample or more" : `about ${amplitude.toFixed(1)} sigma a sample`;
   return (
     `${channelWords(grid, feature)} ${WORDS[kind]} ${durationWords(grid, feature)} on ${baselineWords(grid, feature)}` +
     `${products}, by ${size}${shares}${doubt}`
+  );
+}
+
+function shareWords(grid: Grid, { counts, raised }: Feature): string {
+  if (raised !== undefined) {
+    return `; the noise of these integrations is raised by ${raised.toFixed(1)} times in power on most baselines at once`;
+  }
+  if (grid.pass.marks === null) {
+    return "; the samples are too many to keep a mark of each, so that only sums over all baselines were looked at";
+  }
+  return (
+    `; ${percent(counts.elevated / counts.usable)} of their ${counts.usable} samples exceed what ` +
+    `${percent(ELEVATED_SHARE)} of noise does`
   );
 }
 

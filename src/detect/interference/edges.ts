@@ -8,12 +8,40 @@ import { likelihood } from "./subset.ts";
 /** An edge grows while the line beyond gains this much log likelihood, and shrinks while its last line loses. */
 const GROWTH = 3;
 const MOST_GROWTH = 64;
+/** A piece with less than this share of the elevated samples that all pieces have is none. */
+const LEAST_OF_ALL = 0.6;
 
 type Side = "firstStep" | "lastStep" | "low" | "high";
 const SIDES: readonly Side[] = ["firstStep", "lastStep", "low", "high"];
 
-export function settleEdges(grid: Grid, rectangle: Rectangle, subset: Subset, band: Band): Rectangle {
-  if (grid.pass.marks === null) return rectangle;
+/** Edges of one rectangle moved; of several, which lie side by side, only inwards, and the poor ones left out. */
+export function settleAll(
+  grid: Grid,
+  rectangles: readonly Rectangle[],
+  subset: Subset,
+  band: Band,
+): readonly Rectangle[] {
+  if (grid.pass.marks === null) return rectangles;
+  if (rectangles.length === 1) return [settleEdges(grid, rectangles[0]!, subset, band, MOST_GROWTH)];
+  const all = noCounts();
+  for (const rectangle of rectangles) grid.count(rectangle, subset, [all], () => 0);
+  const least = LEAST_OF_ALL * (all.elevated / all.usable);
+  const kept = rectangles
+    .map((rectangle) => settleEdges(grid, rectangle, subset, band, 0))
+    .filter((rectangle) => {
+      const { usable, elevated } = grid.total(rectangle, subset);
+      return usable > 0 && elevated >= least * usable;
+    });
+  return kept.length > 0 ? kept : rectangles;
+}
+
+function settleEdges(
+  grid: Grid,
+  rectangle: Rectangle,
+  subset: Subset,
+  band: Band,
+  growth: number,
+): Rectangle {
   let settled = rectangle;
   const { usable, elevated } = grid.total(rectangle, subset);
   if (usable === 0) return rectangle;
@@ -30,7 +58,7 @@ export function settleEdges(grid: Grid, rectangle: Rectangle, subset: Subset, ba
       moved += 1;
     }
     if (moved > 0) continue;
-    for (let n = 0; n < MOST_GROWTH; n++) {
+    for (let n = 0; n < growth; n++) {
       const next = settled[side] - inward(side);
       const inside =
         side === "low" || side === "high"

@@ -2,11 +2,12 @@
 import type { Band } from "../pass/bands.ts";
 import { broadbandBursts } from "./broadband.ts";
 import { area, boundsOf, coverOf, linesOf, type Region, regionsOf, shifted } from "./components.ts";
-import { settleEdges } from "./edges.ts";
+import { settleAll } from "./edges.ts";
 import { Finder } from "./find.ts";
 import { type Counts, type Grid, noCounts, type Rectangle } from "./grid.ts";
 import { refined } from "./refine.ts";
 import { everyone, likelihood, type Who, whoIsHit } from "./subset.ts";
+import { sumsOf } from "./sums.ts";
 
 export type FeatureKind = "persistent-line" | "burst" | "drifting-line";
 
@@ -18,6 +19,8 @@ export interface Feature {
   readonly counts: Counts;
   /** in sigmas: the square root of twice the log likelihood ratio against noise */
   readonly significance: number;
+  /** power of the noise over the usual, of a burst that fills the band */
+  readonly raised?: number;
   /** sigmas of one component a sample, where it is known otherwise than from counts */
   readonly amplitude?: number;
 }
@@ -40,6 +43,8 @@ const LEAST: Readonly<Record<Who["kind"], number>> = {
 };
 /** A feature must be this sure, sigmas. */
 const LEAST_SIGNIFICANCE = 7;
+/** Fainter sums over baselines, in sigmas a sample, are the background's fault. */
+const LEAST_AMPLITUDE = 0.9;
 const LEAST_SIGNIFICANCE_OF_SOME = 12;
 const MOST_REGIONS = 256;
 /** A feature this long in time, as a share of the observation, and this narrow, is a line. */
@@ -62,7 +67,7 @@ export function featuresOf(grid: Grid, band: Band): Feature[] {
     const { firstStep, lastStep, ratio, significance } = burst;
     const rectangle = { firstStep, lastStep, low: band.first, high: band.first + band.columns - 1 };
     const feature = weigh(grid, band, "burst", [rectangle], everyone(grid));
-    features.push({ ...feature, significance, amplitude: Math.sqrt(2 * (ratio - 1)) });
+    features.push({ ...feature, significance, raised: ratio, amplitude: Math.sqrt(2 * (ratio - 1)) });
     take(grid, feature, mask);
   }
   for (const [low, high] of runsOf(persistent)) {
@@ -117,7 +122,8 @@ export function featuresOfBaselines(grid: Grid, band: Band): Feature[] {
     };
     for (const region of regionsOf(mask, grid.steps, columns).slice(0, MOST_REGIONS)) {
       if (region.length * grid.polarizations < ALONE_SAMPLES) break;
-      const rectangles = coverOf(region, columns).map((r) => shifted(r, band));
+      const cover = coverOf(region, columns).map((r) => shifted(r, band));
+      const rectangles = settleAll(grid, cover, who.subset, band);
       const feature = weigh(grid, band, kindOf(region, columns, grid.steps), rectangles, who);
       const { usable, outlying, bright } = feature.counts;
       const sure =
@@ -139,10 +145,10 @@ function settle(grid: Grid, band: Band, kind: FeatureKind, rectangles: readonly 
   let settled = rectangles;
   let who = whoIsHit(grid, settled);
   if (kind !== "persistent-line") {
-    if (settled.length === 1) settled = settled.map((r) => settleEdges(grid, r, who.subset, band));
+    settled = settleAll(grid, settled, who.subset, band);
     who = whoIsHit(grid, settled);
   }
-  if (grid.pass.marks === null) return { ...weigh(grid, band, kind, settled, who), significance: Number.NaN };
+  if (grid.pass.marks === null) return bySums(grid, band, kind, settled, who);
   const feature = weigh(grid, band, kind, settled, who);
   const { usable, elevated } = feature.counts;
   const least = LEAST[who.kind];
@@ -163,6 +169,19 @@ function weigh(
   for (const rectangle of rectangles) grid.count(rectangle, who.subset, [counts], () => 0);
   const gain = likelihood(counts, counts.elevated / Math.max(1, counts.usable));
   return { kind, band, rectangles, who, counts, significance: Math.sqrt(Math.max(0, 2 * gain)) };
+}
+
+/** Who is hit cannot be told from the sums: all are taken to be. */
+function bySums(
+  grid: Grid,
+  band: Band,
+  kind: FeatureKind,
+  rectangles: readonly Rectangle[],
+  who: Who,
+): Feature | null {
+  const { samples, significance, amplitude } = sumsOf(grid, band, rectangles);
+  if (amplitude < LEAST_AMPLITUDE || significance < LEAST_SIGNIFICANCE) return null;
+  return { kind, band, rectangles, who, counts: { ...noCounts(), usable: samples }, significance, amplitude };
 }
 
 /** Take a feature out of the marks and, if given, of a mask of its band. */
