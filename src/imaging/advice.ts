@@ -10,7 +10,7 @@ import {
 import { type MadeBeam, RADIANS_PER_ARCSEC } from "./beams.ts";
 import type { CoverageResult } from "./coverage.ts";
 import { weightingName } from "./derive-plan.ts";
-import type { Advice, WTerm } from "./image.ts";
+import type { Advice, Coverage, WTerm } from "./image.ts";
 import type { Plan } from "./plan.ts";
 import type { SmearingResult } from "./smearing.ts";
 import type { BaselineW } from "./w-report.ts";
@@ -19,6 +19,8 @@ import type { BaselineW } from "./w-report.ts";
 const PIXELS_PER_BEAM = 4;
 /** Deconvolution stops at this many times the noise: common practice, no source. */
 const STOP_SIGMAS = 3;
+/** A loss at the edge of the field below this needs no way out: common practice, no source. */
+const LEAST_W_LOSS = 0.005;
 /** A spacing group beyond a hole of this ratio stands apart. */
 const APART = 1.5;
 
@@ -34,6 +36,7 @@ export interface AdviceInput {
   readonly wZeroed: boolean;
   readonly smearing: SmearingResult;
   readonly coverage: CoverageResult;
+  readonly unflagged: Coverage;
   readonly baselines: readonly BaselineW[];
   readonly calibrated: boolean;
 }
@@ -53,6 +56,7 @@ export function adviceOf(input: AdviceInput): Advice[] {
     ...wAdvice(input),
     averagingAdvice(input.smearing),
     ...noiseAdvice(input),
+    ...flagAdvice(input),
     spacingAdvice(input),
     deconvolutionAdvice(input),
   ];
@@ -152,6 +156,16 @@ function wAdvice({ plan, wTerm, dropW, wZeroed }: AdviceInput): Advice[] {
       },
     ];
   }
+  if (!plan.correctsW.value && wTerm.edgeLossFraction < LEAST_W_LOSS) {
+    return [
+      ...advice,
+      {
+        name: "w term",
+        value: "no correction needed",
+        why: `${formatNumber(wTerm.edgePhaseRad)} rad at most, and ${formatPercent(wTerm.edgeLossFraction)} of a source, are lost at the edge; below ${limit} over ${formatAngle(open)}`,
+      },
+    ];
+  }
   const correct = {
     name: "w planes or facets",
     value: `${wTerm.planes} planes or ${wTerm.facets} facets`,
@@ -214,6 +228,25 @@ function noiseAdvice({ planned, plan, calibrated }: AdviceInput): Advice[] {
       name: "Stop deconvolving at",
       value: formatFlux(STOP_SIGMAS * planned.noise),
       why: `${STOP_SIGMAS} times the expected noise; what limits the image may stop it earlier`,
+    },
+  ];
+}
+
+/** What the flags that are already set took from the coverage, where that is anything to speak of. */
+function flagAdvice({ coverage, unflagged }: AdviceInput): Advice[] {
+  const { filledFraction: now, longestSpacingWavelengths: longest } = coverage.coverage;
+  const before = unflagged.filledFraction;
+  if (!(now < 0.98 * before)) return [];
+  const reach = unflagged.longestSpacingWavelengths;
+  const shorter =
+    longest < 0.98 * reach
+      ? ` and the longest spacing from ${formatNumber(reach)} to ${formatNumber(longest)} wavelengths`
+      : "";
+  return [
+    {
+      name: "Flags already set",
+      value: `take ${formatPercent(1 - now / before)} of the cells`,
+      why: `they bring the filled cells from ${formatPercent(before)} to ${formatPercent(now)}${shorter}: see whether all are needed`,
     },
   ];
 }

@@ -112,6 +112,16 @@ export class CoverageTally {
     return this.without(new CoverageTally(this.form));
   }
 
+  /** The tally with the samples of `other` added; both of one form. Edges of gaps are then those of bins. */
+  with(other: CoverageTally): CoverageTally {
+    const all = new CoverageTally(this.form);
+    for (let i = 0; i < all.radial.length; i++) all.radial[i] = this.radial[i]! + other.radial[i]!;
+    for (let i = 0; i < all.directions.length; i++)
+      all.directions[i] = this.directions[i]! + other.directions[i]!;
+    all.through.set(all.radial);
+    return all;
+  }
+
   /** The tally with the samples of `other` taken out; both of one form. Edges of gaps are then those of bins. */
   without(other: CoverageTally): CoverageTally {
     const left = new CoverageTally(this.form);

@@ -1,8 +1,9 @@
 /** Coverage judged between the plan's largest scale and its resolution. */
 import type { Annulus, CoverageForm, CoverageTally, RadialGap } from "./coverage-tally.ts";
 import { LARGEST_SCALE_FACTOR } from "./derive-plan.ts";
+import type { Gridded } from "./grid-dataset.ts";
 import type { Coverage } from "./image.ts";
-import type { FilledCells } from "./moment-grid.ts";
+import { type FilledCells, fieldCells } from "./moment-grid.ts";
 import type { Plan } from "./plan.ts";
 import type { Sampling } from "./sampling.ts";
 
@@ -31,7 +32,7 @@ export function coverageFormOf(sampling: Sampling, plan: Plan): CoverageForm {
   const known = sampling.longest > 0 && from > 0 && to > 0;
   if (!known) return { shortest: 1, longest: 2, from: 1, to: 1 };
   // Zero spacings of antennas at one place stay below the bins.
-  return { shortest: sampling.shortest * 0.9, longest: sampling.longest * 1.1, from, to };
+  return { shortest: sampling.everShortest * 0.9, longest: sampling.everLongest * 1.1, from, to };
 }
 
 /**
@@ -91,6 +92,23 @@ function radialRows(
   if (shortest - planned.from > least) rows.push({ from: planned.from, to: shortest, kind: "short" });
   if (planned.to - longest > least) rows.push({ from: longest, to: planned.to, kind: "long" });
   return rows.sort((a, b) => b.to / b.from - a.to / a.from || a.from - b.from);
+}
+
+/** Coverage as it was before samples were flagged; the same as now where none is. */
+export function unflaggedCoverage(gridded: Gridded, cells: FilledCells, plan: Plan): Coverage {
+  const { coverage, flagged } = gridded;
+  if (flagged === null) return judgeCoverage(coverage, cells, plan).coverage;
+  const tally = coverage.with(flagged.coverage);
+  return judgeCoverage(tally, filledByEither(cells, flagged.grid.cells()), plan).coverage;
+}
+
+/** The places of cells that either list has, and nothing else of them. */
+function filledByEither(a: FilledCells, b: FilledCells): FilledCells {
+  const inA = fieldCells(a);
+  const only = Array.from({ length: b.count }, (_, i) => i).filter((i) => inA(b.iu[i]!, b.iv[i]!) < 0);
+  const join = (first: Int32Array, second: Int32Array) =>
+    Int32Array.from([...first.subarray(0, a.count), ...only.map((i) => second[i]!)]);
+  return { ...a, count: a.count + only.length, iu: join(a.iu, b.iu), iv: join(a.iv, b.iv) };
 }
 
 /** Of the cells of 1/field whose middle is between the planned spacings, those with a sample. */

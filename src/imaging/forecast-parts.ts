@@ -2,7 +2,7 @@
 import type { Weighting } from "../dataset/plan-request.ts";
 import type { MadeBeam } from "./beams.ts";
 import type { CoverageResult } from "./coverage.ts";
-import type { WTerm } from "./image.ts";
+import type { Coverage, WTerm } from "./image.ts";
 import type { RankedLimit } from "./limits.ts";
 import type { Plan } from "./plan.ts";
 import type { Sampling } from "./sampling.ts";
@@ -18,6 +18,8 @@ export interface ForecastParts {
   readonly planned: MadeBeam;
   readonly natural: MadeBeam;
   readonly coverage: CoverageResult;
+  /** as it was before samples were flagged */
+  readonly unflagged: Coverage;
   readonly trackW: TrackW;
   readonly wTerm: WTerm;
   /** radians */

@@ -12,7 +12,7 @@ import { adviceOf, type DropW } from "./advice.ts";
 import { BeamMaker, gridFormOf, pictureOf, reportBeam } from "./beams.ts";
 import { calibratorLimits, calibratorMeasures, judgeCalibrator } from "./calibrator.ts";
 import { costsOf, type GriddedImage, type SelectionCost } from "./cost.ts";
-import { coverageFormOf, judgeCoverage } from "./coverage.ts";
+import { coverageFormOf, judgeCoverage, unflaggedCoverage } from "./coverage.ts";
 import { CoverageTally } from "./coverage-tally.ts";
 import { weightingName } from "./derive-plan.ts";
 import { edgeSamples, factorLookup } from "./edge-samples.ts";
@@ -105,6 +105,7 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
     planned,
     natural,
     coverage,
+    unflagged: unflaggedCoverage(gridded, cells, plan),
     trackW: wOf,
     wTerm,
     wShift: Math.hypot(loss.east, loss.north),
@@ -226,6 +227,7 @@ function reportImage(parts: ForecastParts, computedField: number, dropW: DropW |
       wZeroed: parts.trackW.zeroed,
       smearing: parts.smearing,
       coverage: parts.coverage,
+      unflagged: parts.unflagged,
       baselines: parts.baselines,
       calibrated,
     }),

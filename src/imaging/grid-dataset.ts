@@ -48,6 +48,8 @@ function pairKey(antenna1: number, antenna2: number): number {
 export interface Gridded {
   readonly grid: MomentGrid;
   readonly coverage: CoverageTally;
+  /** what the flagged samples would add; null where none is flagged */
+  readonly flagged: { readonly grid: MomentGrid; readonly coverage: CoverageTally } | null;
 }
 
 /** What the pass needs besides the dataset. */
@@ -69,13 +71,32 @@ export async function gridDataset(request: GridRequest): Promise<Gridded> {
   const coverage = request.coverage();
   const row = new RowWeights(dataset, sampling.products);
   const deposit = new RowDeposit(dataset, form.order);
+  // Of the flagged samples only which cells they fill is asked.
+  const flagged =
+    sampling.survey.totals.flagged > 0
+      ? { grid: new MomentGrid(flaggedForm(sampling, form)), coverage: request.coverage() }
+      : null;
+  const flaggedRow = new RowWeights(dataset, sampling.products);
   await eachRow(request, (block, at, rowFrom, levelFrom) => {
     row.fill(block.weight, rowFrom, variance, levelFrom);
     deposit.place(block, at);
     deposit.addTo(grid, row);
     deposit.cover(coverage, row, 1);
+    if (flagged !== null && flaggedRow.fillFlagged(block.weight, rowFrom)) {
+      deposit.addTo(flagged.grid, flaggedRow);
+      deposit.cover(flagged.coverage, flaggedRow, 1);
+    }
   });
-  return { grid, coverage };
+  return { grid, coverage, flagged };
+}
+
+/** Cells from the origin to the edge of a grid of which only the filled cells are asked. */
+const MOST_FLAGGED_HALF = 2000;
+
+/** Flagged baselines may be longer than any that is left. */
+function flaggedForm({ everLongest }: Sampling, form: GridForm): GridForm {
+  const reach = Math.ceil(everLongest * form.field) + 2;
+  return { ...form, order: 0, half: Math.max(form.half, Math.min(reach, MOST_FLAGGED_HALF)) };
 }
 
 /** One selection's own samples, on the index of the grid of all. */

@@ -70,7 +70,7 @@ function wColumns(parts: ForecastParts, snapshots: readonly Snapshot[]): Row {
 }
 
 function edgeColumns(parts: ForecastParts): Row {
-  const { smearing, coverage: judged } = parts;
+  const { smearing, coverage: judged, unflagged } = parts;
   const { coverage } = judged;
   return {
     bandwidth_loss: smearing.bandwidthLossFraction,
@@ -90,6 +90,11 @@ function edgeColumns(parts: ForecastParts): Row {
     shortest_ratio: judged.shortestRatio,
     longest_ratio: judged.longestRatio,
     missing_flux: coverage.missingFluxFraction,
+    unflagged_filled_fraction: unflagged.filledFraction,
+    unflagged_radial_gap_ratio: unflagged.largestRadialGapRatioFraction,
+    unflagged_azimuthal_gap_deg: unflagged.largestAzimuthalGapRad * DEGREES,
+    unflagged_shortest_wavelengths: unflagged.shortestSpacingWavelengths,
+    unflagged_longest_wavelengths: unflagged.longestSpacingWavelengths,
   };
 }
 

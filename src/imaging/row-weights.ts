@@ -52,7 +52,31 @@ export class RowWeights {
     }
   }
 
-  /** The same for the samples of a part, or, with `inside` 0, for the others in the part's sub-bands. */
+  /**
+   * The weights that flagged samples had: a flag turns a weight negative. False, and nothing is filled, where the row
+   * has none.
+   */
+  fillFlagged(weights: Float32Array, from: number): boolean {
+    const { products, polarizations, weight } = this;
+    let any = false;
+    for (let c = 0; c < weight.length; c++) {
+      let sum = 0;
+      for (let i = 0; i < products.length; i++) {
+        const value = weights[from + c * polarizations + products[i]!]!;
+        if (value < 0 && value > Number.NEGATIVE_INFINITY) sum -= value;
+      }
+      if (sum > 0 && !any) {
+        any = true;
+        weight.fill(0, 0, c);
+      }
+      if (any) weight[c] = sum;
+    }
+    this.first = 0;
+    this.last = this.subbands;
+    return any;
+  }
+
+  /** As `fill`, for the samples of a part, or, with `inside` 0, for the others in the part's sub-bands. */
   fillPart(
     weights: Float32Array,
     from: number,

@@ -22,6 +22,9 @@ export interface Sampling {
   readonly longest: number;
   /** largest |u| or |v|, wavelengths */
   readonly extent: number;
+  /** shortest and longest spacing of any row of the field, flagged ones too */
+  readonly everShortest: number;
+  readonly everLongest: number;
 }
 
 /** Spacings below this share of the longest are of antennas at one place, not of a baseline. */
@@ -44,6 +47,7 @@ export function samplingOf(survey: Survey): Sampling {
     meanFrequency: range.mean,
     totalWeight: weightOf(survey.tracks, dataset, products, field.id),
     ...spacings(survey, products, field.id, range),
+    ...everySpacing(survey, field.id),
   };
 }
 
@@ -193,4 +197,27 @@ function spacings(
     if (low > longest * SAME_PLACE && !(shortest <= low)) shortest = low;
   });
   return { shortest, longest, extent };
+}
+
+function everySpacing(survey: Survey, field: number): { everShortest: number; everLongest: number } {
+  const { dataset, tracks } = survey;
+  let lowest = Number.POSITIVE_INFINITY;
+  let highest = 0;
+  for (const { frequencies } of dataset.setups) {
+    for (const frequency of frequencies) {
+      lowest = Math.min(lowest, frequency);
+      highest = Math.max(highest, frequency);
+    }
+  }
+  let longest = 0;
+  const radii: number[] = [];
+  for (let cell = 0; cell < tracks.cells; cell++) {
+    const radius = Math.hypot(tracks.u[cell]!, tracks.v[cell]!);
+    if (tracks.field[cell] !== field || !Number.isFinite(radius)) continue;
+    radii.push(radius);
+    longest = Math.max(longest, radius);
+  }
+  let shortest = Number.POSITIVE_INFINITY;
+  for (const radius of radii) if (radius > longest * SAME_PLACE) shortest = Math.min(shortest, radius);
+  return { everShortest: shortest * lowest, everLongest: longest * highest };
 }

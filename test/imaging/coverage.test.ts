@@ -125,6 +125,36 @@ describe("coverage against a plan", () => {
     expect(missingFluxFraction).toBe(missedFlux(0.01, shortestSpacingWavelengths));
   });
 
+  it("is also that of the data before they were flagged", async () => {
+    const antennas = threeArms(900, 4);
+    const whole = observedArray({ antennas, integrations: 12, channels: 2 });
+    const flagged = observedArray({
+      antennas,
+      integrations: 12,
+      channels: 2,
+      // The ends of the arms are flagged, all the time.
+      weight: ({ antenna1, antenna2 }) => (antenna1 % 4 === 0 || antenna2 % 4 === 0 ? -4 : 4),
+    });
+    const plan = derivePlan({ resolution: 1.5e-4, fieldOfView: 0.01, largestScale: 0.001 }, whole.survey);
+    const rowOf = async (data: typeof whole) => {
+      const { measures, image } = await forecast(data.survey, plan);
+      return {
+        image,
+        row: measures.find(({ name }) => name === "image")!.table.object(0) as Record<string, number>,
+      };
+    };
+    const all = await rowOf(whole);
+    const left = await rowOf(flagged);
+    expect(all.row.unflagged_filled_fraction).toBe(all.row.filled_fraction);
+    expect(left.row.filled_fraction).toBeLessThan(0.7 * all.row.filled_fraction!);
+    expect(left.row.unflagged_filled_fraction).toBe(all.row.filled_fraction);
+    expect(left.row.longest_wavelengths).toBeLessThan(0.8 * all.row.longest_wavelengths!);
+    expect(left.row.unflagged_longest_wavelengths! / all.row.longest_wavelengths!).toBeCloseTo(1, 2);
+    const advice = left.image.advice.find(({ name }) => name === "Flags already set")!;
+    expect(advice.why).toContain("the longest spacing from");
+    expect(all.image.advice.some(({ name }) => name === "Flags already set")).toBe(false);
+  });
+
   it("counts the filled cells between the planned scales as counting one by one does", () => {
     const plan = derivePlan({ fieldOfView: 0.01, largestScale: 0.0008, resolution: 1e-4 }, survey);
     const { from, to } = plannedSpacings(plan);

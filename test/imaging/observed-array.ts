@@ -269,7 +269,7 @@ function surveyOf(
       autocorrelationRows: 0,
       samples: rows.length * size,
       usable: usable.reduce((sum, value) => sum + value, 0),
-      flagged: 0,
+      flagged: weights.reduce((sum, value) => sum + (value < 0 ? 1 : 0), 0),
       bad: 0,
       zero: 0,
       duplicateRows: 0,
