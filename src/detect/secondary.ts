@@ -1,6 +1,6 @@
 /** Events that another event explains: its shadow in another measure of the same samples. */
 import type { Selection } from "../dataset/selection.ts";
-import type { DetectedEvent, EventKind } from "./event.ts";
+import { type DetectedEvent, type EventKind, INTERFERENCE_KINDS } from "./event.ts";
 
 /** What each kind may cast on others. */
 const SHADOWS: Partial<Record<EventKind, readonly EventKind[]>> = {
@@ -50,6 +50,14 @@ const SHADOWS: Partial<Record<EventKind, readonly EventKind[]>> = {
   closure: ["weight-mismatch"],
 };
 
+/** What interference left in the channel averages, at the times of its own. */
+const OF_INTERFERENCE: ReadonlySet<EventKind> = new Set<EventKind>([
+  "gain-step",
+  "phase-jump",
+  "delay-slope",
+  "closure",
+]);
+
 /** Integrations by which the edges of a shadow may miss those of its cause, days a step. */
 const SLACK = 1.5;
 
@@ -61,9 +69,12 @@ export function withoutShadows(events: readonly DetectedEvent[], integration: nu
       !events.some(
         (other) =>
           other !== event &&
-          (SHADOWS[other.kind] ?? []).includes(event.kind) &&
-          concerns(other.scope, event.scope) &&
-          meets(other.scope.time, event.scope.time, slack),
+          ((INTERFERENCE_KINDS.has(other.kind) &&
+            OF_INTERFERENCE.has(event.kind) &&
+            within(other.scope.time, event.scope.time, slack)) ||
+            ((SHADOWS[other.kind] ?? []).includes(event.kind) &&
+              concerns(other.scope, event.scope) &&
+              meets(other.scope.time, event.scope.time, slack))),
       ),
   );
 }
@@ -81,6 +92,12 @@ function concerns(cause: Selection, shadow: Selection): boolean {
       ? within(a) || within(b)
       : (cause.baselines ?? []).some(([x, y]) => (x === a && y === b) || (x === b && y === a)),
   );
+}
+
+/** The same stretch of time, not all of it. */
+function within(cause: Selection["time"], shadow: Selection["time"], slack: number): boolean {
+  if (cause === null || shadow === null) return false;
+  return Math.abs(cause[0] - shadow[0]) <= 2 * slack && Math.abs(cause[1] - shadow[1]) <= 2 * slack;
 }
 
 /** Overlap in time, an edge within the slack counting. */

@@ -15,7 +15,7 @@ export interface BaselineRatios {
 const SWEEPS = 10;
 
 /** @returns as `phase` the logarithm of each antenna's gain; NaN where no baseline tells */
-export function antennaGains(ratios: BaselineRatios, antennas: number): AntennaPhases {
+export function antennaGains(ratios: BaselineRatios, antennas: number, thorough = false): AntennaPhases {
   const { first, second, value, weight } = ratios;
   const gain = new Float64Array(antennas);
   const trust = weight.slice();
@@ -24,7 +24,8 @@ export function antennaGains(ratios: BaselineRatios, antennas: number): AntennaP
   // What all share is the sky's.
   const common = median(value.filter((_, b) => weight[b]! > 0));
   const residual = (b: number) => value[b]! - common - gain[first[b]!]! - gain[second[b]!]!;
-  for (let sweep = 0; sweep < SWEEPS; sweep++) {
+  const sweeps = thorough ? 2 * SWEEPS : SWEEPS;
+  for (let sweep = 0; sweep < sweeps; sweep++) {
     sum.fill(0);
     total.fill(0);
     for (let b = 0; b < first.length; b++) {
@@ -38,7 +39,7 @@ export function antennaGains(ratios: BaselineRatios, antennas: number): AntennaP
     for (let a = 0; a < antennas; a++) {
       if (total[a]! > 0) gain[a] = 0.5 * gain[a]! + (0.5 * sum[a]!) / total[a]!;
     }
-    if (sweep !== 2 && sweep !== 5) continue;
+    if (thorough ? sweep < 2 || sweep >= sweeps - 2 : sweep !== 2 && sweep !== 5) continue;
     const scaled: number[] = [];
     for (let b = 0; b < first.length; b++) {
       if (weight[b]! > 0) scaled.push(Math.abs(residual(b)) * Math.sqrt(weight[b]!));

@@ -22,6 +22,9 @@ export interface AntennaPhases {
 }
 
 const SWEEPS = 10;
+/** Sweeps after which the weights of what disagrees are lowered; thorough: so that one baseline leaves its antennas alone. */
+const LOWER: ReadonlySet<number> = new Set([2, 5]);
+const THOROUGH_SWEEPS = 20;
 /** No phase is trusted beyond this variance (0.2 deg)^2: structure and tracks are not that smooth. */
 export const LEAST_VARIANCE = 1.2e-5;
 
@@ -30,7 +33,7 @@ export const LEAST_VARIANCE = 1.2e-5;
  * weights of baselines that disagree lowered.
  * @see Thompson & D'Addario 1982, Radio Sci. 17, 357
  */
-export function antennaPhases(phasors: BaselinePhasors, antennas: number): AntennaPhases {
+export function antennaPhases(phasors: BaselinePhasors, antennas: number, thorough = false): AntennaPhases {
   const { first, second, real, imag, weight } = phasors;
   const baselines = first.length;
   const gr = new Float64Array(antennas).fill(1);
@@ -48,7 +51,8 @@ export function antennaPhases(phasors: BaselinePhasors, antennas: number): Anten
     ur[b] = real[b]! / size;
     ui[b] = imag[b]! / size;
   }
-  for (let sweep = 0; sweep < SWEEPS; sweep++) {
+  const sweeps = thorough ? THOROUGH_SWEEPS : SWEEPS;
+  for (let sweep = 0; sweep < sweeps; sweep++) {
     sumR.fill(0);
     sumI.fill(0);
     for (let b = 0; b < baselines; b++) {
@@ -72,7 +76,8 @@ export function antennaPhases(phasors: BaselinePhasors, antennas: number): Anten
       gr[a] = re / norm;
       gi[a] = im / norm;
     }
-    if (sweep === 2 || sweep === 5) lowerOutliers(phasors, trust, ur, ui, gr, gi);
+    if (thorough ? sweep >= 2 && sweep < sweeps - 2 : LOWER.has(sweep))
+      lowerOutliers(phasors, trust, ur, ui, gr, gi);
   }
   return phasesOf(phasors, antennas, ur, ui, gr, gi, { sumR, sumI, total });
 }

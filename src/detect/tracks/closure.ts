@@ -5,13 +5,12 @@
 import { median, robustSigma } from "../../util/statistics.ts";
 import type { DetectedEvent } from "../event.ts";
 import type { DetectRequest } from "../request.ts";
-import { antennaGains } from "./antenna-gains.ts";
-import { antennaPhases, LEAST_VARIANCE, wrap } from "./antenna-phases.ts";
-import type { Grid, Plane } from "./grid.ts";
-import { degrees, makeEvent } from "./make-event.ts";
+import { type Residuals, residualsOf } from "./closure-residuals.ts";
+import type { Grid } from "./grid.ts";
+import { clock, degrees, makeEvent, spanOf } from "./make-event.ts";
 
 const THRESHOLD = 8;
-const STRETCHES = 8;
+const STRETCHES = 12;
 const LEAST_PHASE = (4 * Math.PI) / 180;
 const LEAST_GAIN = 0.08;
 const FEWEST_ANTENNAS = 5;
@@ -19,34 +18,52 @@ const FEWEST_ANTENNAS = 5;
 const POINT_PHASE = 0.35;
 const POINT_GAIN = 0.35;
 const POINT_SHARE = 0.75;
-
-/** Residuals by baseline and stretch of time, radians or logarithms; NaN unknown. */
-interface Residuals {
-  readonly phase: Float64Array;
-  readonly gain: Float64Array;
-  readonly error: Float64Array;
-  readonly stretches: number;
-}
+/** Extended emission shows on the shortest spacings alone. */
+const SHORT_SHARE = 0.1;
 
 export function closureFaults(grid: Grid, request: DetectRequest): DetectedEvent[] {
   if (grid.antennas.length < FEWEST_ANTENNAS) return [];
-  const residuals = residualsOf(grid);
+  const residuals = residualsOf(grid, stretchesOf(grid, STRETCHES));
   // A sky that does not close would be taken for the correlator's fault.
   if (request.purpose !== "calibrator" && !looksLikeAPoint(residuals)) return [];
   const phases = outlying(grid, residuals, residuals.phase, LEAST_PHASE, request);
   const gains = outlying(grid, residuals, residuals.gain, LEAST_GAIN, request);
-  const events = phases.map((one) => eventOf(grid, one, "deg"));
+  if (phases.length + gains.length === 0) return [];
+  const apart = new Set([...phases, ...gains].map(({ baseline }) => baseline));
+  // Left out of the solution, unless so many are that they hold it together.
+  const fine = residualsOf(
+    grid,
+    stretchesOf(grid, grid.times.length),
+    apart.size < grid.antennas.length / 2 ? apart : new Set(),
+  );
+  const events: DetectedEvent[] = [];
+  for (const one of phases) {
+    const settled = settle(grid, fine.phase, fine.error, one, LEAST_PHASE);
+    if (settled !== null) events.push(eventOf(grid, settled, "deg"));
+  }
+  const named = new Set(events.flatMap(({ scope }) => scope.baselines!.map(String)));
   for (const one of gains) {
-    if (!phases.some(({ baseline }) => baseline === one.baseline)) events.push(eventOf(grid, one, "ratio"));
+    const { antenna1, antenna2 } = grid.survey.baselines[one.baseline]!;
+    if (named.has(String([antenna1, antenna2]))) continue;
+    const settled = settle(grid, fine.gain, fine.error, one, LEAST_GAIN);
+    if (settled !== null) events.push(eventOf(grid, settled, "ratio"));
   }
   return events;
 }
 
+function stretchesOf({ times }: Grid, most: number): [number, number][] {
+  const n = Math.max(1, Math.min(most, times.length));
+  return Array.from({ length: n }, (_, s) => [
+    Math.floor((s * times.length) / n),
+    Math.floor(((s + 1) * times.length) / n),
+  ]);
+}
+
 /** Nearly all baselines close, in phase and in amplitude, and none is without signal. */
-function looksLikeAPoint({ phase, gain, stretches }: Residuals): boolean {
+function looksLikeAPoint({ phase, gain }: Residuals): boolean {
   const share = (values: Float64Array, limit: number) =>
     values.filter((x) => Math.abs(x) < limit).length / values.length;
-  return stretches > 0 && share(phase, POINT_PHASE) > POINT_SHARE && share(gain, POINT_GAIN) > POINT_SHARE;
+  return share(phase, POINT_PHASE) > POINT_SHARE && share(gain, POINT_GAIN) > POINT_SHARE;
 }
 
 interface Outlier {
@@ -63,25 +80,44 @@ function outlying(
   least: number,
   { purpose }: DetectRequest,
 ): Outlier[] {
-  const summary = Array.from({ length: grid.baselines }, (_, b) => {
-    const own = values.subarray(b * stretches, (b + 1) * stretches).filter((x) => !Number.isNaN(x));
-    const noise =
-      median(error.subarray(b * stretches, (b + 1) * stretches)) / Math.sqrt(Math.max(1, own.length));
-    return { value: median(own), noise, scatter: robustSigma(own), count: own.length };
-  });
-  const family = robustSigma(summary.map(({ value }) => value));
-  const lengths = summary.map((_, b) => spacing(grid, b));
-  const sorted = [...lengths].sort((x, y) => x - y);
-  const short = sorted[Math.floor(0.1 * sorted.length)]!;
-  return summary.flatMap(({ value, noise, scatter, count }, b) => {
-    if (!(Math.abs(value) > least) || count === 0) return [];
-    const scale = Math.max(purpose === "calibrator" ? 0 : family, noise, (1.25 * scatter) / Math.sqrt(count));
-    const z = Math.abs(value) / scale;
-    // Extended emission shows on the shortest spacings alone.
-    if (z < THRESHOLD || (purpose !== "calibrator" && lengths[b]! < short)) return [];
-    if (!(scatter < Math.abs(value) / 2)) return [];
-    return [{ baseline: b, value, error: scale, z }];
-  });
+  const n = stretches.length;
+  const column = (s: number) => Float64Array.from({ length: grid.baselines }, (_, b) => values[b * n + s]!);
+  const family = stretches.map((_, s) => robustSigma(column(s)));
+  const lengths = Array.from({ length: grid.baselines }, (_, b) => spacing(grid, b));
+  const short = [...lengths].sort((x, y) => x - y)[Math.floor(SHORT_SHARE * lengths.length)]!;
+  const found: Outlier[] = [];
+  for (let b = 0; b < grid.baselines; b++) {
+    if (purpose !== "calibrator" && lengths[b]! < short) continue;
+    const own = stretches
+      .map((_, s) => ({
+        value: values[b * n + s]!,
+        scale: Math.max(purpose === "calibrator" ? 0 : family[s]!, error[b * n + s]!),
+      }))
+      .filter(({ value }) => !Number.isNaN(value));
+    const typical = median(own.map(({ value }) => value));
+    // Throughout, or in those stretches where it is at its largest.
+    const out = own.filter(
+      ({ value, scale }) => Math.abs(value) > least && Math.abs(value) > THRESHOLD * scale,
+    );
+    if (out.length === 0) continue;
+    const value = median(out.map((one) => one.value));
+    const alike = out.filter((one) => Math.abs(one.value - value) < Math.abs(value) / 2);
+    if (alike.length < 0.75 * out.length) continue;
+    // Few stretches must leave the others at rest, or it is the sky that moves.
+    const rest = own.filter((one) => !out.includes(one));
+    const still = rest.filter((one) => Math.abs(one.value) < Math.abs(value) / 2 + 3 * one.scale);
+    if (out.length < own.length / 2 && still.length < 0.9 * rest.length) continue;
+    const scale = median(alike.map((one) => one.scale)) / Math.sqrt(alike.length);
+    const scatter = robustSigma(alike.map((one) => one.value)) / Math.sqrt(alike.length);
+    const sigma = Math.max(scale, 1.25 * scatter);
+    found.push({
+      baseline: b,
+      value: out.length === own.length ? typical : value,
+      error: sigma,
+      z: Math.abs(value) / sigma,
+    });
+  }
+  return found;
 }
 
 function spacing(grid: Grid, b: number): number {
@@ -91,82 +127,88 @@ function spacing(grid: Grid, b: number): number {
   return middle < last ? Math.hypot(tracks.u[middle]!, tracks.v[middle]!) : Number.NaN;
 }
 
-function eventOf(grid: Grid, { baseline, value, error, z }: Outlier, unit: "deg" | "ratio"): DetectedEvent {
+interface Settled extends Outlier {
+  readonly run: readonly [number, number];
+}
+
+/** Integrations on either side of an edge that must show it. */
+const EDGE = 3;
+
+/** The same integration by integration; null where it comes and goes like a sky rather than like a fault. */
+function settle(
+  grid: Grid,
+  values: Float64Array,
+  errors: Float64Array,
+  one: Outlier,
+  least: number,
+): Settled | null {
+  const n = grid.times.length;
+  const own = values.subarray(one.baseline * n, (one.baseline + 1) * n);
+  const noise = median(errors.subarray(one.baseline * n, (one.baseline + 1) * n));
+  const [start, end] = bestRun(own, one.value);
+  const inside = own.subarray(start, end).filter((x) => !Number.isNaN(x));
+  if (inside.length === 0) return null;
+  const value = median(inside);
+  const scatter = robustSigma(inside);
+  const error = Math.max(one.error, (1.25 * Math.max(scatter, noise || 0)) / Math.sqrt(inside.length));
+  const z = Math.abs(value) / error;
+  if (!(Math.abs(value) > least && z > THRESHOLD)) return null;
+  if (scatter > Math.abs(value) / 4 + 1.5 * noise) return null;
+  const step = (at: number) =>
+    Math.abs(median(own.subarray(Math.max(0, at - EDGE), at)) - median(own.subarray(at, at + EDGE)));
+  for (const edge of [start, end]) {
+    if (edge > 0 && edge < n && step(edge) < 0.6 * Math.abs(value)) return null;
+  }
+  return { ...one, value, error, z, run: [start, end] };
+}
+
+function eventOf(
+  grid: Grid,
+  { baseline, value, error, z, run }: Settled,
+  unit: "deg" | "ratio",
+): DetectedEvent {
   const { antenna1, antenna2 } = grid.survey.baselines[baseline]!;
+  const time = spanOf(grid, run[0], run[1]);
   const size = unit === "deg" ? degrees(value) : Math.exp(value);
   const sizeError = unit === "deg" ? degrees(error) : size * error;
   const what =
     unit === "deg"
       ? `${size.toFixed(1)} +- ${sizeError.toFixed(1)} deg in phase`
       : `a factor of ${size.toFixed(2)} +- ${sizeError.toFixed(2)} in amplitude`;
+  const when =
+    time === null
+      ? "all the time"
+      : `from ${clock(grid.times[run[0]]!)} to ${clock(grid.times[run[1] - 1]!)} UTC`;
   return makeEvent(grid, {
     kind: "closure",
     cause: "correlator",
-    scope: { baselines: [[antenna1, antenna2]] },
+    scope: { baselines: [[antenna1, antenna2]], time },
     size,
     sizeError,
     unit,
     significance: z,
-    evidence: `Baseline ${antenna1}-${antenna2} is out by ${what}: its triangles do not close, those without it do, and no antenna explains it.`,
-    repair: null,
+    evidence:
+      `Baseline ${antenna1}-${antenna2} is out by ${what} ${when}: ` +
+      `its triangles do not close, those without it do, and no antenna explains it.`,
   });
 }
 
-/** Medians over the products of what is left after antenna phases and gains. */
-function residualsOf(grid: Grid): Residuals {
-  const { times, baselines } = grid;
-  const stretches = Math.max(1, Math.min(STRETCHES, Math.floor(times.length / 4)));
-  const phases: number[][] = Array.from({ length: baselines * stretches }, () => []);
-  const gains: number[][] = phases.map(() => []);
-  const errors: number[][] = phases.map(() => []);
-  for (let s = 0; s < stretches; s++) {
-    const from = Math.floor((s * times.length) / stretches);
-    const to = Math.floor(((s + 1) * times.length) / stretches);
-    for (const plane of grid.planes) {
-      const mean = means(grid, plane, from, to);
-      const solved = antennaPhases(mean, grid.antennas.length);
-      const gain = antennaGains(mean, grid.antennas.length);
-      const left = mean.value.map((x, b) =>
-        mean.weight[b]! > 0 ? x - gain.phase[mean.first[b]!]! - gain.phase[mean.second[b]!]! : Number.NaN,
-      );
-      const common = median(left);
-      for (let b = 0; b < baselines; b++) {
-        if (!(mean.weight[b]! > 0)) continue;
-        const turned = solved.phase[mean.first[b]!]! - solved.phase[mean.second[b]!]!;
-        phases[b * stretches + s]!.push(wrap(Math.atan2(mean.imag[b]!, mean.real[b]!) - turned));
-        gains[b * stretches + s]!.push(left[b]! - common);
-        errors[b * stretches + s]!.push(1 / Math.sqrt(mean.weight[b]!));
-      }
+/** The run of integrations [start, end) that a step of this size to and back from fits best. */
+function bestRun(values: Float64Array, size: number): [number, number] {
+  let best: [number, number] = [0, values.length];
+  let most = 0;
+  let sum = 0;
+  let start = 0;
+  for (let t = 0; t < values.length; t++) {
+    // Squares of the residuals without the step less those with it.
+    sum += Number.isNaN(values[t]!) ? 0 : size * (2 * values[t]! - size);
+    if (sum <= 0) {
+      sum = 0;
+      start = t + 1;
+    } else if (sum > most) {
+      most = sum;
+      best = [start, t + 1];
     }
   }
-  return {
-    phase: Float64Array.from(phases, median),
-    gain: Float64Array.from(gains, median),
-    error: Float64Array.from(errors, (own) => median(own) / Math.sqrt(Math.max(1, own.length))),
-    stretches,
-  };
-}
-
-function means(grid: Grid, plane: Plane, from: number, to: number) {
-  const { baselines, first, second } = grid;
-  const column = () => new Float64Array(baselines);
-  const [real, imag, weight, value] = [column(), column(), column(), column()];
-  for (let b = 0; b < baselines; b++) {
-    let [variance, n, amplitude] = [0, 0, 0];
-    for (let t = from; t < to; t++) {
-      const i = t * baselines + b;
-      if (Number.isNaN(plane.real[i]!)) continue;
-      real[b]! += plane.real[i]!;
-      imag[b]! += plane.imag[i]!;
-      variance += plane.variance[i]!;
-      amplitude += plane.real[i]! ** 2 + plane.imag[i]! ** 2 - 2 * plane.variance[i]!;
-      n += 1;
-    }
-    if (n === 0) continue;
-    const power = real[b]! ** 2 + imag[b]! ** 2 - 2 * variance;
-    if (!(power > 16 * variance) || !(amplitude > 0)) continue;
-    weight[b] = 1 / Math.max(LEAST_VARIANCE, variance / power);
-    value[b] = Math.log(amplitude / n) / 2;
-  }
-  return { first, second, real, imag, weight, value };
+  return best;
 }
