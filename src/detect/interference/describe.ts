@@ -10,11 +10,6 @@ import { channelsOf } from "./group.ts";
 import { scopeOf, selectionsOf } from "./selections.ts";
 
 const CAUSES = { "persistent-line": "channels", "drifting-line": "channels", burst: "time" } as const;
-const WORDS = {
-  "persistent-line": "stand out for",
-  "drifting-line": "are crossed in",
-  burst: "stand out for",
-} as const;
 /** Confidence in a flag where the plan looks for lines and this is one. */
 const DOUBTFUL_LINE = 0.3;
 
@@ -60,7 +55,7 @@ function confidenceOf(significance: number, share: number): number {
 }
 
 function evidenceOf(grid: Grid, feature: Feature, amplitude: number, doubtful: boolean): string {
-  const { who, kind } = feature;
+  const { who } = feature;
   const { polarizations } = grid.survey.dataset;
   const products =
     who.subset.polarizations === null
@@ -70,9 +65,15 @@ function evidenceOf(grid: Grid, feature: Feature, amplitude: number, doubtful: b
   const doubt = doubtful ? "; it may be a line of the sky, which this observation looks for" : "";
   const size = amplitude >= 8 ? "8 sigma a sample or more" : `about ${amplitude.toFixed(1)} sigma a sample`;
   return (
-    `${channelWords(grid, feature)} ${WORDS[kind]} ${durationWords(grid, feature)} on ${baselineWords(grid, feature)}` +
-    `${products}, by ${size}${shares}${doubt}`
+    `${channelWords(grid, feature)} ${verb(feature)} ${durationWords(grid, feature)} on ${baselineWords(grid, feature)}` +
+    `${products}, by ${size}${shares}${steadinessWords(grid, feature)}${doubt}`
   );
+}
+
+function verb(feature: Feature): string {
+  if (feature.kind === "drifting-line") return "are crossed in";
+  const [low, high] = channelsOf(feature);
+  return low === high ? "stands out for" : "stand out for";
 }
 
 function shareWords(grid: Grid, { counts, raised }: Feature): string {
@@ -86,6 +87,20 @@ function shareWords(grid: Grid, { counts, raised }: Feature): string {
     `; ${percent(counts.elevated / counts.usable)} of their ${counts.usable} samples exceed what ` +
     `${percent(ELEVATED_SHARE)} of noise does`
   );
+}
+
+/** How the power of a line goes over time, where most planes say the same. */
+function steadinessWords(grid: Grid, feature: Feature): string {
+  if (feature.kind !== "persistent-line" || feature.who.kind !== "all") return "";
+  const [low, high] = channelsOf(feature);
+  const { planes, steady, unsteady } = grid.pass.kurtosis.countsOf(
+    low,
+    high,
+    feature.who.subset.polarizations,
+  );
+  if (steady > planes / 2) return "; it is as steady as a carrier (spectral kurtosis below that of noise)";
+  if (unsteady > planes / 2) return "; it comes and goes (spectral kurtosis above that of noise)";
+  return "";
 }
 
 function channelWords(grid: Grid, feature: Feature): string {

@@ -7,6 +7,8 @@ import { addCounts, noCounts } from "./grid.ts";
 const SLACK = 1;
 /** Share of the time from the first to the last that recurring features fill, from which on they are one line. */
 const RECURRING = 0.5;
+/** Fewer bursts than this in the same channels are told one by one: each is at its own time. */
+const FEWEST_RECURRING = 3;
 
 /** Join features of the same band, subset, and about the same channels into one with many rectangles. */
 export function groupInTime(features: readonly Feature[], steps: number): Feature[] {
@@ -16,7 +18,11 @@ export function groupInTime(features: readonly Feature[], steps: number): Featur
     if (group === undefined) groups.push([feature]);
     else group.push(feature);
   }
-  return groups.map((group) => (group.length === 1 ? group[0]! : joined(group, steps)));
+  return groups.flatMap((group) => {
+    if (group.length === 1) return group;
+    const one = joined(group, steps);
+    return group.length >= FEWEST_RECURRING || one.kind === "persistent-line" ? [one] : group;
+  });
 }
 
 function recurs(a: Feature, b: Feature): boolean {
