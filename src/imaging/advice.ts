@@ -20,7 +20,7 @@ const PIXELS_PER_BEAM = 4;
 /** Deconvolution stops at this many times the noise: common practice, no source. */
 const STOP_SIGMAS = 3;
 /** A loss at the edge of the field below this needs no way out: common practice, no source. */
-const LEAST_W_LOSS = 0.005;
+export const LEAST_W_LOSS = 0.005;
 /** A spacing group beyond a hole of this ratio stands apart. */
 const APART = 1.5;
 
@@ -156,7 +156,7 @@ function wAdvice({ plan, wTerm, dropW, wZeroed }: AdviceInput): Advice[] {
       },
     ];
   }
-  if (!plan.correctsW.value && wTerm.edgeLossFraction < LEAST_W_LOSS) {
+  if (!plan.correctsW.value && !(wTerm.edgeLossFraction >= LEAST_W_LOSS)) {
     return [
       ...advice,
       {

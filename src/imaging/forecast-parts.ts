@@ -1,6 +1,7 @@
 /** Everything that the report and the measures of a forecast are made from. */
 import type { Weighting } from "../dataset/plan-request.ts";
 import type { MadeBeam } from "./beams.ts";
+import type { CalibratorResult } from "./calibrator.ts";
 import type { CoverageResult } from "./coverage.ts";
 import type { Coverage, WTerm } from "./image.ts";
 import type { RankedLimit } from "./limits.ts";
@@ -27,6 +28,8 @@ export interface ForecastParts {
   readonly baselines: readonly BaselineW[];
   readonly smearing: SmearingResult;
   readonly limits: readonly RankedLimit[];
+  /** null where the plan is for something else, or no source stands above the noise */
+  readonly calibrator: CalibratorResult | null;
   /** Jy that the measured noise means for one antenna; NaN unknown */
   readonly sefd: number;
 }

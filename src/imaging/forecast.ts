@@ -8,7 +8,7 @@ import type { Selection } from "../dataset/selection.ts";
 import type { DetectedEvent } from "../detect/event.ts";
 import type { Survey } from "../measure/survey-result.ts";
 import type { Measure } from "../measure/table.ts";
-import { adviceOf, type DropW } from "./advice.ts";
+import { adviceOf, type DropW, LEAST_W_LOSS } from "./advice.ts";
 import { BeamMaker, gridFormOf, pictureOf, reportBeam } from "./beams.ts";
 import { calibratorLimits, calibratorMeasures, judgeCalibrator } from "./calibrator.ts";
 import { costsOf, type GriddedImage, type SelectionCost } from "./cost.ts";
@@ -17,7 +17,7 @@ import { CoverageTally } from "./coverage-tally.ts";
 import { weightingName } from "./derive-plan.ts";
 import { edgeSamples, factorLookup } from "./edge-samples.ts";
 import type { ForecastParts, NamedBeam } from "./forecast-parts.ts";
-import { expectedW, geometryMeasures, judgeTracks } from "./geometry-report.ts";
+import { expectedW, type GeometryReport, geometryMeasures, judgeTracks } from "./geometry-report.ts";
 import { type GridRequest, gridDataset } from "./grid-dataset.ts";
 import type { BeamPicture, ImageForecast, WeightingResult } from "./image.ts";
 import { imageMeasures } from "./image-measures.ts";
@@ -48,39 +48,72 @@ export interface Forecast {
 
 export async function forecast(survey: Survey, plan: Plan, request: ForecastRequest = {}): Promise<Forecast> {
   const { events = [], onProgress } = request;
+  const image = await gridImage(survey, plan, (share) => onProgress?.(0.6 * share));
+  const { sampling } = image.request;
+  const weightings = beamsOf(image);
+  onProgress?.(0.8);
+  const geometry = judgeTracks(sampling);
+  const parts = await partsOf(image, weightings, geometry, events);
+  const dropW = await dropCost(image, parts);
+  onProgress?.(1);
+  const radius = Math.sin(plan.fieldOfView.value / 2);
+  const snapshots = snapshotsOf(sampling, parts.trackW.w, radius);
+  return {
+    image: reportImage(parts, image.maker.field, dropW),
+    picture: pictureOf(parts.planned, weightingName(plan.weighting.value)),
+    measures: [
+      ...imageMeasures(parts, snapshots, wByAntenna(parts.baselines)),
+      ...geometryMeasures(sampling, geometry, radius),
+      ...calibratorMeasures(parts.calibrator, plan.dynamicRange.value),
+    ],
+    costs: (selections) => costsOf(image, selections),
+  };
+}
+
+async function gridImage(
+  survey: Survey,
+  plan: Plan,
+  onProgress: (share: number) => void,
+): Promise<GriddedImage> {
   const sampling = samplingOf(survey);
   const variance = fillWeightedVariance(sampling);
   const coverageForm = coverageFormOf(sampling, plan);
-  const gridRequest: GridRequest = {
+  const request: GridRequest = {
     sampling,
     variance,
     form: gridFormOf(sampling, plan, noiseBound(sampling, variance)),
     coverage: () => new CoverageTally(coverageForm),
-    onProgress: onProgress === undefined ? undefined : (share) => onProgress(0.6 * share),
   };
-  const gridded = await gridDataset(gridRequest);
-  const cells = gridded.grid.cells();
-  const maker = new BeamMaker(gridRequest.form);
-  const image: GriddedImage = {
-    request: { ...gridRequest, onProgress: undefined },
+  const gridded = await gridDataset({ ...request, onProgress });
+  return {
+    request,
     plan,
     gridded,
-    cells,
-    maker,
+    cells: gridded.grid.cells(),
+    maker: new BeamMaker(request.form),
     whole: { current: null },
   };
-  const weightings = compared(plan.weighting.value).map(
-    (weighting): NamedBeam => ({
-      weighting,
-      name: weightingName(weighting),
-      planned: sameWeighting(weighting, plan.weighting.value),
-      made: maker.make(cells, weighting),
-    }),
-  );
-  onProgress?.(0.8);
+}
+
+function beamsOf({ plan, maker, cells }: GriddedImage): NamedBeam[] {
+  return compared(plan.weighting.value).map((weighting) => ({
+    weighting,
+    name: weightingName(weighting),
+    planned: sameWeighting(weighting, plan.weighting.value),
+    made: maker.make(cells, weighting),
+  }));
+}
+
+async function partsOf(
+  image: GriddedImage,
+  weightings: readonly NamedBeam[],
+  geometry: GeometryReport,
+  events: readonly DetectedEvent[],
+): Promise<ForecastParts> {
+  const { plan, gridded, cells } = image;
+  const { sampling, variance } = image.request;
   const planned = weightings.find((named) => named.planned)!.made;
   const natural = weightings.find((named) => named.weighting.kind === "natural")!.made;
-  const geometry = judgeTracks(sampling);
   const wOf = trackW(sampling, expectedW(sampling, geometry.judged));
   const radius = Math.sin(plan.fieldOfView.value / 2);
   const samples = edgeSamples(sampling, wOf.w, factorLookup(cells, planned.factors));
@@ -88,7 +121,6 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
   const baselines = wByBaseline(sampling, wOf.w, samples, radius, plan.dishDiameter.value);
   const wTerm = wTermOf(baselines, loss, plan.fieldOfView.value);
   const smearing = smearingAt(samples, radius, sampling.field.declination);
-  const coverage = judgeCoverage(gridded.coverage, cells, plan);
   const level = sourceLevel(sampling);
   const calibrator =
     plan.purpose.value === "calibrator" ? await judgeCalibrator(image, sampling, variance) : null;
@@ -97,14 +129,14 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
     ...(await eventLimits(image, events, level)),
     ...standingLimits({ plan, planned, wTerm, wLoss: loss, smearing, samples, radius, level }),
   ].sort((a, b) => a.dynamicRangeFraction - b.dynamicRangeFraction);
-  const parts: ForecastParts = {
+  return {
     sampling,
     plan,
-    calibrated: survey.dataset.unit === "Jy",
+    calibrated: sampling.survey.dataset.unit === "Jy",
     weightings,
     planned,
     natural,
-    coverage,
+    coverage: judgeCoverage(gridded.coverage, cells, plan),
     unflagged: unflaggedCoverage(gridded, cells, plan),
     trackW: wOf,
     wTerm,
@@ -112,20 +144,8 @@ export async function forecast(survey: Survey, plan: Plan, request: ForecastRequ
     baselines,
     smearing,
     limits,
+    calibrator,
     sefd: measuredSefd(sampling),
-  };
-  const dropW = await dropCost(image, parts);
-  onProgress?.(1);
-  const snapshots = snapshotsOf(sampling, wOf.w, radius);
-  return {
-    image: reportImage(parts, maker.field, dropW),
-    picture: pictureOf(planned, weightingName(plan.weighting.value)),
-    measures: [
-      ...imageMeasures(parts, snapshots, wByAntenna(baselines)),
-      ...geometryMeasures(sampling, geometry, radius),
-      ...calibratorMeasures(calibrator, plan.dynamicRange.value),
-    ],
-    costs: (selections) => costsOf(image, selections),
   };
 }
 
@@ -167,7 +187,7 @@ function sameWeighting(a: Weighting, b: Weighting): boolean {
 /** What dropping every baseline beyond the w that needs no correction would cost. */
 async function dropCost(image: GriddedImage, parts: ForecastParts): Promise<DropW | null> {
   const { plan, wTerm, baselines } = parts;
-  if (plan.correctsW.value || !(wTerm.edgePhaseRad > W_PHASE_LIMIT)) return null;
+  if (plan.correctsW.value || !(wTerm.edgeLossFraction >= LEAST_W_LOSS)) return null;
   const far = baselines.filter((baseline) => baseline.phase > W_PHASE_LIMIT);
   const used = baselines.filter((baseline) => baseline.weightFraction > 0);
   if (far.length === used.length) return null;
