@@ -1,5 +1,6 @@
 /** Features of interference: rectangles of integrations by channels, with those whom they hit. */
 import type { Band } from "../pass/bands.ts";
+import { growMarks } from "../statistics/growth.ts";
 import { broadbandBursts } from "./broadband.ts";
 import { area, boundsOf, coverOf, linesOf, type Region, regionsOf, shifted } from "./components.ts";
 import { settleAll } from "./edges.ts";
@@ -47,6 +48,8 @@ const LEAST_SIGNIFICANCE = 7;
 const LEAST_AMPLITUDE = 0.9;
 const LEAST_SIGNIFICANCE_OF_SOME = 12;
 const MOST_REGIONS = 256;
+/** Share of an interval that rank-based growth fills. */
+const GROWTH = 0.2;
 /** A feature this long in time, as a share of the observation, and this narrow, is a line. */
 const LINE_DURATION = 0.4;
 const LINE_WIDTH = 0.15;
@@ -58,6 +61,8 @@ const ALONE_OUTLYING = 0.5;
 const ALONE_BRIGHT = 0.05;
 const ALONE_SAMPLES = 8;
 const ALONE_SIGNIFICANCE = 16;
+/** Channels within which a feature lies beside another. */
+const BESIDE = 2;
 
 /** Everything that stands out in a band; takes it out of the grid's marks. */
 export function featuresOf(grid: Grid, band: Band): Feature[] {
@@ -77,6 +82,7 @@ export function featuresOf(grid: Grid, band: Band): Feature[] {
     features.push(feature);
     take(grid, feature, mask);
   }
+  if (grid.pass.marks !== null) grow(mask, grid.steps, band.columns);
   for (const rough of regionsOf(mask, grid.steps, band.columns).slice(0, MOST_REGIONS)) {
     const region = refined(grid, band, rough);
     if (region.length === 0) continue;
@@ -89,8 +95,17 @@ export function featuresOf(grid: Grid, band: Band): Feature[] {
   return features;
 }
 
-/** What stands out on single baselines and is left when the features of all are taken out. */
-export function featuresOfBaselines(grid: Grid, band: Band): Feature[] {
+/** What lies between and beside marks may be what they are: the samples of those hit decide afterwards. */
+function grow(mask: Uint8Array, steps: number, columns: number): void {
+  for (let c = 0; c < columns; c++) growMarks(mask, c, columns, steps, GROWTH);
+  for (let step = 0; step < steps; step++) growMarks(mask, step * columns, 1, columns, GROWTH);
+}
+
+/**
+ * What stands out on single baselines and is left when the features of many are taken out.
+ * @param known those of many: what lies beside one of them is a background bent by it
+ */
+export function featuresOfBaselines(grid: Grid, band: Band, known: readonly Feature[]): Feature[] {
   const { marks } = grid.pass;
   const { tracks, baselines } = grid.survey;
   if (marks === null) return [];
@@ -133,12 +148,24 @@ export function featuresOfBaselines(grid: Grid, band: Band): Feature[] {
         outlying >= ALONE_SAMPLES &&
         outlying >= ALONE_OUTLYING * usable &&
         bright >= ALONE_BRIGHT * usable;
-      if (!sure) continue;
+      if (!sure || isBeside(feature, known)) continue;
       features.push(feature);
       take(grid, feature, null);
     }
   }
   return features;
+}
+
+/** Whether one of a feature's rectangles touches one of the others, in channels and in time. */
+function isBeside({ rectangles }: Feature, others: readonly Feature[]): boolean {
+  const touches = (a: Rectangle, b: Rectangle) =>
+    a.firstStep <= b.lastStep + 1 &&
+    b.firstStep <= a.lastStep + 1 &&
+    a.low <= b.high + BESIDE &&
+    b.low <= a.high + BESIDE;
+  return rectangles.some((own) =>
+    others.some((other) => other.rectangles.some((rectangle) => touches(own, rectangle))),
+  );
 }
 
 function settle(grid: Grid, band: Band, kind: FeatureKind, rectangles: readonly Rectangle[]): Feature | null {

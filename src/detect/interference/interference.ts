@@ -42,7 +42,7 @@ export function interferenceOf(
   const features: Feature[] = [];
   for (const band of bands) {
     const all = featuresOf(grid, band);
-    features.push(...groupInTime([...all, ...featuresOfBaselines(grid, band)], grid.steps));
+    features.push(...groupInTime([...all, ...featuresOfBaselines(grid, band, all)], grid.steps));
   }
   const events = features
     .filter((feature) => !isProtected(survey, request, feature))

@@ -15,6 +15,7 @@ import { type Band, bandsOf } from "./bands.ts";
 import { SampleBits } from "./bits.ts";
 import { CleanTracks } from "./clean-tracks.ts";
 import { CombinedScores } from "./combined.ts";
+import { ChannelKurtosis } from "./kurtosis.ts";
 import { Normaliser } from "./normalise.ts";
 import { Plane } from "./plane.ts";
 import { type RowRun, type Tile, tilesOf } from "./tiles.ts";
@@ -55,6 +56,7 @@ export interface SecondPass {
   readonly marks: SampleMarks | null;
   readonly combined: CombinedScores;
   readonly clean: CleanTracks;
+  readonly kurtosis: ChannelKurtosis;
 }
 
 export async function secondPass(
@@ -74,6 +76,7 @@ class SampleScan {
   private readonly marks: SampleMarks | null;
   private readonly combined: CombinedScores;
   private readonly clean: CleanTracks;
+  private readonly kurtosis: ChannelKurtosis;
   /** by first sample: the samples of a row that a band and polarization take */
   private readonly masks: readonly Uint32Array[];
   private readonly plane = new Plane();
@@ -101,6 +104,7 @@ class SampleScan {
     this.masks = rowMasks(this.bands, dataset.shape);
     this.combined = new CombinedScores(survey);
     this.clean = new CleanTracks(survey);
+    this.kurtosis = new ChannelKurtosis(subbands * channels, polarizations);
     this.noise = surveyedNoise(survey, this.bands);
     const sight = dataset.setups.map((_, s) => angleInSight(survey, s));
     this.steepness = Float64Array.from(
@@ -144,6 +148,7 @@ class SampleScan {
       (row) => steepness * length(row),
       this.swiftness[run.setup]! * length(0) * (spacing || 0),
     );
+    this.kurtosis.add(plane, band, polarization);
     const typical = normaliser.apply(plane, background.bandpass);
     const size = plane.rows * plane.columns;
     fillScores(plane.power, size);
@@ -199,7 +204,8 @@ class SampleScan {
 
   finish(): SecondPass {
     this.clean.finish();
-    return { bands: this.bands, marks: this.marks, combined: this.combined, clean: this.clean };
+    const { bands, marks, combined, clean, kurtosis } = this;
+    return { bands, marks, combined, clean, kurtosis };
   }
 }
 
