@@ -1,14 +1,15 @@
 /** From weighted uv cells to what a report says of a beam: main lobe, sidelobes, noise, and its picture. */
 import type { Weighting } from "../dataset/plan-request.ts";
 import { beamAt } from "./beam-at.ts";
-import { BeamTransform, beamPixel, type HalfBeam } from "./beam-transform.ts";
+import { finerMiddle, KERNEL } from "./beam-resample.ts";
+import { BeamTransform, type HalfBeam } from "./beam-transform.ts";
 import { cellFactors, imageNoise, imagingWeight, truncated } from "./cell-weights.ts";
 import type { Beam, BeamPicture } from "./image.ts";
 import { type Ellipse, fitMainLobe, UNKNOWN_ELLIPSE } from "./main-lobe.ts";
 import type { FilledCells, GridForm } from "./moment-grid.ts";
 import type { Plan } from "./plan.ts";
 import type { Sampling } from "./sampling.ts";
-import { findSidelobes, interpolatedPixel, type Sidelobes } from "./sidelobes.ts";
+import { findSidelobes, type Sidelobes } from "./sidelobes.ts";
 
 export const RADIANS_PER_ARCSEC = Math.PI / 180 / 3600;
 
@@ -18,8 +19,8 @@ const MOST_HALF = 1000;
 const USUAL_SIZE = 1024;
 const LARGEST_SIZE = 2048;
 const LEAST_SIZE = 64;
-/** Samples a period of the finest fringe: 4 where they are cheap, never below 2 (Nyquist). */
-const FINE_SAMPLING = 4;
+/** Samples a period of the finest fringe: 3 where they are cheap, never below 2 (Nyquist). */
+const FINE_SAMPLING = 3;
 const COARSE_SAMPLING = 2.05;
 /** By samples (rows x channels): many fill so many cells that fewer moments of each give the same beam. */
 const ORDERS = [
@@ -130,20 +131,13 @@ export function reportBeam(made: MadeBeam, calibrated: boolean): Beam {
 export function pictureOf(made: MadeBeam, weighting: string): BeamPicture | null {
   const { half, ellipse } = made;
   if (half === null) return null;
-  const finer = ellipse.minor > 0 ? Math.ceil((half.cell * PICTURE_PIXELS_PER_BEAM) / ellipse.minor) : 1;
-  const step = 1 / Math.max(1, Math.min(finer, 8));
+  const wanted = ellipse.minor > 0 ? Math.ceil((half.cell * PICTURE_PIXELS_PER_BEAM) / ellipse.minor) : 1;
+  const finer = Math.max(1, Math.min(wanted, 8));
   // The interpolation reaches a few pixels beyond the picture's edge.
-  const middle = Math.min((PICTURE_PIXELS - 1) / 2, Math.floor((half.reach - 8) / step));
+  const middle = Math.min((PICTURE_PIXELS - 1) / 2, (half.reach - KERNEL - 2) * finer);
   const size = 2 * middle + 1;
-  const pixels = new Float32Array(size * size);
-  for (let row = 0; row < size; row++) {
-    for (let column = 0; column < size; column++) {
-      // East is to the left.
-      const east = (middle - column) * step;
-      const north = (row - middle) * step;
-      pixels[row * size + column] =
-        step === 1 ? beamPixel(half, east, north) : interpolatedPixel(half, east, north);
-    }
-  }
-  return { weighting, size, cellArcsec: (half.cell * step) / RADIANS_PER_ARCSEC, pixels };
+  const westFirst = finerMiddle(half, middle, finer);
+  // East is to the left.
+  const pixels = westFirst.map((_, at) => westFirst[at - (at % size) + size - 1 - (at % size)]!);
+  return { weighting, size, cellArcsec: half.cell / finer / RADIANS_PER_ARCSEC, pixels };
 }

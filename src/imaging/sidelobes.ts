@@ -1,4 +1,5 @@
 /** The sidelobes of a dirty beam inside the field: the worst of them, where it is, and their rms. */
+import { interpolatedPixel, KERNEL } from "./beam-resample.ts";
 import { beamPixel, type HalfBeam } from "./beam-transform.ts";
 import type { Ellipse } from "./main-lobe.ts";
 
@@ -60,6 +61,7 @@ export function findSidelobes(
       (column, row) => interpolatedPixel(beam, column, row),
       beam.reach - KERNEL,
       0.5,
+      5,
     );
     if (Math.abs(closer.value) > Math.abs(best.value)) best = closer;
   }
@@ -69,7 +71,8 @@ export function findSidelobes(
       start,
       (column, row) => exact(column * beam.cell, row * beam.cell),
       beam.reach - KERNEL,
-      0.2,
+      0.1,
+      1,
     );
   }
   return {
@@ -111,9 +114,6 @@ function keepLargest(found: { value: number; column: number; row: number }[]): n
   return found.length < CANDIDATES ? 0 : Math.abs(found.at(-1)!.value);
 }
 
-/** Half width of the interpolation kernel, pixels. */
-const KERNEL = 6;
-
 interface Extremum {
   readonly value: number;
   /** pixels from the centre, not whole */
@@ -124,17 +124,18 @@ interface Extremum {
 /**
  * From a place near an extremum to its top, by parabolas through its neighbours.
  * @param reach pixels from the centre beyond which nothing is asked
- * @param firstStep pixels to the neighbours, halved until it is a tenth
+ * @param firstStep pixels to the neighbours, halved each round
  */
 function climb(
   start: Extremum,
   at: (column: number, row: number) => number,
   reach: number,
   firstStep: number,
+  rounds: number,
 ): Extremum {
   const sign = Math.sign(start.value);
   let best = start;
-  for (let step = firstStep; step > 0.1; step /= 2) {
+  for (let round = 0, step = firstStep; round < rounds; round++, step /= 2) {
     const { column, row } = best;
     if (Math.max(Math.abs(column), Math.abs(row)) + 2 * step > reach) break;
     const centre = sign * best.value;
@@ -151,32 +152,4 @@ function vertex(left: number, middle: number, right: number): number {
   const curvature = left - 2 * middle + right;
   if (!(curvature < 0)) return right > left ? 1 : right < left ? -1 : 0;
   return Math.min(1, Math.max(-1, (0.5 * (left - right)) / curvature));
-}
-
-/**
- * The beam between its pixels, where at least six lie on every side: it is band-limited, and sampled above its band,
- * so that sincs under a window give it to about 1e-3.
- */
-export function interpolatedPixel(beam: HalfBeam, column: number, row: number): number {
-  const c0 = Math.floor(column);
-  const r0 = Math.floor(row);
-  let sum = 0;
-  let weights = 0;
-  for (let r = r0 - KERNEL + 1; r <= r0 + KERNEL; r++) {
-    const alongRow = kernel(row - r);
-    if (alongRow === 0) continue;
-    for (let c = c0 - KERNEL + 1; c <= c0 + KERNEL; c++) {
-      const weight = alongRow * kernel(column - c);
-      weights += weight;
-      sum += weight * beamPixel(beam, c, r);
-    }
-  }
-  return sum / weights;
-}
-
-function kernel(x: number): number {
-  if (x === 0) return 1;
-  const t = Math.PI * x;
-  const edge = (x / KERNEL) ** 2;
-  return edge >= 1 ? 0 : (Math.sin(t) / t) * Math.exp(-(x * x) / 8) * (1 - edge);
 }
