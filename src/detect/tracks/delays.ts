@@ -8,7 +8,7 @@ import { clock, makeEvent, productsOf, spanOf } from "./make-event.ts";
 import { intervalsOf, scopeOf } from "./phase-jumps.ts";
 import { phaseStep, type Series } from "./step-search.ts";
 
-const THRESHOLD = 8.5;
+const THRESHOLD = 10;
 /** Phase across the band that is worth telling, degrees. */
 const LEAST_ACROSS = 10;
 const LEAST_ACROSS_STATIC = 30;

@@ -8,6 +8,7 @@ import {
   type Series,
   type Solver,
   type Steps,
+  sidesOf,
   significanceOf,
   stepsOf,
   WINDOWS,
@@ -38,6 +39,9 @@ export interface StepSettings {
 }
 
 const MOST_STEPS = 24;
+/** From scan to scan, where the sky and the air have moved on meanwhile. */
+const ACROSS_WINDOWS: readonly number[] = [1, 4, 16];
+const ACROSS_THRESHOLD = 10;
 /** The step must be shared by this much of the weight of the antenna's baselines. */
 const LEAST_AGREEMENT = 0.6;
 
@@ -52,12 +56,16 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
   const windows = WINDOWS.filter((window) => window <= longest);
   const groups: Group[] = groupsOf(series).map((members) => ({
     members,
-    windows: windows.map((window) =>
+    windows: [
+      ...windows.map((window) => ({ window, across: false })),
+      ...ACROSS_WINDOWS.map((window) => ({ window, across: true })),
+    ].map(({ window, across }) =>
       stepsOf(
         grid,
         members.map((i) => series[i]!),
         window,
         settings.solve,
+        across,
       ),
     ),
   }));
@@ -121,6 +129,7 @@ function strongest(grid: Grid, groups: readonly Group[], settings: StepSettings)
         if (significance < settings.threshold || significance <= (best?.significance ?? 0)) continue;
         if (steps.barred[i] === 1 || settings.skip.has(antenna) || steps.agreement[i]! < LEAST_AGREEMENT)
           continue;
+        if (steps.across && significance < ACROSS_THRESHOLD) continue;
         if (localSignificance(steps, antennas, at, antenna) < settings.threshold) continue;
         best = { group: g, window: w, at, antenna, significance };
       }
@@ -134,7 +143,7 @@ function isSharp(grid: Grid, { windows }: Group, step: FoundStep): boolean {
   const antennas = grid.antennas.length;
   for (const steps of windows) {
     const at = step.at * antennas + step.antenna;
-    if (!(steps.error[at]! < Math.abs(step.phase) / 5)) continue;
+    if (steps.across || !(steps.error[at]! < Math.abs(step.phase) / 5)) continue;
     return Math.abs(wrap(steps.phase[at]! - step.phase)) < Math.abs(step.phase) / 2;
   }
   return true;
@@ -174,35 +183,47 @@ function settle(
   const { members, windows } = groups[best.group]!;
   const chosen = windows[best.window]!;
   const all = members.map((i) => series[i]!);
-  for (const steps of windows) {
-    if (steps.window > chosen.window) break;
-    const reach = chosen.window;
-    fillSteps(grid, all, steps, settings.solve, [best.at - reach, best.at + reach + 1], true);
+  if (!chosen.across) {
+    for (const steps of windows) {
+      if (steps.window > chosen.window || steps.across) continue;
+      const around = [best.at - chosen.window, best.at + chosen.window + 1] as const;
+      fillSteps(grid, all, steps, settings.solve, around, true);
+    }
   }
-  const at = sharpest(grid, windows, best);
-  const segment = grid.segments.find(({ start, end }) => at > start && at < end)!;
-  const left: [number, number] = [Math.max(segment.start, at - chosen.window), at];
-  const right: [number, number] = [at, Math.min(segment.end, at + chosen.window)];
+  const at = chosen.across ? best.at : sharpest(grid, windows, best);
+  const [left, right] = sidesOf(grid, at, chosen.window)!;
   const measure = (which: readonly number[]) => {
-    const solved = settings.solve(
-      grid,
-      which.map((i) => series[i]!),
-      left,
-      right,
-    );
+    const some = which.map((i) => series[i]!);
+    const solved = settings.solve(grid, some, left, right, true);
     return { phase: solved.phase[best.antenna]!, error: solved.error[best.antenna]! };
   };
-  const whole = measure(members);
-  // Series of a step: those on the side of it rather than on that of none.
-  const others = series.map((_, i) => i).filter((i) => !members.includes(i));
-  const stepping = [...members, ...others].filter((i) => {
-    const { phase } = measure([i]);
-    return Math.abs(wrap(phase - whole.phase)) < Math.abs(whole.phase) / 2;
-  });
-  const which = stepping.length === 0 ? members : stepping.sort((a, b) => a - b);
+  const which = stepping(series.length, members, measure);
   const { phase, error } = measure(which);
   const scale = Math.max(chosen.scale[best.antenna]!, error);
   return { antenna: best.antenna, at, phase, error: scale, significance: best.significance, series: which };
+}
+
+/** Which of the series step: those on the side of the clearest one rather than on that of none. */
+function stepping(
+  count: number,
+  members: readonly number[],
+  measure: (which: readonly number[]) => { phase: number; error: number },
+): readonly number[] {
+  const each = Array.from({ length: count }, (_, i) => measure([i]));
+  let clearest = measure(members);
+  for (const i of members) {
+    const one = each[i]!;
+    if (Math.abs(one.phase) > 5 * one.error && Math.abs(one.phase) > 1.5 * Math.abs(clearest.phase))
+      clearest = one;
+  }
+  const which = each.flatMap(({ phase, error }, i) => {
+    if (Number.isNaN(phase)) return [];
+    const tells = error < Math.abs(clearest.phase) / 4;
+    // A series too noisy to tell goes with those that it was found with.
+    if (!tells) return members.includes(i) ? [i] : [];
+    return Math.abs(wrap(phase - clearest.phase)) < Math.abs(clearest.phase) / 2 ? [i] : [];
+  });
+  return which.length === 0 ? members : which;
 }
 
 /** The instant, by the shortest window that shows the step clearly. */
@@ -211,7 +232,7 @@ function sharpest(grid: Grid, windows: readonly Steps[], best: Candidate): numbe
   const reach = windows[best.window]!.window;
   const sense = Math.sign(windows[best.window]!.phase[best.at * antennas + best.antenna]!);
   for (const steps of windows) {
-    if (steps.window > reach) break;
+    if (steps.window > reach || steps.across) continue;
     let at = -1;
     let most = 5;
     for (let t = Math.max(1, best.at - reach); t <= Math.min(grid.times.length - 1, best.at + reach); t++) {

@@ -9,6 +9,8 @@ import { phaseStep, stepsOf } from "./step-search.ts";
 const OUT_OF_FAMILY = 2.5;
 const LEAST_DEGREES = 4;
 const FEWEST_STEPS = 12;
+/** Relative error of a robust sigma times sqrt(n), for differences of neighbours. */
+const ROBUST_ERROR = 1.7;
 
 /** @returns the events, and the antennas (indices) they name */
 export function phaseNoise(grid: Grid): { events: DetectedEvent[]; antennas: Set<number> } {
@@ -24,7 +26,7 @@ export function phaseNoise(grid: Grid): { events: DetectedEvent[]; antennas: Set
     if (!(coarse[a]!.rms < 0.8 * rms)) continue;
     const size = Math.sqrt(rms * rms - typical * typical) / Math.SQRT2;
     if (degrees(size) < LEAST_DEGREES) continue;
-    const significance = (Math.log(rms / typical) * Math.sqrt(count)) / 1.2;
+    const significance = (Math.log(rms / typical) * Math.sqrt(count)) / ROBUST_ERROR;
     if (significance < 6) continue;
     antennas.add(a);
     const number = grid.antennas[a]!;
@@ -35,7 +37,7 @@ export function phaseNoise(grid: Grid): { events: DetectedEvent[]; antennas: Set
         cause: "antenna",
         scope: { antennas: [number] },
         size: degrees(size),
-        sizeError: degrees(size) * (1.2 / Math.sqrt(count)),
+        sizeError: degrees(size) * (ROBUST_ERROR / Math.sqrt(count)),
         unit: "deg",
         significance,
         evidence:

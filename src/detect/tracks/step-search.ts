@@ -23,6 +23,8 @@ export const WINDOWS: readonly number[] = [1, 2, 4, 8, 16, 32];
 /** Phase steps at every instant; (instants x antennas). An instant t lies before integration t. */
 export interface Steps {
   readonly window: number;
+  /** from one scan to the next of its field, rather than within scans */
+  readonly across: boolean;
   readonly phase: Float32Array;
   readonly error: Float32Array;
   readonly agreement: Float32Array;
@@ -32,20 +34,28 @@ export interface Steps {
   readonly scale: Float64Array;
 }
 
-/** Solves a step between two ranges of integrations [start, end) for antennas. */
+/** Solves a step between two ranges of integrations [start, end) for antennas; thorough: for its exact size. */
 export type Solver = (
   grid: Grid,
   series: readonly Series[],
   left: readonly [number, number],
   right: readonly [number, number],
+  thorough?: boolean,
 ) => AntennaPhases;
 
 /** Steps over one window for the sum of some series. */
-export function stepsOf(grid: Grid, series: readonly Series[], window: number, solve: Solver): Steps {
+export function stepsOf(
+  grid: Grid,
+  series: readonly Series[],
+  window: number,
+  solve: Solver,
+  across = false,
+): Steps {
   const { times, antennas } = grid;
   const size = times.length * antennas.length;
   const steps = {
     window,
+    across,
     phase: new Float32Array(size).fill(Number.NaN),
     error: new Float32Array(size).fill(Number.NaN),
     agreement: new Float32Array(size),
@@ -73,30 +83,52 @@ export function fillSteps(
 ): void {
   const antennas = grid.antennas.length;
   const { window } = steps;
+  const keep = (t: number, solved: AntennaPhases) => {
+    steps.phase.set(solved.phase, t * antennas);
+    steps.error.set(solved.error, t * antennas);
+    steps.agreement.set(solved.agreement, t * antennas);
+  };
+  if (steps.across) {
+    for (const { start } of grid.segments) {
+      const sides = start >= from && start < to ? sidesOf(grid, start, window) : null;
+      if (sides !== null) keep(start, solve(grid, series, ...sides));
+    }
+    return;
+  }
   const stride = every ? 1 : strideOf(window);
   for (const segment of grid.segments) {
     const last = Math.min(to, segment.end - window + 1);
     for (let t = Math.max(from, segment.start + window); t < last; t++) {
-      const at = t * antennas;
       if ((t - segment.start - window) % stride !== 0) {
-        steps.phase.fill(Number.NaN, at, at + antennas);
+        steps.phase.fill(Number.NaN, t * antennas, (t + 1) * antennas);
         continue;
       }
-      const solved = solve(grid, series, [t - window, t], [t, t + window]);
-      steps.phase.set(solved.phase, at);
-      steps.error.set(solved.error, at);
-      steps.agreement.set(solved.agreement, at);
+      keep(t, solve(grid, series, [t - window, t], [t, t + window]));
     }
   }
 }
 
+/** The integrations on either side of an instant, within its scan or, at its start, in the scan before of its field. */
+export function sidesOf(
+  grid: Grid,
+  at: number,
+  window: number,
+): readonly [readonly [number, number], readonly [number, number]] | null {
+  const place = grid.segments.findIndex(({ start, end }) => at >= start && at < end);
+  const segment = grid.segments[place]!;
+  const right = [at, Math.min(segment.end, at + window)] as const;
+  if (at > segment.start) return [[Math.max(segment.start, at - window), at], right];
+  const before = grid.segments.slice(0, place).findLast(({ field }) => field === segment.field);
+  return before === undefined ? null : [[Math.max(before.start, before.end - window), before.end], right];
+}
+
 /** Antenna phases of the mean of one range of integrations over that of another. */
-export const phaseStep: Solver = (grid, series, left, right) =>
-  antennaPhases(stepPhasors(grid, series, left, right), grid.antennas.length);
+export const phaseStep: Solver = (grid, series, left, right, thorough) =>
+  antennaPhases(stepPhasors(grid, series, left, right), grid.antennas.length, thorough);
 
 /** Antenna gains, as natural logarithms, of the one over the other. */
-export const gainStep: Solver = (grid, series, left, right) =>
-  antennaGains(stepRatios(grid, series, left, right), grid.antennas.length);
+export const gainStep: Solver = (grid, series, left, right, thorough) =>
+  antennaGains(stepRatios(grid, series, left, right), grid.antennas.length, thorough);
 
 function stepRatios(
   grid: Grid,
@@ -193,19 +225,33 @@ function meanOf(
   return true;
 }
 
-export function fillScale(steps: Steps, antennas: number): void {
+function fillScale(steps: Steps, antennas: number): void {
   const own = Array.from({ length: antennas }, (_, a) => {
     const values: number[] = [];
     for (let i = a; i < steps.phase.length; i += antennas) {
       const value = steps.phase[i]!;
       if (!Number.isNaN(value)) values.push(value);
     }
-    return values.length < 3 ? Number.NaN : Math.hypot(robustSigma(values), median(values));
+    return values;
   });
-  const typical = median(own);
+  const spread = own.map((values) =>
+    values.length < FEWEST ? Number.NaN : Math.hypot(robustSigma(values), median(values)),
+  );
+  const known = spread.filter((value) => !Number.isNaN(value)).length;
+  // With few instants, what all antennas do at them.
+  const typical = known > antennas / 2 ? median(spread) : pooledSigma(own.flat());
   for (let a = 0; a < antennas; a++) {
-    steps.scale[a] = Number.isNaN(typical) ? Number.NaN : Math.max(typical, own[a] || 0);
+    steps.scale[a] = Number.isNaN(typical) ? Number.NaN : Math.max(typical, spread[a] || 0);
   }
+}
+
+/** Instants that tell an antenna's own scale. */
+const FEWEST = 4;
+const FEWEST_POOLED = 8;
+
+/** Steps are about the median antenna already. */
+function pooledSigma(values: readonly number[]): number {
+  return values.length < FEWEST_POOLED ? Number.NaN : 1.4826 * median(values.map(Math.abs));
 }
 
 /** Windows on either side that tell how quickly things move at the time. */
@@ -213,6 +259,7 @@ const LOCAL_WINDOWS = 6;
 
 /** The same against what the antenna and the others do in the neighbourhood too. */
 export function localSignificance(steps: Steps, antennas: number, t: number, a: number): number {
+  if (steps.across) return significanceOf(steps, antennas, t, a);
   const reach = LOCAL_WINDOWS * Math.max(2, steps.window);
   const own: number[] = [];
   const array: number[] = [];
