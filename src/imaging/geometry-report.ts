@@ -17,6 +17,8 @@ import { momentsOf } from "./w-report.ts";
 const PLANE_MOMENTS = 24;
 /** An antenna is on a ridge when it is this many times as far off the plane as the others. */
 const RIDGE = 5;
+/** Cells of the tracks that are compared with the tables: more change nothing. */
+const MOST_CELLS = 50_000;
 const DEGREES = 180 / Math.PI;
 
 export interface GeometryReport {
@@ -32,7 +34,7 @@ export interface GeometryReport {
 export function judgeTracks(sampling: Sampling): GeometryReport {
   const { survey, field } = sampling;
   const { tracks, baselines, dataset } = survey;
-  const cells = Array.from(tracks.u.keys()).filter((cell) => tracks.field[cell] === field.id);
+  const cells = thinned(Array.from(tracks.field.keys()).filter((cell) => tracks.field[cell] === field.id));
   const samples = {
     antenna1: cells.map((cell) => baselines[tracks.baseline[cell]!]!.antenna1),
     antenna2: cells.map((cell) => baselines[tracks.baseline[cell]!]!.antenna2),
@@ -43,6 +45,16 @@ export function judgeTracks(sampling: Sampling): GeometryReport {
   };
   const judged = judgeGeometry(dataset.array, field, samples, sampling.meanFrequency);
   return { judged, ...planeOf(sampling, judged), phases: phasePositions(sampling) };
+}
+
+/** Every so many of the cells, at places that follow no period of theirs. */
+function thinned(cells: readonly number[]): readonly number[] {
+  const stride = cells.length / MOST_CELLS;
+  if (stride <= 1) return cells;
+  return Array.from({ length: MOST_CELLS }, (_, k) => {
+    const jitter = (k * 0.6180339887498949) % 1;
+    return cells[Math.min(cells.length - 1, Math.floor((k + jitter) * stride))]!;
+  });
 }
 
 /** The antennas off the plane of the others, by the u, v, w of the file. */

@@ -144,23 +144,48 @@ export interface Moment {
 export function momentsOf(sampling: Sampling, most = MOST_SNAPSHOTS): Moment[] {
   const { survey, field } = sampling;
   const { tracks } = survey;
-  const cells = Array.from({ length: tracks.cells }, (_, cell) => cell).filter(
+  const cells = Array.from(tracks.field.keys()).filter(
     (cell) =>
       tracks.field[cell] === field.id && Number.isFinite(tracks.time[cell]!) && usable(sampling, cell),
   );
-  cells.sort((a, b) => tracks.time[a]! - tracks.time[b]! || a - b);
-  const jitter = (0.25 * survey.integration) / SECONDS_PER_DAY;
-  const starts: number[] = [];
-  for (let i = 0; i < cells.length; i++) {
-    const time = tracks.time[cells[i]!]!;
-    if (starts.length === 0 || time - tracks.time[cells[starts.at(-1)!]!]! > jitter) starts.push(i);
-  }
+  const times = Float64Array.from(cells, (cell) => tracks.time[cell]!).sort();
+  const jitter = survey.integration > 0 ? (0.25 * survey.integration) / SECONDS_PER_DAY : 0;
+  const starts = startsOf(times, jitter);
   const count = Math.min(most, starts.length);
-  return Array.from({ length: count }, (_, k) => {
+  const moments = Array.from({ length: count }, (_, k) => {
     const which = Math.floor((k * starts.length) / count);
-    const members = cells.slice(starts[which]!, starts[which + 1] ?? cells.length);
-    return { start: tracks.time[members[0]!]!, end: tracks.time[members.at(-1)!]!, cells: members };
+    const end = (starts[which + 1] ?? times.length) - 1;
+    return { start: times[starts[which]!]!, end: times[end]!, cells: [] as number[] };
   });
+  for (const cell of cells) {
+    const moment = momentAt(moments, tracks.time[cell]!);
+    if (moment !== undefined) moment.cells.push(cell);
+  }
+  return moments;
+}
+
+/** Places in ascending times at which a new moment starts: more than `jitter` days after the last one's start. */
+function startsOf(times: Float64Array, jitter: number): number[] {
+  const starts: number[] = [];
+  for (let i = 0; i < times.length; i++) {
+    if (starts.length === 0 || times[i]! - times[starts.at(-1)!]! > jitter) starts.push(i);
+  }
+  return starts;
+}
+
+function momentAt<M extends { readonly start: number; readonly end: number }>(
+  moments: readonly M[],
+  time: number,
+): M | undefined {
+  let low = 0;
+  let high = moments.length;
+  while (low < high) {
+    const middle = (low + high) >> 1;
+    if (moments[middle]!.start <= time) low = middle + 1;
+    else high = middle;
+  }
+  const found = moments[low - 1];
+  return found !== undefined && time <= found.end ? found : undefined;
 }
 
 function usable(sampling: Sampling, cell: number): boolean {
