@@ -8,7 +8,7 @@ import type { RankedLimit, SourceLevel } from "./limits.ts";
 import type { Plan } from "./plan.ts";
 import { frequencyRange, type Sampling } from "./sampling.ts";
 import type { SmearingResult } from "./smearing.ts";
-import { brightness } from "./thermal.ts";
+import { brightness, medianKnown } from "./thermal.ts";
 import type { WLoss } from "./w-loss.ts";
 
 /** What is lost below this at the edge of the field limits no image: common practice, no source. */
@@ -85,12 +85,11 @@ function edgeDynamicRange(samples: EdgeSamples, radius: number, { east, north }:
 /** What errors are measured against. */
 export function sourceLevel(sampling: Sampling): SourceLevel {
   const { survey } = sampling;
-  const noise = survey.levels.sigma.filter((sigma) => sigma > 0).sort();
   const { low, high } = frequencyRange(survey.dataset, sampling.channelUsed);
   const widths = high.map((frequency, i) => frequency - low[i]!).filter((width) => width > 0);
   return {
     brightness: sampling.totalWeight > 0 ? brightness(sampling) : Number.NaN,
-    sampleNoise: noise.length === 0 ? Number.NaN : noise[noise.length >> 1]!,
+    sampleNoise: medianKnown(survey.levels.sigma, Number.MIN_VALUE),
     bandwidth: widths.length === 0 ? 0 : widths.reduce((sum, width) => sum + width, 0) / widths.length,
   };
 }

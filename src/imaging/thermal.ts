@@ -32,7 +32,7 @@ export function fillWeightedVariance(sampling: Sampling): Float64Array {
       }
     }
   }
-  const fallback = medianKnown(variance);
+  const fallback = medianKnown(variance, 0);
   for (let at = 0; at < variance.length; at++) if (!(variance[at]! >= 0)) variance[at] = fallback;
   return variance;
 }
@@ -59,9 +59,22 @@ function typicalWeights(sampling: Sampling): Float64Array {
   return sum;
 }
 
-function medianKnown(values: Float64Array): number {
-  const known = values.filter((value) => value >= 0).sort();
-  return known.length === 0 ? Number.NaN : known[known.length >> 1]!;
+/** Levels can be millions: every so many of them has the median of all. */
+const MEDIAN_VALUES = 100_000;
+
+function strideOf(length: number): number {
+  return Math.max(1, Math.floor(length / MEDIAN_VALUES));
+}
+
+/** Median of those that are `least` or more, NaN where none is; of very many, of every so many. */
+export function medianKnown(values: Float64Array | Float32Array, least: number): number {
+  const known: number[] = [];
+  for (let i = 0; i < values.length; i += strideOf(values.length))
+    if (values[i]! >= least) known.push(values[i]!);
+  // Where almost nothing is known, a stride may miss it.
+  if (known.length === 0) return values.find((value) => value >= least) ?? Number.NaN;
+  known.sort((a, b) => a - b);
+  return known[known.length >> 1]!;
 }
 
 /**
@@ -143,7 +156,8 @@ export function measuredSefd(sampling: Sampling): number {
   const setup = dataset.setups[0];
   if (dataset.unit !== "Jy" || setup === undefined || !(survey.integration > 0)) return Number.NaN;
   const found: number[] = [];
-  for (let at = 0; at < levels.sigma.length; at += polarizations) {
+  const stride = polarizations * strideOf(levels.sigma.length / polarizations);
+  for (let at = 0; at < levels.sigma.length; at += stride) {
     const width = setup.channelWidths[Math.floor(at / polarizations / channels) % subbands]!;
     for (const product of products) {
       const sigma = levels.sigma[at + product]!;
