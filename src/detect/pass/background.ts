@@ -20,7 +20,9 @@ const SHAPE_ROUNDS = 2;
 /** Channels from which on the amplitude of a row may change along the band, */
 const TILT_COLUMNS = 8;
 /** where a source at the edge of sight could be as bright as all there is, and would then be off by this many sigmas. */
-const LEAST_RUN = 0.15;
+const LEAST_RUN = 0.2;
+/** Of that change, what is likely of all the sources in sight together. */
+const LIKELY_RUN = 0.3;
 /** A channel does not tell the amplitude of a block if this share of its samples exceed this power (of noise, 5 in 100), */
 const HELD_SHARE = 0.6;
 const HELD_POWER = 3;
@@ -80,11 +82,10 @@ export class Background {
   private fitShapes(plane: Plane, noise: number, steepest: (row: number) => number, swiftest: number): void {
     const { rows, columns } = plane;
     this.bandpass.fit(plane, noise, swiftest);
-    // How far the phase of a source at the edge of sight runs from the middle of the band, rms.
-    const run = (0.5 * columns * steepest(0)) / Math.sqrt(3);
-    this.rows.tilted =
-      columns >= TILT_COLUMNS &&
-      this.bandpass.amplitude * Math.min(1, run) > LEAST_RUN * Math.sqrt(noise / 2);
+    // How far the phase of a source at the edge of sight runs from the middle of the band to its end.
+    const change = this.bandpass.amplitude * Math.min(1, 0.5 * columns * steepest(0));
+    this.rows.tilted = columns >= TILT_COLUMNS && change > LEAST_RUN * Math.sqrt(noise);
+    this.rows.stiffness = noise / (LIKELY_RUN * change) ** 2;
     this.fitRows(plane, noise);
     for (let round = 0; this.bandpass.fitted && round < SHAPE_ROUNDS; round++) {
       this.refineBandpass(plane, noise);

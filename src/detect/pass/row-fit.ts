@@ -14,8 +14,10 @@ const MOST = 0.75;
 export const INLIER = 5;
 
 export class RowFit {
-  /** whether the amplitude of a row may change along the band */
+  /** whether the amplitude of a row may change along the band, */
   tilted = false;
+  /** and how stiff it is: noise over the squared change that is likely, per step of `along` */
+  stiffness = 0;
   private readonly bandpass: Bandpass;
   /** normal equations of a row: the shape's square; V times its conjugate, real and imaginary; the same times the place in the band */
   private readonly sums = new Float64Array(7);
@@ -66,7 +68,7 @@ export class RowFit {
       s2 += size[c]! * along[c]! ** 2;
     }
     const middle = s1 / s0;
-    const spread = s2 - s1 * middle;
+    const spread = s2 + this.stiffness - s1 * middle;
     for (let c = 0; c < columns; c++) {
       const tilt = tilted && spread > 0 ? (along[c]! - middle) ** 2 / spread : 0;
       leverages[c] = 1 / Math.max(0.1, 1 - size[c]! * (1 / s0 + tilt));
@@ -133,7 +135,7 @@ export class RowFit {
     const r0 = sums[1]!;
     const i0 = sums[2]!;
     const s1 = sums[3]!;
-    const s2 = sums[4]!;
+    const s2 = sums[4]! + this.stiffness;
     const r1 = sums[5]!;
     const i1 = sums[6]!;
     const determinant = s0 * s2 - s1 * s1;
