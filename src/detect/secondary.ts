@@ -94,10 +94,10 @@ function concerns(cause: Selection, shadow: Selection): boolean {
   );
 }
 
-/** The same stretch of time, not all of it. */
+/** The shadow lies in the interference's time, which is not all there is. */
 function within(cause: Selection["time"], shadow: Selection["time"], slack: number): boolean {
   if (cause === null || shadow === null) return false;
-  return Math.abs(cause[0] - shadow[0]) <= 2 * slack && Math.abs(cause[1] - shadow[1]) <= 2 * slack;
+  return cause[0] - 2 * slack <= shadow[0] && shadow[1] <= cause[1] + 2 * slack;
 }
 
 /** Overlap in time, an edge within the slack counting. */

@@ -79,9 +79,11 @@ function slopeless(plane: Grid["planes"][number]): (i: number) => boolean {
 function eventOf(grid: Grid, slope: Slope): DetectedEvent {
   const { times, antennas } = grid;
   const step = channelStep(grid, slope.series);
-  const size = (slope.phase / (2 * Math.PI * step)) * 1e9;
-  const error = Math.abs((slope.error / (2 * Math.PI * step)) * 1e9);
   const few = antennas.length < 3;
+  // Two antennas share what their baseline shows.
+  const share = few ? (slope.antenna === 0 ? 2 : -2) : 1;
+  const size = ((share * slope.phase) / (2 * Math.PI * step)) * 1e9;
+  const error = Math.abs(((share * slope.error) / (2 * Math.PI * step)) * 1e9);
   const [start, end] = slope.run;
   const scope = {
     ...scopeOf(grid, slope.antenna),
@@ -91,7 +93,7 @@ function eventOf(grid: Grid, slope: Slope): DetectedEvent {
   const who = few ? "the baseline" : `antenna ${antennas[slope.antenna]!}`;
   const when =
     scope.time === null ? "throughout" : `from ${clock(times[start]!)} to ${clock(times[end - 1]!)} UTC`;
-  const across = ((slope.phase * 180) / Math.PI) * grid.survey.dataset.shape.channels;
+  const across = ((share * slope.phase * 180) / Math.PI) * grid.survey.dataset.shape.channels;
   return makeEvent(grid, {
     kind: "delay-slope",
     cause: few ? "baseline" : "antenna",

@@ -190,7 +190,9 @@ function settle(
       fillSteps(grid, all, steps, settings.solve, around, true);
     }
   }
-  const at = chosen.across ? best.at : sharpest(grid, windows, best);
+  const rough = chosen.across ? { at: best.at, window: 1 } : sharpest(grid, windows, best);
+  const at =
+    rough.window === 1 ? rough.at : likeliest(grid, all, settings, best.antenna, rough.at, chosen.window);
   const [left, right] = sidesOf(grid, at, chosen.window)!;
   const measure = (which: readonly number[]) => {
     const some = which.map((i) => series[i]!);
@@ -227,7 +229,11 @@ function stepping(
 }
 
 /** The instant, by the shortest window that shows the step clearly. */
-function sharpest(grid: Grid, windows: readonly Steps[], best: Candidate): number {
+function sharpest(
+  grid: Grid,
+  windows: readonly Steps[],
+  best: Candidate,
+): { readonly at: number; readonly window: number } {
   const antennas = grid.antennas.length;
   const reach = windows[best.window]!.window;
   const sense = Math.sign(windows[best.window]!.phase[best.at * antennas + best.antenna]!);
@@ -241,9 +247,55 @@ function sharpest(grid: Grid, windows: readonly Steps[], best: Candidate): numbe
       const same = Math.sign(phase) === sense || Math.abs(phase) > 2.6;
       if (same && significance > most) [at, most] = [t, significance];
     }
-    if (at >= 0) return at;
+    if (at >= 0) return { at, window: steps.window };
   }
-  return best.at;
+  return { at: best.at, window: reach };
+}
+
+/** The instant at which two levels fit the antenna's integrations best, where no single integration shows the step. */
+function likeliest(
+  grid: Grid,
+  series: readonly Series[],
+  settings: StepSettings,
+  antenna: number,
+  at: number,
+  window: number,
+): number {
+  const segment = grid.segments.find(({ start, end }) => at > start && at < end);
+  if (segment === undefined) return at;
+  const [from, to] = [Math.max(segment.start, at - window), Math.min(segment.end, at + window)];
+  const left = [from, at] as const;
+  const levels: number[] = [];
+  const weights: number[] = [];
+  for (let t = from; t < to; t++) {
+    const solved = settings.solve(grid, series, left, [t, t + 1]);
+    levels.push(solved.phase[antenna]!);
+    weights.push(1 / solved.error[antenna]! ** 2);
+  }
+  let best = at;
+  let most = 0;
+  for (let t = from + 1; t < to; t++) {
+    const before = weightedMean(levels, weights, 0, t - from);
+    const after = weightedMean(levels, weights, t - from, to - from);
+    // What two levels explain more than one.
+    const gain =
+      (before.weight * after.weight * wrap(after.mean - before.mean) ** 2) / (before.weight + after.weight);
+    if (gain > most) [best, most] = [t, gain];
+  }
+  return best;
+}
+
+/** About the first value, so that angles next to each other do not wrap. */
+function weightedMean(values: readonly number[], weights: readonly number[], from: number, to: number) {
+  let [c, s, weight] = [0, 0, 0];
+  for (let i = from; i < to; i++) {
+    const [value, w] = [values[i]!, weights[i]!];
+    if (Number.isNaN(value) || !(w > 0)) continue;
+    c += w * Math.cos(value);
+    s += w * Math.sin(value);
+    weight += w;
+  }
+  return { mean: Math.atan2(s, c), weight };
 }
 
 function turnBack(grid: Grid, series: readonly Series[], step: FoundStep, gains: boolean): void {

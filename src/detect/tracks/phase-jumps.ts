@@ -36,33 +36,76 @@ export function phaseJumps(grid: Grid, skip: ReadonlySet<number>): DetectedEvent
   return intervalsOf(steps).map((interval) => eventOf(grid, interval));
 }
 
-/** Each step with the next one of its antenna and products that undoes it. */
+/** Steps that may together undo one. */
+const MOST_RETURNS = 3;
+
+/** Each step with the next ones of its antenna and products that undo it. */
 export function intervalsOf(steps: readonly FoundStep[]): Interval[] {
-  const sorted = [...steps].sort((a, b) => a.antenna - b.antenna || a.at - b.at);
+  const sorted = joined(steps);
   const used = new Set<FoundStep>();
   const intervals: Interval[] = [];
   for (const [i, step] of sorted.entries()) {
     if (used.has(step)) continue;
-    const back = sorted
-      .slice(i + 1)
-      .find((other) => !used.has(other) && other.antenna === step.antenna && undoes(step, other));
-    if (back !== undefined) used.add(back);
-    intervals.push({ step, back: back ?? null });
+    const later = sorted.slice(i + 1).filter((other) => !used.has(other) && alike(step, other));
+    const single = later.find((other) => undoes(step, other));
+    const returns = single === undefined ? returnsOf(step, later) : [single];
+    for (const one of returns) used.add(one);
+    intervals.push({ step, back: returns.length === 0 ? null : returns.reduce(together) });
   }
   return intervals;
 }
 
+function alike(step: FoundStep, other: FoundStep): boolean {
+  return step.antenna === other.antenna && step.series.join() === other.series.join();
+}
+
+/** A step within an integration, or over two, is one: halves next to each other the same way. */
+function joined(steps: readonly FoundStep[]): FoundStep[] {
+  const sorted = [...steps].sort((a, b) => a.antenna - b.antenna || a.at - b.at);
+  const out: FoundStep[] = [];
+  for (const step of sorted) {
+    const last = out.at(-1);
+    if (last !== undefined && alike(last, step) && step.at - last.at <= 1 && last.phase * step.phase > 0) {
+      const larger = Math.abs(last.phase) >= Math.abs(step.phase) ? last : step;
+      out[out.length - 1] = { ...together(last, step), at: larger.at };
+    } else out.push(step);
+  }
+  return out;
+}
+
+/** One after the other; the time is that of the last. */
+function together(a: FoundStep, b: FoundStep): FoundStep {
+  return {
+    ...b,
+    phase: a.phase + b.phase,
+    error: Math.hypot(a.error, b.error),
+    significance: Math.max(a.significance, b.significance),
+  };
+}
+
+function returnsOf(step: FoundStep, later: readonly FoundStep[]): readonly FoundStep[] {
+  let sum: FoundStep | null = null;
+  for (const [i, other] of later.slice(0, MOST_RETURNS).entries()) {
+    // A step further away is the start of something else.
+    if (other.phase * step.phase > 0) break;
+    sum = sum === null ? other : together(sum, other);
+    if (undoes(step, sum)) return later.slice(0, i + 1);
+  }
+  return [];
+}
+
 function undoes(step: FoundStep, other: FoundStep): boolean {
-  if (step.series.join() !== other.series.join()) return false;
   const tolerance = 4 * Math.hypot(step.error, other.error);
   return Math.abs(wrap(step.phase + other.phase)) < Math.min(tolerance, Math.abs(step.phase) / 2);
 }
 
 function eventOf(grid: Grid, { step, back }: Interval): DetectedEvent {
   const { antennas, times } = grid;
-  const { phase, error } = together(step, back);
-  const size = degrees(phase);
-  const sizeError = degrees(error);
+  const { phase, error } = averaged(step, back);
+  // Two antennas share what their baseline shows.
+  const share = antennas.length >= 3 ? 1 : step.antenna === 0 ? 2 : -2;
+  const size = degrees(wrap(share * phase));
+  const sizeError = degrees(Math.abs(share) * error);
   const halfTurn = 180 - Math.abs(size) < Math.max(HALF_TURN_DEGREES, 3 * sizeError) && Math.abs(size) > 150;
   const [a, b] = [grid.antennas[step.antenna]!, antennas.length];
   const products = productsOf(grid, step.series);
@@ -98,7 +141,7 @@ export function scopeOf(grid: Grid, antenna: number) {
   return { baselines: [[grid.antennas[0]!, grid.antennas[1]!] as const] };
 }
 
-function together(step: FoundStep, back: FoundStep | null): { phase: number; error: number } {
+function averaged(step: FoundStep, back: FoundStep | null): { phase: number; error: number } {
   if (back === null) return step;
   const [w1, w2] = [1 / step.error ** 2, 1 / back.error ** 2];
   // The return is minus the step; the difference is wrapped so that half turns do not cancel.

@@ -12,6 +12,9 @@ const LEAST_EXPECTED = 20;
 /** An antenna keeps no more than this power when silent. */
 const SILENT_POWER = 0.03;
 const FEWEST_ANTENNAS = 4;
+/** Error of the power over the usual one at which silence for a time is clear. */
+const CLEAR_ERROR = 0.08;
+const LEAST_SIGNIFICANCE = 7;
 const FEWEST_BASELINES = 2;
 
 /** One antenna in one polarization, silent over some runs of integrations [start, end). */
@@ -150,7 +153,7 @@ function errorOf({ square }: PowerSums, at: number): number {
 
 /** Integrations to add up so that silence shows; 0: never. */
 function widthFor(error: number): number {
-  for (const width of [1, 2, 4, 8, 16]) if (error / Math.sqrt(width) < 0.12) return width;
+  for (const width of [1, 2, 4, 8, 16]) if (error / Math.sqrt(width) < CLEAR_ERROR) return width;
   return 0;
 }
 
@@ -186,7 +189,8 @@ function runsOf(grid: Grid, { power, error }: Relative, a: number, width: number
   const runs: [number, number][] = [];
   for (let t = 0; t < grid.times.length; t++) {
     const at = t * antennas + a;
-    if (!(power[at]! < Math.min(0.4, Math.max(0.05, 4 * error[at]!)))) continue;
+    if (!(power[at]! < Math.min(0.3, Math.max(0.05, 3 * error[at]!)))) continue;
+    if (!((1 - power[at]!) / error[at]! > LEAST_SIGNIFICANCE)) continue;
     const others = Array.from({ length: antennas }, (_, other) =>
       other === a ? Number.NaN : power[t * antennas + other]!,
     );

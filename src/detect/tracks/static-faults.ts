@@ -20,12 +20,14 @@ export function weakAntennas(grid: Grid, skip: ReadonlySet<number>): DetectedEve
   const found = polarizations.map((polarization) => {
     const planes = grid.planes.filter((plane) => plane.polarization === polarization);
     const weak = new Map<number, { log: number; error: number; z: number }>();
+    let logs: number[] = [];
     for (let round = 0; round < 3; round++) {
       const levels = levelsByAntenna(grid, planes, new Set([...skip, ...weak.keys()]));
       const known = levels.map((level, a) =>
         skip.has(a) || weak.has(a) || level.stretches < 3 ? Number.NaN : level.logAmplitude,
       );
       const [middle, family] = [median(known), robustSigma(known)];
+      logs = levels.map(({ logAmplitude }) => logAmplitude - middle);
       let more = false;
       for (const [a, level] of levels.entries()) {
         if (Number.isNaN(known[a]!)) continue;
@@ -38,12 +40,14 @@ export function weakAntennas(grid: Grid, skip: ReadonlySet<number>): DetectedEve
       }
       if (!more) break;
     }
-    return { polarization, weak };
+    return { polarization, weak, logs };
   });
   return grid.antennas.flatMap((number, a) => {
-    const own = found.filter(({ weak }) => weak.has(a));
-    if (own.length === 0) return [];
-    const facts = own.map(({ weak }) => weak.get(a)!);
+    if (!found.some(({ weak }) => weak.has(a))) return [];
+    // The other hand may be as weak, and miss the limits by its noise.
+    const clear = Math.max(...found.map(({ weak }) => weak.get(a)?.log ?? Number.NEGATIVE_INFINITY));
+    const own = found.filter(({ weak, logs }) => weak.has(a) || logs[a]! < clear / 2);
+    const facts = own.flatMap(({ weak }) => weak.get(a) ?? []);
     const size = Math.exp(median(facts.map(({ log }) => log)));
     const error = size * median(facts.map((fact) => fact.error));
     const all = own.length === polarizations.length;
