@@ -7,6 +7,7 @@ import { amplitudeOf } from "./amplitude.ts";
 import type { Feature } from "./features.ts";
 import type { Grid } from "./grid.ts";
 import { channelsOf } from "./group.ts";
+import { liesInProtected } from "./protect.ts";
 import { scopeOf, selectionsOf } from "./selections.ts";
 
 const CAUSES = { "persistent-line": "channels", "drifting-line": "channels", burst: "time" } as const;
@@ -16,7 +17,9 @@ const DOUBTFUL_LINE = 0.3;
 export function eventOf(grid: Grid, request: DetectRequest, feature: Feature): DetectedEvent {
   const [flag, ...others] = selectionsOf(grid, feature);
   // Where lines are what is looked for, one that stays may be the sky's.
-  const doubtful = request.purpose === "line" && feature.kind === "persistent-line";
+  const doubtful =
+    (request.purpose === "line" && feature.kind === "persistent-line") ||
+    liesInProtected(grid.survey, request, feature);
   const { counts, significance } = feature;
   const amplitude = amplitudeOf(feature);
   const only = feature.who.kind === "listed" && feature.who.baselines === 1;

@@ -148,7 +148,7 @@ export function featuresOfBaselines(grid: Grid, band: Band, known: readonly Feat
         outlying >= ALONE_SAMPLES &&
         outlying >= ALONE_OUTLYING * usable &&
         bright >= ALONE_BRIGHT * usable;
-      if (!sure || isBeside(feature, known)) continue;
+      if (!sure || isBeside(feature, known) || isAtEnd(feature, band)) continue;
       features.push(feature);
       take(grid, feature, null);
     }
@@ -166,6 +166,11 @@ function isBeside({ rectangles }: Feature, others: readonly Feature[]): boolean 
   return rectangles.some((own) =>
     others.some((other) => other.rectangles.some((rectangle) => touches(own, rectangle))),
   );
+}
+
+/** Whether a feature reaches an end of the band, where a background that does not fit is off most. */
+function isAtEnd({ rectangles }: Feature, { first, columns }: Band): boolean {
+  return rectangles.some(({ low, high }) => low === first || high === first + columns - 1);
 }
 
 function settle(grid: Grid, band: Band, kind: FeatureKind, rectangles: readonly Rectangle[]): Feature | null {

@@ -12,7 +12,7 @@ import { eventOf } from "./describe.ts";
 import { type Feature, featuresOf, featuresOfBaselines } from "./features.ts";
 import { Grid } from "./grid.ts";
 import { groupInTime } from "./group.ts";
-import { isProtected } from "./protect.ts";
+import { isProtected, protectedColumns } from "./protect.ts";
 
 /**
  * @param explained samples that antenna faults account for already: not looked at again
@@ -47,19 +47,22 @@ export function interferenceOf(
   const events = features
     .filter((feature) => !isProtected(survey, request, feature))
     .map((feature) => eventOf(grid, request, feature));
-  const lone = loneSamples(grid);
+  const lone = loneSamples(grid, protectedColumns(survey, request));
   return lone === null ? events : [...events, lone];
 }
 
 /** Fewer are what features leave at their edges. */
 const FEWEST_LONE = 10;
 
-/** Bright samples that no feature took and that stand alone. */
-function loneSamples(grid: Grid): DetectedEvent | null {
+/**
+ * Bright samples that no feature took and that stand alone.
+ * @param leftOut (channels of all sub-bands) 1 where nothing is looked for
+ */
+function loneSamples(grid: Grid, leftOut: Uint8Array): DetectedEvent | null {
   const { survey } = grid;
   const { marks } = grid.pass;
   if (marks === null) return null;
-  const count = countLone(grid);
+  const count = countLone(grid, leftOut);
   if (count < FEWEST_LONE) return null;
   const usable = marks.usable.total();
   const share = count / usable;
@@ -83,7 +86,7 @@ function loneSamples(grid: Grid): DetectedEvent | null {
 }
 
 /** Bright samples with at most one elevated neighbour of four: more of them tell of a background that does not fit. */
-function countLone({ pass: { marks }, survey, polarizations }: Grid): number {
+function countLone({ pass: { marks }, survey, polarizations }: Grid, leftOut: Uint8Array): number {
   if (marks === null || marks.bright.total() < FEWEST_LONE) return 0;
   const { tracks, baselines } = survey;
   const { rowSamples } = marks.bright;
@@ -92,7 +95,7 @@ function countLone({ pass: { marks }, survey, polarizations }: Grid): number {
     const [first, end] = [tracks.firstCell[b]!, tracks.firstCell[b + 1]!];
     for (let cell = first; cell < end; cell++) {
       for (let sample = 0; sample < rowSamples; sample++) {
-        if (!marks.bright.has(cell, sample)) continue;
+        if (!marks.bright.has(cell, sample) || leftOut[Math.floor(sample / polarizations)] === 1) continue;
         let near = 0;
         if (cell > first && marks.elevated.has(cell - 1, sample)) near += 1;
         if (cell + 1 < end && marks.elevated.has(cell + 1, sample)) near += 1;

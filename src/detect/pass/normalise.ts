@@ -204,15 +204,24 @@ export class Normaliser {
     this.rowSum[row] = low;
   }
 
-  /** What a small error of the background explains is not outlying; it keeps its place above the median. */
+  /**
+   * What a small error of the background explains is not outlying; it keeps its place above the median. The error is a share
+   * of what the sources have in the block, since where they cancel their errors do not.
+   */
   private allowImperfection({ rows, columns, power, modelReal, modelImag }: Plane): void {
     const { inverse } = this;
-    for (let row = 0; row < rows; row++) {
-      for (let c = 0, i = row * columns; c < columns; c++, i++) {
-        const p = power[i]!;
-        if (!(p > Math.LN2)) continue;
-        const size = modelReal[i]! * modelReal[i]! + modelImag[i]! * modelImag[i]!;
-        power[i] = Math.max(Math.LN2, p / (1 + IMPERFECTION * size * inverse[c]!));
+    const blockRows = BLOCKS.at(-1)!;
+    for (let first = 0; first < rows; first += blockRows) {
+      const from = first * columns;
+      const to = Math.min(rows, first + blockRows) * columns;
+      let size = 0;
+      for (let i = from; i < to; i++) size += modelReal[i]! * modelReal[i]! + modelImag[i]! * modelImag[i]!;
+      const error = (IMPERFECTION * size) / (to - from);
+      for (let start = from; start < to; start += columns) {
+        for (let c = 0; c < columns; c++) {
+          const p = power[start + c]!;
+          if (p > Math.LN2) power[start + c] = Math.max(Math.LN2, p / (1 + error * inverse[c]!));
+        }
       }
     }
   }
