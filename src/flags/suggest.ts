@@ -37,8 +37,6 @@ export interface FlagSuggestion {
   /** what flagging costs the beam and the coverage is not computed here: NaN, for `withCosts` to fill */
   readonly flags: readonly FlagEntry[];
   readonly doubts: readonly Doubt[];
-  /** 1 - sqrt(sum of kept weights / sum of all) with all the flags applied: they may overlap */
-  readonly sensitivityLossFraction: number;
 }
 
 /** A candidate and what it holds. */
@@ -50,7 +48,7 @@ interface Counted extends Candidate {
 export async function suggestFlags(request: FlagRequest): Promise<FlagSuggestion> {
   const { dataset, times, events, judged, rules } = request;
   const merged = mergeCandidates(flagCandidates(events, judged, rules), times);
-  if (merged.length === 0) return { flags: [], doubts: [], sensitivityLossFraction: 0 };
+  if (merged.length === 0) return { flags: [], doubts: [] };
   const { each, total } = await countOf(dataset, merged);
   const label = antennaLabels(dataset.array.antennas);
   const doubts: Doubt[] = [];
@@ -64,11 +62,11 @@ export async function suggestFlags(request: FlagRequest): Promise<FlagSuggestion
     else doubts.push({ selection: one.selection, rule: one.rule, reason: reasonOf(one, label), why });
   }
   const ranked = withoutInner(worthy).sort(byRank);
-  const { each: ofRanked, union } = await countOf(dataset, ranked);
+  const { each: ofRanked } = await countOf(dataset, ranked);
   // Without those whose samples the ones before them take all together.
   const uncovered = ranked.filter((_, i) => ofRanked[i]!.fresh > 0);
   const flags = uncovered.map((one, i) => entryOf(one, total, `F${i + 1}`, label));
-  return { flags, doubts, sensitivityLossFraction: lossOf(union, total) };
+  return { flags, doubts };
 }
 
 function countOf(dataset: Dataset, candidates: readonly Candidate[]): Promise<SelectionCounts> {
@@ -105,6 +103,12 @@ function entryOf(one: Counted, total: SelectionCount, id: string, label: Antenna
       largestGapChangeFraction: Number.NaN,
     },
   };
+}
+
+/** What selections cost together: 1 - sqrt(sum of kept weights / sum of all), natural weighting. */
+export async function lossTogether(dataset: Dataset, selections: readonly Selection[]): Promise<number> {
+  const { union, total } = await countSelections(dataset, selections);
+  return lossOf(union, total);
 }
 
 /** 1 - sqrt(kept/all): the natural weight that goes. 0 when nothing has a weight. */

@@ -8,8 +8,10 @@ import type { PlanRequest } from "../dataset/plan-request.ts";
 import { detect } from "../detect/detect.ts";
 import type { DetectedEvent } from "../detect/event.ts";
 import { eventMeasures } from "../detect/event-table.ts";
+import type { FlagEntry } from "../flags/entry.ts";
+import { payingFlags } from "../flags/pays.ts";
 import { reconcile } from "../flags/reconcile.ts";
-import { suggestFlags, withCosts } from "../flags/suggest.ts";
+import { lossTogether, suggestFlags, withCosts } from "../flags/suggest.ts";
 import { derivePlan } from "../imaging/derive-plan.ts";
 import { type Forecast, forecast, forecastAfter } from "../imaging/forecast.ts";
 import type { Plan } from "../imaging/plan.ts";
@@ -46,9 +48,12 @@ export async function checkDataset(dataset: Dataset, request: CheckRequest): Pro
   const { survey, events, plan, judged } = first;
   request.onStage?.("Weighing flags", 0);
   const suggestion = await suggestFlags({ dataset, times: survey.times, events, judged, rules });
-  const flags = withCosts(suggestion.flags, await first.forecast.costs(suggestion.flags));
-  const second =
-    flags.length === 0 ? first : await look(flaggedView(dataset, flags), request, plan, ", flags applied");
+  const again = (flags: readonly FlagEntry[]) =>
+    flags.length === 0 ? first : look(flaggedView(dataset, flags), request, plan, ", flags applied");
+  let second = await again(suggestion.flags);
+  const paying = payingFlags(suggestion.flags, judged, second.judged);
+  if (paying.doubts.length > 0) second = await again(paying.flags);
+  const flags = withCosts(paying.flags, await first.forecast.costs(paying.flags));
   const { findings, verdict } = reconcile(judged, second.judged, flags);
   return {
     dataset,
@@ -60,8 +65,8 @@ export async function checkDataset(dataset: Dataset, request: CheckRequest): Pro
     after: second.judged,
     findings,
     flags,
-    sensitivityLossFraction: suggestion.sensitivityLossFraction,
-    doubts: suggestion.doubts,
+    sensitivityLossFraction: flags.length === 0 ? 0 : await lossTogether(dataset, flags),
+    doubts: [...suggestion.doubts, ...paying.doubts],
     image:
       second === first ? first.forecast.image : forecastAfter(first.forecast.image, second.forecast.image),
     beamPicture: first.forecast.picture,
