@@ -27,6 +27,16 @@ describe("a calibrator", () => {
       expect(Math.abs(row.phase_deg!)).toBeLessThan(4.5 * row.phase_error_deg!);
     }
     for (const row of baselines) expect(row.significance).toBeLessThan(4.5);
+    // 60 integrations, 16 channels and 2 products of 0.126 Jy on 8 baselines of 2 Jy.
+    const error = 0.1265 / Math.sqrt(60 * 16 * 2) / 2 / Math.sqrt(8);
+    for (const row of antennas) expect(Math.abs(row.amplitude_error! / error - 1)).toBeLessThan(0.1);
+    // The errors are neither hopeful nor faint-hearted: departures are of their size.
+    const chi2 = (of: (row: Row) => number, rows: Row[]) =>
+      rows.reduce((sum, row) => sum + of(row) ** 2, 0) / rows.length;
+    expect(chi2((row) => row.phase_deg! / row.phase_error_deg!, antennas)).toBeGreaterThan(0.2);
+    expect(chi2((row) => row.phase_deg! / row.phase_error_deg!, antennas)).toBeLessThan(2.5);
+    expect(chi2((row) => row.phase_deg! / row.phase_error_deg!, baselines)).toBeGreaterThan(0.35);
+    expect(chi2((row) => row.phase_deg! / row.phase_error_deg!, baselines)).toBeLessThan(1.6);
     expect(image.limits.filter(({ cause }) => cause === "calibrator-antenna").length).toBeLessThan(2);
   });
 

@@ -8,6 +8,8 @@ import { observedArray, threeArms } from "./observed-array.ts";
 
 /** Of the change that a full recomputation gives. */
 const COST_TOLERANCE = 0.05;
+/** The outer antennas of two groups of six. */
+const OUTER = [2, 4, 6, 8, 10, 12];
 /** A change smaller than this is none. */
 const NO_CHANGE = 3e-4;
 
@@ -52,6 +54,35 @@ describe("the cost of selections", () => {
       view.tracks.weight.reduce((sum, weight) => sum + weight, 0);
     const kept = naturalWeight(flagged) / naturalWeight(survey);
     expect(cost!.sensitivityLossFraction).toBeCloseTo(1 - Math.sqrt(kept), 5);
+  });
+
+  it("counts as lost only the spacings that nothing else covers", async () => {
+    // Two groups far apart: what lies between their spacings is a hole.
+    const groups = observedArray({
+      antennas: [
+        ...threeArms(80, 2),
+        ...threeArms(80, 2).map(([east, north]) => [east + 2000, north, 0] as const),
+      ],
+      integrations: 12,
+      channels: 6,
+      subbands: 2,
+    });
+    const groupPlan = derivePlan({ fieldOfView: 0.02 }, groups.survey);
+    const whole = await forecast(groups.survey, groupPlan);
+    expect(whole.image.coverage.before.largestRadialGapRatioFraction).toBeGreaterThan(3);
+    const [middle, edges, shorter] = await whole.costs([
+      { ...EVERYTHING, channels: [[2, 3]] },
+      { ...EVERYTHING, subbands: [1], channels: [[3, 5]] },
+      { ...EVERYTHING, antennas: OUTER },
+    ]);
+    // The band's middle covers nothing that its edges do not; its upper end does, by a little.
+    expect(middle!.largestGapChangeFraction).toBe(0);
+    expect(Math.abs(edges!.largestGapChangeFraction)).toBeLessThan(0.01);
+    const flagged = await surveyDataset(flaggedView(groups.dataset, [{ ...EVERYTHING, antennas: OUTER }]));
+    const after = await forecast(flagged, groupPlan);
+    const ratio = (which: typeof whole) => which.image.coverage.before.largestRadialGapRatioFraction;
+    expect(ratio(after)).toBeGreaterThan(1.02 * ratio(whole));
+    expect(shorter!.largestGapChangeFraction).toBeCloseTo(ratio(after) / ratio(whole) - 1, 1.8);
   });
 
   it("is the same for a selection alone and among others", async () => {

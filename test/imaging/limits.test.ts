@@ -80,6 +80,23 @@ describe("limits by events", () => {
     expect(await cap({ size: 2, scope: { ...EVERYTHING, baselines: [[3, 4]] } })).toBeGreaterThan(2 * small);
   });
 
+  it("of errors that each sample has on its own add in squares", async () => {
+    const natural = derivePlan({ dynamicRange: 1000, weighting: { kind: "natural" } }, survey);
+    const lone = event({
+      kind: "lone-samples",
+      size: 8,
+      unit: "sigma",
+      scope: EVERYTHING,
+      samples: 1000,
+      outlying: 10,
+    });
+    const { image } = await forecast(survey, natural, { events: [lone] });
+    const cap = image.limits.find(({ cause }) => cause === "lone-samples")!.dynamicRangeFraction;
+    // 10 samples of 1000 with 8 x 0.5 Jy on a source of 2 Jy, noise taken out: rms 10^1/2 excess / (2^1/2 1000).
+    const source = Math.sqrt(4 - 2 * Math.LN2 * 0.25);
+    expect(cap / ((Math.SQRT2 * 1000) / (((8 * 0.5) / source) * Math.sqrt(10)))).toBeCloseTo(1, 3);
+  });
+
   it("say what and where in words without hostile text", async () => {
     const { limits } = await limitsOf(
       event({ size: 25, evidence: "<script>" }),
