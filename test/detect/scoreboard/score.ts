@@ -6,7 +6,7 @@ import { detect } from "../../../src/detect/detect.ts";
 import type { DetectedEvent } from "../../../src/detect/event.ts";
 import { surveyDataset } from "../../../src/measure/survey.ts";
 import type { Simulated } from "../../../src/simulate/simulate.ts";
-import type { TrueFault } from "../../../src/simulate/truth.ts";
+import type { TrueFault, Truth } from "../../../src/simulate/truth.ts";
 import type { Case } from "./cases.ts";
 
 export interface Score {
@@ -23,6 +23,8 @@ export interface Score {
   readonly faults: number;
   /** events that name no fault */
   readonly falseAlarms: number;
+  /** of the events that name faults: significance over what a matched filter that knew the fault would have; NaN unknown */
+  readonly efficiency: number;
   /** by jump found: integrations its time is off, and its size's error in its own sigmas */
   readonly jumps: readonly { readonly integrations: number; readonly sigmas: number }[];
   readonly events: readonly DetectedEvent[];
@@ -49,14 +51,28 @@ export async function score(
     events.filter((event) => accept[i]!.includes(event.kind) && sameSubject(event, fault)),
   );
   const explained = new Set(naming.flat());
+  // A step that stays is cured on either side of it: its samples are no measure of the flag.
+  const toTheEnd = truth.faults.some(
+    ({ kind, selection }) =>
+      (kind === "phase-jump" || kind === "gain-step") &&
+      selection.time !== null &&
+      selection.time[1] >= survey.times[survey.times.length - 1]! - 1e-9,
+  );
+  const efficiencies = await Promise.all(
+    truth.faults.map(async (_, i) => {
+      const [event] = naming[i]!;
+      return event === undefined ? Number.NaN : event.significance / (await matchedSigmas(truth, i));
+    }),
+  );
   return {
-    recall: counts.touched === 0 ? Number.NaN : counts.both / counts.touched,
-    precision: counts.flagged === 0 ? Number.NaN : counts.both / counts.flagged,
+    recall: counts.touched === 0 || toTheEnd ? Number.NaN : counts.both / counts.touched,
+    precision: counts.flagged === 0 || toTheEnd ? Number.NaN : counts.both / counts.flagged,
     flagged: counts.flagged / counts.samples,
     selections: flags.length,
     named: naming.filter((named, i) => named.length > 0 || accept[i]!.length === 0).length,
     faults: truth.faults.length,
     falseAlarms: events.filter((event) => !explained.has(event)).length,
+    efficiency: Math.min(...efficiencies),
     jumps: truth.faults.flatMap((fault, i) =>
       fault.kind === "phase-jump" && naming[i]!.length > 0
         ? [jumpError(naming[i]![0]!, fault, survey.times)]
@@ -64,6 +80,35 @@ export async function score(
     ),
     events,
   };
+}
+
+/**
+ * Sigmas at which a matched filter that knew everything but the fault's size (and phases) would see it in Gaussian noise:
+ * interference of A sigma adds A^2/2 to the mean 1 of each of n powers whose spread is 1; a phase step D of one antenna on
+ * a point source of S/N s a sample moves N - 1 baselines of P products and C channels for n1 and n2 integrations.
+ * @see Neyman & Pearson 1933, Phil. Trans. R. Soc. A 231, 289
+ */
+async function matchedSigmas(truth: Truth, fault: number): Promise<number> {
+  const { kind, size, unit, selection } = truth.faults[fault]!;
+  if (unit === "sigma") {
+    const counts = await truth.counts();
+    return (size * size * Math.sqrt(counts[fault]!)) / 2;
+  }
+  const { observation } = truth;
+  const { sky, array, gains } = observation.scenario;
+  const simple = sky.length === 1 && sky[0]!.major === 0 && gains.bandpass === undefined;
+  if (kind !== "phase-jump" || !simple || observation.scenario.atmosphere !== undefined) return Number.NaN;
+  const sigma = array.sefd / Math.sqrt(2 * observation.setup.channelWidths[0]! * observation.integration);
+  const products = (selection.polarizations ?? observation.polarizations).length;
+  const inside = observation.times.filter(
+    (time) => selection.time === null || (time >= selection.time[0] && time <= selection.time[1]),
+  ).length;
+  const outside = observation.times.length - inside;
+  const integrations = (inside * outside) / (inside + outside);
+  const signal = (sky[0]!.flux / sigma) ** 2 * observation.channels * products;
+  return (
+    ((Math.abs(size) * Math.PI) / 180) * Math.sqrt(signal * (observation.stations.length - 1) * integrations)
+  );
 }
 
 /** Samples that faults touched, that flags take, and both. */
