@@ -38,10 +38,11 @@ export function antennaFaults(
     ...noisy,
     ...weak,
     ...noise.events,
-    ...jumps,
-    ...gainSteps(grid),
+    ...jumps.events,
+    // A mean over a half turn would be next to nothing.
+    ...gainSteps(jumps.turned),
     ...delaySlopes(grid),
-    ...closureFaults(grid, request),
+    ...closureFaults(jumps.turned, request),
     ...weights,
   ];
 }

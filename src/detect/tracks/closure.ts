@@ -23,46 +23,72 @@ const SHORT_SHARE = 0.1;
 
 export function closureFaults(grid: Grid, request: DetectRequest): DetectedEvent[] {
   if (grid.antennas.length < FEWEST_ANTENNAS) return [];
-  const residuals = residualsOf(grid, stretchesOf(grid, STRETCHES));
+  const calibrator = request.purpose === "calibrator";
+  const residuals = residualsOf(grid, stretchesOf(grid));
   // A sky that does not close would be taken for the correlator's fault.
-  if (request.purpose !== "calibrator" && !looksLikeAPoint(residuals)) return [];
-  const phases = outlying(grid, residuals, residuals.phase, LEAST_PHASE, request);
-  const gains = outlying(grid, residuals, residuals.gain, LEAST_GAIN, request);
+  const fields = [...new Set(grid.segments.map(({ field }) => field))].filter(
+    (field) => calibrator || looksLikeAPoint(grid, residuals, field),
+  );
+  const trusted = residuals.stretches.map(([start]) => fields.includes(fieldAt(grid, start)));
+  if (!trusted.includes(true)) return [];
+  for (let i = 0; i < residuals.phase.length; i++) {
+    if (trusted[i % trusted.length]!) continue;
+    residuals.phase[i] = Number.NaN;
+    residuals.gain[i] = Number.NaN;
+  }
+  const phases = outlying(grid, residuals, residuals.phase, LEAST_PHASE, calibrator);
+  const gains = outlying(grid, residuals, residuals.gain, LEAST_GAIN, calibrator);
   if (phases.length + gains.length === 0) return [];
   const apart = new Set([...phases, ...gains].map(({ baseline }) => baseline));
   // Left out of the solution, unless so many are that they hold it together.
   const fine = residualsOf(
     grid,
-    stretchesOf(grid, grid.times.length),
+    Array.from(grid.times, (_, t) => [t, t + 1] as const),
     apart.size < grid.antennas.length / 2 ? apart : new Set(),
   );
+  for (let t = 0; t < grid.times.length; t++) {
+    if (fields.includes(fieldAt(grid, t))) continue;
+    for (let b = 0; b < grid.baselines; b++) {
+      fine.phase[b * grid.times.length + t] = Number.NaN;
+      fine.gain[b * grid.times.length + t] = Number.NaN;
+    }
+  }
   const events: DetectedEvent[] = [];
   for (const one of phases) {
-    const settled = settle(grid, fine.phase, fine.error, one, LEAST_PHASE);
+    const settled = settle(grid, fine.phase, fine.error, one, LEAST_PHASE, calibrator);
     if (settled !== null) events.push(eventOf(grid, settled, "deg"));
   }
   const named = new Set(events.flatMap(({ scope }) => scope.baselines!.map(String)));
   for (const one of gains) {
     const { antenna1, antenna2 } = grid.survey.baselines[one.baseline]!;
     if (named.has(String([antenna1, antenna2]))) continue;
-    const settled = settle(grid, fine.gain, fine.error, one, LEAST_GAIN);
+    const settled = settle(grid, fine.gain, fine.error, one, LEAST_GAIN, calibrator);
     if (settled !== null) events.push(eventOf(grid, settled, "ratio"));
   }
   return events;
 }
 
-function stretchesOf({ times }: Grid, most: number): [number, number][] {
-  const n = Math.max(1, Math.min(most, times.length));
-  return Array.from({ length: n }, (_, s) => [
-    Math.floor((s * times.length) / n),
-    Math.floor(((s + 1) * times.length) / n),
-  ]);
+/** About a dozen, none across two scans. */
+function stretchesOf({ times, segments }: Grid): [number, number][] {
+  return segments.flatMap(({ start, end }) => {
+    const n = Math.max(1, Math.round((STRETCHES * (end - start)) / times.length));
+    return Array.from({ length: n }, (_, s): [number, number] => [
+      start + Math.floor((s * (end - start)) / n),
+      start + Math.floor(((s + 1) * (end - start)) / n),
+    ]);
+  });
+}
+
+function fieldAt({ segments }: Grid, t: number): number {
+  return segments.find(({ start, end }) => t >= start && t < end)!.field;
 }
 
 /** Nearly all baselines close, in phase and in amplitude, and none is without signal. */
-function looksLikeAPoint({ phase, gain }: Residuals): boolean {
-  const share = (values: Float64Array, limit: number) =>
-    values.filter((x) => Math.abs(x) < limit).length / values.length;
+function looksLikeAPoint(grid: Grid, { phase, gain, stretches }: Residuals, field: number): boolean {
+  const share = (values: Float64Array, limit: number) => {
+    const own = values.filter((_, i) => fieldAt(grid, stretches[i % stretches.length]![0]) === field);
+    return own.filter((x) => Math.abs(x) < limit).length / own.length;
+  };
   return share(phase, POINT_PHASE) > POINT_SHARE && share(gain, POINT_GAIN) > POINT_SHARE;
 }
 
@@ -78,7 +104,7 @@ function outlying(
   { error, stretches }: Residuals,
   values: Float64Array,
   least: number,
-  { purpose }: DetectRequest,
+  calibrator: boolean,
 ): Outlier[] {
   const n = stretches.length;
   const column = (s: number) => Float64Array.from({ length: grid.baselines }, (_, b) => values[b * n + s]!);
@@ -87,11 +113,11 @@ function outlying(
   const short = [...lengths].sort((x, y) => x - y)[Math.floor(SHORT_SHARE * lengths.length)]!;
   const found: Outlier[] = [];
   for (let b = 0; b < grid.baselines; b++) {
-    if (purpose !== "calibrator" && lengths[b]! < short) continue;
+    if (!calibrator && lengths[b]! < short) continue;
     const own = stretches
       .map((_, s) => ({
         value: values[b * n + s]!,
-        scale: Math.max(purpose === "calibrator" ? 0 : family[s]!, error[b * n + s]!),
+        scale: Math.max(calibrator ? 0 : family[s]!, error[b * n + s]!),
       }))
       .filter(({ value }) => !Number.isNaN(value));
     const typical = median(own.map(({ value }) => value));
@@ -127,6 +153,24 @@ function spacing(grid: Grid, b: number): number {
   return middle < last ? Math.hypot(tracks.u[middle]!, tracks.v[middle]!) : Number.NaN;
 }
 
+/** Quiet before and after, and nearly all other baselines quiet at the time: a changing sky moves many. */
+function standsAlone(
+  values: Float64Array,
+  { baseline, value }: Outlier,
+  n: number,
+  start: number,
+  end: number,
+) {
+  const own = values.subarray(baseline * n, (baseline + 1) * n);
+  const outside = [...own.subarray(0, start), ...own.subarray(end)].filter((x) => !Number.isNaN(x));
+  const loud = outside.filter((x) => Math.abs(x) > Math.abs(value) / 2).length;
+  const others = Array.from({ length: values.length / n }, (_, b) =>
+    b === baseline ? Number.NaN : Math.abs(median(values.subarray(b * n + start, b * n + end))),
+  ).filter((x) => !Number.isNaN(x));
+  const moved = others.filter((x) => x > Math.abs(value) / 4).length;
+  return loud <= 0.1 * outside.length && moved <= 0.1 * others.length;
+}
+
 interface Settled extends Outlier {
   readonly run: readonly [number, number];
 }
@@ -141,11 +185,13 @@ function settle(
   errors: Float64Array,
   one: Outlier,
   least: number,
+  calibrator: boolean,
 ): Settled | null {
   const n = grid.times.length;
   const own = values.subarray(one.baseline * n, (one.baseline + 1) * n);
   const noise = median(errors.subarray(one.baseline * n, (one.baseline + 1) * n));
   const [start, end] = bestRun(own, one.value);
+  if (!calibrator && !standsAlone(values, one, n, start, end)) return null;
   const inside = own.subarray(start, end).filter((x) => !Number.isNaN(x));
   if (inside.length === 0) return null;
   const value = median(inside);

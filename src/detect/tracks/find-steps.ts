@@ -77,7 +77,7 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
     if (
       !isSharp(grid, groups[best.group]!, step) ||
       repeats(found, step) ||
-      Math.abs(step.phase) < settings.least
+      !(Math.abs(step.phase) >= settings.least)
     ) {
       passOver(grid, groups, best);
       continue;

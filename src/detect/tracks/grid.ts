@@ -50,6 +50,9 @@ export interface Segment {
   readonly field: number;
 }
 
+/** Of a cell's samples: where more stands out, it may be the antenna that changed rather than interference. */
+const LEAST_LEFT = 0.5;
+
 /** Integration centres closer than this are the same: the time of a row is written to a few milliseconds. */
 const SAME_TIME = 0.02 / SECONDS_PER_DAY;
 
@@ -186,7 +189,11 @@ export function planeOf(
     const own = sigma[i % baselines.length]!;
     const noise = own > 0 ? own : typical;
     const count = cleaned?.count[at] ?? 0;
-    if (cleaned !== null && count > 0 && Number.isFinite(cleaned.real[at]! + cleaned.imag[at]!)) {
+    if (
+      cleaned !== null &&
+      count > LEAST_LEFT * usable &&
+      Number.isFinite(cleaned.real[at]! + cleaned.imag[at]!)
+    ) {
       const pairs = Math.max(0, count - 1);
       plane.real[i] = cleaned.real[at]!;
       plane.imag[i] = cleaned.imag[at]!;

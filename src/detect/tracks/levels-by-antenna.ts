@@ -36,22 +36,32 @@ export interface AntennaLevel {
 const COHERENT = 8;
 const NEIGHBOURS = 5;
 const MOST_POINTS = 1500;
-const MOST_OTHERS = 800;
+const MOST_OTHERS = 500;
+const MOST_OWN = 80;
+const MOST_PLANES = 4;
 
-/** @param planes of one polarization @param ignore antennas that are no measure for others */
+/** What there is to compare, by plane. */
+export type LevelPoints = readonly (readonly Point[])[];
+
+/** @param planes of one polarization */
+export function levelPoints(grid: Grid, planes: readonly Plane[]): LevelPoints {
+  const stretches = Math.max(1, Math.min(8, Math.floor(MOST_POINTS / Math.max(1, grid.baselines))));
+  const stride = Math.ceil(planes.length / MOST_PLANES);
+  return planes.filter((_, i) => i % stride === 0).map((plane) => pointsOf(grid, plane, stretches));
+}
+
+/** @param ignore antennas (indices) that are no measure for others */
 export function levelsByAntenna(
   grid: Grid,
-  planes: readonly Plane[],
+  points: LevelPoints,
   ignore: ReadonlySet<number>,
 ): AntennaLevel[] {
-  const stretches = Math.max(1, Math.min(8, Math.floor(MOST_POINTS / Math.max(1, grid.baselines))));
-  const points = planes.map((plane) => pointsOf(grid, plane, stretches));
   return grid.antennas.map((_, antenna) => levelOf(grid, points, antenna, ignore));
 }
 
 function levelOf(
   grid: Grid,
-  planes: readonly (readonly Point[])[],
+  planes: LevelPoints,
   antenna: number,
   ignore: ReadonlySet<number>,
 ): AntennaLevel {
@@ -61,8 +71,9 @@ function levelOf(
   let [power, expected, variance, silent] = [0, 0, 0, 0];
   const told = new Set<number>();
   for (const points of planes) {
-    const own = points.filter(
-      (point) => touches(point, antenna) && !ignoredBut(grid, point, ignore, antenna),
+    const own = thinned(
+      points.filter((point) => touches(point, antenna) && !ignoredBut(grid, point, ignore, antenna)),
+      MOST_OWN,
     );
     const all = points.filter(
       (point) =>
@@ -70,8 +81,7 @@ function levelOf(
         !ignore.has(grid.first[point.baseline]!) &&
         !ignore.has(grid.second[point.baseline]!),
     );
-    const stride = Math.ceil(all.length / MOST_OTHERS);
-    const others = all.filter((_, i) => i % stride === 0);
+    const others = thinned(all, MOST_OTHERS);
     const outer = outerLevel(others);
     for (const point of own) {
       const likely = likelyPower(point, others, outer);
@@ -96,6 +106,11 @@ function levelOf(
     silent: silent / Math.max(1, ratios.length),
     baselines: told.size,
   };
+}
+
+function thinned(points: readonly Point[], most: number): readonly Point[] {
+  const stride = Math.ceil(points.length / most);
+  return points.filter((_, i) => i % stride === 0);
 }
 
 function ignoredBut(grid: Grid, { baseline }: Point, ignore: ReadonlySet<number>, antenna: number): boolean {
@@ -141,18 +156,24 @@ function likelyPower(point: Point, others: readonly Point[], outer: Outer): numb
 }
 
 function nearest(point: Point, others: readonly Point[]): Point[] {
-  const near: { distance: number; point: Point }[] = [];
-  for (const other of others) {
-    const distance = Math.min(
-      Math.hypot(other.u - point.u, other.v - point.v),
-      Math.hypot(other.u + point.u, other.v + point.v),
-    );
-    if (near.length === NEIGHBOURS && distance >= near[NEIGHBOURS - 1]!.distance) continue;
-    near.push({ distance, point: other });
-    near.sort((a, b) => a.distance - b.distance);
-    if (near.length > NEIGHBOURS) near.pop();
+  const near: Point[] = [];
+  const distances: number[] = [];
+  for (let i = 0; i < others.length; i++) {
+    const other = others[i]!;
+    // Either way round: a visibility and its conjugate say the same.
+    const apart = (other.u - point.u) ** 2 + (other.v - point.v) ** 2;
+    const across = (other.u + point.u) ** 2 + (other.v + point.v) ** 2;
+    const distance = apart < across ? apart : across;
+    if (near.length === NEIGHBOURS && !(distance < distances[NEIGHBOURS - 1]!)) continue;
+    let at = Math.min(near.length, NEIGHBOURS - 1);
+    for (; at > 0 && distances[at - 1]! > distance; at--) {
+      distances[at] = distances[at - 1]!;
+      near[at] = near[at - 1]!;
+    }
+    distances[at] = distance;
+    near[at] = other;
   }
-  return near.map((one) => one.point);
+  return near;
 }
 
 function pointsOf(grid: Grid, plane: Plane, stretches: number): Point[] {

@@ -18,22 +18,28 @@ interface Interval {
   readonly back: FoundStep | null;
 }
 
-/** @param skip antennas (indices) whose phase is no use */
-export function phaseJumps(grid: Grid, skip: ReadonlySet<number>): DetectedEvent[] {
-  const series = grid.planes.map((plane) => ({
+/**
+ * @param skip antennas (indices) whose phase is no use
+ * @returns the events, and the grid with their steps turned back
+ */
+export function phaseJumps(grid: Grid, skip: ReadonlySet<number>): { events: DetectedEvent[]; turned: Grid } {
+  const planes = grid.planes.map((plane) => ({
     ...plane,
     real: plane.real.slice(),
     imag: plane.imag.slice(),
   }));
   const least = (LEAST_DEGREES * Math.PI) / 180;
-  const steps = findSteps(grid, series, {
+  const steps = findSteps(grid, planes, {
     threshold: JUMP_THRESHOLD,
     least,
     skip,
     solve: phaseStep,
     gains: false,
   });
-  return intervalsOf(steps).map((interval) => eventOf(grid, interval));
+  return {
+    events: intervalsOf(steps).map((interval) => eventOf(grid, interval)),
+    turned: { ...grid, planes },
+  };
 }
 
 /** Steps that may together undo one. */

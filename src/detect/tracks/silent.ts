@@ -4,7 +4,7 @@ import { EVERYTHING } from "../../dataset/selection.ts";
 import { median } from "../../util/statistics.ts";
 import type { DetectedEvent } from "../event.ts";
 import type { Grid, Plane } from "./grid.ts";
-import { type AntennaLevel, levelsByAntenna } from "./levels-by-antenna.ts";
+import { type AntennaLevel, levelPoints, levelsByAntenna } from "./levels-by-antenna.ts";
 import { clock, makeEvent, samplesOf, spanOf } from "./make-event.ts";
 
 /** Expected power must be this far above its noise. */
@@ -45,8 +45,9 @@ function silencesOf(grid: Grid, polarization: Polarization, planes: readonly Pla
   const silent = new Set<number>();
   const found: Silence[] = [];
   // A silent antenna is no measure for others: one after the other, and each without those found.
+  const points = levelPoints(grid, planes);
   while (2 * (silent.size + 1) < grid.antennas.length) {
-    const levels = levelsByAntenna(grid, planes, silent);
+    const levels = levelsByAntenna(grid, points, silent);
     const typical = median(levels.filter((_, a) => !silent.has(a)).map(({ power }) => power));
     let worst = -1;
     for (const [a, level] of levels.entries()) {

@@ -2,7 +2,7 @@
 import { median, robustSigma } from "../../util/statistics.ts";
 import type { DetectedEvent } from "../event.ts";
 import type { Grid } from "./grid.ts";
-import { levelsByAntenna } from "./levels-by-antenna.ts";
+import { levelPoints, levelsByAntenna } from "./levels-by-antenna.ts";
 import { makeEvent } from "./make-event.ts";
 
 const THRESHOLD = 6;
@@ -19,10 +19,11 @@ export function weakAntennas(grid: Grid, skip: ReadonlySet<number>): DetectedEve
   const polarizations = [...new Set(grid.planes.map(({ polarization }) => polarization))];
   const found = polarizations.map((polarization) => {
     const planes = grid.planes.filter((plane) => plane.polarization === polarization);
+    const points = levelPoints(grid, planes);
     const weak = new Map<number, { log: number; error: number; z: number }>();
     let logs: number[] = [];
     for (let round = 0; round < 3; round++) {
-      const levels = levelsByAntenna(grid, planes, new Set([...skip, ...weak.keys()]));
+      const levels = levelsByAntenna(grid, points, new Set([...skip, ...weak.keys()]));
       const known = levels.map((level, a) =>
         skip.has(a) || weak.has(a) || level.stretches < 3 ? Number.NaN : level.logAmplitude,
       );
