@@ -4,11 +4,12 @@ import { forecast } from "../../src/imaging/forecast.ts";
 import { type ArrayOptions, observedArray, threeArms } from "./observed-array.ts";
 
 const C = 299792458;
+const FIELD = 0.03;
 type Row = Record<string, number>;
 
-async function measuresOf(options: Partial<ArrayOptions>, fieldOfView = 0.02, dishDiameter = 25) {
+async function measuresOf(options: Partial<ArrayOptions>, fieldOfView = FIELD, dishDiameter = 25) {
   const observed = observedArray({
-    antennas: threeArms(2000, 3, 2),
+    antennas: threeArms(500, 3, 2),
     integrations: 12,
     channels: 2,
     ...options,
@@ -22,7 +23,7 @@ async function measuresOf(options: Partial<ArrayOptions>, fieldOfView = 0.02, di
 describe("w by baseline", () => {
   it("has each baseline's extremes, phase and coherence at the edge", async () => {
     const { observed, rows } = await measuresOf({});
-    const depth = 1 - Math.sqrt(1 - Math.sin(0.01) ** 2);
+    const depth = 1 - Math.sqrt(1 - Math.sin(FIELD / 2) ** 2);
     for (const row of rows("baseline_w")) {
       const own = observed.rows.filter((r) => r.antenna1 === row.antenna1 && r.antenna2 === row.antenna2);
       const [low, high] = observed.frequencies;
@@ -51,7 +52,7 @@ describe("w by baseline", () => {
         hours: [-6, 6],
         integrations: 60,
       },
-      0.02,
+      FIELD,
       25,
     );
     const own = observed.rows.filter(({ antenna1, antenna2 }) => antenna1 === 1 && antenna2 === 2);
@@ -74,7 +75,7 @@ describe("w by baseline", () => {
 
 describe("snapshots", () => {
   it("take up the w of a flat array and leave the heights of an array with relief", async () => {
-    const flat = await measuresOf({ antennas: threeArms(2000, 3, 0) });
+    const flat = await measuresOf({ antennas: threeArms(500, 3, 0) });
     for (const row of flat.rows("snapshot")) {
       expect(row.residual_rms_m).toBeLessThan(1e-6);
       expect(row.absorbed_fraction).toBeCloseTo(1, 9);
@@ -112,7 +113,7 @@ describe("snapshots", () => {
 
 describe("the ways out of a w term", () => {
   it("are laid out with numbers when the imager does not correct it", async () => {
-    const { image } = await measuresOf({}, 0.008);
+    const { image } = await measuresOf({}, 0.015);
     const names = image.advice.map(({ name }) => name);
     expect(names).toContain("Either correct w");
     expect(names).toContain("or narrow the field");
@@ -124,8 +125,8 @@ describe("the ways out of a w term", () => {
   });
 
   it("are a cost in planes alone when it does", async () => {
-    const { survey } = observedArray({ antennas: threeArms(2000, 3, 2), integrations: 12, channels: 2 });
-    const { image } = await forecast(survey, derivePlan({ fieldOfView: 0.06, correctsW: true }, survey));
+    const { survey } = observedArray({ antennas: threeArms(500, 3, 2), integrations: 12, channels: 2 });
+    const { image } = await forecast(survey, derivePlan({ fieldOfView: FIELD, correctsW: true }, survey));
     expect(image.advice.find(({ name }) => name === "w planes or facets")!.value).toMatch(
       /^\d+ planes or \d+ facets$/,
     );

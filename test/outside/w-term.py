@@ -16,7 +16,7 @@ def positions():
     antennas = []
     for arm in range(3):
         for k in range(1, 5):
-            radius = 3500 * (k / 4) ** 1.7
+            radius = 900 * (k / 4) ** 1.7
             azimuth = (arm * 120 + 5) * RAD
             antennas.append([radius * np.sin(azimuth), radius * np.cos(azimuth), 4 * np.sin(7 * (arm * 4 + k))])
     return antennas
@@ -56,10 +56,10 @@ def main():
     antennas = positions()
     cases = []
     for name, declination, hours, field_deg in [
-        ("six hours, a degree and a half", -10.0, np.linspace(-3, 3, 25), 1.5),
-        ("six hours, two and a half degrees", -10.0, np.linspace(-3, 3, 25), 2.5),
-        ("an hour low in the north", 25.0, np.linspace(-0.5, 0.5, 11), 2.0),
-        ("a snapshot", 0.0, np.array([2.0]), 3.0),
+        ("six hours, three degrees", -10.0, np.linspace(-3, 3, 25), 3.0),
+        ("six hours, four and a half degrees", -10.0, np.linspace(-3, 3, 25), 4.5),
+        ("an hour low in the north", 25.0, np.linspace(-0.5, 0.5, 11), 4.0),
+        ("a snapshot", 0.0, np.array([2.0]), 5.0),
     ]:
         u, v, w = uvw(antennas, declination, hours)
         radius = np.sin(field_deg / 2 * RAD)
