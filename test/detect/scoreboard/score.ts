@@ -51,12 +51,13 @@ export async function score(
     events.filter((event) => accept[i]!.includes(event.kind) && sameSubject(event, fault)),
   );
   const explained = new Set(naming.flat());
-  // A step that stays is cured on either side of it: its samples are no measure of the flag.
-  const toTheEnd = truth.faults.some(
+  // A step that stays is cured on either side of it, and lone samples are told, not flagged: no measure of flags.
+  const unflaggable = truth.faults.some(
     ({ kind, selection }) =>
-      (kind === "phase-jump" || kind === "gain-step") &&
-      selection.time !== null &&
-      selection.time[1] >= survey.times[survey.times.length - 1]! - 1e-9,
+      kind === "lone-samples" ||
+      ((kind === "phase-jump" || kind === "gain-step") &&
+        selection.time !== null &&
+        selection.time[1] >= survey.times[survey.times.length - 1]! - 1e-9),
   );
   const efficiencies = await Promise.all(
     truth.faults.map(async (_, i) => {
@@ -65,14 +66,14 @@ export async function score(
     }),
   );
   return {
-    recall: counts.touched === 0 || toTheEnd ? Number.NaN : counts.both / counts.touched,
-    precision: counts.flagged === 0 || toTheEnd ? Number.NaN : counts.both / counts.flagged,
+    recall: counts.touched === 0 || unflaggable ? Number.NaN : counts.both / counts.touched,
+    precision: counts.flagged === 0 || unflaggable ? Number.NaN : counts.both / counts.flagged,
     flagged: counts.flagged / counts.samples,
     selections: flags.length,
     named: naming.filter((named, i) => named.length > 0 || accept[i]!.length === 0).length,
     faults: truth.faults.length,
     falseAlarms: events.filter((event) => !explained.has(event)).length,
-    efficiency: Math.min(...efficiencies),
+    efficiency: efficiencies.length === 0 ? Number.NaN : Math.min(...efficiencies),
     jumps: truth.faults.flatMap((fault, i) =>
       fault.kind === "phase-jump" && naming[i]!.length > 0
         ? [jumpError(naming[i]![0]!, fault, survey.times)]
@@ -81,6 +82,9 @@ export async function score(
     events,
   };
 }
+
+/** Interference up to this many sigmas a sample is faint. */
+const FAINT = 3;
 
 /**
  * Sigmas at which a matched filter that knew everything but the fault's size (and phases) would see it in Gaussian noise:
@@ -91,6 +95,8 @@ export async function score(
 async function matchedSigmas(truth: Truth, fault: number): Promise<number> {
   const { kind, size, unit, selection } = truth.faults[fault]!;
   if (unit === "sigma") {
+    // Scores of brighter samples are cut: their significance is no measure.
+    if (size > FAINT || kind === "lone-samples") return Number.NaN;
     const counts = await truth.counts();
     return (size * size * Math.sqrt(counts[fault]!)) / 2;
   }
