@@ -41,6 +41,16 @@ describe("a dataset with every sample flagged", () => {
   });
 });
 
+describe("a dataset with nothing usable and no dish diameter", () => {
+  it("has no field to plan, and says so without failing", async () => {
+    const { image, picture } = await forecastOf({ weight: () => 0, diameter: null });
+    expect(picture).toBeNull();
+    expect(image.weightings[0]!.before.majorArcsec).toBeNaN();
+    expect(image.wTerm.planes).toBeNaN();
+    expect(image.smearing.bandwidthLossFraction).toBeNaN();
+  });
+});
+
 describe("few antennas", () => {
   it("two make one baseline, whose beam has no width along its fringes", async () => {
     const { image } = await forecastOf({
