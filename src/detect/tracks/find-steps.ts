@@ -1,5 +1,6 @@
 /** The steps of antenna phases that are out of family, one by one, the most significant first. */
 
+import { median } from "../../util/statistics.ts";
 import { wrap } from "./antenna-phases.ts";
 import type { Grid } from "./grid.ts";
 import {
@@ -69,6 +70,7 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
       ),
     ),
   }));
+  for (const { windows: own } of groups) widenAcross(own);
   const found: FoundStep[] = [];
   for (let tries = 0; found.length < MOST_STEPS && tries < 4 * MOST_STEPS; tries++) {
     const best = strongest(grid, groups, settings);
@@ -92,6 +94,20 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
     }
   }
   return found;
+}
+
+/** Steps across scans are few: an antenna that wanders more within scans does so from scan to scan. */
+function widenAcross(windows: readonly Steps[]): void {
+  const within = windows.filter(({ across }) => !across).at(-1);
+  if (within === undefined) return;
+  const typical = median(within.scale);
+  for (const steps of windows) {
+    if (!steps.across) continue;
+    for (let a = 0; a < steps.scale.length; a++) {
+      const ratio = within.scale[a]! / typical;
+      if (ratio > 1) steps.scale[a]! *= ratio;
+    }
+  }
 }
 
 /** All, each polarization, each sub-band, each alone: without repeats. */

@@ -163,7 +163,7 @@ function nearest(point: Point, others: readonly Point[]): Point[] {
     // Either way round: a visibility and its conjugate say the same.
     const apart = (other.u - point.u) ** 2 + (other.v - point.v) ** 2;
     const across = (other.u + point.u) ** 2 + (other.v + point.v) ** 2;
-    const distance = apart < across ? apart : across;
+    const distance = Math.min(apart, across);
     if (near.length === NEIGHBOURS && !(distance < distances[NEIGHBOURS - 1]!)) continue;
     let at = Math.min(near.length, NEIGHBOURS - 1);
     for (; at > 0 && distances[at - 1]! > distance; at--) {

@@ -9,6 +9,8 @@ import { phaseStep, stepsOf } from "./step-search.ts";
 const OUT_OF_FAMILY = 2.5;
 const LEAST_DEGREES = 4;
 const FEWEST_STEPS = 12;
+/** Power over noise variance of one integration: the phase of noise alone is noise too. */
+const LEAST_SIGNAL = 25;
 /** Relative error of a robust sigma times sqrt(n), for differences of neighbours. */
 const ROBUST_ERROR = 1.7;
 
@@ -27,7 +29,7 @@ export function phaseNoise(grid: Grid): { events: DetectedEvent[]; antennas: Set
     const size = Math.sqrt(rms * rms - typical * typical) / Math.SQRT2;
     if (degrees(size) < LEAST_DEGREES) continue;
     const significance = (Math.log(rms / typical) * Math.sqrt(count)) / ROBUST_ERROR;
-    if (significance < 6) continue;
+    if (significance < 6 || !(signalOf(grid, a) > LEAST_SIGNAL)) continue;
     antennas.add(a);
     const number = grid.antennas[a]!;
     const loss = 1 - Math.exp(-(size * size) / 2);
@@ -63,4 +65,20 @@ function scatters(grid: Grid, window: number) {
     }
     return { rms: robustSigma(values), count: values.length, error: median(errors) };
   });
+}
+
+/** Median over an antenna's baselines of their median power over noise variance. */
+function signalOf(grid: Grid, antenna: number): number {
+  return median(
+    grid.touching[antenna]!.map((b) => {
+      const ratios: number[] = [];
+      for (const { real, imag, variance } of grid.planes) {
+        for (let i = b; i < real.length; i += grid.baselines) {
+          if (Number.isNaN(real[i]!)) continue;
+          ratios.push((real[i]! ** 2 + imag[i]! ** 2) / variance[i]! - 2);
+        }
+      }
+      return median(ratios);
+    }),
+  );
 }
