@@ -28,6 +28,8 @@ const HELD_SHARE = 0.6;
 const HELD_POWER = 3;
 /** unless that is so of more channels than this share, or of both ends of the band: then it is the background that is wrong. */
 const MOST_HELD = 0.5;
+/** Mark of `Plane.held` for a sample that does not tell the background. */
+const OUT = 1;
 
 export class Background {
   readonly bandpass = new Bandpass();
@@ -92,16 +94,17 @@ export class Background {
       this.fitRows(plane, noise, true);
     }
     this.addDelays(plane, noise, steepest);
-    this.holdOut(plane, noise);
+    this.holdOutAll(plane, noise);
     const shaped = misfit(plane, 0, rows, noise);
     if (!this.bandpass.fitted || shaped.cost <= BAD * shaped.floor) return;
     // Several sources drifting against each other can pass for a shape of the band: try without one.
     this.keepShaped(plane);
     this.bandpass.flatten(columns);
+    plane.held.set(plane.marks.subarray(0, rows * columns));
     this.fitRows(plane, noise);
     this.addDelays(plane, noise, steepest);
     if (misfit(plane, 0, rows, noise).cost > shaped.cost) this.restoreShaped(plane);
-    else this.holdOut(plane, noise);
+    else this.holdOutAll(plane, noise);
   }
 
   private fitRows(plane: Plane, noise: number, again = false): void {
@@ -132,9 +135,12 @@ export class Background {
     steepest: (row: number) => number,
     before: readonly number[],
   ): readonly number[] {
-    const { cost, floor } = misfit(plane, first, last, noise);
+    const base = this.rows.tilted ? 2 : 1;
     let slopes: readonly number[] = [];
-    if (cost > floor + MISFIT * Math.sqrt(floor)) {
+    if (isBad(misfit(plane, first, last, noise))) {
+      // Interference in some channels is no reason to look for sources; those show in all.
+      const few = last - first <= BLOCK_ROWS && this.terms[first] === base;
+      if (few && this.holdOut(plane, noise, first, last, true)) return slopes;
       const slope = Math.min(Math.PI, Math.max(steepest(first), steepest(last - 1)));
       slopes = this.delays.improve(plane, this.bandpass, first, last, noise, slope);
     }
@@ -162,33 +168,56 @@ export class Background {
     }
   }
 
+  private holdOutAll(plane: Plane, noise: number): void {
+    const base = this.rows.tilted ? 2 : 1;
+    for (let first = 0; first < plane.rows; first += BLOCK_ROWS) {
+      const last = Math.min(plane.rows, first + BLOCK_ROWS);
+      if (this.terms[first]! === base) this.holdOut(plane, noise, first, last, false);
+    }
+  }
+
   /**
    * Channels that stand out of a block as a whole do not tell its amplitude: neither where they stick out, nor where by
    * chance they do not.
+   *
+   * @param enough only where the block is well described without them
+   * @returns whether some were held out
    */
-  private holdOut(plane: Plane, noise: number): void {
-    const { rows, columns, held, power } = plane;
+  private holdOut(plane: Plane, noise: number, first: number, last: number, enough: boolean): boolean {
+    const { columns, held, power } = plane;
     const { counts } = this;
-    const base = this.rows.tilted ? 2 : 1;
-    for (let first = 0; first < rows; first += BLOCK_ROWS) {
-      const last = Math.min(rows, first + BLOCK_ROWS);
-      if (this.terms[first]! > base) continue;
-      counts.fill(0, 0, columns);
-      for (let row = first; row < last; row++) {
-        for (let c = 0, i = row * columns; c < columns; c++, i++) {
-          if (held[i] === 0 && power[i]! > HELD_POWER * noise) counts[c]! += 1;
-        }
+    counts.fill(0, 0, columns);
+    for (let row = first; row < last; row++) {
+      for (let c = 0, i = row * columns; c < columns; c++, i++) {
+        if (held[i] === 0 && power[i]! > HELD_POWER * noise) counts[c]! += 1;
       }
-      const least = Math.max(Math.min(3, last - first), HELD_SHARE * (last - first));
-      let out = 0;
-      for (let c = 0; c < columns; c++) if (counts[c]! >= least) out += 1;
-      const ends = counts[0]! >= least && counts[columns - 1]! >= least;
-      if (out === 0 || out > MOST_HELD * columns || ends) continue;
-      for (let row = first; row < last; row++) {
-        for (let c = 0, i = row * columns; c < columns; c++, i++) {
-          if (counts[c]! >= least && held[i] === 0) held[i] = 1;
-        }
-        this.rows.fit(plane, row, noise, true);
+    }
+    const least = Math.max(Math.min(3, last - first), HELD_SHARE * (last - first));
+    let out = 0;
+    for (let c = 0; c < columns; c++) if (counts[c]! >= least) out += 1;
+    const ends = counts[0]! >= least && counts[columns - 1]! >= least;
+    if (out === 0 || out > MOST_HELD * columns || ends) return false;
+    this.mark(plane, first, last, least, 0, OUT);
+    if (enough && isBad(misfit(plane, first, last, noise))) {
+      this.mark(plane, first, last, least, OUT, 0);
+      return false;
+    }
+    for (let row = first; row < last; row++) this.rows.fit(plane, row, noise, true);
+    return true;
+  }
+
+  /** In channels counted `least` times, turn one mark of `held` into another. */
+  private mark(
+    { columns, held }: Plane,
+    first: number,
+    last: number,
+    least: number,
+    from: number,
+    to: number,
+  ): void {
+    for (let row = first; row < last; row++) {
+      for (let c = 0, i = row * columns; c < columns; c++, i++) {
+        if (this.counts[c]! >= least && held[i] === from) held[i] = to;
       }
     }
   }
@@ -258,4 +287,9 @@ export class Background {
       size[c] = br[c]! * br[c]! + bi[c]! * bi[c]!;
     }
   }
+}
+
+/** Whether a block is described worse than noise would be. */
+function isBad({ cost, floor }: { readonly cost: number; readonly floor: number }): boolean {
+  return cost > floor + MISFIT * Math.sqrt(floor);
 }
