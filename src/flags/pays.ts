@@ -4,6 +4,9 @@ import type { Judgement } from "../rules/finding.ts";
 import type { FlagEntry } from "./entry.ts";
 import type { Doubt } from "./suggest.ts";
 
+/** Points that a cure may cost: less does not show in a score of whole numbers. */
+const SMALL_FALL = 1;
+
 export interface Paying {
   /** numbered anew */
   readonly flags: readonly FlagEntry[];
@@ -18,7 +21,7 @@ export interface Paying {
 export function payingFlags(flags: readonly FlagEntry[], before: Judgement, after: Judgement): Paying {
   const fall = before.score - after.score;
   const points = new Map(before.taken.map((one) => [one.rule, one.points]));
-  const pays = (flag: FlagEntry) => fall <= 0 || (points.get(flag.rule) ?? 0) >= fall;
+  const pays = (flag: FlagEntry) => fall < SMALL_FALL || (points.get(flag.rule) ?? 0) >= fall;
   return {
     flags: flags.filter(pays).map((flag, i) => ({ ...flag, id: `F${i + 1}` })),
     doubts: flags

@@ -279,6 +279,7 @@ export const LIMIT: MeasureForm = {
 export const CALIBRATOR_ANTENNA: MeasureForm = {
   name: "calibrator_antenna",
   each: "antenna",
+  mayBeEmpty: true,
   title:
     "Antennas against a point source at the phase centre; filled when the plan's purpose is a calibrator",
   columns: [
@@ -295,6 +296,7 @@ export const CALIBRATOR_ANTENNA: MeasureForm = {
 export const CALIBRATOR_BASELINE: MeasureForm = {
   name: "calibrator_baseline",
   each: "baseline",
+  mayBeEmpty: true,
   title: "What the antennas leave of each baseline's departure from a point source at the phase centre",
   columns: [
     column("antenna1", "", "antenna number"),

@@ -37,6 +37,8 @@ export interface Measure {
   readonly each: RowKind;
   readonly title: string;
   readonly columns: readonly Column[];
+  /** true where a table without rows says that nothing is the matter, not that nothing is known */
+  readonly mayBeEmpty?: boolean;
   readonly table: ColumnTable;
   /** by row, the samples it is about, where columns cannot name them all; absent: the columns say it */
   readonly scopes?: readonly Selection[];

@@ -30,7 +30,7 @@ const MOST_NAMED = 3;
 export function applyRule(rule: Rule, measures: Measures, plan: Plan): Applied {
   const measure = measures.get(rule.measure);
   if (measure === undefined) return nothing(`there is no measure "${rule.measure}" of this dataset`);
-  if (measure.table.numRows() === 0 && !MAY_BE_EMPTY.has(measure.each)) {
+  if (measure.table.numRows() === 0 && measure.mayBeEmpty !== true && !MAY_BE_EMPTY.has(measure.each)) {
     return nothing(`the measure "${rule.measure}" has no rows`);
   }
   try {
