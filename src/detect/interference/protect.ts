@@ -5,13 +5,14 @@ import { amplitudeOf } from "./amplitude.ts";
 import type { Feature } from "./features.ts";
 import { channelsOf } from "./group.ts";
 
-/** Fainter than this, in sigmas a sample, what comes and goes in protected channels is the line itself. */
+/** Fainter than this, in sigmas a sample, or on a few baselines only, what comes and goes in protected channels is the line. */
 const LEAST_IN_LINE = 3;
 
 /** Whether a line that is there for long lies wholly or partly in protected channels, or something faint wholly. */
 export function isProtected(survey: Survey, request: DetectRequest, feature: Feature): boolean {
   if (feature.kind !== "persistent-line") {
-    return liesInProtected(survey, request, feature) && amplitudeOf(feature) < LEAST_IN_LINE;
+    const faint = feature.who.kind === "listed" || amplitudeOf(feature) < LEAST_IN_LINE;
+    return faint && liesInProtected(survey, request, feature);
   }
   const { lineChannels } = request;
   const { channels } = survey.dataset.shape;
