@@ -1,11 +1,13 @@
 /** The numbers behind the verdict: beams, noise, w, smearing, coverage and counts, as tables. */
 import type { Beam, Coverage, ImageForecast, WeightingResult } from "../imaging/image.ts";
 import type { Totals } from "../measure/survey-result.ts";
+import { antennaLabels } from "../rules/scope.ts";
 import {
   formatCount,
   formatDuration,
   formatFlux,
   formatFrequency,
+  formatLength,
   formatNumber,
   formatPercent,
 } from "../util/units.ts";
@@ -18,7 +20,7 @@ export function numberTables(check: Check): DataTable[] {
   return [
     beamTable(image),
     coverageTable(image),
-    wTable(image),
+    wTable(check),
     smearingTable(image),
     countTable(survey.totals, check),
   ];
@@ -114,8 +116,8 @@ function formatDegrees(radians: number): string {
   return Number.isFinite(radians) ? `${formatNumber((radians * 180) / Math.PI)} deg` : "unknown";
 }
 
-function wTable(image: ImageForecast): DataTable {
-  const { wTerm } = image;
+function wTable(check: Check): DataTable {
+  const { wTerm } = check.image;
   const caption = "w term at the edge of the field";
   const columns = [words("w term"), numbers("Value")];
   if (!wTerm.known) {
@@ -141,8 +143,41 @@ function wTable(image: ImageForecast): DataTable {
         "planes, or facets, that a correction needs",
         wTerm.planes <= 1 ? "none" : `${formatCount(wTerm.planes)}, or ${formatCount(wTerm.facets)}`,
       ],
+      ...planeRows(check),
     ],
   };
+}
+
+/** Heights below this are the roundness of the Earth and the lie of the land, metres. */
+const LEAST_HEIGHT = 1;
+
+/** The antenna that stands furthest off the plane of the others, and where that plane faces. */
+function planeRows({ measures, dataset }: Check): string[][] {
+  const geometry = measures.get("geometry")?.table.object() as
+    | Readonly<Record<string, number | string | null>>
+    | undefined;
+  if (geometry === undefined) return [];
+  const { ridge_antenna, ridge_height_m, coplanar_hour_angle_deg, coplanar_declination_deg } = geometry;
+  const rows: string[][] = [];
+  const height = Number(ridge_height_m);
+  if (ridge_antenna !== null && Math.abs(height) >= LEAST_HEIGHT) {
+    const label = antennaLabels(dataset.array.antennas)(Number(ridge_antenna));
+    const side = height > 0 ? "above" : "below";
+    rows.push([
+      "furthest off the plane of the others",
+      `${label}, ${formatLength(Math.abs(height))} ${side}`,
+    ]);
+  }
+  const [hourAngle, declination] = [Number(coplanar_hour_angle_deg), Number(coplanar_declination_deg)];
+  if (Number.isFinite(hourAngle) && Number.isFinite(declination)) {
+    // Positions from the Earth's centre have their x axis in the meridian of Greenwich.
+    const from = dataset.array.frame === "geocentric" ? "Greenwich hour angle" : "hour angle";
+    rows.push([
+      `plane of the array faces (${from}, declination)`,
+      `${formatNumber(hourAngle)}, ${formatNumber(declination)} deg`,
+    ]);
+  }
+  return rows;
 }
 
 function smearingTable(image: ImageForecast): DataTable {
