@@ -211,6 +211,7 @@ function median(values: Float64Array): number {
 
 /** @param planned dynamic range */
 export function calibratorMeasures(result: CalibratorResult | null, planned: number): Measure[] {
+  const beside = besideOthers(result?.baselines ?? []);
   return [
     fillMeasure(
       CALIBRATOR_ANTENNA,
@@ -226,20 +227,49 @@ export function calibratorMeasures(result: CalibratorResult | null, planned: num
     ),
     fillMeasure(
       CALIBRATOR_BASELINE,
-      (result?.baselines ?? []).map((own) => ({
+      (result?.baselines ?? []).map((own, i) => ({
         antenna1: own.antenna1,
         antenna2: own.antenna2,
         amplitude_ratio: own.ratio,
         amplitude_error: own.ratioError,
         phase_deg: own.phase * DEGREES,
         phase_error_deg: own.phaseError * DEGREES,
-        significance: Math.max(
-          Math.abs(own.ratio - 1) / own.ratioError,
-          Math.abs(own.phase) / own.phaseError,
-        ),
+        significance: significanceOf(own),
+        beside: beside[i]!,
       })),
     ),
   ];
+}
+
+type BaselineDeparture = CalibratorResult["baselines"][number];
+
+/** Departure over its error, of the larger of amplitude and phase. */
+function significanceOf(own: BaselineDeparture): number {
+  return Math.max(Math.abs(own.ratio - 1) / own.ratioError, Math.abs(own.phase) / own.phaseError);
+}
+
+/**
+ * Significance of each baseline over the largest of those that share an antenna with it. An error of one baseline of N
+ * antennas leaves 1/N of it on each of these: above 1 the error is the baseline's own.
+ */
+function besideOthers(baselines: readonly BaselineDeparture[]): number[] {
+  const largest = new Map<number, { first: number; second: number }>();
+  for (const own of baselines) {
+    const significance = significanceOf(own);
+    for (const antenna of [own.antenna1, own.antenna2]) {
+      const seen = largest.get(antenna) ?? { first: 0, second: 0 };
+      if (significance > seen.first) largest.set(antenna, { first: significance, second: seen.first });
+      else if (significance > seen.second) largest.set(antenna, { ...seen, second: significance });
+    }
+  }
+  return baselines.map((own) => {
+    const significance = significanceOf(own);
+    const others = [own.antenna1, own.antenna2].map((antenna) => {
+      const { first, second } = largest.get(antenna)!;
+      return first === significance ? second : first;
+    });
+    return significance / Math.max(...others);
+  });
 }
 
 /** The antennas that depart, as limits. */

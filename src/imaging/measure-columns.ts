@@ -306,6 +306,7 @@ export const CALIBRATOR_BASELINE: MeasureForm = {
     column("phase_deg", "deg", "phase that the two antennas do not explain"),
     column("phase_error_deg", "deg", "1 sigma error of the phase"),
     column("significance", "", "departure over its error, of the larger of the two"),
+    column("beside", "", "that over the largest of the baselines that share an antenna with it"),
   ],
 };
 
