@@ -3,6 +3,7 @@ import type { Selection } from "../dataset/selection.ts";
 import type { Survey } from "../measure/survey-result.ts";
 import type { DetectedEvent, EventKind } from "./event.ts";
 import { interferenceOf } from "./interference/interference.ts";
+import { spoiltAverages } from "./interference/spoilt.ts";
 import { secondPass } from "./pass/second-pass.ts";
 import type { DetectRequest } from "./request.ts";
 import { withoutShadows } from "./secondary.ts";
@@ -14,7 +15,9 @@ export async function detect(survey: Survey, request: DetectRequest): Promise<De
   // The pass over the samples first: interference must not turn an antenna's phase.
   const pass = await secondPass(survey, request.onProgress);
   // Too few channels for a background leave nothing to put in place of what stands out.
-  const cleaned = pass.bands.length === 0 ? null : pass.clean;
+  const { real, imag, slopeReal, slopeImag, count } = pass.clean;
+  const spoilt = spoiltAverages(survey, pass);
+  const cleaned = pass.bands.length === 0 ? null : { real, imag, slopeReal, slopeImag, count, spoilt };
   const antennas = withoutShadows(antennaFaults(survey, request, cleaned), survey.integration);
   const interference = interferenceOf(survey, pass, request, antennas.flatMap(explainedBy));
   return inOrder(withoutShadows([...antennas, ...interference], survey.integration));

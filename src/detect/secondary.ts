@@ -71,7 +71,7 @@ export function withoutShadows(events: readonly DetectedEvent[], integration: nu
           other !== event &&
           ((INTERFERENCE_KINDS.has(other.kind) &&
             OF_INTERFERENCE.has(event.kind) &&
-            within(other.scope.time, event.scope.time, slack)) ||
+            (within(other.scope.time, event.scope.time, slack) || startsIn(other, event, slack))) ||
             ((SHADOWS[other.kind] ?? []).includes(event.kind) &&
               concerns(other.scope, event.scope) &&
               meets(other.scope.time, event.scope.time, slack))),
@@ -98,6 +98,18 @@ function concerns(cause: Selection, shadow: Selection): boolean {
 function within(cause: Selection["time"], shadow: Selection["time"], slack: number): boolean {
   if (cause === null || shadow === null) return false;
   return cause[0] - 2 * slack <= shadow[0] && shadow[1] <= cause[1] + 2 * slack;
+}
+
+/** Interference of this many times its significance can leave a step behind that seems to last. */
+const FAR_ABOVE = 4;
+
+function startsIn(cause: DetectedEvent, shadow: DetectedEvent, slack: number): boolean {
+  if (cause.scope.time === null || shadow.scope.time === null) return false;
+  const [start, end] = cause.scope.time;
+  const from = shadow.scope.time[0];
+  return (
+    start - slack <= from && from <= end + 2 * slack && cause.significance > FAR_ABOVE * shadow.significance
+  );
 }
 
 /** Overlap in time, an edge within the slack counting. */

@@ -27,9 +27,11 @@ export function antennaFaults(
   takeOutAntennas(grid, hands.antennas);
   const silent = silences(grid);
   const noisy = noisyAntennas(grid);
-  const weak = weakAntennas(grid, named(grid, [...hands.events, ...silent]));
   const noise = phaseNoise(grid);
   const jumps = phaseJumps(grid, noise.antennas);
+  // A mean over a half turn would be next to nothing.
+  const steps = gainSteps(jumps.turned);
+  const weak = weakAntennas(grid, named(grid, [...hands.events, ...silent, ...steps]));
   const weights = weightMismatches(grid, new Set(noisy.flatMap(({ scope }) => scope.antennas ?? [])));
   return [
     ...zeros,
@@ -39,8 +41,7 @@ export function antennaFaults(
     ...weak,
     ...noise.events,
     ...jumps.events,
-    // A mean over a half turn would be next to nothing.
-    ...gainSteps(jumps.turned),
+    ...steps,
     ...delaySlopes(grid),
     ...closureFaults(jumps.turned, request),
     ...weights,

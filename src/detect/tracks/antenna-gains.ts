@@ -1,6 +1,6 @@
 /** Antenna gains from baseline ratios, ln|g_i| + ln|g_j|, robustly; the median antenna is taken to keep its gain. */
 import { median } from "../../util/statistics.ts";
-import type { AntennaPhases } from "./antenna-phases.ts";
+import { type AntennaPhases, discountLone } from "./antenna-phases.ts";
 
 /** Arrays by baseline. */
 export interface BaselineRatios {
@@ -73,6 +73,8 @@ function describe(
       if (delta * delta * w < 9 || delta < 0.5 * Math.abs(gain[a]!)) agreement[a]! += w;
     }
   }
+  const shares = agreement.map((sum, a) => (total[a]! > 0 ? sum / total[a]! : 0));
+  discountLone({ first, second, weight }, total, shares);
   const known = gain.map((value, a) => (total[a]! > 0 ? value : Number.NaN));
   const middle = median(known);
   return {
@@ -80,6 +82,6 @@ function describe(
     error: known.map((_, a) =>
       total[a]! > 0 ? Math.sqrt(Math.max(1, chi[a]! / Math.max(1, count[a]! - 1)) / total[a]!) : Number.NaN,
     ),
-    agreement: agreement.map((sum, a) => (total[a]! > 0 ? sum / total[a]! : 0)),
+    agreement: shares,
   };
 }

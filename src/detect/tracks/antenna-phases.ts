@@ -175,12 +175,33 @@ function phasesOf(
       if (delta * delta * w < 9 || delta < 0.5 * Math.abs(phase[a]!)) agreement[a]! += w / total[a]!;
     }
   }
+  discountLone(p, total, agreement);
   for (let a = 0; a < antennas; a++) {
     if (!(total[a]! > 0)) continue;
     const reduced = sumR[a]! / Math.max(1, count[a]! - 1);
     error[a] = Math.sqrt(Math.max(1, reduced) / total[a]!);
   }
   return { phase, error, agreement };
+}
+
+/** An antenna told by next to one baseline alone cannot be told from it; with three antennas there is no choice. */
+const FEWEST_EFFECTIVE = 1.5;
+
+/** Agreement of antennas whose weight rests on fewer baselines is set to 0. */
+export function discountLone(
+  { first, second, weight }: Pick<BaselinePhasors, "first" | "second" | "weight">,
+  total: Float64Array,
+  agreement: Float64Array,
+): void {
+  if (total.length <= 3) return;
+  const squares = new Float64Array(total.length);
+  for (let b = 0; b < first.length; b++) {
+    squares[first[b]!]! += weight[b]! ** 2;
+    squares[second[b]!]! += weight[b]! ** 2;
+  }
+  for (let a = 0; a < total.length; a++) {
+    if (total[a]! ** 2 < FEWEST_EFFECTIVE * squares[a]!) agreement[a] = 0;
+  }
 }
 
 /** The median antenna stands still: so one antenna's turn is not that of all others. */

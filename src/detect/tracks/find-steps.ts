@@ -40,6 +40,8 @@ export interface StepSettings {
 }
 
 const MOST_STEPS = 24;
+/** What is left of a step once it is measured thoroughly must still stand out. */
+const LEAST_SIGMAS = 4;
 /** From scan to scan, where the sky and the air have moved on meanwhile. */
 const ACROSS_WINDOWS: readonly number[] = [1, 4, 16];
 const ACROSS_THRESHOLD = 10;
@@ -79,7 +81,7 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
     if (
       !isSharp(grid, groups[best.group]!, step) ||
       repeats(found, step) ||
-      !(Math.abs(step.phase) >= settings.least)
+      !(Math.abs(step.phase) >= Math.max(settings.least, LEAST_SIGMAS * step.error))
     ) {
       passOver(grid, groups, best);
       continue;

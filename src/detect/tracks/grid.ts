@@ -65,6 +65,8 @@ export interface Cleaned {
   readonly slopeImag: Float32Array;
   /** samples that the mean rests on */
   readonly count: Float32Array;
+  /** 1 where neither these nor the survey's own tell anything; null: nowhere */
+  readonly spoilt: Uint8Array | null;
 }
 
 export function gridOf(survey: Survey, cleaned: Cleaned | null = null): Grid {
@@ -186,6 +188,7 @@ export function planeOf(
     const usable = tracks.usable[at]!;
     if (usable === 0) continue;
     any = true;
+    if (cleaned?.spoilt?.[at] === 1) continue;
     const own = sigma[i % baselines.length]!;
     const noise = own > 0 ? own : typical;
     const count = cleaned?.count[at] ?? 0;

@@ -15,6 +15,8 @@ const FEWEST_ANTENNAS = 4;
 /** Error of the power over the usual one at which silence for a time is clear. */
 const CLEAR_ERROR = 0.08;
 const LEAST_SIGNIFICANCE = 7;
+/** Power over the usual one right before and after. */
+const BACK_TO_NORMAL = 0.5;
 const FEWEST_BASELINES = 2;
 
 /** One antenna in one polarization, silent over some runs of integrations [start, end). */
@@ -96,7 +98,7 @@ function gapsOf(
   const relative = smoothed(sums, grid, width);
   for (let a = 0; a < antennas.length; a++) {
     if (skip.has(a)) continue;
-    const runs = runsOf(grid, relative, a, width);
+    const runs = runsOf(grid, relative, a, width).filter((run) => isAbrupt(grid, relative, a, run, width));
     const length = runs.reduce((sum, [start, end]) => sum + end - start, 0);
     if (length === 0) continue;
     const [start, end] = runs[0]!;
@@ -112,16 +114,43 @@ function gapsOf(
   return found;
 }
 
+/** Fades of the sky come and go slowly; an antenna drops out from one integration to the next. */
+function isAbrupt(
+  grid: Grid,
+  { power }: Relative,
+  a: number,
+  [start, end]: readonly [number, number],
+  width: number,
+): boolean {
+  const segment = grid.segments.find((one) => start >= one.start && start < one.end)!;
+  const last = grid.segments.find((one) => end > one.start && end <= one.end)!;
+  const levelOf = (from: number, to: number) => {
+    const values: number[] = [];
+    for (let t = Math.max(from, 0); t < to; t++) values.push(power[t * grid.antennas.length + a]!);
+    return median(values);
+  };
+  // The window that the power is summed over blurs an edge by its width.
+  const before = levelOf(
+    Math.max(segment.start, start - 2 * width),
+    Math.max(segment.start, start - width + 1),
+  );
+  const after = levelOf(Math.min(last.end, end + width - 1), Math.min(last.end, end + 2 * width));
+  return !(before < BACK_TO_NORMAL) && !(after < BACK_TO_NORMAL);
+}
+
 interface PowerSums {
   /** (times x antennas) sum over baselines of power times the usual one, and of the usual one squared, in noise units */
   readonly product: Float64Array;
   readonly square: Float64Array;
+  /** (times x antennas) sum of the squares of each baseline's share in `square` */
+  readonly fourth: Float64Array;
 }
 
 function powersInTime(grid: Grid, planes: readonly Plane[], skip: ReadonlySet<number>): PowerSums {
   const { times, antennas, baselines, first, second } = grid;
   const product = new Float64Array(times.length * antennas.length);
   const square = new Float64Array(times.length * antennas.length);
+  const fourth = new Float64Array(times.length * antennas.length);
   for (const plane of planes) {
     for (let b = 0; b < baselines; b++) {
       if (skip.has(first[b]!) || skip.has(second[b]!)) continue;
@@ -141,14 +170,19 @@ function powersInTime(grid: Grid, planes: readonly Plane[], skip: ReadonlySet<nu
         for (const a of [first[b]!, second[b]!]) {
           product[t * antennas.length + a]! += gain * usual * trust;
           square[t * antennas.length + a]! += usual * usual * trust;
+          fourth[t * antennas.length + a]! += (usual * usual * trust) ** 2;
         }
       }
     }
   }
-  return { product, square };
+  return { product, square, fourth };
 }
 
-function errorOf({ square }: PowerSums, at: number): number {
+/** NaN where fewer baselines than these carry the sum: then it is theirs, not the antenna's. */
+const FEWEST_EFFECTIVE = 2;
+
+function errorOf({ square, fourth }: PowerSums, at: number): number {
+  if (square[at]! ** 2 < FEWEST_EFFECTIVE * fourth[at]!) return Number.NaN;
   return square[at]! > 0 ? 1 / Math.sqrt(square[at]!) : Number.NaN;
 }
 
@@ -176,7 +210,7 @@ function smoothed(sums: PowerSums, grid: Grid, width: number): Relative {
           product += sums.product[s * antennas + a]!;
           square += sums.square[s * antennas + a]!;
         }
-        if (!(square > 0)) continue;
+        if (!(square > 0) || Number.isNaN(errorOf(sums, t * antennas + a))) continue;
         power[t * antennas + a] = product / square;
         error[t * antennas + a] = 1 / Math.sqrt(square);
       }

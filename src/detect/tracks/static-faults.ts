@@ -139,23 +139,30 @@ export function weightMismatches(grid: Grid, skip: ReadonlySet<number>): Detecte
   if (!grid.survey.dataset.hasWeights || grid.antennas.length < FEWEST_ANTENNAS) return [];
   // sigma sqrt(weight): its square is how many times too large the weight is.
   const value = columnOf(grid, "weight_scatter_ratio").map((ratio) => 2 * Math.log(ratio));
+  // A noise that the sky's own changes feign leaves the weights in family.
+  const weights = weightsOf(grid);
+  const usual = median(weights);
+  const differ = (of: readonly number[], log: number) => {
+    const own = median(of.map((b) => Math.log(weights[b]! / usual)));
+    return own * log > 0 && Math.abs(own) > Math.abs(log) / 3;
+  };
   const events: DetectedEvent[] = [];
   const named = new Set<number>();
   for (const { antenna, log, error, z } of outlyingAntennas(grid, value, Math.log(1.3))) {
     const number = grid.antennas[antenna]!;
     named.add(number);
-    if (skip.has(number)) continue;
+    if (skip.has(number) || !differ(grid.touching[antenna]!, log)) continue;
     events.push(mismatch(grid, { antennas: [number] }, `antenna ${number}'s baselines`, log, error, z));
   }
   const rest = grid.survey.baselines
-    .map(({ antenna1, antenna2 }, b) => ({ antenna1, antenna2, value: value[b]! }))
+    .map(({ antenna1, antenna2 }, b) => ({ b, antenna1, antenna2, value: value[b]! }))
     .filter(({ antenna1, antenna2 }) => !named.has(antenna1) && !named.has(antenna2));
   const typical = median(rest.map((one) => one.value));
   const scale = Math.max(0.03, robustSigma(rest.map((one) => one.value)));
   for (const one of rest) {
     const log = one.value - typical;
     const z = Math.abs(log) / scale;
-    if (!(z > 12 && Math.abs(log) > Math.log(2.5))) continue;
+    if (!(z > 12 && Math.abs(log) > Math.log(2.5)) || !differ([one.b], log)) continue;
     const pair = [one.antenna1, one.antenna2] as const;
     events.push(mismatch(grid, { baselines: [pair] }, `baseline ${pair[0]}-${pair[1]}`, log, scale, z));
   }
@@ -182,6 +189,22 @@ function mismatch(
     significance: z,
     evidence: `The weights of ${who} are ${size.toFixed(2)} times what the scatter of their samples calls for, as against the rest of the array.`,
     repair: `multiply the weights of ${who} by ${(1 / size).toPrecision(3)}`,
+  });
+}
+
+/** Median weight of a sample by baseline; NaN without usable samples. */
+function weightsOf({ survey, baselines, planes }: Grid): number[] {
+  const { tracks, dataset } = survey;
+  const { subbands, polarizations } = dataset.shape;
+  return Array.from({ length: baselines }, (_, b) => {
+    const weights: number[] = [];
+    for (let cell = tracks.firstCell[b]!; cell < tracks.firstCell[b + 1]!; cell++) {
+      for (const { subband, product } of planes) {
+        const at = (cell * subbands + subband) * polarizations + product;
+        if (tracks.usable[at]! > 0) weights.push(tracks.weight[at]! / tracks.usable[at]!);
+      }
+    }
+    return median(weights);
   });
 }
 
