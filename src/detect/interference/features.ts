@@ -184,7 +184,8 @@ function settle(grid: Grid, band: Band, kind: FeatureKind, rectangles: readonly 
   const feature = weigh(grid, band, kind, settled, who);
   const { usable, elevated } = feature.counts;
   const least = LEAST[who.kind];
-  if (who.kind === "listed" && settled.length > MOST_PIECES_OF_LISTED) return null;
+  if (who.kind === "listed" && (settled.length > MOST_PIECES_OF_LISTED || isAtEnd(feature, band)))
+    return null;
   if (usable === 0 || elevated < least * usable) return null;
   const sure = who.kind === "all" ? LEAST_SIGNIFICANCE : LEAST_SIGNIFICANCE_OF_SOME;
   return feature.significance < sure ? null : feature;

@@ -65,8 +65,8 @@ export interface Cleaned {
   readonly slopeImag: Float32Array;
   /** samples that the mean rests on */
   readonly count: Float32Array;
-  /** 1 where neither these nor the survey's own tell anything; null: nowhere */
-  readonly spoilt: Uint8Array | null;
+  /** 1 where neither these nor the survey's own tell anything; absent or null: nowhere */
+  readonly spoilt?: Uint8Array | null;
 }
 
 export function gridOf(survey: Survey, cleaned: Cleaned | null = null): Grid {
