@@ -9,7 +9,7 @@ import { fillMeasure } from "../measure/fill-measure.ts";
 import type { Measure } from "../measure/table.ts";
 import { formatNumber, formatPercent } from "../util/units.ts";
 import type { GriddedImage } from "./cost.ts";
-import { capsOf, type RankedLimit } from "./limits.ts";
+import { capsOf, type RankedLimit, snapshotDynamicRange } from "./limits.ts";
 import { CALIBRATOR_ANTENNA, CALIBRATOR_BASELINE } from "./measure-columns.ts";
 import { type Sampling, trackOffset } from "./sampling.ts";
 
@@ -212,6 +212,7 @@ function median(values: Float64Array): number {
 /** @param planned dynamic range */
 export function calibratorMeasures(result: CalibratorResult | null, planned: number): Measure[] {
   const beside = besideOthers(result?.baselines ?? []);
+  const allowed = snapshotDynamicRange("baseline", result?.antennas.length ?? 0, 1) / planned;
   return [
     fillMeasure(
       CALIBRATOR_ANTENNA,
@@ -236,6 +237,7 @@ export function calibratorMeasures(result: CalibratorResult | null, planned: num
         phase_error_deg: own.phaseError * DEGREES,
         significance: significanceOf(own),
         beside: beside[i]!,
+        allowed_error: allowed,
       })),
     ),
   ];

@@ -307,6 +307,7 @@ export const CALIBRATOR_BASELINE: MeasureForm = {
     column("phase_error_deg", "deg", "1 sigma error of the phase"),
     column("significance", "", "departure over its error, of the larger of the two"),
     column("beside", "", "that over the largest of the baselines that share an antenna with it"),
+    column("allowed_error", "", "error of one baseline that the planned dynamic range allows"),
   ],
 };
 

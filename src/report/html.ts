@@ -59,7 +59,7 @@ export function writeHtml(check: Check): string {
 <main id="main">
 ${verdictSection(check)}
 ${flagsSection(check, words)}
-${limitsSection(check)}
+${limitsSection(check, words)}
 ${findingsSection(check, words)}
 ${settingsSection(check)}
 ${planSection(check)}

@@ -17,10 +17,21 @@ export interface ScopeWords {
   scope(scope: Scope): string;
   /** A reason without the selection that it begins with: it stands beside already. */
   reason(reason: string, scope: Scope): string;
+  /** A sentence of a stage that knows antennas by number alone, with their names: `antenna 7`, `baseline 3-9` ... */
+  named(text: string): string;
 }
+
+/** Antennas or baselines by number, alone or in a list. */
+const NUMBERED = /\b(antennas?|baselines?) (\d+(?:-\d+)?(?:(?:, | and )\d+(?:-\d+)?)*)(?![\w%]|\.\d)/gi;
 
 export function scopeWords(dataset: Pick<Dataset, "array">): ScopeWords {
   const antenna = antennaLabels(dataset.array.antennas);
+  const named = (text: string) =>
+    text.replace(
+      NUMBERED,
+      (_, word: string, numbers: string) =>
+        `${word} ${numbers.replace(/\d+/g, (number) => antenna(Number(number)))}`,
+    );
   const scope = (what: Scope) => wordsOfSelection(selectionOf(what), antenna);
   return {
     antenna,
@@ -28,8 +39,9 @@ export function scopeWords(dataset: Pick<Dataset, "array">): ScopeWords {
     scope,
     reason: (reason, what) => {
       const beginning = `${upperFirst(scope(what))}: `;
-      return reason.startsWith(beginning) ? reason.slice(beginning.length) : reason;
+      return named(reason.startsWith(beginning) ? reason.slice(beginning.length) : reason);
     },
+    named,
   };
 }
 

@@ -22,7 +22,7 @@ export function writeText(check: Check, options: TextOptions): string {
   const paper = new Paper(options);
   const words = scopeWords(check.dataset);
   verdictSection(paper, check);
-  limitsSection(paper, check);
+  limitsSection(paper, check, words);
   findingsSection(paper, check, words);
   flagsSection(paper, check, words);
   settingsSection(paper, check);

@@ -45,4 +45,11 @@ describe("scopeWords", () => {
     expect(words.reason("Antenna Q11: no fringes.", scope)).toBe("no fringes.");
     expect(words.reason("Antenna Q12: no fringes.", scope)).toBe("Antenna Q12: no fringes.");
   });
+
+  it("puts names for numbers into a sentence, and leaves every other number", () => {
+    expect(
+      words.named("Antenna 7 turns by 4 deg on 11 baselines; baseline 7-11, antennas 1, 7 and 11."),
+    ).toBe("Antenna Q07 turns by 4 deg on 11 baselines; baseline Q07-Q11, antennas Q01, Q07 and Q11.");
+    expect(words.named("antenna 7.5 m high, antenna Q07")).toBe("antenna 7.5 m high, antenna Q07");
+  });
 });

@@ -27,7 +27,8 @@ function card(finding: Finding, number: number, words: ScopeWords): Markup {
   const id = `finding-${number}`;
   const { evidence: seen } = finding;
   const evidence =
-    seen.length > 0 && html`<dt>Evidence</dt><dd>${seen.map((text) => html`<p>${sentence(text)}</p>`)}</dd>`;
+    seen.length > 0 &&
+    html`<dt>Evidence</dt><dd>${seen.map((text) => html`<p>${sentence(words.named(text))}</p>`)}</dd>`;
   return html`<article class="finding ${finding.verdict}" aria-labelledby="${id}">
 <div class="finding-head">${verdictTag(finding.verdict)}<h3 id="${id}">${finding.title}</h3></div>
 <p class="where">${upperFirst(words.scope(finding.scope))}</p>

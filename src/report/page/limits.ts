@@ -1,11 +1,12 @@
 /** What limits the image, worst first, each against the dynamic range that the plan asks for. */
 import { formatRatio } from "../quantity.ts";
 import type { Check } from "../report.ts";
+import type { ScopeWords } from "../scope.ts";
 import { sentence } from "../words.ts";
 import { html, type Markup } from "./markup.ts";
 import { section } from "./parts.ts";
 
-export function limitsSection(check: Check): Markup {
+export function limitsSection(check: Check, words: ScopeWords): Markup {
   const { limits } = check.image;
   const planned = check.plan.dynamicRange.value;
   if (limits.length === 0) {
@@ -23,7 +24,7 @@ export function limitsSection(check: Check): Markup {
 <ol class="limits">${limits.map((limit, i) => {
       const allowed = limit.dynamicRangeFraction;
       const enough = allowed >= planned;
-      return html`<li${enough && html` class="enough"`}><span class="rank" aria-hidden="true">${i + 1}</span><span class="allows">${formatRatio(allowed)}</span><span class="cause">${sentence(limit.text)}${enough && " Enough for the plan."}</span><span class="reach" aria-hidden="true"><span style="width:${reachPercent(allowed, planned)}%"></span></span></li>\n`;
+      return html`<li${enough && html` class="enough"`}><span class="rank" aria-hidden="true">${i + 1}</span><span class="allows">${formatRatio(allowed)}</span><span class="cause">${sentence(words.named(limit.text))}${enough && " Enough for the plan."}</span><span class="reach" aria-hidden="true"><span style="width:${reachPercent(allowed, planned)}%"></span></span></li>\n`;
     })}</ol>`,
   );
 }

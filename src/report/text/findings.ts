@@ -34,6 +34,6 @@ function oneFinding(paper: Paper, finding: Finding, number: number, words: Scope
   row("Limits", `from ${finding.limits.from}`);
   row("In image", finding.consequence.text);
   row("To do", toDo(finding));
-  if (finding.evidence.length > 0) row("Evidence", finding.evidence.join(" "));
+  if (finding.evidence.length > 0) row("Evidence", words.named(finding.evidence.join(" ")));
   row("Rule", `${finding.rule}, severity ${finding.severity.toFixed(2)} of 1`);
 }

@@ -1,10 +1,11 @@
 /** What limits the image, worst first. */
 import { formatRatio } from "../quantity.ts";
 import type { Check } from "../report.ts";
+import type { ScopeWords } from "../scope.ts";
 import { sentence } from "../words.ts";
 import type { Paper } from "./paper.ts";
 
-export function limitsSection(paper: Paper, check: Check): void {
+export function limitsSection(paper: Paper, check: Check, words: ScopeWords): void {
   const { limits } = check.image;
   const planned = check.plan.dynamicRange.value;
   paper.heading("What limits this image");
@@ -23,7 +24,11 @@ export function limitsSection(paper: Paper, check: Check): void {
     ],
     limits.map((limit, i) => {
       const enough = limit.dynamicRangeFraction >= planned ? " Enough for the plan." : "";
-      return [String(i + 1), formatRatio(limit.dynamicRangeFraction), sentence(limit.text) + enough];
+      return [
+        String(i + 1),
+        formatRatio(limit.dynamicRangeFraction),
+        sentence(words.named(limit.text)) + enough,
+      ];
     }),
   );
 }
