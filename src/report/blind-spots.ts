@@ -1,12 +1,18 @@
 /** What visvet could not see in a dataset, said plainly in every report. */
+import { smallestJump } from "../detect/tracks/smallest-jump.ts";
 import type { Plan } from "../imaging/plan.ts";
 import type { Survey } from "../measure/survey-result.ts";
+import { formatNumber } from "../util/units.ts";
+
+/** With fewer integrations nothing is said of the smallest jump: they are too few for any. */
+const FEWEST_INTEGRATIONS = 8;
 
 /** Sentences, the weightiest first. */
 export function blindSpots(survey: Survey, plan: Plan): string[] {
   return [
     ...ofAntennas(survey),
     ...ofSamples(survey),
+    ...ofJumps(survey),
     ...ofSky(survey, plan),
     "Whether the flux scale, the phase centre and the frequency labels are right can not be told from the file alone.",
   ];
@@ -48,7 +54,7 @@ function ofSamples(survey: Survey): string[] {
       "With fewer than three channels a sub-band, noise is measured from one integration to the next, and narrow interference can not be told from the sky.",
     );
   }
-  if (times.length < 8) {
+  if (times.length < FEWEST_INTEGRATIONS) {
     spots.push(
       `With ${times.length} integrations, phase jumps and changes of gain in time can hardly be told from noise.`,
     );
@@ -59,6 +65,16 @@ function ofSamples(survey: Survey): string[] {
     );
   }
   return spots;
+}
+
+function ofJumps(survey: Survey): string[] {
+  if (survey.times.length < FEWEST_INTEGRATIONS || survey.antennasWithData.length < 3) return [];
+  const degrees = smallestJump(survey);
+  return [
+    Number.isNaN(degrees)
+      ? "Noise and wander hide a phase jump of an antenna, whatever its size."
+      : `A lasting phase jump of a typical antenna below ${formatNumber(degrees)} deg would not have been told from noise and wander.`,
+  ];
 }
 
 function ofSky(survey: Survey, plan: Plan): string[] {
