@@ -26,6 +26,8 @@ export interface FoundStep {
   readonly significance: number;
   /** indices into the series that step */
   readonly series: readonly number[];
+  /** integrations on either side that its size was measured over */
+  readonly window: number;
 }
 
 export interface StepSettings {
@@ -95,7 +97,23 @@ export function findSteps(grid: Grid, series: readonly Series[], settings: StepS
       }
     }
   }
-  return found;
+  return found.length < 2 ? found : found.map((step) => remeasured(grid, series, settings, step));
+}
+
+/** Its size once no other step lies in its windows; the series keep it turned back by the new one. */
+function remeasured(
+  grid: Grid,
+  series: readonly Series[],
+  settings: StepSettings,
+  step: FoundStep,
+): FoundStep {
+  turnBack(grid, series, { ...step, phase: -step.phase }, settings.gains);
+  const [left, right] = sidesOf(grid, step.at, step.window)!;
+  const some = step.series.map((i) => series[i]!);
+  const phase = settings.solve(grid, some, left, right, true).phase[step.antenna]!;
+  const better = Number.isNaN(phase) ? step : { ...step, phase };
+  turnBack(grid, series, better, settings.gains);
+  return better;
 }
 
 /** Steps across scans are few: an antenna that wanders more within scans does so from scan to scan. */
@@ -220,7 +238,15 @@ function settle(
   const which = stepping(series.length, members, measure);
   const { phase, error } = measure(which);
   const scale = Math.max(chosen.scale[best.antenna]!, error);
-  return { antenna: best.antenna, at, phase, error: scale, significance: best.significance, series: which };
+  return {
+    antenna: best.antenna,
+    at,
+    phase,
+    error: scale,
+    significance: best.significance,
+    series: which,
+    window: chosen.window,
+  };
 }
 
 /** Which of the series step: those on the side of the clearest one rather than on that of none. */

@@ -101,7 +101,8 @@ function returnsOf(step: FoundStep, later: readonly FoundStep[]): readonly Found
 }
 
 function undoes(step: FoundStep, other: FoundStep): boolean {
-  const tolerance = 4 * Math.hypot(step.error, other.error);
+  // The sky and the air move on between the two.
+  const tolerance = Math.max(4 * Math.hypot(step.error, other.error), 0.1 * Math.abs(step.phase));
   return Math.abs(wrap(step.phase + other.phase)) < Math.min(tolerance, Math.abs(step.phase) / 2);
 }
 

@@ -230,7 +230,8 @@ function fillScale(steps: Steps, antennas: number): void {
     const values: number[] = [];
     for (let i = a; i < steps.phase.length; i += antennas) {
       const value = steps.phase[i]!;
-      if (!Number.isNaN(value)) values.push(value);
+      // The median antenna of an instant stands at 0 by construction.
+      if (!Number.isNaN(value) && value !== 0) values.push(value);
     }
     return values;
   });
