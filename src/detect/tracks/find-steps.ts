@@ -44,6 +44,8 @@ export interface StepSettings {
 const MOST_STEPS = 24;
 /** What is left of a step once it is measured thoroughly must still stand out. */
 const LEAST_SIGMAS = 4;
+/** Of the threshold: the few instants around tell their scale less well. */
+const LOCAL_SHARE = 0.75;
 /** From scan to scan, where the sky and the air have moved on meanwhile. */
 const ACROSS_WINDOWS: readonly number[] = [1, 4, 16];
 const ACROSS_THRESHOLD = 10;
@@ -166,7 +168,7 @@ function strongest(grid: Grid, groups: readonly Group[], settings: StepSettings)
         if (steps.barred[i] === 1 || settings.skip.has(antenna) || steps.agreement[i]! < LEAST_AGREEMENT)
           continue;
         if (steps.across && significance < ACROSS_THRESHOLD) continue;
-        if (localSignificance(steps, antennas, at, antenna) < settings.threshold) continue;
+        if (localSignificance(steps, antennas, at, antenna) < LOCAL_SHARE * settings.threshold) continue;
         best = { group: g, window: w, at, antenna, significance };
       }
     }

@@ -183,7 +183,7 @@ describe("antennaFaults on a harder sky and air", () => {
       withFaults([{ kind: "phase-jump", antenna: 3, degrees: 35, time: ["13.5min", "40min"] }], {
         time: { duration: "40min", scan: "5min", gap: "2min" },
         sky: [{ flux: "3Jy" }],
-        atmosphere: { kind: "turbulence", rms_at_1km: "8deg" },
+        atmosphere: { kind: "turbulence", rms_at_1km: "4deg" },
       }),
     );
     expect(events.map(subject)).toEqual(["phase-jump, antenna, antenna 3"]);
