@@ -10,6 +10,8 @@ const FEWEST_ANTENNAS = 4;
 
 /** Gains below this are called weak. */
 const WEAK = 0.7;
+/** A sky of two bright sources can make one antenna's baselines all faint: their scatter does not tell it is the sky's. */
+const WEAK_THRESHOLD = 9;
 /** Neighbours in the uv plane tell a level no better than this. */
 const LEAST_ERROR = 0.01;
 
@@ -35,7 +37,7 @@ export function weakAntennas(grid: Grid, skip: ReadonlySet<number>): DetectedEve
         const log = known[a]! - middle;
         const error = Math.max(level.scatter / Math.sqrt(level.stretches / 2), 0.5 * level.powerError);
         const z = -log / Math.max(family, error, 0.03);
-        if (z < THRESHOLD || log > Math.log(WEAK) || level.below < 0.9 || level.expected < 8) continue;
+        if (z < WEAK_THRESHOLD || log > Math.log(WEAK) || level.below < 0.9 || level.expected < 8) continue;
         weak.set(a, { log, error: Math.max(error, family, LEAST_ERROR), z });
         more = true;
       }
