@@ -175,6 +175,8 @@ interface Settled extends Outlier {
   readonly run: readonly [number, number];
 }
 
+/** A shorter one may be a passing source, which fades as quickly. */
+const FEWEST_INTEGRATIONS = 6;
 /** Integrations on either side of an edge that must show it. */
 const EDGE = 3;
 
@@ -191,6 +193,7 @@ function settle(
   const own = values.subarray(one.baseline * n, (one.baseline + 1) * n);
   const noise = median(errors.subarray(one.baseline * n, (one.baseline + 1) * n));
   const [start, end] = bestRun(own, one.value);
+  if (!calibrator && end - start < Math.min(FEWEST_INTEGRATIONS, n)) return null;
   if (!calibrator && !standsAlone(values, one, n, start, end)) return null;
   const inside = own.subarray(start, end).filter((x) => !Number.isNaN(x));
   if (inside.length === 0) return null;

@@ -8,6 +8,10 @@ import { makeEvent } from "./make-event.ts";
 const THRESHOLD = 6;
 const FEWEST_ANTENNAS = 4;
 
+/** Noise above this, times the typical one, is called noisy. */
+const NOISY = 1.2;
+const NOISY_UNCALIBRATED = 2;
+
 /** Gains below this are called weak. */
 const WEAK = 0.7;
 /** A sky of two bright sources can make one antenna's baselines all faint: their scatter does not tell it is the sky's. */
@@ -117,7 +121,9 @@ function outlyingAntennas(grid: Grid, value: readonly number[], least: number): 
 export function noisyAntennas(grid: Grid): DetectedEvent[] {
   if (grid.antennas.length < FEWEST_ANTENNAS) return [];
   const value = columnOf(grid, "noise_sigma").map(Math.log);
-  return outlyingAntennas(grid, value, Math.log(1.2))
+  // Before calibration noise follows the gain, and gains differ.
+  const least = grid.survey.dataset.unit === "Jy" ? NOISY : NOISY_UNCALIBRATED;
+  return outlyingAntennas(grid, value, Math.log(least))
     .filter(({ log }) => log > 0)
     .map(({ antenna, log, error, z }) => {
       const number = grid.antennas[antenna]!;
