@@ -74,6 +74,7 @@ const clean = (name: string, changes: Changes | ((draw: Draw) => Changes), plan?
   );
 
 const CLEAN: readonly Case[] = [
+  clean("point source, 8 antennas", { array: spiral(8) }),
   clean("point source, 9 antennas", {}),
   clean("point source, 27 antennas, 2 sub-bands", {
     array: spiral(27),
@@ -289,6 +290,10 @@ function burst(draw: Draw, amplitude: `${number} sigma`, more: Partial<FaultInpu
 const ANTENNAS: readonly Case[] = [
   play("silent antenna", "antenna", [["silent-antenna"]], (draw) => ({
     faults: [{ kind: "silent-antenna", antenna: draw.whole(1, 9) }],
+  })),
+  play("8 antennas, one of them silent", "antenna", [["silent-antenna"]], (draw) => ({
+    faults: [{ kind: "silent-antenna", antenna: draw.whole(1, 8) }],
+    changes: { array: spiral(8) },
   })),
   play("silent for 8 minutes", "antenna", [["silent-antenna", "dropout"]], (draw) => {
     const start = draw.whole(3, 18);
