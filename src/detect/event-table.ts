@@ -1,9 +1,10 @@
 /** Events as measures: one row an event, and one row that sums up the interference. */
+
 import { table } from "arquero";
 import type { Selection } from "../dataset/selection.ts";
 import type { Survey } from "../measure/survey-result.ts";
 import type { Column, Measure } from "../measure/table.ts";
-import { SECONDS_PER_DAY } from "../util/dates.ts";
+import { SECONDS_PER_DAY } from "../util/constants.ts";
 import { type DetectedEvent, INTERFERENCE_KINDS } from "./event.ts";
 
 type Cell = number | string | null;

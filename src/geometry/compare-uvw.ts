@@ -5,6 +5,7 @@
  * Writers differ in whether they precess, which sidereal time they take, and in the sign; those differences are up to
  * a few tenths of a degree and are not faults. Tolerance: 1 % of |uvw|, common practice, no source.
  */
+import { SPEED_OF_LIGHT } from "../util/constants.ts";
 import { AXIS_MAPS, type AxisMap, type Fit, SAME_AXES, SpacingSums, type Spacings } from "./spacing-sums.ts";
 
 /** Relative rms up to which u, v, w agree. */
@@ -96,7 +97,7 @@ export function signsOf(map: AxisMap): { readonly reversed: boolean; readonly fl
 /** Units that u, v, w are found in where seconds are due, by the factor they make. */
 export function unitOfScale(scale: number, frequency: number): string | null {
   const candidates: readonly (readonly [string, number])[] = [
-    ["metres", 299792458],
+    ["metres", SPEED_OF_LIGHT],
     ["kilometres", 299792.458],
     ["wavelengths", frequency],
     ["kilowavelengths", frequency / 1e3],

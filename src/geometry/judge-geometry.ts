@@ -2,14 +2,16 @@
  * The geometry of a dataset judged: whether u, v, w follow from the antenna table, the times and the phase centre,
  * and, where they do not, the smallest fault that explains them.
  */
+
 import type { ArrayInfo, Field } from "../dataset/dataset.ts";
+import { SPEED_OF_LIGHT } from "../util/constants.ts";
 import { type AntennaOffset, antennaOffsets } from "./antenna-offsets.ts";
 import { fillExpected, fillRepaired, type Orientation, orient, signsOf } from "./compare-uvw.ts";
 import { concludeGeometry, type GeometryJudgement, type Rest } from "./geometry-faults.ts";
 import { equinoxDay, precess } from "./precession.ts";
 import { siderealTimeOf } from "./sidereal.ts";
 import type { Spacings } from "./spacing-sums.ts";
-import { hourAngle, SPEED_OF_LIGHT } from "./uvw.ts";
+import { hourAngle } from "./uvw.ts";
 
 /** Rows or cells of a dataset; columns of one length. */
 export interface UvwSamples {

@@ -5,8 +5,8 @@
  * told from the electronics'.
  * @see Thompson, Moran & Swenson 2017, Interferometry and Synthesis in Radio Astronomy, 3rd ed., section 4.4
  */
+import { SPEED_OF_LIGHT } from "../util/constants.ts";
 import { antennaPhasors, type BaselineValues, type Phasors } from "./antenna-phases.ts";
-import { SPEED_OF_LIGHT } from "./uvw.ts";
 
 /** Visibilities of one moment and frequency. */
 export interface PhaseMoment extends BaselineValues {

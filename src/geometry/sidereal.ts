@@ -1,7 +1,9 @@
 /**
  * Sidereal time: of the sky, and as a dataset's antenna table gives it.
  */
+
 import type { ArrayInfo } from "../dataset/dataset.ts";
+import { SECONDS_PER_DAY } from "../util/constants.ts";
 
 /** Sidereal seconds of Greenwich mean sidereal time at 0h UT1 of J2000 and its rates a century, IAU 1982. */
 const GMST_AT_0H = 24110.54841;
@@ -12,7 +14,6 @@ const GMST_PER_CENTURY_3 = -6.2e-6;
 /** MJD of J2000.0, 2000 January 1 12h. */
 const MJD_J2000 = 51544.5;
 const DAYS_PER_CENTURY = 36525;
-const SECONDS_PER_DAY = 86400;
 
 /** Degrees the Earth turns against the mean equinox in a day of UT1 (rate of the IAU 1982 expression at J2000). */
 export const SIDEREAL_DEGREES_PER_DAY = 360.98564736629;

@@ -6,9 +6,6 @@
 import type { Vector3 } from "./earth.ts";
 import { EARTH_ROTATION_RATE } from "./sidereal.ts";
 
-/** Metres a second, exact (SI). */
-export const SPEED_OF_LIGHT = 299792458;
-
 /** Sidereal time less right ascension, wrapped to -pi < angle <= pi. */
 export function hourAngle(siderealTime: number, rightAscension: number): number {
   const angle = siderealTime - rightAscension;

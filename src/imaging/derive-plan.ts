@@ -2,10 +2,11 @@
  * The plan with every value filled in: what the user gave, what the file says, what follows from the baselines, and
  * stated defaults, each with where it came from.
  */
+
 import type { Dataset } from "../dataset/dataset.ts";
 import type { LineRange, PlanRequest } from "../dataset/plan-request.ts";
-import { SPEED_OF_LIGHT } from "../geometry/uvw.ts";
 import type { Survey } from "../measure/survey-result.ts";
+import { SPEED_OF_LIGHT } from "../util/constants.ts";
 import { InputError } from "../util/errors.ts";
 import { formatFlux, formatFrequency, formatLength, formatNumber } from "../util/units.ts";
 import type { Plan, PlanValue } from "./plan.ts";

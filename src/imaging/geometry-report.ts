@@ -1,13 +1,15 @@
 /** The geometry of the survey's tracks judged, and what its measures say. */
+
 import { type ArrayHeights, arrayHeights, type PlaneMoment } from "../geometry/array-plane.ts";
 import type { GeometryJudgement } from "../geometry/geometry-faults.ts";
 import { type Judged, judgeGeometry, uvwPredictor } from "../geometry/judge-geometry.ts";
 import type { PhaseOffset } from "../geometry/phase-positions.ts";
 import { siderealTimeOf } from "../geometry/sidereal.ts";
-import { hourAngle, SPEED_OF_LIGHT } from "../geometry/uvw.ts";
+import { hourAngle } from "../geometry/uvw.ts";
 import { wPhase } from "../geometry/w-term.ts";
 import { fillMeasure, type Row } from "../measure/fill-measure.ts";
 import type { Measure } from "../measure/table.ts";
+import { SPEED_OF_LIGHT } from "../util/constants.ts";
 import { ANTENNA_GEOMETRY, BASELINE_GEOMETRY, GEOMETRY } from "./measure-columns.ts";
 import { phasePositions } from "./phase-report.ts";
 import { frequencyRange, type Sampling } from "./sampling.ts";

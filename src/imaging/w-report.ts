@@ -1,7 +1,8 @@
 /** w by baseline, by antenna and by snapshot, and what it does at the edge of the planned field. */
+
 import { fitPlane, planeRest } from "../geometry/plane.ts";
-import { SPEED_OF_LIGHT } from "../geometry/uvw.ts";
 import { facetsNeeded, planesNeeded, uncorrectedField, wPhase } from "../geometry/w-term.ts";
+import { SECONDS_PER_DAY, SPEED_OF_LIGHT } from "../util/constants.ts";
 import { RADIANS_PER_ARCSEC } from "./beams.ts";
 import type { EdgeSamples } from "./edge-samples.ts";
 import type { WTerm } from "./image.ts";
@@ -131,7 +132,6 @@ export interface Snapshot {
 }
 
 const MOST_SNAPSHOTS = 200;
-const SECONDS_PER_DAY = 86400;
 
 /** Cells of the tracks that belong to one moment: rows of one integration may differ by a jitter of the file's. */
 export interface Moment {

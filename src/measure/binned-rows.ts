@@ -3,8 +3,9 @@
  * as narrow as the memory allows, in steps of two: the step is the first at which all cells fit, and since how many there
  * are does not depend on the order of the rows, neither does the step. Sums over rows are exact, so nor do they.
  */
+
 import type { Shape } from "../dataset/dataset.ts";
-import { SECONDS_A_DAY } from "../util/constants.ts";
+import { SECONDS_PER_DAY } from "../util/constants.ts";
 import { InputError } from "../util/errors.ts";
 import { ExactSums } from "./exact-sums.ts";
 import {
@@ -191,7 +192,7 @@ export class BinnedRows implements TrackKeeper {
   }
 
   private cellOf(stream: Stream, time: number): number {
-    return this.cellAt(stream, Math.floor((time * SECONDS_A_DAY) / this.seconds));
+    return this.cellAt(stream, Math.floor((time * SECONDS_PER_DAY) / this.seconds));
   }
 
   private cellAt(stream: Stream, bin: number): number {
@@ -292,8 +293,8 @@ export class BinnedRows implements TrackKeeper {
     for (const stream of this.streams.values()) {
       for (const [bin, cell] of stream.cells) {
         const rows = this.sums.given[cell * CELL_SUMS]!;
-        const from = lowerBound(times, (bin * this.seconds) / SECONDS_A_DAY);
-        const to = lowerBound(times, ((bin + 1) * this.seconds) / SECONDS_A_DAY);
+        const from = lowerBound(times, (bin * this.seconds) / SECONDS_PER_DAY);
+        const to = lowerBound(times, ((bin + 1) * this.seconds) / SECONDS_PER_DAY);
         count += Math.max(0, rows - Math.max(1, to - from));
       }
     }

@@ -1,11 +1,11 @@
 /** The order of the rows in time, and the times at which each field was observed. */
-import { SECONDS_A_DAY } from "../util/constants.ts";
+import { SECONDS_PER_DAY } from "../util/constants.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
 import { TimeList } from "./time-list.ts";
 
 /** A float32 day fraction near 0.6 resolves 5.15 ms: times closer than this are one integration. */
-export const TIME_STEP_DAYS = 5.2e-3 / SECONDS_A_DAY;
+export const TIME_STEP_DAYS = 5.2e-3 / SECONDS_PER_DAY;
 
 /** Rows that follow each other in the dataset; of its cross-correlations with a time, the first and the last. */
 interface Run {

@@ -1,5 +1,5 @@
 /** Integrations from the times of the rows, which may be a float32 step apart, and the scans they make up. */
-import { SECONDS_A_DAY } from "../util/constants.ts";
+import { SECONDS_PER_DAY } from "../util/constants.ts";
 import { median } from "../util/statistics.ts";
 import type { Survey } from "./survey-result.ts";
 import { TIME_STEP_DAYS, type Visits } from "./time-order.ts";
@@ -46,14 +46,14 @@ export function integrationsOf(fields: readonly Visits[], integration: number): 
 
 /** How far apart the rows of one integration may be, days: a float32 step, and never half an integration. */
 function toleranceFor(integration: number): number {
-  return integration > 0 ? Math.min(TIME_STEP_DAYS, integration / 2.5 / SECONDS_A_DAY) : TIME_STEP_DAYS;
+  return integration > 0 ? Math.min(TIME_STEP_DAYS, integration / 2.5 / SECONDS_PER_DAY) : TIME_STEP_DAYS;
 }
 
 /** Typical integration time, seconds: what most rows say, else the typical spacing of times; NaN of a single time. */
 export function typicalIntegration(said: number, centre: Float64Array): number {
   if (said > 0) return said;
   const steps = new Float64Array(Math.max(0, centre.length - 1));
-  for (let i = 0; i < steps.length; i++) steps[i] = (centre[i + 1]! - centre[i]!) * SECONDS_A_DAY;
+  for (let i = 0; i < steps.length; i++) steps[i] = (centre[i + 1]! - centre[i]!) * SECONDS_PER_DAY;
   return median(steps);
 }
 
@@ -90,7 +90,7 @@ export function findScans(
   integration: number,
   tracks: TracksWithoutScans,
 ): Scans {
-  const longest = longestPause(integration) / SECONDS_A_DAY;
+  const longest = longestPause(integration) / SECONDS_PER_DAY;
   const scans: Scan[] = [];
   for (const subarray of new Set(fields.map((visits) => visits.subarray))) {
     const own = fields.filter((visits) => visits.subarray === subarray);

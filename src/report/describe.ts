@@ -1,7 +1,9 @@
 /** What is in a dataset, as text of 80 columns: array, times, fields, frequencies, sizes, notes. No judging. */
+
 import type { Dataset, Field, Setup } from "../dataset/dataset.ts";
 import type { RowSummary } from "../dataset/row-summary.ts";
-import { dateFromMjd, isoFromMjd, mjdFromDate, SECONDS_PER_DAY } from "../util/dates.ts";
+import { SECONDS_PER_DAY, SPEED_OF_LIGHT } from "../util/constants.ts";
+import { dateFromMjd, isoFromMjd, mjdFromDate } from "../util/dates.ts";
 import { plainText } from "../util/terminal.ts";
 import {
   formatBytes,
@@ -21,8 +23,6 @@ export interface DescribeExtras {
 
 const WIDTH = 80;
 const LABEL = 15;
-/** Metres a second. */
-const LIGHT = 299_792_458;
 /** Shown in full; the rest is counted. */
 const MOST_FIELDS = 20;
 const MOST_SUBBANDS = 16;
@@ -180,7 +180,7 @@ function subbandText(setup: Setup, subband: number, subbands: number, channels: 
 
 function spacingText({ shortestSpacing, longestSpacing, rowsWithoutUvw, wAllZero }: RowSummary): string {
   if (Number.isNaN(longestSpacing)) return "no baseline between different antennas";
-  const range = `${formatLength(shortestSpacing * LIGHT)} to ${formatLength(longestSpacing * LIGHT)} across the sky`;
+  const range = `${formatLength(shortestSpacing * SPEED_OF_LIGHT)} to ${formatLength(longestSpacing * SPEED_OF_LIGHT)} across the sky`;
   const bad = rowsWithoutUvw > 0 ? `; ${counted(rowsWithoutUvw, "row")} without u, v, w` : "";
   return `${range}${wAllZero ? "; every w is 0" : ""}${bad}`;
 }

@@ -1,6 +1,7 @@
 /** Phase that the air adds to each antenna, and how it wanders. Delays: the phase is proportional to frequency. */
+
 import { geocentricToLocal, localToEnu } from "../geometry/earth.ts";
-import { SECONDS_PER_DAY } from "../util/dates.ts";
+import { SECONDS_PER_DAY } from "../util/constants.ts";
 import type { Observation } from "./observation.ts";
 import { Random } from "./random.ts";
 import type { Atmosphere } from "./scenario.ts";

@@ -2,11 +2,13 @@
  * A scenario worked out into tables: antennas, baselines, integrations, channels, products. Everything a row needs is
  * found here by its integration and baseline, so that rows can be made in any order.
  */
+
 import type { ArrayInfo, Field, Polarization, Setup, Shape } from "../dataset/dataset.ts";
 import { enuToLocal, geodeticToGeocentric, localToGeocentric, type Vector3 } from "../geometry/earth.ts";
 import { greenwichSiderealTime, SIDEREAL_DEGREES_PER_DAY, siderealTimeOf } from "../geometry/sidereal.ts";
 import { hourAngle } from "../geometry/uvw.ts";
-import { mjdFromDate, SECONDS_PER_DAY } from "../util/dates.ts";
+import { SECONDS_PER_DAY } from "../util/constants.ts";
+import { mjdFromDate } from "../util/dates.ts";
 import { InputError } from "../util/errors.ts";
 import type { FaultOf } from "./faults/schema.ts";
 import { antennaOffsets } from "./layout.ts";

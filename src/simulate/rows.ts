@@ -4,7 +4,8 @@
  */
 
 import type { Vector3 } from "../geometry/earth.ts";
-import { applyMatrix, fillUvwMatrix, SPEED_OF_LIGHT } from "../geometry/uvw.ts";
+import { applyMatrix, fillUvwMatrix } from "../geometry/uvw.ts";
+import { SPEED_OF_LIGHT } from "../util/constants.ts";
 import type { CompiledFault, Effect, RowState, Stage } from "./faults/effect.ts";
 import { FeedModel } from "./feeds.ts";
 import type { GainTable } from "./gains.ts";

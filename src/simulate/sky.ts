@@ -3,8 +3,9 @@
  * by channel width and integration time, and for Gaussians by their size.
  * @see Thompson, Moran & Swenson 2017, Interferometry and Synthesis in Radio Astronomy, 3rd ed., Eq. 3.7
  */
+
 import { EARTH_ROTATION_RATE } from "../geometry/sidereal.ts";
-import { SECONDS_PER_DAY } from "../util/dates.ts";
+import { SECONDS_PER_DAY } from "../util/constants.ts";
 import type { Observation } from "./observation.ts";
 import { isCircular } from "./products.ts";
 import type { Source } from "./scenario.ts";

@@ -2,10 +2,10 @@
  * Modified Julian dates and calendar dates, proleptic Gregorian. MJD 0 is 1858-11-17T00:00 (JD 2400000.5).
  * A day here has 86400 s: a leap second prints as the first second of the next day.
  */
+import { SECONDS_PER_DAY } from "./constants.ts";
 
 /** JD = MJD + this. */
 export const MJD_EPOCH_JD = 2400000.5;
-export const SECONDS_PER_DAY = 86400;
 
 const MS_PER_DAY = 86_400_000;
 const MJD_OF_1970 = 40587;

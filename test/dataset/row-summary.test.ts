@@ -1,6 +1,7 @@
 import { describe, expect, it } from "vitest";
 import { openDataset } from "../../src/dataset/open.ts";
 import { summarizeRows } from "../../src/dataset/row-summary.ts";
+import { SPEED_OF_LIGHT } from "../../src/util/constants.ts";
 import { DAY, fileMaker, groupFile, type ParameterSpec, parameters } from "./group-file.ts";
 import { lineOfError } from "./read-all.ts";
 
@@ -18,8 +19,6 @@ function opened(
   });
   return openDataset(file(groupFile({ bitpix: -64, rows, parameters: [...changed, ...extra] })));
 }
-
-const LIGHT = 299_792_458;
 
 describe("summarizeRows", () => {
   it("counts times, antennas, baselines and fields", async () => {
@@ -49,7 +48,7 @@ describe("summarizeRows", () => {
       baseline: (row) => (row === 0 ? 257 : 258),
     });
     expect(summary.shortestSpacing).toBeCloseTo(5e-9, 20);
-    expect(summary.longestSpacing * LIGHT).toBeCloseTo(500e-9 * LIGHT, 9);
+    expect(summary.longestSpacing * SPEED_OF_LIGHT).toBeCloseTo(500e-9 * SPEED_OF_LIGHT, 9);
     expect(summary.wAllZero).toBe(false);
   });
 

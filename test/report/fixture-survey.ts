@@ -2,10 +2,12 @@
  * The survey of an invented array of 14 antennas on three arms: two hours on a double source at L band, an antenna
  * that jumps in phase, one that is silent, interference in five channels, and a quarter of an hour flagged already.
  */
+
 import type { Antenna, Dataset } from "../../src/dataset/dataset.ts";
 import { enuToLocal } from "../../src/geometry/earth.ts";
-import { SPEED_OF_LIGHT, uvwOf } from "../../src/geometry/uvw.ts";
+import { uvwOf } from "../../src/geometry/uvw.ts";
 import type { Baseline, Levels, Survey, Tracks } from "../../src/measure/survey-result.ts";
+import { SPEED_OF_LIGHT } from "../../src/util/constants.ts";
 
 /** 2032-03-14T21:00:00 UTC */
 export const START = 63305.875;

@@ -1,8 +1,9 @@
 /** Each fault does what its truth says, to the samples its truth names and to no other. */
+
 import { describe, expect, it } from "vitest";
 import { type Dataset, type SampleBlock, sampleIndex } from "../../src/dataset/dataset.ts";
-import { SPEED_OF_LIGHT } from "../../src/geometry/uvw.ts";
 import { type Simulated, simulate } from "../../src/simulate/simulate.ts";
+import { SPEED_OF_LIGHT } from "../../src/util/constants.ts";
 import { readAll, sameBits } from "../support/read-all.ts";
 import { type Changes, FAULTY, simulated, withFaults } from "../support/scenarios.ts";
 

@@ -1,8 +1,8 @@
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
 import type { SampleBlock } from "../../src/dataset/dataset.ts";
-import { SPEED_OF_LIGHT } from "../../src/geometry/uvw.ts";
 import { simulate } from "../../src/simulate/simulate.ts";
+import { SPEED_OF_LIGHT } from "../../src/util/constants.ts";
 import { readAll, sameBits } from "../support/read-all.ts";
 import { CLEAN, scenarioWith, simulated, withFaults } from "../support/scenarios.ts";
 

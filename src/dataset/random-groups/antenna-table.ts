@@ -1,5 +1,6 @@
 /** One AN table as it stands in the file: numbers, names, positions, Earth orientation. */
-import { mjdFromDate, SECONDS_PER_DAY } from "../../util/dates.ts";
+import { SECONDS_PER_DAY } from "../../util/constants.ts";
+import { mjdFromDate } from "../../util/dates.ts";
 import type { Cursor } from "../fits/byte-source.ts";
 import type { Hdu } from "../fits/hdus.ts";
 import { type Column, findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";

@@ -3,6 +3,7 @@
  * from the Earth's centre or from the array's, along axes to Greenwich or to the local meridian, right- or left-handed:
  * sizes tell the first, and where they do not suffice the u, v, w of some rows are asked which reading explains them.
  */
+import { SPEED_OF_LIGHT } from "../../util/constants.ts";
 import type { Field, PositionFrame } from "../dataset.ts";
 import type { Notes } from "../notes.ts";
 import type { ProbeRow } from "../row-summary.ts";
@@ -14,7 +15,6 @@ export interface FramedTable {
   readonly positions: ReadonlyMap<number, Position>;
 }
 
-const LIGHT = 299_792_458;
 const DEGREE = Math.PI / 180;
 
 /** The surface is 6357 to 6378 km from the centre; what is farther than this from the origin is geocentric. */
@@ -147,7 +147,7 @@ function unexplained(
     for (let axis = 0; axis < 3; axis++) {
       // An axis that was never filled in says nothing.
       if (stored[axis] === 0) continue;
-      const metres = Math.abs(stored[axis]! * LIGHT);
+      const metres = Math.abs(stored[axis]! * SPEED_OF_LIGHT);
       difference += (Math.abs(computed[axis]!) - metres) ** 2;
       power += metres ** 2;
     }

@@ -1,5 +1,5 @@
 /** Features as events, in numbers and words. */
-import { SECONDS_PER_DAY } from "../../util/dates.ts";
+import { SECONDS_PER_DAY, SPEED_OF_LIGHT } from "../../util/constants.ts";
 import type { DetectedEvent } from "../event.ts";
 import { ELEVATED_SHARE } from "../pass/second-pass.ts";
 import type { DetectRequest } from "../request.ts";
@@ -151,7 +151,7 @@ function baselineWords(grid: Grid, { who }: Feature): string {
   if (who.kind === "antenna") return `the ${who.baselines} baselines of one antenna`;
   const share = `${who.baselines} of ${all} baselines (${percent(who.baselines / all)})`;
   return who.kind === "short"
-    ? `the shortest ${share}, below ${Number((who.shorterThan * 299792458).toPrecision(3))} m`
+    ? `the shortest ${share}, below ${Number((who.shorterThan * SPEED_OF_LIGHT).toPrecision(3))} m`
     : share;
 }
 

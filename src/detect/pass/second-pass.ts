@@ -2,11 +2,11 @@
  * The second pass over the samples: each baseline's planes against their own background and noise. It leaves bits of
  * what stands out, scores added over baselines, and tracks without what stands out.
  */
+
 import type { Shape } from "../../dataset/dataset.ts";
 import { EARTH_ROTATION_RATE } from "../../geometry/sidereal.ts";
-import { SPEED_OF_LIGHT } from "../../geometry/uvw.ts";
 import type { Survey } from "../../measure/survey-result.ts";
-import { SECONDS_PER_DAY } from "../../util/dates.ts";
+import { SECONDS_PER_DAY, SPEED_OF_LIGHT } from "../../util/constants.ts";
 import { median } from "../../util/statistics.ts";
 import { fillScores } from "../statistics/normal.ts";
 import { SumThresholdRoom, type SumThresholdSettings, sumThreshold } from "../statistics/sum-threshold.ts";

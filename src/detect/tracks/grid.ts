@@ -2,10 +2,11 @@
  * Channel averages of the parallel hands laid out by integration and baseline, with the noise of each: what the
  * detectors of antenna faults work on.
  */
+
 import type { Polarization } from "../../dataset/dataset.ts";
 import type { Survey } from "../../measure/survey-result.ts";
 import { parallelProducts } from "../../measure/tables/products.ts";
-import { SECONDS_PER_DAY } from "../../util/dates.ts";
+import { SECONDS_PER_DAY } from "../../util/constants.ts";
 import { median } from "../../util/statistics.ts";
 
 /** One product of one sub-band: channel averages, (times x baselines), baseline fastest. */

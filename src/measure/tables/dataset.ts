@@ -1,6 +1,6 @@
 /** The `dataset` measure: one row. */
 
-import { SECONDS_A_DAY } from "../../util/constants.ts";
+import { SECONDS_PER_DAY } from "../../util/constants.ts";
 import { median } from "../../util/statistics.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { DATASET } from "../forms.ts";
@@ -22,7 +22,7 @@ export function datasetMeasure(
   const withData = new Set(survey.antennasWithData);
   const inTable = array.fromTable ? array.antennas.length : 0;
   const inField = scans.filter((scan, i) => i > 0 && scans[i - 1]!.field === scan.field);
-  const duration = times.length === 0 ? Number.NaN : (times.at(-1)! - times[0]!) * SECONDS_A_DAY;
+  const duration = times.length === 0 ? Number.NaN : (times.at(-1)! - times[0]!) * SECONDS_PER_DAY;
   const gaps = gapsOf(integrations, survey.integration);
   const row = {
     rows: totals.rows,
@@ -66,7 +66,7 @@ export function datasetMeasure(
 function largestStep(times: Float64Array): number {
   let largest = 0;
   for (let i = 1; i < times.length; i++) largest = Math.max(largest, times[i]! - times[i - 1]!);
-  return largest * SECONDS_A_DAY;
+  return largest * SECONDS_PER_DAY;
 }
 
 /** Integrations that would fit between those there are, but for the gaps. */
@@ -75,7 +75,7 @@ function missingIntegrations(times: Float64Array, integration: number): number {
   let missing = 0;
   const longest = longestPause(integration);
   for (let i = 1; i < times.length; i++) {
-    const seconds = (times[i]! - times[i - 1]!) * SECONDS_A_DAY;
+    const seconds = (times[i]! - times[i - 1]!) * SECONDS_PER_DAY;
     if (seconds < longest) missing += Math.max(0, Math.round(seconds / integration) - 1);
   }
   return missing;

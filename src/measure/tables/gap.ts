@@ -1,5 +1,5 @@
 /** The `gap_in_time` measure. */
-import { SECONDS_A_DAY } from "../../util/constants.ts";
+import { SECONDS_PER_DAY } from "../../util/constants.ts";
 import { median } from "../../util/statistics.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { GAP_IN_TIME } from "../forms.ts";
@@ -22,7 +22,7 @@ export function gapsOf({ centre }: Integrations, integration: number): Gap[] {
   for (let i = 1; i < centre.length; i++) {
     const start = centre[i - 1]!;
     const end = centre[i]!;
-    const between = (end - start) * SECONDS_A_DAY;
+    const between = (end - start) * SECONDS_PER_DAY;
     if (between <= longestPause(integration)) continue;
     gaps.push({ start, end, seconds: between - (integration || 0) });
   }

@@ -1,5 +1,5 @@
 /** The measures along the time: `field`, `scan` and `integration`. */
-import { SECONDS_A_DAY } from "../../util/constants.ts";
+import { SECONDS_PER_DAY } from "../../util/constants.ts";
 import { median } from "../../util/statistics.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { FIELD, INTEGRATION, SCAN } from "../forms.ts";
@@ -87,7 +87,7 @@ export function scanMeasure(survey: BareSurvey): Measure {
       integrations: integrations[scan]!,
       ...counts[scan]!.row,
       flagged_beyond_typical: counts[scan]!.flaggedFraction - typicalFlagged,
-      gap_before_s: before === undefined ? Number.NaN : Math.max(0, start - before.end) * SECONDS_A_DAY,
+      gap_before_s: before === undefined ? Number.NaN : Math.max(0, start - before.end) * SECONDS_PER_DAY,
       gap_in_field: before?.field === field && start > before.end + TIME_STEP_DAYS ? 1 : 0,
     };
   });

@@ -1,5 +1,6 @@
 /** Ticks where people expect them on axes of time and of units. */
-import { dateFromMjd, isoFromMjd, SECONDS_PER_DAY } from "../../util/dates.ts";
+import { SECONDS_PER_DAY } from "../../util/constants.ts";
+import { dateFromMjd, isoFromMjd } from "../../util/dates.ts";
 
 /** Steps of a clock, minutes. */
 const CLOCK_STEPS = [

@@ -1,5 +1,5 @@
 /** Faults of what is written about a row: u, v, w and the order of its antennas; and of the antenna table. */
-import { SPEED_OF_LIGHT } from "../../geometry/uvw.ts";
+import { SPEED_OF_LIGHT } from "../../util/constants.ts";
 import type { Observation } from "../observation.ts";
 import { productsWithSignal } from "../sky.ts";
 import type { CompiledFault, RowState } from "./effect.ts";

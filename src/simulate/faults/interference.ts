@@ -4,7 +4,7 @@
  */
 
 import { enuToLocal, localToGeocentric } from "../../geometry/earth.ts";
-import { SPEED_OF_LIGHT } from "../../geometry/uvw.ts";
+import { SPEED_OF_LIGHT } from "../../util/constants.ts";
 import type { Observation } from "../observation.ts";
 import type { Strength } from "../quantities.ts";
 import { Random } from "../random.ts";

@@ -1,6 +1,7 @@
 /** What a fault concerns, worked out for quick questions by integration, baseline and place in a row. */
+
 import type { Selection } from "../../dataset/selection.ts";
-import { SECONDS_PER_DAY } from "../../util/dates.ts";
+import { SECONDS_PER_DAY } from "../../util/constants.ts";
 import { InputError } from "../../util/errors.ts";
 import type { Observation } from "../observation.ts";
 import { type Hand, handIndex } from "../products.ts";

@@ -1,5 +1,5 @@
 /** Faults that multiply the signal, the noise or both of an antenna or a baseline by a complex factor. */
-import { SECONDS_PER_DAY } from "../../util/dates.ts";
+import { SECONDS_PER_DAY } from "../../util/constants.ts";
 import type { Observation } from "../observation.ts";
 import { handIndex } from "../products.ts";
 import { Random } from "../random.ts";

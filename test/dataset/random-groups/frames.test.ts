@@ -1,9 +1,11 @@
 /** Antenna positions: from the Earth's centre or the array's, along which axes, of which hand. */
+
 import { describe, expect, it } from "vitest";
 import { card, real } from "../../../src/dataset/fits/write.ts";
 import { openDataset } from "../../../src/dataset/open.ts";
 import { greenwichSiderealTime } from "../../../src/geometry/sidereal.ts";
-import { hourAngle, SPEED_OF_LIGHT, uvwOf } from "../../../src/geometry/uvw.ts";
+import { hourAngle, uvwOf } from "../../../src/geometry/uvw.ts";
+import { SPEED_OF_LIGHT } from "../../../src/util/constants.ts";
 import {
   antennaTable,
   DAY,
