@@ -3,6 +3,8 @@
  * visibilities in blocks of typed arrays, in the order of the file.
  */
 
+import type { DatasetRecipe } from "./recipe.ts";
+
 /** Stokes-axis products by their FITS names (FITS Standard 4.0, table 29). */
 export const POLARIZATIONS = ["I", "Q", "U", "V", "RR", "LL", "RL", "LR", "XX", "YY", "XY", "YX"] as const;
 export type Polarization = (typeof POLARIZATIONS)[number];
@@ -103,6 +105,8 @@ export interface Dataset {
   readonly hasWeights: boolean;
   readonly rows: number;
   readonly notes: readonly Note[];
+  /** how to open it again elsewhere; absent where it is in memory alone */
+  readonly recipe?: DatasetRecipe;
   /**
    * Rows in file order. The yielded block and its arrays are buffers of this call: the caller may overwrite them, and
    * they are valid until the next block is asked for.

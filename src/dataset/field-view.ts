@@ -4,10 +4,10 @@
 import { InputError } from "../util/errors.ts";
 import type { BlockRequest, Dataset, SampleBlock } from "./dataset.ts";
 
-/** Runs of consecutive rows of the field: the rows [start, start + length) of the whole dataset. */
-interface Runs {
-  readonly start: readonly number[];
-  readonly length: readonly number[];
+/** Runs of consecutive rows of the field: the rows [start, start + length) of the whole dataset. Plain data. */
+export interface FieldRuns {
+  readonly start: Float64Array;
+  readonly length: Float64Array;
   readonly rows: number;
 }
 
@@ -30,15 +30,22 @@ export async function fieldView(dataset: Dataset, id: number): Promise<Dataset> 
   if (runs.rows === 0) {
     throw new InputError(`no row belongs to field ${id}`, place, "visvet describe lists the fields");
   }
+  return fieldRowsView(dataset, id, runs);
+}
+
+/** The view when it is known already where the rows of the field are. */
+export function fieldRowsView(dataset: Dataset, id: number, runs: FieldRuns): Dataset {
+  const { recipe, ...rest } = dataset;
   return {
-    ...dataset,
-    fields: [field],
+    ...rest,
+    fields: dataset.fields.filter((field) => field.id === id),
     rows: runs.rows,
+    ...(recipe === undefined ? {} : { recipe: { kind: "field", of: recipe, id, runs } }),
     blocks: (request) => blocksOfField(dataset, id, runs, request),
   };
 }
 
-async function runsOf(dataset: Dataset, id: number): Promise<Runs> {
+async function runsOf(dataset: Dataset, id: number): Promise<FieldRuns> {
   const start: number[] = [];
   const length: number[] = [];
   let rows = 0;
@@ -55,11 +62,11 @@ async function runsOf(dataset: Dataset, id: number): Promise<Runs> {
       rows += wanted ? 1 : 0;
     }
   }
-  return { start, length, rows };
+  return { start: Float64Array.from(start), length: Float64Array.from(length), rows };
 }
 
 /** Row of the whole dataset that is row `at` of the field, 0 <= at < runs.rows. */
-function wholeRow(runs: Runs, at: number): number {
+function wholeRow(runs: FieldRuns, at: number): number {
   let left = at;
   for (let run = 0; run < runs.start.length; run++) {
     if (left < runs.length[run]!) return runs.start[run]! + left;
@@ -71,7 +78,7 @@ function wholeRow(runs: Runs, at: number): number {
 async function* blocksOfField(
   dataset: Dataset,
   id: number,
-  runs: Runs,
+  runs: FieldRuns,
   request: BlockRequest,
 ): AsyncIterable<SampleBlock> {
   const first = Math.max(0, request.rows?.[0] ?? 0);

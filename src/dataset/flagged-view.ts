@@ -14,7 +14,20 @@ export { compileSelections, type SelectionMatcher } from "./selection-matcher.ts
  */
 export function flaggedView(dataset: Dataset, selections: readonly Selection[]): Dataset {
   if (selections.length === 0) return dataset;
-  return { ...dataset, blocks: (request) => flaggedBlocks(dataset, selections, request) };
+  const { recipe, ...rest } = dataset;
+  return {
+    ...rest,
+    ...(recipe === undefined
+      ? {}
+      : { recipe: { kind: "flagged", of: recipe, selections: selections.map(selectionAlone) } }),
+    blocks: (request) => flaggedBlocks(dataset, selections, request),
+  };
+}
+
+/** Without what a flag carries besides: a recipe is sent to other threads. */
+function selectionAlone(selection: Selection): Selection {
+  const { antennas, baselines, time, subbands, channels, polarizations, fields } = selection;
+  return { antennas, baselines, time, subbands, channels, polarizations, fields };
 }
 
 async function* flaggedBlocks(

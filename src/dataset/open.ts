@@ -1,54 +1,25 @@
-/** Open a visibility file of any format that is read, told by what is in it and not by its name. */
-import { InputError } from "../util/errors.ts";
-import { axisLengths, type FitsFile, type Hdu, openFits } from "./fits/hdus.ts";
-import { openSource } from "./fits/source.ts";
-import { openRandomGroups, type RandomGroupsDataset } from "./random-groups/open.ts";
-import type { RowSummary } from "./row-summary.ts";
+/** Open the visibilities of one observation, in one file or many, of any format that is read. */
+import { openFitsDataset } from "./open-fits.ts";
+import type { KnownRows, OpenOptions } from "./recipe.ts";
+import type { OpenedDataset } from "./row-summary.ts";
 
 /**
  * The rows are looked at once here (their columns, not their samples), so that what the tables leave out is known.
  *
- * @param known `summary` of the same file from an earlier opening, such as the one a worker is sent: saves that pass
- * @throws InputError with advice when the file cannot be read, is of another kind, or is malformed
+ * @throws InputError with advice when a file cannot be read, is of another kind, or is malformed
  */
-export async function openDataset(path: string, known?: RowSummary): Promise<RandomGroupsDataset> {
-  const file = await openFits(await openSource(path));
-  const [primary, ...extensions] = file.hdus;
-  if (primary.kind === "random groups") return openRandomGroups(file, known);
-  const place = { file: path, part: primary.header.place.part! };
-  // FITS-IDI: a primary HDU without data, and tables by these names.
-  if (extensions.some(({ name }) => name === "UV_DATA" || name === "ARRAY_GEOMETRY")) {
-    throw new InputError(
-      "this is a FITS-IDI file: this version reads random groups only",
-      place,
-      "Export the data as a random-groups FITS file (often called UVFITS)",
-    );
-  }
-  if (primary.header.looseNumber("NAXIS1") === 777_777_701) {
-    throw new InputError(
-      "NAXIS1 is 777777701: the visibilities of this archive file are in a binary table, not in random groups",
-      place,
-      "Export the data as a random-groups FITS file (often called UVFITS)",
-    );
-  }
-  throw new InputError(
-    `no visibilities: expected random groups (NAXIS1 = 0 and GROUPS = T), found ${contents(file)}`,
-    place,
-    primary.header.shown("GROUPS") === "T" && primary.header.has("NAXIS1")
-      ? "The header says GROUPS = T, but NAXIS1 is not 0: the file is damaged or of another kind"
-      : "Name the file of visibilities, not an image or a table made from them",
-  );
+export async function openDataset(path: string, options: OpenOptions = {}): Promise<OpenedDataset> {
+  return openFiles([path], options);
 }
 
-function contents({ hdus }: FitsFile): string {
-  const shown = hdus.slice(0, 6).map(describeHdu).join(", ");
-  return hdus.length > 6 ? `${shown} and ${hdus.length - 6} more HDUs` : shown;
-}
-
-function describeHdu({ kind, header, name, dataBytes }: Hdu): string {
-  const named = name === "" ? "" : ` ${name}`;
-  if (kind === "image") {
-    return dataBytes === 0 ? "an empty primary" : `an image of ${axisLengths(header).join(" x ")}${named}`;
-  }
-  return `a ${kind}${named}`;
+/**
+ * @param paths of files alone, in the order of their rows
+ * @param known what an earlier opening found in the rows: saves looking at them again
+ */
+export async function openFiles(
+  paths: readonly string[],
+  _options: OpenOptions,
+  known?: KnownRows,
+): Promise<OpenedDataset> {
+  return openFitsDataset(paths[0]!, known?.[0]);
 }

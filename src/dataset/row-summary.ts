@@ -47,6 +47,11 @@ export interface RowSummary {
   readonly probe: readonly ProbeRow[];
 }
 
+/** A Dataset that has already looked at its rows. */
+export interface OpenedDataset extends Dataset {
+  readonly summary: RowSummary;
+}
+
 export const MOST_TIMES = 1 << 20;
 /** 2048 antennas have two million; numbers without end must not fill the memory. */
 const MOST_BASELINES = 1 << 22;

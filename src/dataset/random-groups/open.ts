@@ -1,9 +1,9 @@
 /** A random-groups file as a Dataset: tables first, then one pass over the rows, then what only both together tell. */
-import type { BlockRequest, Dataset, Field, Setup, Shape } from "../dataset.ts";
+import type { BlockRequest, Field, Setup, Shape } from "../dataset.ts";
 import type { FitsFile } from "../fits/hdus.ts";
 import { datasetName } from "../name.ts";
 import type { Notes } from "../notes.ts";
-import { type RowSummary, summarizeRows } from "../row-summary.ts";
+import { type OpenedDataset, type RowSummary, summarizeRows } from "../row-summary.ts";
 import { TableFlags } from "../table-flags.ts";
 import { type AntennaTable, readAntennaTable } from "./antenna-table.ts";
 import { arrayInfo } from "./array-info.ts";
@@ -18,16 +18,11 @@ import { sampleLayout } from "./samples.ts";
 import { readSetups } from "./setups.ts";
 import { findTables } from "./tables.ts";
 
-/** A Dataset that has already looked at its rows. */
-export interface RandomGroupsDataset extends Dataset {
-  readonly summary: RowSummary;
-}
-
 /**
  * @param known of the same file, from an earlier opening: saves the pass over the rows
  * @throws InputError where the file is malformed
  */
-export async function openRandomGroups(file: FitsFile, known?: RowSummary): Promise<RandomGroupsDataset> {
+export async function openRandomGroups(file: FitsFile, known?: RowSummary): Promise<OpenedDataset> {
   const { notes, source } = file;
   const primary = file.hdus[0];
   const layout = groupLayout(primary, notes);
