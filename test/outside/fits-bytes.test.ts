@@ -2,8 +2,8 @@
 import { describe, expect, it } from "vitest";
 import { bigEndian, card, groupsBytes, real } from "../../src/dataset/fits/write.ts";
 import { padding } from "../../src/dataset/fits/write-header.ts";
+import { type BaselineCode, decodeBaseline } from "../../src/dataset/fits-rows/baselines.ts";
 import { openDataset } from "../../src/dataset/open.ts";
-import { type BaselineCode, decodeBaseline } from "../../src/dataset/random-groups/baselines.ts";
 import { dateFromMjd, MJD_EPOCH_JD, mjdFromDate } from "../../src/util/dates.ts";
 import {
   antennaTable,

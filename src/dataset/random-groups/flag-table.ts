@@ -4,9 +4,9 @@ import type { Cursor } from "../fits/byte-source.ts";
 import type { Hdu } from "../fits/hdus.ts";
 import { type Column, findColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable, type Table } from "../fits/table-rows.ts";
+import type { AntennaTable } from "../fits-tables/antenna-table.ts";
 import type { Notes } from "../notes.ts";
 import type { TableFlag } from "../table-flags.ts";
-import type { AntennaTable } from "./antenna-table.ts";
 
 /** A longer one would be laid over every block for hours. */
 const MOST_FLAGS = 1_000_000;

@@ -1,21 +1,21 @@
 /** A random-groups file as a Dataset: tables first, then one pass over the rows, then what only both together tell. */
 import type { BlockRequest, Field, Setup, Shape } from "../dataset.ts";
 import type { FitsFile } from "../fits/hdus.ts";
+import { readBlocks } from "../fits-rows/blocks.ts";
+import type { RowContext } from "../fits-rows/rows.ts";
+import { sampleLayout } from "../fits-rows/samples.ts";
+import { type AntennaTable, readAntennaTable } from "../fits-tables/antenna-table.ts";
+import { arrayInfo } from "../fits-tables/array-info.ts";
+import { fieldsOfRows, noteImpossibleFields, readFieldTable } from "../fits-tables/fields.ts";
+import { headerFacts, noteDates, polarizationsOf, telescopeOf, unitOf } from "../fits-tables/header-facts.ts";
+import { readSetups } from "../fits-tables/setups.ts";
 import { datasetName } from "../name.ts";
 import type { Notes } from "../notes.ts";
 import { type OpenedDataset, type RowSummary, summarizeRows } from "../row-summary.ts";
 import { TableFlags } from "../table-flags.ts";
-import { type AntennaTable, readAntennaTable } from "./antenna-table.ts";
-import { arrayInfo } from "./array-info.ts";
-import { readBlocks } from "./blocks.ts";
-import { fieldsOfRows, noteImpossibleFields, readFieldTable } from "./fields.ts";
 import { readFlagTable } from "./flag-table.ts";
-import { headerFacts, noteDates, polarizationsOf, telescopeOf, unitOf } from "./header-facts.ts";
 import { type GroupLayout, groupLayout } from "./layout.ts";
 import { type RowColumns, rowColumns } from "./parameters.ts";
-import type { RowContext } from "./rows.ts";
-import { sampleLayout } from "./samples.ts";
-import { readSetups } from "./setups.ts";
 import { findTables } from "./tables.ts";
 
 /**

@@ -6,12 +6,12 @@ import type { ByteSource } from "../../../src/dataset/fits/byte-source.ts";
 import { openFits } from "../../../src/dataset/fits/hdus.ts";
 import { openSource } from "../../../src/dataset/fits/source.ts";
 import { groupsHeader } from "../../../src/dataset/fits/write.ts";
+import { blockRange, MOST_BLOCK_BYTES, planReads } from "../../../src/dataset/fits-rows/plan.ts";
+import { sampleLayout } from "../../../src/dataset/fits-rows/samples.ts";
 import { Notes } from "../../../src/dataset/notes.ts";
 import { openDataset } from "../../../src/dataset/open.ts";
 import { groupLayout } from "../../../src/dataset/random-groups/layout.ts";
 import { openRandomGroups } from "../../../src/dataset/random-groups/open.ts";
-import { blockRange, MOST_BLOCK_BYTES, planReads } from "../../../src/dataset/random-groups/plan.ts";
-import { sampleLayout } from "../../../src/dataset/random-groups/samples.ts";
 import { memorySource } from "../fits/memory-cursor.ts";
 import {
   antennaTable,

@@ -3,8 +3,8 @@ import { dateFromMjd, mjdFromDate } from "../../util/dates.ts";
 import type { Polarization } from "../dataset.ts";
 import type { Header } from "../fits/header.ts";
 import type { Notes } from "../notes.ts";
+import { axisValue, type GroupLayout } from "../random-groups/layout.ts";
 import type { RowSummary } from "../row-summary.ts";
-import { axisValue, type GroupLayout } from "./layout.ts";
 
 /** FITS Standard 4.0, table 29: by the code on the STOKES axis. */
 const STOKES: ReadonlyMap<number, Polarization> = new Map([

@@ -3,8 +3,8 @@ import { InputError } from "../../util/errors.ts";
 import type { BlockRequest, SampleBlock } from "../dataset.ts";
 import type { ByteSource, Cursor } from "../fits/byte-source.ts";
 import { newBlock } from "../new-block.ts";
+import type { GroupLayout } from "../random-groups/layout.ts";
 import type { TableFlags } from "../table-flags.ts";
-import type { GroupLayout } from "./layout.ts";
 import { type BlockRange, blockRange, planReads, type ReadPlan } from "./plan.ts";
 import { fillRows, fillSum, type RawRows, type RowContext } from "./rows.ts";
 import {

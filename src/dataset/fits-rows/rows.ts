@@ -2,8 +2,8 @@
 import { InputError, type Place } from "../../util/errors.ts";
 import type { SampleBlock } from "../dataset.ts";
 import { readStored } from "../fits/stored.ts";
+import type { RowColumns, Sum } from "../random-groups/parameters.ts";
 import { type BaselineCode, decodeBaseline } from "./baselines.ts";
-import type { RowColumns, Sum } from "./parameters.ts";
 
 /** Where the rows are: in memory and, for messages, in the file. */
 export interface RawRows {

@@ -1,6 +1,6 @@
 /** From a request for rows to the byte ranges that are read for it. Pure arithmetic; nothing is opened here. */
 import type { BlockRequest, Shape } from "../dataset.ts";
-import type { GroupLayout } from "./layout.ts";
+import type { GroupLayout } from "../random-groups/layout.ts";
 
 /** A block's sample arrays and its bytes of file stay under this, bytes each. */
 export const MOST_BLOCK_BYTES = 16 * 1024 * 1024;

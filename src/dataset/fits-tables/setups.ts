@@ -5,7 +5,7 @@ import type { Hdu } from "../fits/hdus.ts";
 import { type Column, findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable, type Table } from "../fits/table-rows.ts";
 import type { Notes } from "../notes.ts";
-import { axisValue, type GroupAxis, type GroupLayout } from "./layout.ts";
+import { axisValue, type GroupAxis, type GroupLayout } from "../random-groups/layout.ts";
 
 /** Above any radio or submillimetre band: 30 um. */
 const HIGHEST_FREQUENCY = 1e13;

@@ -6,8 +6,8 @@ import type { Header } from "../fits/header.ts";
 import { findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable } from "../fits/table-rows.ts";
 import type { Notes } from "../notes.ts";
+import { axisValue, type GroupLayout } from "../random-groups/layout.ts";
 import type { RowSummary } from "../row-summary.ts";
-import { axisValue, type GroupLayout } from "./layout.ts";
 
 const DEGREE = Math.PI / 180;
 const MOST_FIELDS = 65_536;

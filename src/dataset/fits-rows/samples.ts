@@ -7,7 +7,7 @@
  */
 import type { SampleBlock, Shape } from "../dataset.ts";
 import { readStored } from "../fits/stored.ts";
-import type { GroupLayout } from "./layout.ts";
+import type { GroupLayout } from "../random-groups/layout.ts";
 
 /** Where the elements of a group lie, bytes. */
 export interface SampleLayout {
