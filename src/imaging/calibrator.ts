@@ -9,7 +9,9 @@ import { fillMeasure } from "../measure/fill-measure.ts";
 import type { Measure } from "../measure/table.ts";
 import { formatNumber, formatPercent } from "../util/units.ts";
 import type { GriddedImage } from "./cost.ts";
-import { capsOf, type RankedLimit, snapshotDynamicRange } from "./limits.ts";
+import { capsOf } from "./error-caps.ts";
+import { gainError } from "./event-errors.ts";
+import { type RankedLimit, snapshotDynamicRange } from "./limits.ts";
 import { CALIBRATOR_ANTENNA, CALIBRATOR_BASELINE } from "./measure-columns.ts";
 import { type Sampling, trackOffset } from "./sampling.ts";
 
@@ -114,12 +116,7 @@ async function withCaps(
     image,
     off.map(({ antenna, ratio, phase }) => ({
       scope: { ...EVERYTHING, antennas: [antenna] },
-      // |g - 1| of the antenna's gain
-      error: {
-        size: Math.hypot(ratio * Math.cos(phase) - 1, ratio * Math.sin(phase)),
-        coherent: true,
-        what: "",
-      },
+      error: gainError(ratio, phase),
       samples: 0,
     })),
   );

@@ -142,7 +142,7 @@ export async function gridSelections(
 }
 
 /** @param bounds [start, end) pairs of sample offsets in a row */
-function partOf(dataset: Dataset, bounds: Int32Array): RowPart {
+export function partOf(dataset: Dataset, bounds: Int32Array): RowPart {
   const { subbands, channels, polarizations } = dataset.shape;
   const mask = new Uint8Array(subbands * channels * polarizations);
   for (let b = 0; b < bounds.length; b += 2) mask.fill(1, bounds[b]!, bounds[b + 1]!);
@@ -152,7 +152,7 @@ function partOf(dataset: Dataset, bounds: Int32Array): RowPart {
 }
 
 /** Visit the rows of the image with the offsets of their samples in the block and in the levels. */
-async function eachRow(
+export async function eachRow(
   request: GridRequest,
   visit: (block: SampleBlock, row: number, rowFrom: number, levelFrom: number) => void,
 ): Promise<void> {

@@ -115,18 +115,12 @@ export class MomentGrid {
     const { field, half, order } = this;
     let x = u * field;
     let y = v * field;
-    if (x < 0 || (x === 0 && y < 0)) {
+    if (turned(x, y)) {
       x = -x;
       y = -y;
     }
     const iu = Math.floor(x + 0.5);
-    let iv = Math.floor(y + 0.5);
-    if (iu === 0 && iv < 0) {
-      // The strip along the v axis holds samples of both signs of u: the upper half of it stands for both.
-      x = -x;
-      y = -y;
-      iv = Math.floor(y + 0.5);
-    }
+    const iv = Math.floor(y + 0.5);
     if (!(iu <= half && iv <= half && iv >= -half)) {
       this.outside += 1;
       return;
@@ -202,6 +196,19 @@ export class MomentGrid {
     }
     return result;
   }
+}
+
+/**
+ * Whether a sample is turned into its conjugate: where u is negative, and in the strip along the v axis, which holds
+ * samples of both signs of u, where v is.
+ *
+ * @param x,y in cells
+ */
+export function turned(x: number, y: number): boolean {
+  const turn = x < 0 || (x === 0 && y < 0);
+  const across = turn ? -x : x;
+  const along = turn ? -y : y;
+  return across < 0.5 && along < -0.5 ? !turn : turn;
 }
 
 /** Finds a filled cell's place by its (iu, iv); -1 where it is not filled. */

@@ -1,9 +1,16 @@
 /** Adds the channels of one row to a uv grid and to a tally of its coverage. */
 import type { Dataset, SampleBlock } from "../dataset/dataset.ts";
 import type { CoverageTally } from "./coverage-tally.ts";
-import type { MomentGrid } from "./moment-grid.ts";
+import type { GridForm } from "./moment-grid.ts";
 import type { RowWeights } from "./row-weights.ts";
 import { fillNodeWeights, lagrangeCoefficients } from "./run-nodes.ts";
+
+/** What samples are added to. */
+export interface UvSink {
+  readonly form: GridForm;
+  /** @param u,v wavelengths */
+  add(u: number, v: number, weight: number, noise: number): void;
+}
 
 export class RowDeposit {
   private readonly channels: number;
@@ -53,7 +60,7 @@ export class RowDeposit {
     }
   }
 
-  addTo(grid: MomentGrid, row: RowWeights): void {
+  addTo(grid: UvSink, row: RowWeights): void {
     const { u, v, channels, nodes } = this;
     const frequencies = this.frequencies[this.setup]!;
     const reach = Math.max(Math.abs(u), Math.abs(v)) * grid.form.field;
@@ -66,7 +73,7 @@ export class RowDeposit {
     }
   }
 
-  private addEach(grid: MomentGrid, row: RowWeights, first: number, last: number): void {
+  private addEach(grid: UvSink, row: RowWeights, first: number, last: number): void {
     const { u, v } = this;
     const frequencies = this.frequencies[this.setup]!;
     for (let c = first; c < last; c++) {
@@ -76,7 +83,7 @@ export class RowDeposit {
   }
 
   /** Runs of channels in one cell are gathered before they are added. */
-  private addRuns(grid: MomentGrid, row: RowWeights, first: number, last: number): void {
+  private addRuns(grid: UvSink, row: RowWeights, first: number, last: number): void {
     const { sums, nodes } = this;
     const frequencies = this.frequencies[this.setup]!;
     const u = this.u * grid.form.field;
@@ -114,7 +121,7 @@ export class RowDeposit {
     this.flush(grid, start, span, count, noise);
   }
 
-  private flush(grid: MomentGrid, start: number, span: number, count: number, noise: number): void {
+  private flush(grid: UvSink, start: number, span: number, count: number, noise: number): void {
     const { u, v, nodeWeights, nodes } = this;
     if (count === 0) return;
     if (count === 1 || span === 0) {

@@ -6,7 +6,7 @@ import type { EdgeSamples } from "./edge-samples.ts";
 import type { WTerm } from "./image.ts";
 import type { RankedLimit, SourceLevel } from "./limits.ts";
 import type { Plan } from "./plan.ts";
-import { frequencyRange, type Sampling } from "./sampling.ts";
+import type { Sampling } from "./sampling.ts";
 import type { SmearingResult } from "./smearing.ts";
 import { brightness, medianKnown } from "./thermal.ts";
 import type { WLoss } from "./w-loss.ts";
@@ -85,11 +85,8 @@ function edgeDynamicRange(samples: EdgeSamples, radius: number, { east, north }:
 /** What errors are measured against. */
 export function sourceLevel(sampling: Sampling): SourceLevel {
   const { survey } = sampling;
-  const { low, high } = frequencyRange(survey.dataset, sampling.channelUsed);
-  const widths = high.map((frequency, i) => frequency - low[i]!).filter((width) => width > 0);
   return {
     brightness: sampling.totalWeight > 0 ? brightness(sampling) : Number.NaN,
     sampleNoise: medianKnown(survey.levels.sigma, Number.MIN_VALUE),
-    bandwidth: widths.length === 0 ? 0 : widths.reduce((sum, width) => sum + width, 0) / widths.length,
   };
 }
