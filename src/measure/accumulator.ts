@@ -1,5 +1,7 @@
 /** What the survey composes: each fills one kind of number, and any two of a kind add up to a third. */
 import type { PreparedBlock } from "./prepared.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 
 export interface Accumulator {
   add(prepared: PreparedBlock): void;
@@ -9,4 +11,13 @@ export interface Accumulator {
    * @param baselines  for each of its baseline numbers, ours
    */
   merge(other: this, baselines: Int32Array): void;
+  /** What it holds, as plain data for another thread or a file: arrays are its own. It is not to be used after. */
+  state(): StateRecord;
+  /**
+   * Take over a state. This was just made, of the same dataset and settings.
+   *
+   * @param baselines  how many baselines there are
+   * @throws InputError where it is no state of such an accumulator
+   */
+  restore(from: StateReader, baselines: number): void;
 }

@@ -2,7 +2,10 @@
 import type { Shape } from "../dataset/dataset.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
-import { SketchBank, sharingLadder } from "./sketch-bank.ts";
+import { sharingLadder } from "./sharing-ladder.ts";
+import { SketchBank } from "./sketch-bank.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 
 /** 32 buckets an octave: a quantile is within 1/65 of the exact one. */
 const MANTISSA_BITS = 5;
@@ -58,6 +61,27 @@ export class AmplitudeSketches implements Accumulator {
       if (counts === undefined) continue;
       const unusable = this.unusableOf(ours);
       for (let i = 0; i < this.samples; i++) unusable[i]! += counts[i]!;
+    }
+  }
+
+  state(): StateRecord {
+    return {
+      bank: this.bank.state(),
+      rows: Float64Array.from(this.rows, (rows) => rows ?? 0),
+      unusable: Array.from(this.unusable, (counts) => counts ?? null),
+    };
+  }
+
+  restore(from: StateReader, baselines: number): void {
+    this.bank.restore(from.child("bank"), baselines);
+    for (const [baseline, rows] of from.counts(Float64Array, "rows").entries()) {
+      if (baseline >= baselines) throw from.error(`there are only ${baselines} baselines`, "rows");
+      this.rows[baseline] = rows;
+    }
+    for (const [baseline, counts] of from
+      .arrays(Uint32Array, "unusable", this.samples, baselines)
+      .entries()) {
+      if (counts !== null) this.unusable[baseline] = counts;
     }
   }
 

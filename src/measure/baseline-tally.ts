@@ -12,6 +12,8 @@ import {
   SUMS,
   USABLE,
 } from "./prepared.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 
 /** Sums a product: weight of usable samples, |weight| of flagged ones, effective number of usable ones. */
 const WEIGHTS = 3;
@@ -79,6 +81,19 @@ export class BaselineTally implements Accumulator {
           this.weights.merge(WEIGHTS * to + i, other.weights, WEIGHTS * from + i);
       }
     }
+  }
+
+  state(): StateRecord {
+    const { autocorrelationRows, counts, weights } = this;
+    return { autocorrelationRows, counts, weights: weights.state(weights.length) };
+  }
+
+  restore(from: StateReader): void {
+    this.autocorrelationRows = from.integer("autocorrelationRows");
+    this.counts = from.counts(Float64Array, "counts");
+    const places = this.counts.length / KINDS;
+    if (!Number.isInteger(places)) throw from.error(`expected ${KINDS} a product`, "counts");
+    this.weights.restore(from.child("weights"), WEIGHTS * places);
   }
 
   /** Samples of a baseline's product that are of a kind. */

@@ -24,6 +24,8 @@ import {
   USABLE,
   ZERO,
 } from "./prepared.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 import {
   cellColumns,
   firstCells,
@@ -54,6 +56,8 @@ interface Stream {
   readonly subarray: number;
   cells: Map<number, number>;
 }
+
+type Five = [number, number, number, number, number];
 
 /** The sums of some cells. */
 class CellSums {
@@ -108,6 +112,28 @@ class CellSums {
     for (let k = 0; k < sums; k++) this.products.merge(cell * sums + k, other.products, theirs * sums + k);
     const counts = this.width * PRODUCT_COUNTS;
     for (let k = 0; k < counts; k++) this.counts[cell * counts + k]! += other.counts[theirs * counts + k]!;
+  }
+
+  state(): StateRecord {
+    const { cells, width, own, products, given, counts } = this;
+    return {
+      cells,
+      own: own.state(cells * CELL_SUMS),
+      products: products.state(cells * width * PRODUCT_SUMS),
+      given: given.subarray(0, cells * CELL_SUMS),
+      counts: counts.subarray(0, cells * width * PRODUCT_COUNTS),
+    };
+  }
+
+  restore(from: StateReader): void {
+    const { width } = this;
+    const cells = from.integer("cells");
+    this.own.restore(from.child("own"), cells * CELL_SUMS);
+    this.products.restore(from.child("products"), cells * width * PRODUCT_SUMS);
+    this.given = from.counts(Float64Array, "given", cells * CELL_SUMS);
+    this.counts = from.counts(Float64Array, "counts", cells * width * PRODUCT_COUNTS);
+    this.cells = cells;
+    this.room = Math.max(1, cells);
   }
 
   mean(cell: number, k: number): number {
@@ -236,6 +262,50 @@ export class BinnedRows implements TrackKeeper {
       }
     }
     while (this.sums.cells > this.most) this.widen();
+  }
+
+  state(): StateRecord {
+    const streams = [...this.streams.values()];
+    return {
+      seconds: this.seconds,
+      /** (streams x 5) what they are of, and how many cells they have */
+      streams: Float64Array.from(
+        streams.flatMap(({ baseline, field, setup, subarray, cells }) => [
+          baseline,
+          field,
+          setup,
+          subarray,
+          cells.size,
+        ]),
+      ),
+      bins: Float64Array.from(streams.flatMap(({ cells }) => [...cells.keys()])),
+      cells: Int32Array.from(streams.flatMap(({ cells }) => [...cells.values()])),
+      sums: this.sums.state(),
+    };
+  }
+
+  restore(from: StateReader, baselines: number): void {
+    this.seconds = from.number("seconds");
+    if (!(Number.isInteger(Math.log2(this.seconds / NARROWEST)) && this.seconds <= 2 * LONGEST)) {
+      throw from.error(`${this.seconds} s is no width of a bin`, "seconds");
+    }
+    this.sums.restore(from.child("sums"));
+    const cells = from.indices(Int32Array, "cells", this.sums.cells, 0, this.sums.cells);
+    if (new Set(cells).size !== cells.length) throw from.error("a cell stands in two bins", "cells");
+    const bins = from.finite(Float64Array, "bins", cells.length);
+    const streams = from.finite(Float64Array, "streams");
+    let held = 0;
+    for (let i = 0, at = 0; i + 5 <= streams.length; i += 5) {
+      const [baseline, field, setup, subarray, count] = streams.subarray(i, i + 5) as unknown as Five;
+      if (!(baseline >= 0 && baseline < baselines)) {
+        throw from.error(`there is no baseline ${baseline} of ${baselines}`, "streams");
+      }
+      const stream = this.streamOf(baseline, field, setup, subarray);
+      for (const end = Math.min(at + count, bins.length); at < end; at++)
+        stream.cells.set(bins[at]!, cells[at]!);
+      held += stream.cells.size;
+    }
+    if (held !== cells.length) throw from.error(`${held} bins hold ${cells.length} cells`, "streams");
   }
 
   tracks(places: Int32Array): TracksWithoutScans {

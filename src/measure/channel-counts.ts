@@ -2,6 +2,8 @@
 import type { Shape } from "../dataset/dataset.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { AUTOCORRELATION, BAD, FLAGGED, type PreparedBlock, USABLE, ZERO } from "./prepared.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 
 /** Kinds a sample may be, USABLE among them. */
 const KINDS = 1 + Math.max(FLAGGED, BAD, ZERO);
@@ -35,6 +37,15 @@ export class ChannelCounts implements Accumulator {
   merge(other: this): void {
     for (let i = 0; i < this.odd.length; i++) this.odd[i]! += other.odd[i]!;
     this.rows += other.rows;
+  }
+
+  state(): StateRecord {
+    return { odd: this.odd, rows: this.rows };
+  }
+
+  restore(from: StateReader): void {
+    this.odd.set(from.counts(Float64Array, "odd", this.odd.length));
+    this.rows = from.integer("rows");
   }
 
   /**

@@ -8,6 +8,9 @@
  * number a number added.
  */
 
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
+
 const WIDTH = 26;
 const PIECES = 3;
 /** Exponents of doubles are -1074..1023: powers from 2^-1092 up, which `unit` reaches by two factors. */
@@ -56,6 +59,22 @@ export class ExactSums {
     pieces.set(this.pieces);
     this.top = top;
     this.pieces = pieces;
+    this.length = length;
+  }
+
+  /** The first `length` of them. */
+  state(length: number): StateRecord {
+    return { top: this.top.subarray(0, length), pieces: this.pieces.subarray(0, length * PIECES) };
+  }
+
+  restore(from: StateReader, length: number): void {
+    this.top = from.array(Int16Array, "top", length);
+    for (const power of this.top) {
+      if (power !== EMPTY && !(power >= LOWEST + PIECES && power < LOWEST + UNITS.length)) {
+        throw from.error(`there is no power ${power}`, "top");
+      }
+    }
+    this.pieces = from.finite(Float64Array, "pieces", length * PIECES);
     this.length = length;
   }
 

@@ -16,6 +16,9 @@ import {
   USABLE,
   ZERO,
 } from "./prepared.ts";
+import { readColumns, usedOf } from "./state/columns.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 import { TIME_STEP_DAYS } from "./time-order.ts";
 import {
   append,
@@ -107,6 +110,26 @@ export class KeptRows implements TrackKeeper {
       this.columns.baseline[cell] = baselines[this.columns.baseline[cell]!]!;
     }
     this.cells += other.cells;
+  }
+
+  state(): StateRecord {
+    const { cells, width, columns, products, place } = this;
+    return {
+      cells,
+      columns: usedOf(columns, cells),
+      products: usedOf(products, cells * width),
+      place: place.subarray(0, cells),
+    };
+  }
+
+  restore(from: StateReader, baselines: number): void {
+    const cells = from.array(Float64Array, "place").length;
+    this.place = from.counts(Float64Array, "place", cells);
+    this.columns = readColumns(from.child("columns"), this.columns, cells);
+    from.child("columns").indices(Int32Array, "baseline", cells, 0, baselines);
+    this.products = readColumns(from.child("products"), this.products, cells * this.width);
+    this.cells = cells;
+    this.room = cells;
   }
 
   tracks(places: Int32Array): TracksWithoutScans {

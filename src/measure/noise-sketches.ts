@@ -10,7 +10,10 @@ import type { Shape } from "../dataset/dataset.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
 import type { SurveySettings } from "./settings.ts";
-import { SketchBank, type SketchMap, sharingLadder } from "./sketch-bank.ts";
+import { type SketchMap, sharingLadder } from "./sharing-ladder.ts";
+import { SketchBank } from "./sketch-bank.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 
 /** 64 buckets an octave, and the place inside the bucket by rank. */
 const MANTISSA_BITS = 6;
@@ -114,6 +117,17 @@ export class NoiseSketches implements Accumulator {
     this.byBaseline.merge(other.byBaseline, baselines);
     this.byChannel.merge(other.byChannel, [0]);
     this.bySpan.merge(other.bySpan, [0, 1, 2, 3]);
+  }
+
+  state(): StateRecord {
+    const { byBaseline, byChannel, bySpan } = this;
+    return { byBaseline: byBaseline.state(), byChannel: byChannel.state(), bySpan: bySpan.state() };
+  }
+
+  restore(from: StateReader, baselines: number): void {
+    this.byBaseline.restore(from.child("byBaseline"), baselines);
+    this.byChannel.restore(from.child("byChannel"), 1);
+    this.bySpan.restore(from.child("bySpan"), 1 + SPANS.length);
   }
 
   /** Numbers in a baseline's sketch of a sub-band and polarization. */

@@ -11,12 +11,10 @@
  * came, and so neither does the step.
  */
 
-/** Which sketch each sample of a row counts in; every map is a coarsening of the one before it. */
-export interface SketchMap {
-  readonly sketches: number;
-  /** (samples of a row) */
-  readonly sketch: Uint32Array;
-}
+import type { SketchMap } from "./sharing-ladder.ts";
+import { type Book, bookFrom, bookState } from "./state/books.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 
 /** Octaves of a page, as a power of two; positive float32s span 256 octaves, so 64 pages. */
 const PAGE_OCTAVE_BITS = 2;
@@ -29,18 +27,6 @@ const MOST_STAGED_ROWS = 1 << 16;
 const GATHERED_ROWS = 128;
 /** numbers of 16 bits in a cache line */
 const LINE = 32;
-
-/** The sketches of one owner. */
-interface Book {
-  /** (sketches x PAGES) page number, 0 none */
-  directory: Uint32Array;
-  /** (pages x buckets of a page); page 0 is not used */
-  counts: Uint16Array;
-  /** pages in use, page 0 included */
-  pages: number;
-  /** by place in `counts`: how often the count passed 65536 */
-  readonly passes: Map<number, number>;
-}
 
 /** A number's bucket: its edges, and the number's place between them by rank, 0..1. */
 interface Place {
@@ -246,6 +232,23 @@ export class SketchBank {
     this.keepWithinBudget();
   }
 
+  state(): StateRecord {
+    this.flush();
+    const { level, pageShift } = this;
+    return { level, books: Array.from(this.books, (book) => (book ? bookState(book, pageShift) : null)) };
+  }
+
+  restore(from: StateReader, owners: number): void {
+    this.level = from.integer("level", 0, this.ladder.length - 1);
+    const slots = this.ladder[this.level]!.sketches * PAGES;
+    for (const [owner, book] of from.child("books").items(owners).entries()) {
+      if (book === null) continue;
+      const restored = bookFrom(book, slots, this.pageShift);
+      this.books[owner] = restored;
+      this.bytes += this.bytesOf(restored);
+    }
+  }
+
   /** Numbers counted. @param sketch of the map in force */
   count(owner: number, sketch: number): number {
     this.flush();
@@ -397,33 +400,4 @@ function addAt(book: Book, place: number, count: number): void {
   book.counts[place] = sum % FULL;
   const passes = Math.floor(sum / FULL);
   if (passes > 0) book.passes.set(place, (book.passes.get(place) ?? 0) + passes);
-}
-
-/**
- * Maps of ever more channels to a sketch: one each, then 2, 4 ... all of a sub-band; at last one sketch for the row.
- *
- * @param first channels that share a sketch at the top of the ladder, a power of two or more than there are
- */
-export function sharingLadder(
-  shape: { readonly subbands: number; readonly channels: number; readonly polarizations: number },
-  first = 1,
-): SketchMap[] {
-  const { subbands, channels, polarizations } = shape;
-  const maps: SketchMap[] = [];
-  for (let shared = first; ; shared *= 2) {
-    const groups = Math.ceil(channels / shared);
-    const sketch = new Uint32Array(subbands * channels * polarizations);
-    for (let i = 0; i < sketch.length; i++) {
-      const polarization = i % polarizations;
-      const channel = Math.floor(i / polarizations) % channels;
-      const subband = Math.floor(i / (polarizations * channels));
-      sketch[i] = (subband * groups + Math.floor(channel / shared)) * polarizations + polarization;
-    }
-    maps.push({ sketches: subbands * groups * polarizations, sketch });
-    if (groups === 1) break;
-  }
-  if (subbands * polarizations > 1) {
-    maps.push({ sketches: 1, sketch: new Uint32Array(subbands * channels * polarizations) });
-  }
-  return maps;
 }

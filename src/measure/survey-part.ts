@@ -13,6 +13,8 @@ import { KeptRows } from "./kept-rows.ts";
 import { NoiseSketches } from "./noise-sketches.ts";
 import { PreparedBlock } from "./prepared.ts";
 import { type SurveySettings, settleSurvey } from "./settings.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 import { TimeOrder } from "./time-order.ts";
 import { CELL_BYTES, PRODUCT_BYTES } from "./track-columns.ts";
 import type { TrackKeeper } from "./track-keeper.ts";
@@ -56,6 +58,33 @@ export class SurveyPart {
     this.prepared = new PreparedBlock(dataset.shape);
     this.gathered = gatherers(dataset, settleSurvey(dataset, memory));
     this.accumulators = Object.values(this.gathered);
+  }
+
+  /** Of all that it has gathered, as plain data. It is not to be used after. */
+  state(): StateRecord {
+    const antennas = this.index.baselines.flatMap(({ antenna1, antenna2 }) => [antenna1, antenna2]);
+    const entries = Object.entries(this.gathered as unknown as Record<string, Accumulator>);
+    return {
+      antennas: Int32Array.from(antennas),
+      gathered: Object.fromEntries(entries.map(([name, accumulator]) => [name, accumulator.state()])),
+    };
+  }
+
+  /** The part that a state was taken of. @throws InputError where it can not be one of such a part */
+  static from(state: StateReader, dataset: Dataset, memory?: number): SurveyPart {
+    const part = new SurveyPart(dataset, memory);
+    const antennas = state.array(Int32Array, "antennas");
+    for (let i = 0; 2 * i + 1 < antennas.length; i++) {
+      const [antenna1, antenna2] = [antennas[2 * i]!, antennas[2 * i + 1]!];
+      if (antenna1 < antenna2 && part.index.indexOf(antenna1, antenna2) === i) continue;
+      throw state.error(`${antenna1}-${antenna2} is no baseline, or stands twice`, "antennas");
+    }
+    const gathered = state.child("gathered");
+    const entries = Object.entries(part.gathered as unknown as Record<string, Accumulator>);
+    for (const [name, accumulator] of entries) {
+      accumulator.restore(gathered.child(name), part.index.baselines.length);
+    }
+    return part;
   }
 
   add(block: SampleBlock): void {

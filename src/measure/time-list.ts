@@ -1,5 +1,8 @@
 /** Distinct times in bounded memory, the same whatever order they are met in. */
 
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
+
 /** Times kept apart: 32 MB. Beyond, they are rounded to ever coarser steps. */
 const MOST = 1 << 22;
 /** First rounding, days: 5.15 ms, a float32 step of a day fraction. A power of two, so that rounding is exact. */
@@ -28,6 +31,19 @@ export class TimeList {
     other.tidy();
     while (this.step < other.step) this.coarsen();
     for (let i = 0; i < other.kept; i++) this.add(other.times[i]!);
+  }
+
+  state(): StateRecord {
+    return { times: this.sorted, step: this.step };
+  }
+
+  restore(from: StateReader): void {
+    const times = from.finite(Float64Array, "times");
+    this.step = from.number("step");
+    if (this.step !== 0 && !(this.step >= FIRST_STEP && this.step < Number.POSITIVE_INFINITY)) {
+      throw from.error(`${this.step} is no step`, "step");
+    }
+    for (const time of times) this.add(time);
   }
 
   /** MJD ascending. */

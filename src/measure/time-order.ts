@@ -2,6 +2,8 @@
 import { SECONDS_PER_DAY } from "../util/constants.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
+import type { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 import { TimeList } from "./time-list.ts";
 
 /** A float32 day fraction near 0.6 resolves 5.15 ms: times closer than this are one integration. */
@@ -103,6 +105,37 @@ export class TimeOrder implements Accumulator {
     this.wKnown ||= other.wKnown;
   }
 
+  state(): StateRecord {
+    const { rows, badTimeRows, badUvwRows, wKnown } = this;
+    return {
+      rows,
+      badTimeRows,
+      badUvwRows,
+      wKnown,
+      runs: Float64Array.from(this.runs.flatMap((run) => RUN_KEYS.map((key) => run[key]))),
+      visits: this.fields.map(({ field, subarray, times }) => ({ field, subarray, times: times.state() })),
+      integrations: this.integrations.state(),
+    };
+  }
+
+  restore(from: StateReader): void {
+    this.rows = from.integer("rows");
+    this.badTimeRows = from.integer("badTimeRows");
+    this.badUvwRows = from.integer("badUvwRows");
+    this.wKnown = from.boolean("wKnown");
+    const runs = from.array(Float64Array, "runs");
+    for (let i = 0; i + RUN_KEYS.length <= runs.length; i += RUN_KEYS.length) {
+      const run = newRun(0, 0);
+      this.runs.push(Object.assign(run, Object.fromEntries(RUN_KEYS.map((key, k) => [key, runs[i + k]!]))));
+    }
+    for (const visits of from.child("visits").items()) {
+      if (visits === null) throw from.error("a visit is missing", "visits");
+      const [field, subarray] = ["field", "subarray"].map((key) => visits.integer(key, -LARGEST, LARGEST));
+      this.visitsOf(field!, subarray!).times.restore(visits.child("times"));
+    }
+    this.integrations.restore(from.child("integrations"));
+  }
+
   /** Make one run of those that follow each other. */
   private joinRuns(): void {
     this.runs.sort((a, b) => a.firstRow - b.firstRow);
@@ -137,6 +170,21 @@ export class TimeOrder implements Accumulator {
     return this.integrations.median;
   }
 }
+
+/** In the order of a state. */
+const RUN_KEYS = [
+  "firstRow",
+  "endRow",
+  "firstTime",
+  "firstBaseline",
+  "lastTime",
+  "lastBaseline",
+  "backward",
+  "backwardSame",
+  "same",
+] as const satisfies readonly (keyof Run)[];
+/** of 32-bit numbers */
+const LARGEST = 2 ** 31;
 
 function newRun(firstRow: number, rows: number): Run {
   return {
@@ -215,6 +263,25 @@ class IntegrationCounts {
     for (const { rows, least, most } of other.counts.values()) {
       this.add(least, rows);
       this.add(most, 0);
+    }
+  }
+
+  state(): StateRecord {
+    const entries = [...this.counts.values()];
+    return {
+      rows: Float64Array.from(entries, ({ rows }) => rows),
+      least: Float64Array.from(entries, ({ least }) => least),
+      most: Float64Array.from(entries, ({ most }) => most),
+    };
+  }
+
+  restore(from: StateReader): void {
+    const rows = from.counts(Float64Array, "rows");
+    const least = from.finite(Float64Array, "least", rows.length);
+    const most = from.finite(Float64Array, "most", rows.length);
+    for (const [i, count] of rows.entries()) {
+      this.add(least[i]!, count);
+      this.add(most[i]!, 0);
     }
   }
 

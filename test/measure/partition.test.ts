@@ -4,8 +4,8 @@ import type { Dataset } from "../../src/dataset/dataset.ts";
 import { finishSurvey } from "../../src/measure/finish-survey.ts";
 import { joinParts, surveyPart } from "../../src/measure/survey.ts";
 import type { SurveyPart } from "../../src/measure/survey-part.ts";
-import type { Survey } from "../../src/measure/survey-result.ts";
 import { simulated, withFaults } from "../support/scenarios.ts";
+import { surveyBits } from "./survey-bits.ts";
 
 const SMALL = {
   time: { duration: "3min" },
@@ -28,33 +28,13 @@ function partOf(source: Dataset, rows: [number, number], blockRows: number, memo
   return surveyPart(source, { rows, blockRows, ...(memory === undefined ? {} : { memory }) });
 }
 
-/** Everything a survey says, to the last bit. */
-function bits(survey: Survey): unknown {
-  const hex = (array: { buffer: ArrayBufferLike; byteOffset: number; byteLength: number }) =>
-    Buffer.from(array.buffer, array.byteOffset, array.byteLength).toString("base64");
-  const arrays = (record: object) =>
-    Object.entries(record).map(([name, value]) => [
-      name,
-      ArrayBuffer.isView(value) ? hex(value as Uint8Array) : value,
-    ]);
-  return {
-    baselines: survey.baselines,
-    tracks: arrays(survey.tracks),
-    levels: arrays(survey.levels),
-    times: hex(survey.times),
-    scans: survey.scans,
-    totals: survey.totals,
-    measures: [...survey.measures.values()].map((measure) => [measure.name, measure.table.objects()]),
-  };
-}
-
 describe("a survey", () => {
   // Few bytes force time bins and channel groups: the sums that cross rows.
   it.each([
     ["one cell a row", undefined],
     ["time bins and shared sketches", 60_000],
   ])("is the same to the last bit however the rows are shared out: %s", async (_, memory) => {
-    const whole = bits(finishSurvey(await partOf(dataset, [0, dataset.rows], 1000, memory)));
+    const whole = surveyBits(finishSurvey(await partOf(dataset, [0, dataset.rows], 1000, memory)));
     await fc.assert(
       fc.asyncProperty(
         fc.array(fc.nat(dataset.rows), { maxLength: 4 }),
@@ -69,7 +49,7 @@ describe("a survey", () => {
             .map((part, i) => ({ part, key: Math.sin(order + 7 * i) }))
             .sort((a, b) => a.key - b.key)
             .map(({ part }) => part) as [SurveyPart, ...SurveyPart[]];
-          expect(bits(finishSurvey(joinParts(shuffled)))).toEqual(whole);
+          expect(surveyBits(finishSurvey(joinParts(shuffled)))).toEqual(whole);
         },
       ),
       { numRuns: 12 },

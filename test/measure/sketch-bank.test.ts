@@ -1,6 +1,7 @@
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
-import { SketchBank, sharingLadder } from "../../src/measure/sketch-bank.ts";
+import { sharingLadder } from "../../src/measure/sharing-ladder.ts";
+import { SketchBank } from "../../src/measure/sketch-bank.ts";
 
 const ONE = { subbands: 1, channels: 1, polarizations: 1 };
 const ROOM = 1e9;

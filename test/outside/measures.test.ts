@@ -1,6 +1,7 @@
 import { describe, expect, it } from "vitest";
 import { ExactSums } from "../../src/measure/exact-sums.ts";
-import { SketchBank, sharingLadder } from "../../src/measure/sketch-bank.ts";
+import { sharingLadder } from "../../src/measure/sharing-ladder.ts";
+import { SketchBank } from "../../src/measure/sketch-bank.ts";
 import { TIME_STEP_DAYS } from "../../src/measure/time-order.ts";
 import {
   circularMean,

@@ -93,6 +93,24 @@ export class StateReader {
     return array;
   }
 
+  /** A list of arrays of a kind and length; null where there is none. @param most items of the list */
+  arrays<K extends ArrayKind>(
+    kind: K,
+    key: string,
+    length: number,
+    most: number,
+  ): (InstanceType<K> | null)[] {
+    const list = this.at(key);
+    if (!Array.isArray(list) || list.length > most) {
+      throw this.error(`expected a list of at most ${most} arrays`, key);
+    }
+    return (list as readonly StateValue[]).map((item) => {
+      if (item === null) return null;
+      if (item instanceof kind && item.length === length) return item as InstanceType<K>;
+      throw this.error(`expected a ${kind.name} of ${length} numbers`, key);
+    });
+  }
+
   error(found: string, key?: string): InputError {
     const path = key === undefined ? this.path : this.path === "" ? key : `${this.path}.${key}`;
     const part = [this.place.part, path].filter((words) => words !== undefined && words !== "").join(", ");
