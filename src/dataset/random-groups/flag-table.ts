@@ -5,6 +5,7 @@ import type { Hdu } from "../fits/hdus.ts";
 import { type Column, findColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable, type Table } from "../fits/table-rows.ts";
 import type { AntennaTable } from "../fits-tables/antenna-table.ts";
+import { type FlagClock, rangeFromStored } from "../fits-tables/flag-times.ts";
 import type { Notes } from "../notes.ts";
 import type { TableFlag } from "../table-flags.ts";
 
@@ -96,37 +97,25 @@ function range([first, last]: [number | null, number | null], count: number): [n
   return [(first ?? 1) - 1, Math.min(last ?? count, count) - 1];
 }
 
-interface Clock {
-  /** MJD of 0h of the reference date in the file's time system */
-  readonly referenceDay: number;
-  /** the file's time - UTC, days */
-  readonly timeOffset: number;
-}
-
-function clockOf(antennas: readonly AntennaTable[], subarray: number | null): Clock | undefined {
+function clockOf(antennas: readonly AntennaTable[], subarray: number | null): FlagClock | undefined {
   const table = antennas.find((one) => one.subarray === subarray) ?? antennas[0];
   if (table === undefined || table.referenceDay === null) return undefined;
   return { referenceDay: table.referenceDay, timeOffset: table.timeOffset };
 }
 
-/** MJD (UTC, days), widened by one step of the float32 that holds it; undefined when it cannot be dated. */
+/** MJD (UTC, days), widened by one step of what holds it; undefined when it cannot be dated. */
 function timeRange(
   table: Table,
   row: number,
   column: Column | undefined,
-  clock: Clock | undefined,
+  clock: FlagClock | undefined,
 ): [number, number] | undefined {
   const always: [number, number] = [Number.NEGATIVE_INFINITY, Number.POSITIVE_INFINITY];
   if (column === undefined) return always;
   const [start, end] = [table.number(row, column, 0), table.number(row, column, 1)];
   if (start === 0 && end === 0) return always;
   if (clock === undefined || !Number.isFinite(start + end)) return undefined;
-  const step = 2 ** -23;
-  const { referenceDay, timeOffset } = clock;
-  return [
-    referenceDay + start - Math.abs(start) * step - timeOffset,
-    referenceDay + end + Math.abs(end) * step - timeOffset,
-  ];
+  return rangeFromStored([start, end], clock, column.code === "D" ? "D" : "E");
 }
 
 /** Bits in the order of the STOKES axis; without a column all. */
