@@ -3,38 +3,52 @@ import { InputError } from "../../util/errors.ts";
 import type { BlockRequest, SampleBlock } from "../dataset.ts";
 import type { ByteSource, Cursor } from "../fits/byte-source.ts";
 import { newBlock } from "../new-block.ts";
-import type { GroupLayout } from "../random-groups/layout.ts";
 import type { TableFlags } from "../table-flags.ts";
-import { type BlockRange, blockRange, planReads, type ReadPlan } from "./plan.ts";
+import { movedColumns, movedSum, type WeightColumns } from "./columns.ts";
+import {
+  type BlockRange,
+  blockRange,
+  placeInPieces,
+  planReads,
+  type ReadPlan,
+  type RowStore,
+} from "./plan.ts";
 import { fillRows, fillSum, type RawRows, type RowContext } from "./rows.ts";
 import {
+  fillFactorWeights,
+  fillPlainPairs,
   fillPlainSamples,
   fillPlainWeights,
   fillScaledSamples,
-  type GroupFactors,
   isPlainFloat,
+  isPlainPairs,
+  type RowFactors,
   type SampleLayout,
-  sampleLayout,
 } from "./samples.ts";
 
+/** All that is known of a file's rows. */
+export interface RowReader {
+  readonly source: ByteSource;
+  readonly store: RowStore;
+  readonly samples: SampleLayout;
+  readonly context: RowContext;
+  /** of two-element arrays, which hold none */
+  readonly weights: WeightColumns;
+  readonly flags: TableFlags | undefined;
+}
+
 /** @throws InputError where the file is malformed; RangeError for a request that makes no sense */
-export async function* readBlocks(
-  source: ByteSource,
-  layout: GroupLayout,
-  context: RowContext,
-  flags: TableFlags | undefined,
-  request: BlockRequest,
-): AsyncGenerator<SampleBlock> {
-  const samples = sampleLayout(layout);
-  const plan = planReads(layout, samples.shape, request);
+export async function* readBlocks(reader: RowReader, request: BlockRequest): AsyncGenerator<SampleBlock> {
+  const { source, store, samples, flags } = reader;
+  const plan = planReads(store, samples.shape, request);
   if (plan.firstRow === plan.endRow) return;
-  const decode = blockDecoder(layout, samples, context, plan, request);
+  const decode = blockDecoder(reader, plan, request);
   const laysFlags = request.want !== "rows" && flags !== undefined;
-  const cursor = await source.cursor(blockRange(layout, plan, plan.firstRow).byte);
+  const cursor = await source.cursor(blockRange(store, plan, plan.firstRow).byte);
   const buffers = [newBuffer(plan), newBuffer(plan)];
   const read = (row: number, k: number) => {
-    const range = blockRange(layout, plan, row);
-    const reading = readRange(source, cursor, layout, plan, range, buffers[k % 2]!);
+    const range = blockRange(store, plan, row);
+    const reading = readRange(source, cursor, store, plan, range, buffers[k % 2]!);
     // Rejections are met where the block is awaited; an iterator that is left early must not leave one unhandled.
     reading.catch(() => {});
     return reading;
@@ -43,7 +57,7 @@ export async function* readBlocks(
   try {
     for (let row = plan.firstRow, k = 0; row < plan.endRow; row += plan.blockRows, k++) {
       const bytes = await pending;
-      const range = blockRange(layout, plan, row);
+      const range = blockRange(store, plan, row);
       if (row + range.rows < plan.endRow) pending = read(row + range.rows, k + 1);
       const block = decode(bytes, range);
       if (laysFlags) flags.apply(block, samples.shape);
@@ -59,24 +73,28 @@ function newBuffer(plan: ReadPlan): Uint8Array {
   return new Uint8Array(plan.blockRows * plan.rowBytes);
 }
 
-/** Row by row when most of each group is skipped, else in one read. */
+/** Piece by piece when most of each row is skipped, else in one read. */
 async function readRange(
   source: ByteSource,
   cursor: Cursor,
-  layout: GroupLayout,
+  store: RowStore,
   plan: ReadPlan,
   range: BlockRange,
   buffer: Uint8Array,
 ): Promise<Uint8Array> {
   const bytes = buffer.subarray(0, range.rows * plan.rowBytes);
   if (!plan.scattered) {
-    requireAll(layout, range, await cursor.read(bytes, range.byte), bytes.length);
+    requireAll(store, range, await cursor.read(bytes, range.byte), bytes.length);
     return bytes;
   }
   const readRow = async (row: number) => {
-    const part = bytes.subarray(row * plan.rowBytes, (row + 1) * plan.rowBytes);
-    const got = await cursor.read(part, range.byte + row * layout.groupBytes);
-    requireAll(layout, { ...range, firstRow: range.firstRow + row }, got, part.length);
+    let at = row * plan.rowBytes;
+    for (const { offset, bytes: length } of plan.pieces) {
+      const part = bytes.subarray(at, at + length);
+      const got = await cursor.read(part, range.byte + row * store.rowBytes + offset);
+      requireAll(store, { ...range, firstRow: range.firstRow + row }, got, length);
+      at += length;
+    }
   };
   const together = source.sequential ? 1 : 32;
   for (let row = 0; row < range.rows; row += together) {
@@ -87,36 +105,37 @@ async function readRange(
 }
 
 /** The size was right when the file was opened. */
-function requireAll(layout: GroupLayout, range: BlockRange, got: number, expected: number): void {
+function requireAll(store: RowStore, range: BlockRange, got: number, expected: number): void {
   if (got === expected) return;
   throw new InputError(
-    `the file now ends at byte ${range.byte + got}: expected ${expected} bytes of group ${range.firstRow + 1} and after`,
-    { ...layout.hdu.header.place, byte: range.byte },
+    `the file now ends at byte ${range.byte + got}: expected ${expected} bytes of ${store.word} ${range.firstRow + 1} ` +
+      "and after",
+    { ...store.place, byte: range.byte },
     "The file became shorter while it was read: wait until it is written",
   );
 }
 
 /** A function that turns the bytes of a range into the one block that it fills again and again. */
 function blockDecoder(
-  layout: GroupLayout,
-  samples: SampleLayout,
-  context: RowContext,
+  reader: RowReader,
   plan: ReadPlan,
   request: BlockRequest,
 ): (bytes: Uint8Array, range: BlockRange) => SampleBlock {
+  const { store, samples } = reader;
   const block = newBlock(plan.blockRows, samples.shape, request.want);
   const scratch = new Float64Array(plan.blockRows);
-  const fill = sampleFiller(samples, context, plan, request.want);
+  const moved = (offset: number) => placeInPieces(plan.pieces, offset);
+  const context = { ...reader.context, columns: movedColumns(reader.context.columns, moved) };
+  const fill = sampleFiller(reader, plan, request.want, scratch, moved);
   return (bytes, range) => {
     const raw: RawRows = {
       view: new DataView(bytes.buffer, bytes.byteOffset, bytes.byteLength),
       rows: range.rows,
       stride: plan.rowBytes,
-      bitpix: layout.bitpix,
       firstRow: range.firstRow,
-      place: layout.hdu.header.place,
+      place: store.place,
       byte: range.byte,
-      groupBytes: layout.groupBytes,
+      rowBytes: store.rowBytes,
     };
     block.firstRow = range.firstRow;
     block.rows = range.rows;
@@ -127,10 +146,11 @@ function blockDecoder(
 }
 
 function sampleFiller(
-  samples: SampleLayout,
-  context: RowContext,
+  { samples, weights }: RowReader,
   plan: ReadPlan,
   want: BlockRequest["want"],
+  scratch: Float64Array,
+  moved: (offset: number) => number,
 ): (raw: RawRows, block: SampleBlock) => void {
   if (want === "rows") return () => {};
   if (isPlainFloat(samples)) {
@@ -138,18 +158,49 @@ function sampleFiller(
       ? (raw, block) => fillPlainSamples(raw.view, raw.rows, samples, block)
       : (raw, block) => fillPlainWeights(raw.view, raw.rows, samples, block.weight);
   }
-  const factors = samples.hasWeight ? undefined : newFactors(plan.blockRows);
+  if (samples.hasWeight) {
+    return (raw, block) =>
+      fillScaledSamples(raw.view, raw.rows, samples, undefined, block, want === "samples");
+  }
+  const factors = newFactors(weights, plan.blockRows);
+  const fillFactors = factorFiller(weights, factors, scratch, moved);
+  const plain = weights.scale === undefined && isPlainPairs(samples);
   return (raw, block) => {
-    if (factors !== undefined) fillFactors(raw, context, factors);
-    fillScaledSamples(raw.view, raw.rows, samples, factors, block, want === "samples");
+    fillFactors(raw);
+    if (want === "samples" && plain) fillPlainPairs(raw.view, raw.rows, samples, block);
+    if (plain || (want === "weights" && samples.blank === undefined)) {
+      fillFactorWeights(raw.rows, samples.shape, factors, block.weight);
+    } else {
+      fillScaledSamples(raw.view, raw.rows, samples, factors, block, want === "samples");
+    }
   };
 }
 
-function newFactors(rows: number): GroupFactors {
-  return { weight: new Float64Array(rows).fill(1), scale: new Float64Array(rows).fill(1) };
+function newFactors({ weights, subbandStep, polarizationStep }: WeightColumns, rows: number): RowFactors {
+  const perRow = Math.max(1, weights.length);
+  return {
+    weight: new Float64Array(rows * perRow).fill(1),
+    perRow,
+    subbandStep,
+    polarizationStep,
+    scale: new Float64Array(rows).fill(1),
+  };
 }
 
-function fillFactors(raw: RawRows, { columns }: RowContext, factors: GroupFactors): void {
-  if (columns.weight !== undefined) fillSum(raw, columns.weight, factors.weight);
-  if (columns.scale !== undefined) fillSum(raw, columns.scale, factors.scale);
+function factorFiller(
+  columns: WeightColumns,
+  factors: RowFactors,
+  scratch: Float64Array,
+  moved: (offset: number) => number,
+): (raw: RawRows) => void {
+  const weights = columns.weights.map((sum) => movedSum(sum, moved));
+  const scale = columns.scale === undefined ? undefined : movedSum(columns.scale, moved);
+  const { weight, perRow } = factors;
+  return (raw) => {
+    weights.forEach((sum, k) => {
+      fillSum(raw, sum, scratch);
+      for (let row = 0; row < raw.rows; row++) weight[row * perRow + k] = scratch[row]!;
+    });
+    if (scale !== undefined) fillSum(raw, scale, factors.scale);
+  };
 }

@@ -1,9 +1,10 @@
-/** From the parameters of groups to the columns of rows: one pass a column, so that each loop is short and plain. */
+/** From the stored items of rows to their columns: one pass a column, so that each loop is short and plain. */
 import { InputError, type Place } from "../../util/errors.ts";
 import type { SampleBlock } from "../dataset.ts";
 import { readStored } from "../fits/stored.ts";
-import type { RowColumns, Sum } from "../random-groups/parameters.ts";
+import type { Words } from "../fits-tables/words.ts";
 import { type BaselineCode, decodeBaseline } from "./baselines.ts";
+import type { RowColumns, Sum } from "./columns.ts";
 
 /** Where the rows are: in memory and, for messages, in the file. */
 export interface RawRows {
@@ -11,24 +12,24 @@ export interface RawRows {
   readonly rows: number;
   /** bytes from one row to the next in `view` */
   readonly stride: number;
-  readonly bitpix: number;
   readonly firstRow: number;
   readonly place: Place;
   /** byte of the first row in the file, and from one row to the next */
   readonly byte: number;
-  readonly groupBytes: number;
+  readonly rowBytes: number;
 }
 
 /** What the numbers in rows refer to. */
 export interface RowContext {
   readonly columns: RowColumns;
-  /** FREQSEL to the index of its setup */
+  readonly words: Words;
+  /** number of a frequency setup to its index */
   readonly setupIndex: ReadonlyMap<number, number>;
-  /** the setup of rows whose FREQSEL is not in the table; undefined: refuse them */
+  /** the setup of rows whose number is not in the table; undefined: refuse them */
   readonly fallbackSetup: number | undefined;
-  /** FREQSEL numbers met that are not in the table, for a note */
+  /** numbers met that are not in the table, for a note */
   readonly strangeSetups: Set<number>;
-  /** of rows without a SOURCE parameter */
+  /** of rows that name no field */
   readonly onlyField: number;
   /** file's time - UTC, days, by sub-array number; `timeOffset[0]` for those without a table */
   readonly timeOffset: Float64Array;
@@ -42,7 +43,7 @@ const MOST_ANTENNA = 65_535;
  * Fill the row columns of `block`.
  *
  * @param scratch (rows) working space
- * @throws InputError at the group whose baseline, source or frequency setup is none
+ * @throws InputError at the row whose baseline, source or frequency setup is none
  */
 export function fillRows(raw: RawRows, context: RowContext, scratch: Float64Array, block: SampleBlock): void {
   const { columns } = context;
@@ -50,7 +51,7 @@ export function fillRows(raw: RawRows, context: RowContext, scratch: Float64Arra
   fillSum(raw, columns.v, block.v);
   if (columns.w === undefined) block.w.fill(0, 0, raw.rows);
   else fillSum(raw, columns.w, block.w);
-  fillAntennas(raw, columns, scratch, block);
+  fillAntennas(raw, context, scratch, block);
   fillTimes(raw, context, scratch, block);
   if (columns.integration === undefined) block.integration.fill(Number.NaN, 0, raw.rows);
   else fillIntegrations(raw, columns.integration, scratch, block.integration);
@@ -60,9 +61,9 @@ export function fillRows(raw: RawRows, context: RowContext, scratch: Float64Arra
 
 /** constant + sum of scale x stored, in float64. */
 export function fillSum(raw: RawRows, sum: Sum, out: Float64Array): void {
-  const { view, rows, stride, bitpix } = raw;
+  const { view, rows, stride } = raw;
   const { constant, terms } = sum;
-  const { offset, scale } = terms[0]!;
+  const { offset, scale, bitpix } = terms[0]!;
   if (bitpix === -32) {
     for (let row = 0; row < rows; row++) {
       out[row] = constant + scale * view.getFloat32(row * stride + offset);
@@ -75,7 +76,7 @@ export function fillSum(raw: RawRows, sum: Sum, out: Float64Array): void {
   for (let k = 1; k < terms.length; k++) {
     const term = terms[k]!;
     for (let row = 0; row < rows; row++) {
-      out[row]! += term.scale * readStored(view, bitpix, row * stride + term.offset);
+      out[row]! += term.scale * readStored(view, term.bitpix, row * stride + term.offset);
     }
   }
 }
@@ -91,16 +92,16 @@ function fillIntegrations(raw: RawRows, sum: Sum, scratch: Float64Array, out: Fl
  * ZAMM 54, 39), so that the fraction keeps its precision beside a Julian date.
  */
 function fillTimes(raw: RawRows, context: RowContext, scratch: Float64Array, block: SampleBlock): void {
-  const { view, rows, stride, bitpix } = raw;
+  const { view, rows, stride } = raw;
   const { constant, terms } = context.columns.time;
   const { timeOffset } = context;
   const { time, subarray } = block;
   const lost = scratch;
-  const isFloat = bitpix === -32;
   time.fill(constant, 0, rows);
   lost.fill(0, 0, rows);
   for (let k = 0; k < terms.length; k++) {
-    const { offset, scale } = terms[k]!;
+    const { offset, scale, bitpix } = terms[k]!;
+    const isFloat = bitpix === -32;
     for (let row = 0; row < rows; row++) {
       const at = row * stride + offset;
       const value = scale * (isFloat ? view.getFloat32(at) : readStored(view, bitpix, at));
@@ -117,25 +118,30 @@ function fillTimes(raw: RawRows, context: RowContext, scratch: Float64Array, blo
   }
 }
 
-function fillAntennas(raw: RawRows, columns: RowColumns, scratch: Float64Array, block: SampleBlock): void {
-  if (columns.baseline !== undefined) fillCodes(raw, columns.baseline, scratch, block);
+function fillAntennas(raw: RawRows, context: RowContext, scratch: Float64Array, block: SampleBlock): void {
+  const { columns, words } = context;
+  if (columns.baseline !== undefined) fillCodes(raw, context, scratch, block);
   else {
-    fillNumbers(raw, columns.antenna1!, scratch, "ANTENNA1", MOST_ANTENNA, block.antenna1);
-    fillNumbers(raw, columns.antenna2!, scratch, "ANTENNA2", MOST_ANTENNA, block.antenna2);
+    fillNumbers(raw, words, columns.antenna1!, scratch, "ANTENNA1", MOST_ANTENNA, block.antenna1);
+    fillNumbers(raw, words, columns.antenna2!, scratch, "ANTENNA2", MOST_ANTENNA, block.antenna2);
     block.subarray.fill(1, 0, raw.rows);
   }
   if (columns.subarray === undefined) return;
-  fillNumbers(raw, columns.subarray, scratch, "SUBARRAY", 9999, block.subarray);
+  fillNumbers(raw, words, columns.subarray, scratch, words.subarray, 9999, block.subarray);
+  const { subarray } = block;
+  // Zero is "not said": the first.
+  for (let row = 0; row < raw.rows; row++) if (subarray[row] === 0) subarray[row] = 1;
 }
 
-function fillCodes(raw: RawRows, sum: Sum, scratch: Float64Array, block: SampleBlock): void {
+function fillCodes(raw: RawRows, context: RowContext, scratch: Float64Array, block: SampleBlock): void {
   const { antenna1, antenna2, subarray } = block;
   const code: BaselineCode = { antenna1: 0, antenna2: 0, subarray: 1 };
-  fillSum(raw, sum, scratch);
+  fillSum(raw, context.columns.baseline!, scratch);
   for (let row = 0; row < raw.rows; row++) {
     if (!decodeBaseline(scratch[row]!, code)) {
       throw badRow(
         raw,
+        context.words,
         row,
         `BASELINE is ${scratch[row]}`,
         "256 x antenna 1 + antenna 2, or 65536 + 2048 x antenna 1 + antenna 2",
@@ -150,6 +156,7 @@ function fillCodes(raw: RawRows, sum: Sum, scratch: Float64Array, block: SampleB
 /** Whole numbers from 0 to `most`; a stored 1.0001 is 1. */
 function fillNumbers(
   raw: RawRows,
+  words: Words,
   sum: Sum,
   scratch: Float64Array,
   name: string,
@@ -160,20 +167,20 @@ function fillNumbers(
   for (let row = 0; row < raw.rows; row++) {
     const value = Math.round(scratch[row]!);
     if (!(value >= 0 && value <= most)) {
-      throw badRow(raw, row, `${name} is ${scratch[row]}`, `a whole number from 0 to ${most}`);
+      throw badRow(raw, words, row, `${name} is ${scratch[row]}`, `a whole number from 0 to ${most}`);
     }
     out[row] = value;
   }
 }
 
 function fillFields(raw: RawRows, context: RowContext, scratch: Float64Array, out: Int32Array): void {
-  const { source } = context.columns;
-  if (source === undefined) out.fill(context.onlyField, 0, raw.rows);
-  else fillNumbers(raw, source, scratch, "SOURCE", 2 ** 31 - 1, out);
+  const { columns, words } = context;
+  if (columns.source === undefined) out.fill(context.onlyField, 0, raw.rows);
+  else fillNumbers(raw, words, columns.source, scratch, words.source, 2 ** 31 - 1, out);
 }
 
 function fillSetups(raw: RawRows, context: RowContext, scratch: Float64Array, out: Int32Array): void {
-  const { columns, setupIndex, fallbackSetup, strangeSetups } = context;
+  const { columns, words, setupIndex, fallbackSetup, strangeSetups } = context;
   if (columns.setup === undefined) {
     out.fill(setupIndex.get(1) ?? 0, 0, raw.rows);
     return;
@@ -186,7 +193,8 @@ function fillSetups(raw: RawRows, context: RowContext, scratch: Float64Array, ou
       index = fallbackSetup;
       if (index === undefined) {
         const known = [...setupIndex.keys()].slice(0, 20).join(", ");
-        throw badRow(raw, row, `FREQSEL is ${scratch[row]}`, `one of the FQ table: ${known}`);
+        const expected = `one of the ${words.setupTable}: ${known}`;
+        throw badRow(raw, words, row, `${words.setup} is ${scratch[row]}`, expected);
       }
       if (strangeSetups.size < MOST_STRANGE) strangeSetups.add(id);
     }
@@ -194,10 +202,10 @@ function fillSetups(raw: RawRows, context: RowContext, scratch: Float64Array, ou
   }
 }
 
-function badRow(raw: RawRows, row: number, found: string, expected: string): InputError {
+function badRow(raw: RawRows, words: Words, row: number, found: string, expected: string): InputError {
   return new InputError(
-    `group ${raw.firstRow + row + 1}: ${found}: expected ${expected}`,
-    { ...raw.place, byte: raw.byte + row * raw.groupBytes },
+    `${words.row} ${raw.firstRow + row + 1}: ${found}: expected ${expected}`,
+    { ...raw.place, byte: raw.byte + row * raw.rowBytes },
     "The data are damaged there",
   );
 }

@@ -1,5 +1,5 @@
 /**
- * From the arrays of groups to samples in canonical order: row, sub-band, channel, polarization (fastest), whatever the
+ * From the arrays of rows to samples in canonical order: row, sub-band, channel, polarization (fastest), whatever the
  * order of the axes in the file. The hot loops of reading.
  *
  * Everything becomes float32. A float64 or scaled value beyond float32 becomes infinite, and so counts as bad; a
@@ -7,13 +7,12 @@
  */
 import type { SampleBlock, Shape } from "../dataset.ts";
 import { readStored } from "../fits/stored.ts";
-import type { GroupLayout } from "../random-groups/layout.ts";
 
-/** Where the elements of a group lie, bytes. */
+/** Where the elements of a row's array lie, bytes. */
 export interface SampleLayout {
   readonly bitpix: number;
-  /** of a group, and of the first element in it */
-  readonly groupBytes: number;
+  /** of a row, and of the first element in it */
+  readonly rowBytes: number;
   readonly start: number;
   readonly shape: Shape;
   /** from one sub-band, channel, polarization to the next */
@@ -28,31 +27,12 @@ export interface SampleLayout {
   readonly blank: number | undefined;
 }
 
-export function sampleLayout(layout: GroupLayout): SampleLayout {
-  const { itemBytes, complex, stokes, frequency, subband } = layout;
-  return {
-    bitpix: layout.bitpix,
-    groupBytes: layout.groupBytes,
-    start: layout.parameterBytes,
-    shape: { subbands: subband.length, channels: frequency.length, polarizations: stokes.length },
-    subbandStep: subband.stride * itemBytes,
-    channelStep: frequency.stride * itemBytes,
-    polarizationStep: stokes.stride * itemBytes,
-    complexStep: complex.stride * itemBytes,
-    hasWeight: complex.length === 3,
-    scale: layout.scale,
-    zero: layout.zero,
-    // Two-element arrays of 16-bit integers reserve the most negative one even where BLANK does not say so.
-    blank: layout.blank ?? (complex.length === 2 && layout.bitpix === 16 ? -32768 : undefined),
-  };
-}
-
 /** The usual file: float32 as it is, so that a sample is three loads and three stores. */
 export function isPlainFloat(layout: SampleLayout): boolean {
   return layout.bitpix === -32 && layout.scale === 1 && layout.zero === 0 && layout.hasWeight;
 }
 
-/** Samples from float32 groups with weights and no scaling. */
+/** Samples from float32 arrays with weights and no scaling. */
 export function fillPlainSamples(
   view: DataView,
   rows: number,
@@ -61,12 +41,12 @@ export function fillPlainSamples(
 ): void {
   const { real, imag, weight } = block;
   const { subbands, channels, polarizations } = layout.shape;
-  const { subbandStep, channelStep, polarizationStep, complexStep, groupBytes, start } = layout;
+  const { subbandStep, channelStep, polarizationStep, complexStep, rowBytes, start } = layout;
   const weightStep = 2 * complexStep;
   let i = 0;
   for (let row = 0; row < rows; row++) {
     for (let subband = 0; subband < subbands; subband++) {
-      const subbandAt = row * groupBytes + start + subband * subbandStep;
+      const subbandAt = row * rowBytes + start + subband * subbandStep;
       for (let channel = 0; channel < channels; channel++) {
         let at = subbandAt + channel * channelStep;
         for (let polarization = 0; polarization < polarizations; polarization++) {
@@ -81,7 +61,7 @@ export function fillPlainSamples(
   }
 }
 
-/** Weights alone, from float32 groups without scaling. */
+/** Weights alone, from float32 arrays without scaling. */
 export function fillPlainWeights(
   view: DataView,
   rows: number,
@@ -89,11 +69,11 @@ export function fillPlainWeights(
   weight: Float32Array,
 ): void {
   const { subbands, channels, polarizations } = layout.shape;
-  const { subbandStep, channelStep, polarizationStep, complexStep, groupBytes, start } = layout;
+  const { subbandStep, channelStep, polarizationStep, complexStep, rowBytes, start } = layout;
   let i = 0;
   for (let row = 0; row < rows; row++) {
     for (let subband = 0; subband < subbands; subband++) {
-      const subbandAt = row * groupBytes + start + subband * subbandStep + 2 * complexStep;
+      const subbandAt = row * rowBytes + start + subband * subbandStep + 2 * complexStep;
       for (let channel = 0; channel < channels; channel++) {
         let at = subbandAt + channel * channelStep;
         for (let polarization = 0; polarization < polarizations; polarization++) {
@@ -105,10 +85,72 @@ export function fillPlainWeights(
   }
 }
 
-/** One weight and one scale for all samples of a group: what goes with two-element COMPLEX arrays. */
-export interface GroupFactors {
+/** Float32 as it is, the weights beside the array: two loads and two stores a sample. */
+export function isPlainPairs(layout: SampleLayout): boolean {
+  return layout.bitpix === -32 && layout.scale === 1 && layout.zero === 0 && !layout.hasWeight;
+}
+
+/** Values alone, from float32 arrays of real and imaginary parts without scaling. */
+export function fillPlainPairs(
+  view: DataView,
+  rows: number,
+  layout: SampleLayout,
+  { real, imag }: SampleBlock,
+): void {
+  const { subbands, channels, polarizations } = layout.shape;
+  const { subbandStep, channelStep, polarizationStep, complexStep, rowBytes, start } = layout;
+  let i = 0;
+  for (let row = 0; row < rows; row++) {
+    for (let subband = 0; subband < subbands; subband++) {
+      const subbandAt = row * rowBytes + start + subband * subbandStep;
+      for (let channel = 0; channel < channels; channel++) {
+        let at = subbandAt + channel * channelStep;
+        for (let polarization = 0; polarization < polarizations; polarization++) {
+          real[i] = view.getFloat32(at);
+          imag[i] = view.getFloat32(at + complexStep);
+          i++;
+          at += polarizationStep;
+        }
+      }
+    }
+  }
+}
+
+/** Weights and scales of rows whose arrays hold none: what goes with two-element COMPLEX arrays. */
+export interface RowFactors {
+  /** (rows x perRow) */
   readonly weight: Float64Array;
+  readonly perRow: number;
+  /** from one sub-band, and from one polarization, to the next in a row's weights; 0 where they share one */
+  readonly subbandStep: number;
+  readonly polarizationStep: number;
+  /** (rows) what stored values are multiplied by */
   readonly scale: Float64Array;
+}
+
+/** Weights of all samples, each holding for every channel of its sub-band and polarization. */
+export function fillFactorWeights(
+  rows: number,
+  { subbands, channels, polarizations }: Shape,
+  factors: RowFactors,
+  weight: Float32Array,
+): void {
+  const { perRow, subbandStep, polarizationStep } = factors;
+  let i = 0;
+  for (let row = 0; row < rows; row++) {
+    for (let subband = 0; subband < subbands; subband++) {
+      const first = i;
+      for (let polarization = 0; polarization < polarizations; polarization++) {
+        const w = factors.weight[row * perRow + subband * subbandStep + polarization * polarizationStep]!;
+        weight[i++] = w > 0 && w < LEAST_WEIGHT ? LEAST_WEIGHT : w;
+      }
+      for (let channel = 1; channel < channels; channel++) {
+        for (let polarization = 0; polarization < polarizations; polarization++) {
+          weight[i++] = weight[first + polarization]!;
+        }
+      }
+    }
+  }
 }
 
 /** Smallest positive float32. */
@@ -118,29 +160,28 @@ const LEAST_WEIGHT = 2 ** -149;
  * Samples of any item type, scaled. An undefined value (BLANK) is NaN; in a two-element array it means that the sample
  * is flagged, and the weight turns negative.
  *
- * @param factors of two-element arrays: (rows) weight and scale
+ * @param factors of two-element arrays
  * @param want false leaves `block.real` and `block.imag` alone
  */
 export function fillScaledSamples(
   view: DataView,
   rows: number,
   layout: SampleLayout,
-  factors: GroupFactors | undefined,
+  factors: RowFactors | undefined,
   block: SampleBlock,
   want: boolean,
 ): void {
   const { real, imag, weight } = block;
   const { subbands, channels, polarizations } = layout.shape;
-  const { bitpix, complexStep, groupBytes, start, scale, zero, blank, hasWeight } = layout;
+  const { bitpix, complexStep, rowBytes, start, scale, zero, blank, hasWeight } = layout;
   let i = 0;
   for (let row = 0; row < rows; row++) {
     const rowScale = factors === undefined ? 1 : factors.scale[row]!;
-    const rowWeight = factors === undefined ? 1 : factors.weight[row]!;
     for (let subband = 0; subband < subbands; subband++) {
       for (let channel = 0; channel < channels; channel++) {
         for (let polarization = 0; polarization < polarizations; polarization++) {
           const at =
-            row * groupBytes +
+            row * rowBytes +
             start +
             subband * layout.subbandStep +
             channel * layout.channelStep +
@@ -151,7 +192,11 @@ export function fillScaledSamples(
             real[i] = storedReal === blank ? Number.NaN : (zero + scale * storedReal) * rowScale;
             imag[i] = storedImag === blank ? Number.NaN : (zero + scale * storedImag) * rowScale;
           }
-          let w = rowWeight;
+          let w = 1;
+          if (factors !== undefined) {
+            const { perRow, subbandStep, polarizationStep } = factors;
+            w = factors.weight[row * perRow + subband * subbandStep + polarization * polarizationStep]!;
+          }
           if (hasWeight) {
             const stored = readStored(view, bitpix, at + 2 * complexStep);
             w = stored === blank ? Number.NaN : zero + scale * stored;

@@ -1,4 +1,4 @@
-/** One AN table as it stands in the file: numbers, names, positions, Earth orientation. */
+/** One antenna table (AN, or ARRAY_GEOMETRY) as it stands in the file: numbers, names, positions, Earth orientation. */
 import { SECONDS_PER_DAY } from "../../util/constants.ts";
 import { mjdFromDate } from "../../util/dates.ts";
 import type { Cursor } from "../fits/byte-source.ts";
@@ -6,6 +6,7 @@ import type { Hdu } from "../fits/hdus.ts";
 import { type Column, findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable, type Table } from "../fits/table-rows.ts";
 import type { Notes } from "../notes.ts";
+import { lastWord } from "./last-word.ts";
 
 export type Position = readonly [number, number, number];
 
@@ -42,13 +43,17 @@ export interface AntennaTable {
 
 /** The largest BASELINE code names 2047 antennas; ANTENNA1 and ANTENNA2 may go on to this. */
 const MOST_ANTENNAS = 65_535;
+const MOST_SUBARRAY = 9999;
 
 /** @throws InputError when the table is malformed */
 export async function readAntennaTable(cursor: Cursor, hdu: Hdu, notes: Notes): Promise<AntennaTable> {
   const { header } = hdu;
   const layout = tableLayout(hdu);
   if (layout.rows > MOST_ANTENNAS) {
-    throw header.error(`the AN table has ${layout.rows} rows: expected at most ${MOST_ANTENNAS}`, "NAXIS2");
+    throw header.error(
+      `the ${lastWord(hdu)} table has ${layout.rows} rows: expected at most ${MOST_ANTENNAS}`,
+      "NAXIS2",
+    );
   }
   const table = await readTable(cursor, layout);
   const part = header.place.part!;
@@ -164,4 +169,12 @@ function readTimeSystem(
     notes.fault("missing-time-offset", text);
   }
   return { timeSystem, timeOffset: (ahead ?? 0) / SECONDS_PER_DAY };
+}
+
+/** The file's time - UTC, days, by sub-array number; [0] for those without a table. */
+export function timeOffsets(tables: readonly AntennaTable[]): Float64Array {
+  const most = Math.max(0, ...tables.map(({ subarray }) => subarray));
+  const offsets = new Float64Array(Math.min(most, MOST_SUBARRAY) + 1).fill(tables[0]?.timeOffset ?? 0);
+  for (const table of tables) offsets[table.subarray] = table.timeOffset;
+  return offsets;
 }

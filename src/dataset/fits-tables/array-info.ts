@@ -1,9 +1,10 @@
-/** The AN tables of all sub-arrays as one array. */
+/** The antenna tables of all sub-arrays as one array. */
 import type { Antenna, ArrayInfo, Field } from "../dataset.ts";
 import type { Notes } from "../notes.ts";
 import type { RowSummary } from "../row-summary.ts";
 import type { AntennaTable } from "./antenna-table.ts";
 import { type FramedTable, framePositions } from "./frames.ts";
+import type { Words } from "./words.ts";
 
 /** Degrees of Greenwich sidereal time a day of UT1 (Aoki et al. 1982, A&A 105, 359). */
 const DEGREES_PER_DAY = 360.98564736629;
@@ -13,10 +14,11 @@ export function arrayInfo(
   fields: readonly Field[],
   summary: RowSummary,
   telescope: string,
+  words: Words,
   notes: Notes,
 ): ArrayInfo {
   const [first] = tables;
-  if (first === undefined) return withoutTable(summary, telescope, notes);
+  if (first === undefined) return withoutTable(summary, telescope, words, notes);
   const framed = tables.map((table) => framePositions(table, fields, summary.probe, notes));
   const frame = framed.find(({ frame }) => frame !== "unknown")?.frame ?? "unknown";
   const antennas = merged(tables, framed, frame, notes);
@@ -40,8 +42,8 @@ function siderealTimeAtUtc(table: AntennaTable): number | null {
   return table.siderealTime + (table.degreesPerDay ?? DEGREES_PER_DAY) * table.timeOffset;
 }
 
-function withoutTable(summary: RowSummary, telescope: string, notes: Notes): ArrayInfo {
-  const text = "no antenna table (AN): antennas are called by their numbers, and geometry cannot be judged";
+function withoutTable(summary: RowSummary, telescope: string, words: Words, notes: Notes): ArrayInfo {
+  const text = `no ${words.antennaTable}: antennas are called by their numbers, and geometry cannot be judged`;
   notes.note("missing-antenna-table", text);
   return {
     name: telescope,

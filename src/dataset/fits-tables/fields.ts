@@ -1,4 +1,4 @@
-/** Fields: the SU table, or the one field that the primary header names. */
+/** Fields: the source table, or the one field that a header names. */
 import type { Field } from "../dataset.ts";
 import type { Cursor } from "../fits/byte-source.ts";
 import type { Hdu } from "../fits/hdus.ts";
@@ -6,17 +6,30 @@ import type { Header } from "../fits/header.ts";
 import { findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable } from "../fits/table-rows.ts";
 import type { Notes } from "../notes.ts";
-import { axisValue, type GroupLayout } from "../random-groups/layout.ts";
 import type { RowSummary } from "../row-summary.ts";
+import { axisValue, type NamedAxes } from "./axes.ts";
+import { lastWord } from "./last-word.ts";
+import type { Words } from "./words.ts";
 
 const DEGREE = Math.PI / 180;
 const MOST_FIELDS = 65_536;
 
-/** @throws InputError when the table is malformed */
-export async function readFieldTable(cursor: Cursor, hdu: Hdu, notes: Notes): Promise<Field[]> {
+/**
+ * @param equinoxOtherwise of fields whose own the table does not give
+ * @throws InputError when the table is malformed
+ */
+export async function readFieldTable(
+  cursor: Cursor,
+  hdu: Hdu,
+  notes: Notes,
+  equinoxOtherwise = Number.NaN,
+): Promise<Field[]> {
   const layout = tableLayout(hdu);
   if (layout.rows > MOST_FIELDS) {
-    throw hdu.header.error(`the SU table has ${layout.rows} rows: expected at most ${MOST_FIELDS}`, "NAXIS2");
+    throw hdu.header.error(
+      `the ${lastWord(hdu)} table has ${layout.rows} rows: expected at most ${MOST_FIELDS}`,
+      "NAXIS2",
+    );
   }
   const table = await readTable(cursor, layout);
   const id = requireColumn(layout, "ID. NO.", "SOURCE_ID", "ID_NO.", "ID.NO.", "ID NO");
@@ -41,7 +54,8 @@ export async function readFieldTable(cursor: Cursor, hdu: Hdu, notes: Notes): Pr
       name: text === "" ? `source ${number}` : text,
       rightAscension: right === undefined ? Number.NaN : table.number(row, right) * DEGREE,
       declination: declination === undefined ? Number.NaN : table.number(row, declination) * DEGREE,
-      equinox: epoch === undefined ? Number.NaN : yearOf(table.text(row, epoch) || table.number(row, epoch)),
+      equinox:
+        epoch === undefined ? equinoxOtherwise : yearOf(table.text(row, epoch) || table.number(row, epoch)),
     });
   }
   return [...fields.values()];
@@ -51,31 +65,33 @@ export async function readFieldTable(cursor: Cursor, hdu: Hdu, notes: Notes): Pr
  * The fields of the rows: those of the table, the header's where there is none, and nameless ones for numbers that
  * neither knows.
  *
- * @param named rows have a SOURCE parameter
+ * @param centre the header that names a field, and its axes
+ * @param named rows say which field they are of
  */
 export function fieldsOfRows(
-  layout: GroupLayout,
+  centre: Centre,
   named: boolean,
   table: readonly Field[] | undefined,
   summary: RowSummary,
+  words: Words,
   notes: Notes,
 ): Field[] {
   const met = summary.fields.map(({ id }) => id);
   if (table === undefined && met.length === 1) {
-    if (named) notes.note("missing-source-table", "no source table (SU): the field is that of the header");
-    return [fieldOfHeader(layout, met[0]!, notes)];
+    if (named) notes.note("missing-source-table", `no ${words.sourceTable}: the field is that of the header`);
+    return [fieldOfHeader(centre, met[0]!, notes)];
   }
   if (table === undefined) {
     notes.note(
       "missing-source-table",
-      `no source table (SU): the ${met.length} fields of the rows have no names, nor phase centres`,
+      `no ${words.sourceTable}: the ${met.length} fields of the rows have no names, nor phase centres`,
     );
   } else if (!named && table.length !== 1) {
     notes.note(
       "missing-source-parameter",
-      `the source table has ${table.length} rows and the groups no SOURCE parameter: the field is that of the header`,
+      `the source table has ${table.length} rows and the ${words.rows} no ${words.sourceColumn}: the field is that of the header`,
     );
-    return [fieldOfHeader(layout, met[0]!, notes)];
+    return [fieldOfHeader(centre, met[0]!, notes)];
   }
   const fields = [...(table ?? [])];
   const known = new Set(fields.map(({ id }) => id));
@@ -97,10 +113,13 @@ export function fieldsOfRows(
   return fields;
 }
 
-/** The field of a file without a SU table: OBJECT at the RA and DEC axes, or where the antennas pointed. */
-function fieldOfHeader(layout: GroupLayout, id: number, notes: Notes): Field {
-  const { header } = layout.hdu;
-  const { rightAscension, declination } = layout;
+/** What names the one field of a file without a source table. */
+export interface Centre extends Pick<NamedAxes, "rightAscension" | "declination"> {
+  readonly header: Header;
+}
+
+/** OBJECT at the RA and DEC axes, or where the antennas pointed. */
+function fieldOfHeader({ header, rightAscension, declination }: Centre, id: number, notes: Notes): Field {
   const name = (header.shown("OBJECT") ?? "").trim();
   const missing = rightAscension === undefined || declination === undefined;
   if (missing) {

@@ -1,10 +1,10 @@
-/** What the primary header says besides the layout: telescope, dates, unit, polarizations. */
+/** What headers say besides the layout: telescope, dates, unit, polarizations. */
 import { dateFromMjd, mjdFromDate } from "../../util/dates.ts";
 import type { Polarization } from "../dataset.ts";
 import type { Header } from "../fits/header.ts";
 import type { Notes } from "../notes.ts";
-import { axisValue, type GroupLayout } from "../random-groups/layout.ts";
 import type { RowSummary } from "../row-summary.ts";
+import { type ArrayAxis, axisValue } from "./axes.ts";
 
 /** FITS Standard 4.0, table 29: by the code on the STOKES axis. */
 const STOKES: ReadonlyMap<number, Polarization> = new Map([
@@ -23,13 +23,13 @@ const STOKES: ReadonlyMap<number, Polarization> = new Map([
 ]);
 
 /** @throws InputError when a code is none of table 29's, or comes twice */
-export function polarizationsOf({ stokes, hdu }: GroupLayout): Polarization[] {
+export function polarizationsOf(stokes: ArrayAxis, header: Header): Polarization[] {
   const found: Polarization[] = [];
   for (let i = 0; i < stokes.length; i++) {
     const code = axisValue(stokes, i);
     const polarization = Math.abs(code - Math.round(code)) < 1e-3 ? STOKES.get(Math.round(code)) : undefined;
     if (polarization === undefined || found.includes(polarization)) {
-      throw hdu.header.error(
+      throw header.error(
         `element ${i + 1} of the STOKES axis has code ${code}${polarization === undefined ? "" : " again"}: expected ` +
           "1 to 4 (I Q U V), -1 to -4 (RR LL RL LR) or -5 to -8 (XX YY XY YX), each once",
         `CRVAL${stokes.number}`,
@@ -49,22 +49,29 @@ const FACTS = {
   origin: "ORIGIN",
 } as const;
 
-export function headerFacts(header: Header): Record<string, string> {
+/** Of the first of `headers` that says it. */
+function shownIn(headers: readonly Header[], keyword: string): string | undefined {
+  const found = headers.map((header) => header.shown(keyword)?.trim());
+  return found.find((value) => value !== undefined && value !== "");
+}
+
+/** @param headers the first that says something counts */
+export function headerFacts(headers: readonly Header[]): Record<string, string> {
   const facts: Record<string, string> = {};
   for (const [name, keyword] of Object.entries(FACTS)) {
-    const value = header.shown(keyword)?.trim();
-    if (value !== undefined && value !== "") facts[name] = value;
+    const value = shownIn(headers, keyword);
+    if (value !== undefined) facts[name] = value;
   }
   return facts;
 }
 
-export function telescopeOf(header: Header): string {
-  return (header.shown("TELESCOP") ?? "").trim();
+export function telescopeOf(headers: readonly Header[]): string {
+  return shownIn(headers, "TELESCOP") ?? "";
 }
 
-/** "Jy" when BUNIT says calibrated, "uncalibrated" when it says so or nothing, else what it says. */
-export function unitOf(header: Header): string {
-  const unit = (header.shown("BUNIT") ?? "").trim();
+/** "Jy" when the file says calibrated, "uncalibrated" when it says so or nothing, else what it says. */
+export function unitOf(written: string | undefined): string {
+  const unit = (written ?? "").trim();
   if (unit === "" || /^UNCALIB/i.test(unit)) return "uncalibrated";
   return /^JY$/i.test(unit) ? "Jy" : unit;
 }
@@ -72,9 +79,9 @@ export function unitOf(header: Header): string {
 /** DATE-OBS is the first day of observing; some writers give the day of the reference time. */
 const MOST_DAYS_APART = 3;
 
-export function noteDates(header: Header, summary: RowSummary, notes: Notes): void {
-  const written = header.shown("DATE-OBS")?.trim();
-  if (written !== undefined && written !== "") {
+export function noteDates(headers: readonly Header[], summary: RowSummary, notes: Notes): void {
+  const written = shownIn(headers, "DATE-OBS");
+  if (written !== undefined) {
     const day = mjdFromDate(written);
     if (Number.isNaN(day)) notes.fault("odd-date", `DATE-OBS is "${written}", which is no date`);
     else if (day > summary.lastTime + MOST_DAYS_APART || day < summary.firstTime - MOST_DAYS_APART) {

@@ -1,11 +1,13 @@
-/** Frequencies: the FREQ axis, and the FQ table's sub-bands around it. */
+/** Frequencies: the FREQ axis, and the frequency table's sub-bands around it. */
 import type { Setup } from "../dataset.ts";
 import type { Cursor } from "../fits/byte-source.ts";
 import type { Hdu } from "../fits/hdus.ts";
+import type { Header } from "../fits/header.ts";
 import { type Column, findColumn, requireColumn, tableLayout } from "../fits/table-layout.ts";
 import { readTable, type Table } from "../fits/table-rows.ts";
 import type { Notes } from "../notes.ts";
-import { axisValue, type GroupAxis, type GroupLayout } from "../random-groups/layout.ts";
+import { type ArrayAxis, axisValue, type NamedAxes } from "./axes.ts";
+import type { Words } from "./words.ts";
 
 /** Above any radio or submillimetre band: 30 um. */
 const HIGHEST_FREQUENCY = 1e13;
@@ -14,7 +16,12 @@ const MOST_FREQUENCIES = 1 << 24;
 /** Steps that differ by less are the same number in single precision. */
 const SAME_STEP = 1e-3;
 
-/** One sub-band as the FQ table has it. */
+/** The axes of the rows' array, and the header that gives them. */
+export interface Spectrum extends Pick<NamedAxes, "frequency" | "subband"> {
+  readonly header: Header;
+}
+
+/** One sub-band as the frequency table has it. */
 interface Subband {
   /** Hz from the FREQ axis */
   readonly offset: number;
@@ -27,20 +34,23 @@ interface Subband {
 
 /**
  * @param reference Hz, CRVAL of the FREQ axis
- * @throws InputError when the FQ table does not go with the group's axes
+ * @throws InputError when the frequency table does not go with the axes
  */
 export async function readSetups(
   cursor: Cursor,
   hdu: Hdu | undefined,
-  layout: GroupLayout,
+  spectrum: Spectrum,
   reference: number,
+  words: Words,
   notes: Notes,
 ): Promise<Setup[]> {
-  const { frequency: axis, subband } = layout;
+  const { frequency: axis, subband } = spectrum;
   const rows =
-    hdu === undefined ? [headerSetup(layout, notes)] : await readTableRows(cursor, hdu, layout, notes);
+    hdu === undefined
+      ? [headerSetup(spectrum, words, notes)]
+      : await readTableRows(cursor, hdu, spectrum, words, notes);
   if (rows.length * subband.length * axis.length > MOST_FREQUENCIES) {
-    throw layout.hdu.header.error(
+    throw spectrum.header.error(
       `${rows.length} frequency setups of ${subband.length} sub-bands of ${axis.length} channels: expected at most ` +
         `${MOST_FREQUENCIES} channels in all`,
     );
@@ -52,14 +62,19 @@ export async function readSetups(
 }
 
 /** The FREQ axis alone: enough for one sub-band. */
-function headerSetup({ hdu, subband }: GroupLayout, notes: Notes): { id: number; subbands: Subband[] } {
+function headerSetup(
+  { header, subband }: Spectrum,
+  words: Words,
+  notes: Notes,
+): { id: number; subbands: Subband[] } {
   if (subband.length > 1) {
-    throw hdu.header.error(
-      `${subband.length} sub-bands (IF axis) and no frequency table (FQ): expected one with their frequencies`,
-      `NAXIS${subband.number}`,
+    throw header.error(
+      `${subband.length} sub-bands (${words.subbandAxis}) and no ${words.frequencyTable}: expected one with their ` +
+        "frequencies",
+      subband.lengthKey,
     );
   }
-  notes.note("missing-frequency-table", "no frequency table (FQ): frequencies are those of the header");
+  notes.note("missing-frequency-table", `no ${words.frequencyTable}: frequencies are those of the header`);
   const unsaid = Number.NaN;
   return { id: 1, subbands: [{ offset: 0, width: unsaid, bandwidth: unsaid, sideband: unsaid }] };
 }
@@ -67,7 +82,8 @@ function headerSetup({ hdu, subband }: GroupLayout, notes: Notes): { id: number;
 async function readTableRows(
   cursor: Cursor,
   hdu: Hdu,
-  layout: GroupLayout,
+  spectrum: Spectrum,
+  words: Words,
   notes: Notes,
 ): Promise<{ id: number; subbands: Subband[] }[]> {
   const table = await readTable(cursor, tableLayout(hdu));
@@ -77,22 +93,22 @@ async function readTableRows(
   const width = findColumn(table.layout, "CH WIDTH", "CH_WIDTH");
   const bandwidth = findColumn(table.layout, "TOTAL BANDWIDTH", "TOTAL_BANDWIDTH");
   const sideband = findColumn(table.layout, "SIDEBAND");
-  const expected = layout.subband.length;
+  const expected = spectrum.subband.length;
   const rows = new Map<number, Subband[]>();
   for (let row = 0; row < table.rows; row++) {
     const found = table.count(row, offset);
     if (found < expected) {
       throw hdu.header.error(
-        `row ${row + 1} gives ${found} sub-bands, the groups have ${expected}: expected as many`,
+        `row ${row + 1} gives ${found} sub-bands, the ${words.rows} have ${expected}: expected as many`,
       );
     }
     if (found > expected && row === 0) {
-      const text = `the frequency table gives ${found} sub-bands, the groups have ${expected}: the first ones are used`;
+      const text = `the frequency table gives ${found} sub-bands, the ${words.rows} have ${expected}: the first ones are used`;
       notes.fault("subbands-disagree", text);
     }
     const number = id === undefined ? row + 1 : table.number(row, id);
     if (rows.has(number)) {
-      const text = `the frequency table has FRQSEL ${number} more than once: the first counts`;
+      const text = `the frequency table has ${id?.name ?? "row"} ${number} more than once: the first counts`;
       notes.fault("setup-twice", text);
       continue;
     }
@@ -120,7 +136,7 @@ function valueAt(table: Table, row: number, column: Column | undefined, k: numbe
  * nu(channel) = reference + offset + (channel - CRPIX) x |width| x direction. The step's sign may stand in CDELT, in
  * CH WIDTH and in SIDEBAND: frequency falls when any of them says so, and is never turned twice.
  */
-function setupOf(id: number, subbands: readonly Subband[], axis: GroupAxis): Setup {
+function setupOf(id: number, subbands: readonly Subband[], axis: ArrayAxis): Setup {
   const frequencies = new Float64Array(subbands.length * axis.length);
   const channelWidths = new Float64Array(subbands.length);
   subbands.forEach((subband, k) => {
@@ -137,14 +153,14 @@ function setupOf(id: number, subbands: readonly Subband[], axis: GroupAxis): Set
 }
 
 /** Hz, positive: CH WIDTH, else CDELT, else the sub-band over its channels; NaN when the file has none of them. */
-function widthOf({ width, bandwidth }: Subband, axis: GroupAxis): number {
+function widthOf({ width, bandwidth }: Subband, axis: ArrayAxis): number {
   if (width !== 0 && Number.isFinite(width)) return Math.abs(width);
   if (axis.step !== 0) return Math.abs(axis.step);
   const share = Math.abs(bandwidth) / axis.length;
   return share > 0 && Number.isFinite(share) ? share : Number.NaN;
 }
 
-function noteDisagreements(subbands: readonly Subband[], axis: GroupAxis, notes: Notes): void {
+function noteDisagreements(subbands: readonly Subband[], axis: ArrayAxis, notes: Notes): void {
   const { step } = axis;
   const sized = subbands.filter(({ width }) => width !== 0 && Number.isFinite(width));
   const wider = sized.find(({ width }) => step !== 0 && Math.abs(Math.abs(width / step) - 1) > SAME_STEP);

@@ -1,13 +1,14 @@
 /** A random-groups file as a Dataset: tables first, then one pass over the rows, then what only both together tell. */
 import type { BlockRequest, Field, Setup, Shape } from "../dataset.ts";
 import type { FitsFile } from "../fits/hdus.ts";
-import { readBlocks } from "../fits-rows/blocks.ts";
+import { type RowReader, readBlocks } from "../fits-rows/blocks.ts";
+import type { RowColumns } from "../fits-rows/columns.ts";
 import type { RowContext } from "../fits-rows/rows.ts";
-import { sampleLayout } from "../fits-rows/samples.ts";
-import { type AntennaTable, readAntennaTable } from "../fits-tables/antenna-table.ts";
+import { type AntennaTable, readAntennaTable, timeOffsets } from "../fits-tables/antenna-table.ts";
 import { arrayInfo } from "../fits-tables/array-info.ts";
 import { fieldsOfRows, noteImpossibleFields, readFieldTable } from "../fits-tables/fields.ts";
 import { headerFacts, noteDates, polarizationsOf, telescopeOf, unitOf } from "../fits-tables/header-facts.ts";
+import { noteRows } from "../fits-tables/note-rows.ts";
 import { readSetups } from "../fits-tables/setups.ts";
 import { datasetName } from "../name.ts";
 import type { Notes } from "../notes.ts";
@@ -15,8 +16,10 @@ import { type OpenedDataset, type RowSummary, summarizeRows } from "../row-summa
 import { TableFlags } from "../table-flags.ts";
 import { readFlagTable } from "./flag-table.ts";
 import { type GroupLayout, groupLayout } from "./layout.ts";
-import { type RowColumns, rowColumns } from "./parameters.ts";
+import { rowColumns } from "./parameters.ts";
+import { groupStore, groupWeights, sampleLayout } from "./row-store.ts";
 import { findTables } from "./tables.ts";
+import { WORDS } from "./words.ts";
 
 /**
  * @param known of the same file, from an earlier opening: saves the pass over the rows
@@ -26,31 +29,41 @@ export async function openRandomGroups(file: FitsFile, known?: RowSummary): Prom
   const { notes, source } = file;
   const primary = file.hdus[0];
   const layout = groupLayout(primary, notes);
-  const polarizations = polarizationsOf(layout);
-  const shape = sampleLayout(layout).shape;
+  const polarizations = polarizationsOf(layout.stokes, primary.header);
+  const samples = sampleLayout(layout);
+  const { shape } = samples;
   const tables = await readTables(file, layout, shape, notes);
   const columns = rowColumns(layout, tables.reference);
-  noteParameters(columns, notes);
+  noteColumns(columns, notes);
   const context = rowContext(columns, tables);
-  const blocks = (request: BlockRequest) => readBlocks(source, layout, context, tables.flags, request);
+  const reader: RowReader = {
+    source,
+    store: groupStore(layout),
+    samples,
+    context,
+    weights: groupWeights(columns),
+    flags: tables.flags,
+  };
+  const blocks = (request: BlockRequest) => readBlocks(reader, request);
   const summary = known ?? (await summarizeRows({ rows: layout.groups, blocks }));
-  noteRows(summary, tables.hasSetupTable ? context.strangeSetups : new Set(), notes);
-  noteDates(primary.header, summary, notes);
-  const fields = fieldsOfRows(layout, columns.source !== undefined, tables.fields, summary, notes);
+  noteRows(summary, tables.hasSetupTable ? context.strangeSetups : new Set(), WORDS, notes);
+  noteDates([primary.header], summary, notes);
+  const centre = { header: primary.header, ...layout };
+  const fields = fieldsOfRows(centre, columns.source !== undefined, tables.fields, summary, WORDS, notes);
   noteImpossibleFields(fields, notes);
-  const array = arrayInfo(tables.antennas, fields, summary, telescopeOf(primary.header), notes);
+  const array = arrayInfo(tables.antennas, fields, summary, telescopeOf([primary.header]), WORDS, notes);
   return {
     name: datasetName(source.path),
     files: [source.path],
     bytes: source.bytesOnDisk,
     format: "random-groups",
-    header: headerFacts(primary.header),
+    header: headerFacts([primary.header]),
     array,
     fields,
     setups: tables.setups,
     polarizations,
     shape,
-    unit: unitOf(primary.header),
+    unit: unitOf(primary.header.shown("BUNIT")),
     hasWeights: layout.complex.length === 3 || columns.weight !== undefined,
     rows: layout.groups,
     notes: notes.list(),
@@ -82,7 +95,8 @@ async function readTables(
     const antennas: AntennaTable[] = [];
     for (const hdu of hdus.antennas) antennas.push(await readAntennaTable(cursor, hdu, notes));
     const reference = referenceFrequency(layout, antennas, notes);
-    const setups = await readSetups(cursor, hdus.frequencies, layout, reference, notes);
+    const spectrum = { header: layout.hdu.header, ...layout };
+    const setups = await readSetups(cursor, hdus.frequencies, spectrum, reference, WORDS, notes);
     const fields = hdus.sources === undefined ? undefined : await readFieldTable(cursor, hdus.sources, notes);
     const flags =
       hdus.flags === undefined ? [] : await readFlagTable(cursor, hdus.flags, antennas, setups, shape, notes);
@@ -119,37 +133,19 @@ function referenceFrequency(
 }
 
 function rowContext(columns: RowColumns, { setups, fields, antennas }: TablesRead): RowContext {
-  const most = Math.max(0, ...antennas.map(({ subarray }) => subarray));
-  const timeOffset = new Float64Array(Math.min(most, 9999) + 1).fill(antennas[0]?.timeOffset ?? 0);
-  for (const table of antennas) timeOffset[table.subarray] = table.timeOffset;
   return {
     columns,
+    words: WORDS,
     setupIndex: new Map(setups.map(({ id }, index) => [id, index])),
     fallbackSetup: setups.length === 1 ? 0 : undefined,
     strangeSetups: new Set(),
     // A table of one source names the field of rows that do not.
     onlyField: fields?.length === 1 ? fields[0]!.id : 1,
-    timeOffset,
+    timeOffset: timeOffsets(antennas),
   };
 }
 
-function noteParameters(columns: RowColumns, notes: Notes): void {
+function noteColumns(columns: RowColumns, notes: Notes): void {
   if (columns.w === undefined)
     notes.fault("missing-w", "no parameter WW: w is taken as 0 and cannot be judged");
-}
-
-function noteRows(summary: RowSummary, strangeSetups: ReadonlySet<number>, notes: Notes): void {
-  if (strangeSetups.size > 0) {
-    const ids = [...strangeSetups].slice(0, 10).join(", ");
-    notes.fault(
-      "setup-not-in-table",
-      `rows name frequency setup (FREQSEL) ${ids}: taken as the only one there is`,
-    );
-  }
-  if (summary.rowsWithoutTime > 0) {
-    notes.fault("time-not-finite", `${summary.rowsWithoutTime} rows have a time (DATE) that is not finite`);
-  }
-  if (summary.rowsWithoutUvw > 0) {
-    notes.fault("uvw-not-finite", `${summary.rowsWithoutUvw} rows have a u, v or w that is not finite`);
-  }
 }

@@ -1,6 +1,7 @@
 /** The tables around the groups, told by the last word of EXTNAME: AN, FQ, SU and FG; the others are skipped. */
 
 import type { FitsFile, Hdu } from "../fits/hdus.ts";
+import { lastWord } from "../fits-tables/last-word.ts";
 import type { Notes } from "../notes.ts";
 
 export interface TableHdus {
@@ -24,10 +25,6 @@ export function findTables(file: FitsFile, notes: Notes): TableHdus {
     // Later versions of the flag table hold the earlier ones' flags and more.
     flags: ofKind("FG").sort((a, b) => b.version - a.version)[0],
   };
-}
-
-function lastWord({ name }: Hdu): string {
-  return name.trim().split(/\s+/).at(-1) ?? "";
 }
 
 function noteSkipped(file: FitsFile, notes: Notes): void {

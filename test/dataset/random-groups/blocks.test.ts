@@ -7,11 +7,11 @@ import { openFits } from "../../../src/dataset/fits/hdus.ts";
 import { openSource } from "../../../src/dataset/fits/source.ts";
 import { groupsHeader } from "../../../src/dataset/fits/write.ts";
 import { blockRange, MOST_BLOCK_BYTES, planReads } from "../../../src/dataset/fits-rows/plan.ts";
-import { sampleLayout } from "../../../src/dataset/fits-rows/samples.ts";
 import { Notes } from "../../../src/dataset/notes.ts";
 import { openDataset } from "../../../src/dataset/open.ts";
 import { groupLayout } from "../../../src/dataset/random-groups/layout.ts";
 import { openRandomGroups } from "../../../src/dataset/random-groups/open.ts";
+import { groupStore, sampleLayout } from "../../../src/dataset/random-groups/row-store.ts";
 import { memorySource } from "../fits/memory-cursor.ts";
 import {
   antennaTable,
@@ -144,7 +144,12 @@ describe("planReads", () => {
     };
     const { hdus } = await openFits(endless);
     const layout = groupLayout(hdus[0], new Notes());
-    return { layout, shape: sampleLayout(layout).shape, start: header.length, groupBytes };
+    return {
+      layout: groupStore(layout),
+      shape: sampleLayout(layout).shape,
+      start: header.length,
+      groupBytes,
+    };
   }
 
   it("covers each byte of the groups asked for once, and no other", async () => {
