@@ -1,48 +1,46 @@
 /** The surveying pass: read the dataset once in blocks and fill the measures. */
 import type { Dataset } from "../dataset/dataset.ts";
+import { moduleBeside, shareOut, type Workers } from "../util/workers.ts";
 import { finishSurvey } from "./finish-survey.ts";
+import { StateReader } from "./state/reader.ts";
+import type { StateRecord } from "./state/value.ts";
 import { SurveyPart } from "./survey-part.ts";
 import type { Survey } from "./survey-result.ts";
+import { type SurveyRowsOptions, surveyPart } from "./survey-rows.ts";
+import type { SurveyTask } from "./survey-task.ts";
 
-export interface SurveyOptions {
-  readonly onProgress?: (rowsDone: number, rows: number) => void;
-  /** rows to survey, [first, last) from 0; default all */
-  readonly rows?: readonly [number, number];
-  /**
-   * Bytes that the survey's state may take, default 512 MB. Where they do not suffice, neighbouring channels share
-   * amplitude levels, and time bins take the place of integrations in the tracks.
-   */
-  readonly memory?: number;
-  readonly blockRows?: number;
+export { joinParts, surveyPart } from "./survey-rows.ts";
+
+export interface SurveyOptions extends SurveyRowsOptions {
+  /** threads that share the rows; none: this one reads them all. The result is the same. */
+  readonly workers?: Workers | undefined;
 }
-
-/** Samples of a block: small enough that its arrays stay in the processor's cache from one accumulator to the next. */
-const BLOCK_SAMPLES = 1 << 15;
 
 /** @throws InputError where the dataset turns out to be malformed */
 export async function surveyDataset(dataset: Dataset, options: SurveyOptions = {}): Promise<Survey> {
-  return finishSurvey(await surveyPart(dataset, options));
+  return finishSurvey(await surveyShared(dataset, options));
 }
 
-/** The state of a survey of some rows, to be merged with that of the others. */
-export async function surveyPart(dataset: Dataset, options: SurveyOptions = {}): Promise<SurveyPart> {
-  const { subbands, channels, polarizations } = dataset.shape;
-  const rowSamples = subbands * channels * polarizations;
-  const rows = options.rows ?? [0, dataset.rows];
-  const blockRows = options.blockRows ?? Math.max(1, Math.floor(BLOCK_SAMPLES / rowSamples));
-  const part = new SurveyPart(dataset, options.memory);
-  let done = 0;
-  for await (const block of dataset.blocks({ want: "samples", rows, blockRows })) {
-    part.add(block);
-    done += block.rows;
-    options.onProgress?.(done, rows[1] - rows[0]);
+/** The state of a survey of some rows, which the workers share out between them. */
+export async function surveyShared(dataset: Dataset, options: SurveyOptions = {}): Promise<SurveyPart> {
+  const { workers, memory, blockRows, onProgress } = options;
+  const { recipe } = dataset;
+  const [first, end] = options.rows ?? [0, dataset.rows];
+  const ranges = shareOut(end - first, workers?.jobs ?? 1);
+  if (workers === undefined || recipe === undefined || ranges.length < 2) return surveyPart(dataset, options);
+  const tasks = ranges.map(([from, to]): SurveyTask => {
+    return { recipe, rows: [first + from, first + to], memory, blockRows };
+  });
+  const states: (StateRecord | undefined)[] = await workers.run<SurveyTask, StateRecord>(
+    moduleBeside("./survey-task", import.meta.url),
+    tasks,
+    onProgress && ((done) => onProgress(done, end - first)),
+  );
+  const all = SurveyPart.from(new StateReader(states[0]!), dataset, memory);
+  for (let i = 1; i < states.length; i++) {
+    all.merge(SurveyPart.from(new StateReader(states[i]!), dataset, memory));
+    // What has been merged need not wait for the rest.
+    states[i] = undefined;
   }
-  return part;
-}
-
-/** One part of several, which share out the rows between them. They are used up. */
-export function joinParts(parts: readonly [SurveyPart, ...SurveyPart[]]): SurveyPart {
-  const [first, ...others] = parts;
-  for (const other of others) first.merge(other);
-  return first;
+  return all;
 }
