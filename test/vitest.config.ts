@@ -6,6 +6,7 @@ export default defineConfig({
   test: {
     include: ["test/**/*.test.ts"],
     benchmark: { include: ["test/**/*.bench.ts"] },
+    globalSetup: ["test/support/build-kernels.ts"],
     setupFiles: ["test/support/setup.ts"],
     reporters: ["default", "./test/support/summary-reporter.ts"],
     testTimeout: 60_000,
