@@ -1,4 +1,7 @@
-import { describe, expect, it } from "vitest";
+import { mkdirSync, mkdtempSync, rmSync, writeFileSync } from "node:fs";
+import { tmpdir } from "node:os";
+import { dirname, join } from "node:path";
+import { afterAll, describe, expect, it } from "vitest";
 import { binaryTable, card, headerBlocks } from "../../src/dataset/fits/write.ts";
 import { datasetName } from "../../src/dataset/name.ts";
 import { openDataset } from "../../src/dataset/open.ts";
@@ -66,5 +69,64 @@ describe("datasetName", () => {
     [".fits", ".fits"],
   ])("of %s is %s", (path, name) => {
     expect(datasetName(path)).toBe(name);
+  });
+});
+
+describe("openDataset of a folder or a glob", () => {
+  const folder = mkdtempSync(join(tmpdir(), "open-"));
+  afterAll(() => rmSync(folder, { recursive: true }));
+  const put = (name: string, bytes: Uint8Array | string) => {
+    const path = join(folder, name);
+    mkdirSync(dirname(path), { recursive: true });
+    writeFileSync(path, bytes);
+    return path;
+  };
+  const image = () =>
+    Buffer.concat([
+      primary(card("NAXIS", 2), card("NAXIS1", 8), card("NAXIS2", 45), card("BUNIT", "K")),
+      Buffer.alloc(2880),
+    ]);
+
+  it("takes the visibilities in it and names what it leaves out", async () => {
+    put("night/one.uvfits", groupFile());
+    put("night/map.fits", image());
+    put("night/log.txt", "began at dusk");
+    put("night/empty.fits", "");
+    const dataset = await openDataset(join(folder, "night"));
+    expect([dataset.rows, dataset.name]).toEqual([4, "one"]);
+    expect(dataset.notes.at(-1)).toMatchObject({
+      code: "files-left-out",
+      text: "not visibilities and left out: empty.fits, log.txt, map.fits",
+    });
+  });
+
+  it("refuses a folder without visibilities, and says what it found", async () => {
+    put("none/log.txt", "began at dusk");
+    put("none/map.fits", image());
+    expect(await lineOfError(openDataset(join(folder, "none/*")))).toMatch(
+      /none\/\*: none of the 2 files there holds visibilities: found log.txt, map.fits\. visvet reads/,
+    );
+  });
+
+  it("refuses files of different kinds, and says which differs how", async () => {
+    const idi = primary(card("NAXIS", 0), card("GROUPS", true), card("GCOUNT", 0), card("PCOUNT", 0));
+    put("mixed/a.uvfits", groupFile());
+    put("mixed/b.fits", Buffer.concat([idi, table("ARRAY_GEOMETRY")]));
+    expect(await lineOfError(openDataset(join(folder, "mixed")))).toMatch(
+      /b.fits: this is FITS-IDI, and a.uvfits is random-groups FITS: expected one kind/,
+    );
+  });
+
+  it("passes on what is wrong with a damaged file there", async () => {
+    put("damaged/a.uvfits", groupFile());
+    put("damaged/b.uvfits", groupFile().subarray(0, 4000));
+    expect(await lineOfError(openDataset(join(folder, "damaged")))).toMatch(/b.uvfits/);
+  });
+
+  it("does not leave out a file that was named", async () => {
+    const log = put("list/log.txt", "began at dusk");
+    expect(await lineOfError(openDataset([put("list/a.uvfits", groupFile()), log]))).toMatch(
+      /log.txt: this file holds no visibilities/,
+    );
   });
 });
