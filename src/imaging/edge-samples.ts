@@ -8,6 +8,8 @@ import { type Sampling, trackOffset, trackWeight } from "./sampling.ts";
 /** (count) each */
 export interface EdgeSamples {
   readonly count: number;
+  /** share of the image's samples that these are; 1 where they are all of them */
+  readonly share: number;
   /** wavelengths at the group's frequency */
   readonly u: Float64Array;
   readonly v: Float64Array;
@@ -61,7 +63,7 @@ export function edgeSamples(sampling: Sampling, wOf: Float64Array, factorAt: Fac
       chosen.push(cell);
   }
   const perCell = groups.reduce((sum, setup) => sum + setup.length, 0) / Math.max(1, groups.length);
-  const share = MOST_SAMPLES / Math.max(1, chosen.length * perCell);
+  const share = Math.min(1, MOST_SAMPLES / Math.max(1, chosen.length * perCell));
   const columns: number[][] = Array.from({ length: 8 }, () => []);
   const baselines: number[] = [];
   for (const cell of chosen) {
@@ -94,7 +96,7 @@ export function edgeSamples(sampling: Sampling, wOf: Float64Array, factorAt: Fac
     Float64Array.from(column),
   ) as Eight;
   const baseline = Int32Array.from(baselines);
-  return { count: u.length, u, v, w, weight, natural, frequency, channelWidth, integration, baseline };
+  return { count: u.length, share, u, v, w, weight, natural, frequency, channelWidth, integration, baseline };
 }
 
 type Column = Float64Array;

@@ -19,7 +19,7 @@ import { type FilledCells, fieldCells } from "./moment-grid.ts";
 export interface SpoiledSamples {
   readonly scope: Selection;
   readonly error: EventError;
-  /** how many samples the error is independent on; of no account where it is the same on all */
+  /** on how many samples `error.own` is independent; of no account where that is 0 */
   readonly samples: number;
 }
 
@@ -42,7 +42,7 @@ export async function capsOf(image: GriddedImage, spoiled: readonly SpoiledSampl
   return spoiled.map(({ error, samples }, i) => {
     const own = parts[i]!.map((part, k) => ({ part, cells: gridded[from + k]! }));
     from += own.length;
-    const square = error.coherent ? together(own, factorOf) : apart(own, factorOf) / Math.max(1, samples);
+    const square = together(own, factorOf) + (error.own ** 2 * apart(own, factorOf)) / Math.max(1, samples);
     return total / Math.sqrt(square);
   });
 }
@@ -63,25 +63,23 @@ function together(parts: readonly GriddedPart[], factorOf: CellFactor): number {
 }
 
 /**
- * The same, times the number of samples, of an error that each sample has on its own: these add in squares. The samples
- * are taken to have the same weight.
+ * The same of an error of rms 1 that each sample has on its own, times the number of samples: these add in squares. The
+ * samples are taken to have the same weight.
  */
 function apart(parts: readonly GriddedPart[], factorOf: CellFactor): number {
-  let sum = 0;
-  for (const { part, cells } of parts) {
-    let weight = 0;
-    let squares = 0;
-    const add = ({ count, iu, iv, weight: weights }: FilledCells) => {
-      for (let i = 0; i < count; i++) {
-        weight += weights[i]!;
-        squares += weights[i]! * factorOf(iu[i]!, iv[i]!) ** 2;
-      }
-    };
+  let weight = 0;
+  let squares = 0;
+  const add = ({ count, iu, iv, weight: weights }: FilledCells) => {
+    for (let i = 0; i < count; i++) {
+      weight += weights[i]!;
+      squares += weights[i]! * factorOf(iu[i]!, iv[i]!) ** 2;
+    }
+  };
+  for (const { cells } of parts) {
     add(cells.ahead);
     add(cells.behind);
-    sum += (part.real ** 2 * weight * squares) / 2;
   }
-  return sum;
+  return (weight * squares) / 2;
 }
 
 /** Few at a time in memory. */

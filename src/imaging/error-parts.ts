@@ -12,7 +12,7 @@ export interface ErrorPart {
 }
 
 /** Groups of channels in one turn of a delay's phase. */
-const GROUPS_A_TURN = 8;
+const GROUPS_A_TURN = 16;
 /** Groups in all sub-bands together, as far as their number allows. */
 const MOST_GROUPS = 64;
 
@@ -37,7 +37,7 @@ function delayParts({ survey, channelUsed }: Sampling, scope: Selection, delay: 
     const middle = (at(used[0]!) + at(used.at(-1)!)) / 2;
     const width = Math.abs(at(used.at(-1)!) - at(used[0]!)) + channelWidths[s]!;
     const most = Math.max(1, Math.floor(MOST_GROUPS / subbands));
-    const count = Math.min(used.length, most, Math.max(2, Math.ceil(GROUPS_A_TURN * delay * width)));
+    const count = Math.min(used.length, most, Math.max(4, Math.ceil(GROUPS_A_TURN * delay * width)));
     return Array.from({ length: count }, (_, g): ErrorPart => {
       const members = used.slice(
         Math.floor((g * used.length) / count),

@@ -5,22 +5,22 @@ import type { SourceLevel } from "./limits.ts";
 
 /** How an event spoils its samples: what it adds to the visibility 1 of a point source. */
 export interface EventError {
-  /** of one sign whichever way round the baseline is taken; with `imaginary` 0 as well: it does not spoil the image */
+  /** of one sign whichever way round the baseline is taken; all of these 0: it does not spoil the image */
   readonly real: number;
   /** as the lower-numbered end of a baseline sees it, or the antenna at fault as its first */
   readonly imaginary: number;
   /** not 0: instead of those, a phase of 2 pi delay x (frequency - middle of the sub-band), seconds */
   readonly delay: number;
-  /** the same on all samples, or its own on each */
-  readonly coherent: boolean;
+  /** rms of what besides is its own on each sample */
+  readonly own: number;
   readonly what: string;
 }
 
-export function spoils({ real, imaginary, delay }: EventError): boolean {
-  return real !== 0 || imaginary !== 0 || delay !== 0;
+export function spoils({ real, imaginary, delay, own }: EventError): boolean {
+  return real !== 0 || imaginary !== 0 || delay !== 0 || own !== 0;
 }
 
-const NO_ERROR: EventError = { real: 0, imaginary: 0, delay: 0, coherent: true, what: "" };
+const NO_ERROR: EventError = { real: 0, imaginary: 0, delay: 0, own: 0, what: "" };
 
 export function errorOf(event: DetectedEvent, level: SourceLevel): EventError {
   const size = Math.abs(event.size);
@@ -31,11 +31,12 @@ export function errorOf(event: DetectedEvent, level: SourceLevel): EventError {
       return phaseError(size);
     case "half-turn":
       return phaseError(180);
-    case "phase-noise":
-      return ownOnEach(
-        Math.min((size * Math.PI) / 180, Math.SQRT2),
-        `phase noise of ${formatNumber(size)} degrees rms`,
-      );
+    case "phase-noise": {
+      // Gaussian phases take exp(-sigma^2/2) from the mean of all; the rest of the power is scattered.
+      const mean = Math.exp(-(((size * Math.PI) / 180) ** 2) / 2);
+      const what = `phase noise of ${formatNumber(size)} degrees rms`;
+      return { ...NO_ERROR, real: mean - 1, own: Math.sqrt(1 - mean * mean), what };
+    }
     case "delay-slope":
       return { ...NO_ERROR, delay: size * 1e-9, what: `a delay error of ${formatNumber(size)} ns` };
     case "gain-step":
@@ -60,7 +61,7 @@ export function errorOf(event: DetectedEvent, level: SourceLevel): EventError {
       const excess = (size * level.sampleNoise) / level.brightness;
       const share = event.samples > 0 ? Math.sqrt(event.outlying / event.samples) : 1;
       return Number.isFinite(excess)
-        ? ownOnEach(excess * share, `interference of ${formatNumber(size)} sigma`)
+        ? { ...NO_ERROR, own: excess * share, what: `interference of ${formatNumber(size)} sigma` }
         : NO_ERROR;
     }
     default:
@@ -85,8 +86,4 @@ function amplitudeError(ratio: number): EventError {
 
 function missing(share: number, what: string): EventError {
   return { ...NO_ERROR, real: -share, what };
-}
-
-function ownOnEach(rms: number, what: string): EventError {
-  return { ...NO_ERROR, real: rms, coherent: false, what };
 }

@@ -127,7 +127,17 @@ async function partsOf(
   const limits = [
     ...calibratorLimits(calibrator),
     ...(await eventLimits(image, events, level)),
-    ...standingLimits({ plan, planned, wTerm, wLoss: loss, smearing, samples, radius, level }),
+    ...standingLimits({
+      plan,
+      planned,
+      wTerm,
+      wLoss: loss,
+      smearing,
+      samples,
+      radius,
+      field: image.maker.field,
+      level,
+    }),
   ].sort((a, b) => a.dynamicRangeFraction - b.dynamicRangeFraction);
   return {
     sampling,

@@ -19,6 +19,8 @@ export interface SmearingResult extends Smearing {
   readonly timeLossMean: number;
   /** both together, worst direction */
   readonly loss: number;
+  /** (samples) what is left of each visibility in that direction */
+  readonly kept: Float64Array;
 }
 
 /** sin(pi x)/(pi x) */
@@ -44,6 +46,7 @@ export function smearingAt(samples: EdgeSamples, radius: number, declination: nu
     timeLossFraction: time.worst,
     timeLossMean: time.mean,
     loss: both.worst,
+    kept: edge.kept(both.direction, 1, 1).slice(),
     safeChannelHz: width * safeFactor((factor) => edge.losses(factor, 0).worst),
     safeIntegrationSeconds: seconds * safeFactor((factor) => edge.losses(0, factor).worst),
     safeLossFraction: SAFE_LOSS,
@@ -57,6 +60,7 @@ class EdgeSum {
   /** (directions x samples) */
   private readonly delay: Float64Array;
   private readonly rate: Float64Array;
+  private readonly left: Float64Array;
 
   constructor(samples: EdgeSamples, radius: number, declination: number) {
     const { count, u, v, w, frequency, channelWidth, integration } = samples;
@@ -67,6 +71,7 @@ class EdgeSum {
     this.total = samples.weight.reduce((sum, weight) => sum + weight, 0);
     this.delay = new Float64Array(DIRECTIONS * count);
     this.rate = new Float64Array(DIRECTIONS * count);
+    this.left = new Float64Array(count);
     for (let d = 0; d < DIRECTIONS; d++) {
       const l = radius * Math.sin((Math.PI * d) / DIRECTIONS);
       const m = radius * Math.cos((Math.PI * d) / DIRECTIONS);
@@ -81,28 +86,36 @@ class EdgeSum {
     }
   }
 
-  /** Peak lost with the channels and integrations that many times as wide. */
-  losses(channelFactor: number, timeFactor: number): { worst: number; mean: number } {
-    const { weight, total, delay, rate } = this;
-    const count = weight.length;
-    if (!(total > 0)) return { worst: Number.NaN, mean: Number.NaN };
-    let worst = 0;
-    let mean = 0;
+  /** Peak lost with the channels and integrations that many times as wide, and the direction where it is worst. */
+  losses(channelFactor: number, timeFactor: number): { worst: number; mean: number; direction: number } {
+    const { weight, total } = this;
+    const result = { worst: 0, mean: 0, direction: 0 };
+    if (!(total > 0)) return { worst: Number.NaN, mean: Number.NaN, direction: 0 };
     for (let d = 0; d < DIRECTIONS; d++) {
+      const kept = this.kept(d, channelFactor, timeFactor);
       let sum = 0;
-      for (let i = 0; i < count; i++) {
-        const at = d * count + i;
-        let kept = weight[i]!;
-        if (channelFactor > 0) kept *= sinc(channelFactor * delay[at]!);
-        if (timeFactor > 0) kept *= sinc(timeFactor * rate[at]!);
-        sum += kept;
-      }
+      for (let i = 0; i < kept.length; i++) sum += weight[i]! * kept[i]!;
       const loss = 1 - sum / total;
-      mean += loss / DIRECTIONS;
+      result.mean += loss / DIRECTIONS;
       // NaN is the worst: it says that the loss is unknown.
-      if (!(loss <= worst)) worst = loss;
+      if (!(loss <= result.worst)) {
+        result.worst = loss;
+        result.direction = d;
+      }
     }
-    return { worst, mean };
+    return result;
+  }
+
+  /** (samples) What averaging leaves of each visibility of a source in a direction. Valid until the next call. */
+  kept(direction: number, channelFactor: number, timeFactor: number): Float64Array {
+    const { delay, rate, left } = this;
+    const from = direction * left.length;
+    for (let i = 0; i < left.length; i++) {
+      left[i] =
+        (channelFactor > 0 ? sinc(channelFactor * delay[from + i]!) : 1) *
+        (timeFactor > 0 ? sinc(timeFactor * rate[from + i]!) : 1);
+    }
+    return left;
   }
 }
 

@@ -2,6 +2,7 @@
 import { planeDepth } from "../geometry/w-term.ts";
 import { formatFlux, formatNumber, formatPercent } from "../util/units.ts";
 import type { MadeBeam } from "./beams.ts";
+import { edgeDynamicRange } from "./edge-caps.ts";
 import type { EdgeSamples } from "./edge-samples.ts";
 import type { WTerm } from "./image.ts";
 import type { RankedLimit, SourceLevel } from "./limits.ts";
@@ -23,6 +24,8 @@ export interface Standing {
   readonly samples: EdgeSamples;
   /** of the field's edge, sine of its angle */
   readonly radius: number;
+  /** width over which an rms is taken, radians */
+  readonly field: number;
   readonly level: SourceLevel;
 }
 
@@ -43,43 +46,30 @@ function noiseLimit({ planned, level }: Standing): RankedLimit {
   return whole("thermal-noise", range, text);
 }
 
-function wLimit({ plan, wTerm, wLoss, samples, radius }: Standing): RankedLimit | null {
+function wLimit(standing: Standing): RankedLimit | null {
+  const { plan, wTerm } = standing;
   if (plan.correctsW.value || !(wTerm.edgeLossFraction > LEAST_LOSS)) return null;
-  const range = edgeDynamicRange(samples, radius, wLoss);
+  const range = wDynamicRange(standing);
   const text = `w not corrected: around a source at the edge of the field, which loses ${formatPercent(wTerm.edgeLossFraction)}, the dynamic range is ${formatNumber(range)}`;
   return whole("w-term", range, text);
 }
 
-function smearingLimit({ planned, smearing }: Standing): RankedLimit | null {
-  if (!(smearing.loss > LEAST_LOSS && planned.sidelobes.rms > 0)) return null;
-  const range = 1 / (smearing.loss * planned.sidelobes.rms);
+function smearingLimit({ smearing, samples, field }: Standing): RankedLimit | null {
+  if (!(smearing.loss > LEAST_LOSS)) return null;
+  const range = edgeDynamicRange(samples, field, (i) => [smearing.kept[i]! - 1, 0]);
   const cause =
     smearing.bandwidthLossFraction >= smearing.timeLossFraction ? "bandwidth-smearing" : "time-smearing";
-  const text = `smearing of ${formatPercent(smearing.loss)} at the edge of the field: what a source there loses leaves sidelobes at a dynamic range of ${formatNumber(range)}`;
+  const text = `smearing of ${formatPercent(smearing.loss)} at the edge of the field: what a source there loses leaves stripes and sidelobes around it at a dynamic range of ${formatNumber(range)}`;
   return whole(cause, range, text);
 }
 
-/**
- * Peak over rms around a source at the edge of the field when the phases that w leaves stay, its displacement apart:
- * sum T / sqrt(sum E^2 / 2), E the sum of T (exp(i phase) - 1) of a baseline, whose w changes slowly.
- */
-function edgeDynamicRange(samples: EdgeSamples, radius: number, { east, north }: WLoss): number {
+/** Peak over rms around a source at the edge of the field when the phases that w leaves stay, its displacement apart. */
+function wDynamicRange({ samples, radius, wLoss, field }: Standing): number {
   const depth = planeDepth(radius);
-  const re = new Map<number, number>();
-  const im = new Map<number, number>();
-  let total = 0;
-  for (let i = 0; i < samples.count; i++) {
-    if (!Number.isFinite(samples.w[i]!)) continue;
-    const turns = samples.w[i]! * depth + samples.u[i]! * east + samples.v[i]! * north;
-    const weight = samples.weight[i]!;
-    const key = samples.baseline[i]!;
-    re.set(key, (re.get(key) ?? 0) + weight * (1 - Math.cos(2 * Math.PI * turns)));
-    im.set(key, (im.get(key) ?? 0) + weight * Math.sin(2 * Math.PI * turns));
-    total += weight;
-  }
-  let squares = 0;
-  for (const [key, value] of re) squares += value * value + im.get(key)! ** 2;
-  return total / Math.sqrt(squares / 2);
+  return edgeDynamicRange(samples, field, (i) => {
+    const turns = samples.w[i]! * depth + samples.u[i]! * wLoss.east + samples.v[i]! * wLoss.north;
+    return [Math.cos(2 * Math.PI * turns) - 1, Math.sin(2 * Math.PI * turns)];
+  });
 }
 
 /** What errors are measured against. */
