@@ -1,4 +1,4 @@
-/** Text files written beside their final name and renamed into place: a killed run leaves the old file or the new. */
+/** Files written beside their final name and renamed into place: a killed run leaves the old file or the new. */
 import { open, rename, rm } from "node:fs/promises";
 import { InputError } from "./errors.ts";
 
@@ -11,14 +11,23 @@ let written = 0;
  *
  * @throws InputError when it cannot be written, or the disk is full
  */
-export async function writeTextFile(path: string, text: string): Promise<void> {
+export function writeTextFile(path: string, text: string): Promise<void> {
+  return writeWhole(path, text);
+}
+
+/** The same for bytes. */
+export function writeBytesFile(path: string, bytes: Uint8Array): Promise<void> {
+  return writeWhole(path, bytes);
+}
+
+async function writeWhole(path: string, content: string | Uint8Array): Promise<void> {
   written += 1;
   const beside = `${path}.${process.pid}-${written}.tmp`;
   try {
     // "wx": never write through a link or into a file that somebody else put there.
     const handle = await open(beside, "wx");
     try {
-      await handle.writeFile(text, "utf8");
+      await handle.writeFile(content, "utf8");
       // Some file systems tell of a full disk only here; after the rename it would be too late.
       await handle.sync();
     } finally {
