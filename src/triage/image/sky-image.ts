@@ -103,6 +103,9 @@ function noImage(path: string, hdus: readonly Hdu[]): InputError {
   return new InputError("no image in this file", { file: path }, advice);
 }
 
+/** Numbers between two pixels of a row that are read and dropped rather than passed over. */
+const MOST_BETWEEN = 512;
+
 interface Window {
   readonly first: number;
   readonly length: number;
@@ -129,13 +132,16 @@ async function readPlane(
   const along = strides[ra]! < strides[dec]! ? { axis: ra, window: x } : { axis: dec, window: y };
   const across = along.axis === ra ? { axis: dec, window: y } : { axis: ra, window: x };
   const stride = strides[along.axis]!;
-  const run = new Float64Array((along.window.length - 1) * stride + 1);
+  // Where the planes of another axis lie between the pixels, a run would hold all of them.
+  const step = stride > MOST_BETWEEN ? along.window.length : 1;
+  const run = new Float64Array(step === 1 ? (along.window.length - 1) * stride + 1 : 1);
   for (let k = 0; k < across.window.length; k++) {
     const first = (across.window.first + k) * strides[across.axis]! + along.window.first * stride;
-    await readImage(cursor, layout, first, run);
+    if (step === 1) await readImage(cursor, layout, first, run);
     for (let i = 0; i < along.window.length; i++) {
+      if (step > 1) await readImage(cursor, layout, first + i * stride, run);
       const at = along.axis === ra ? k * x.length + i : i * x.length + k;
-      plane[at] = run[i * stride]!;
+      plane[at] = run[step === 1 ? i * stride : 0]!;
     }
   }
   return plane;

@@ -152,6 +152,7 @@ export class Spectrum {
   }
 }
 
+/** Sides are powers of two. */
 function wrapped(index: number, side: number): number {
-  return ((index % side) + side) % side;
+  return index & (side - 1);
 }
