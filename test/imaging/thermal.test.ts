@@ -43,8 +43,8 @@ describe("the SEFD of the measured noise", () => {
   it("is that of the simulated antennas", async () => {
     const { dataset } = simulated({ time: { duration: "10min" } });
     const sefd = measuredSefd(samplingOf(await surveyDataset(dataset)));
-    // 400 Jy, and the sketch's and the estimate's own errors
-    expect(Math.abs(sefd / 400 - 1)).toBeLessThan(0.05);
+
+    expect(Math.abs(sefd / 400 - 1)).toBeLessThan(0.02);
   });
 
   it("is unknown for amplitudes that are not in Jy", () => {
@@ -58,7 +58,7 @@ describe("the SEFD of the measured noise", () => {
 describe("brightness", () => {
   it("is the amplitude of a bright source, and 0 of noise", async () => {
     const bright = samplingOf(await surveyDataset(simulated({ sky: [{ flux: "3Jy" }] }).dataset));
-    expect(Math.abs(brightness(bright) / 3 - 1)).toBeLessThan(0.03);
+    expect(Math.abs(brightness(bright) / 3 - 1)).toBeLessThan(0.02);
     expect(brightness(samplingOf(await surveyDataset(TRAPS.noiseAlone().dataset)))).toBe(0);
   });
 });

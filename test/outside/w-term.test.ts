@@ -59,7 +59,7 @@ describe("a source at the edge of the field, w not corrected", () => {
       number
     >;
     const shift = (row.w_shift_edge_arcsec! * RAD) / 3600;
-    for (const expected of given.shifts_rad) expect(Math.abs(shift / expected - 1)).toBeLessThan(0.03);
+    for (const expected of given.shifts_rad) expect(Math.abs(shift / expected - 1)).toBeLessThan(0.02);
   });
 });
 
