@@ -35,6 +35,15 @@ export interface Annulus {
   readonly at: number;
 }
 
+/** The counts of a tally as plain data. */
+export interface CoverageState {
+  readonly radial: Int32Array;
+  readonly through: Int32Array;
+  readonly least: Float64Array;
+  readonly most: Float64Array;
+  readonly directions: Int32Array;
+}
+
 export class CoverageTally {
   readonly form: CoverageForm;
   private readonly low: number;
@@ -105,6 +114,23 @@ export class CoverageTally {
 
   private bin(log: number): number {
     return Math.min(RADIAL_BINS - 1, Math.max(0, Math.floor((log - this.low) * this.binsPerLog)));
+  }
+
+  /** All that it counts, for another thread. It is not to be used after. */
+  state(): CoverageState {
+    const { radial, through, least, most, directions } = this;
+    return { radial, through, least, most, directions };
+  }
+
+  /** Add what another thread has counted in a tally of the same form. */
+  merge(other: CoverageState): void {
+    addInto(this.radial, other.radial);
+    addInto(this.through, other.through);
+    addInto(this.directions, other.directions);
+    for (let bin = 0; bin < RADIAL_BINS; bin++) {
+      this.least[bin] = Math.min(this.least[bin]!, other.least[bin]!);
+      this.most[bin] = Math.max(this.most[bin]!, other.most[bin]!);
+    }
   }
 
   /** The same counts with the edges of gaps at those of bins. */

@@ -8,12 +8,12 @@ import type { Selection } from "../dataset/selection.ts";
 import type { DetectedEvent } from "../detect/event.ts";
 import type { Survey } from "../measure/survey-result.ts";
 import type { Measure } from "../measure/table.ts";
+import type { Workers } from "../util/workers.ts";
 import { adviceOf, type DropW, LEAST_W_LOSS } from "./advice.ts";
 import { BeamMaker, gridFormOf, pictureOf, reportBeam } from "./beams.ts";
 import { calibratorLimits, calibratorMeasures, judgeCalibrator } from "./calibrator.ts";
 import { costsOf, type GriddedImage, type SelectionCost } from "./cost.ts";
 import { coverageFormOf, judgeCoverage, unflaggedCoverage } from "./coverage.ts";
-import { CoverageTally } from "./coverage-tally.ts";
 import { weightingName } from "./derive-plan.ts";
 import { edgeSamples, factorLookup } from "./edge-samples.ts";
 import type { ForecastParts, NamedBeam } from "./forecast-parts.ts";
@@ -36,6 +36,8 @@ export interface ForecastRequest {
   readonly events?: readonly DetectedEvent[];
   /** told the share of the work that is done, 0..1 */
   readonly onProgress?: (share: number) => void;
+  /** threads that share the passes over the weights; none: this one reads them. The result is the same. */
+  readonly workers?: Workers | undefined;
 }
 
 export interface Forecast {
@@ -48,7 +50,7 @@ export interface Forecast {
 
 export async function forecast(survey: Survey, plan: Plan, request: ForecastRequest = {}): Promise<Forecast> {
   const { events = [], onProgress } = request;
-  const image = await gridImage(survey, plan, (share) => onProgress?.(0.6 * share));
+  const image = await gridImage(survey, plan, (share) => onProgress?.(0.6 * share), request.workers);
   const { sampling } = image.request;
   const weightings = beamsOf(image);
   onProgress?.(0.8);
@@ -74,6 +76,7 @@ async function gridImage(
   survey: Survey,
   plan: Plan,
   onProgress: (share: number) => void,
+  workers: Workers | undefined,
 ): Promise<GriddedImage> {
   const sampling = samplingOf(survey);
   const variance = fillWeightedVariance(sampling);
@@ -82,7 +85,8 @@ async function gridImage(
     sampling,
     variance,
     form: gridFormOf(sampling, plan, noiseBound(sampling, variance)),
-    coverage: () => new CoverageTally(coverageForm),
+    coverageForm,
+    workers,
   };
   const gridded = await gridDataset({ ...request, onProgress });
   return {

@@ -4,7 +4,10 @@
 import type { Dataset, SampleBlock } from "../dataset/dataset.ts";
 import type { Selection } from "../dataset/selection.ts";
 import { compileSelections } from "../dataset/selection-matcher.ts";
-import type { CoverageTally } from "./coverage-tally.ts";
+import type { Survey } from "../measure/survey-result.ts";
+import type { Workers } from "../util/workers.ts";
+import { type CoverageForm, CoverageTally } from "./coverage-tally.ts";
+import { fillShared, type GridSums } from "./grid-share.ts";
 import { type CellIndex, type GridForm, MomentGrid } from "./moment-grid.ts";
 import { RowDeposit } from "./row-deposit.ts";
 import { type RowPart, RowWeights } from "./row-weights.ts";
@@ -21,7 +24,7 @@ class RowChooser {
   private readonly offsets = new Map<number, number>();
   private readonly rowSamples: number;
 
-  constructor(sampling: Sampling) {
+  constructor(sampling: GridSampling) {
     const { survey } = sampling;
     const { subbands, channels, polarizations } = survey.dataset.shape;
     this.field = sampling.field.id;
@@ -52,30 +55,49 @@ export interface Gridded {
   readonly flagged: { readonly grid: MomentGrid; readonly coverage: CoverageTally } | null;
 }
 
-/** What the pass needs besides the dataset. */
-export interface GridRequest {
-  readonly sampling: Sampling;
+/** What of a sampling the passes need: little enough to be sent to other threads. */
+export interface GridSampling extends Pick<Sampling, "field" | "products" | "everLongest"> {
+  readonly survey: Pick<Survey, "dataset" | "baselines" | "totals">;
+}
+
+/** What a pass needs, in whatever thread. */
+export interface GridSource {
+  readonly sampling: GridSampling;
   /** (baselines x subbands x channels x polarizations) weight x variance of a sample; NaN unknown */
   readonly variance: Float64Array;
   readonly form: GridForm;
-  readonly coverage: () => CoverageTally;
+  readonly coverageForm: CoverageForm;
+  /** [first, end); default all */
+  readonly rows?: readonly [number, number];
+  /** threads that share the rows; none: this one reads them all. The result is the same. */
+  readonly workers?: Workers | undefined;
   /** told the share of the rows that is done */
   readonly onProgress?: ((share: number) => void) | undefined;
 }
 
+/** A pass asked for from the main thread. */
+export interface GridRequest extends GridSource {
+  readonly sampling: Sampling;
+}
+
 /** Grid every usable sample of the image. */
-export async function gridDataset(request: GridRequest): Promise<Gridded> {
+export async function gridDataset(request: GridSource): Promise<Gridded> {
   const { sampling, variance, form } = request;
   const { dataset } = sampling.survey;
   const grid = new MomentGrid(form);
-  const coverage = request.coverage();
+  const coverage = new CoverageTally(request.coverageForm);
   const row = new RowWeights(dataset, sampling.products);
   const deposit = new RowDeposit(dataset, form.order);
   // Of the flagged samples only which cells they fill is asked.
   const flagged =
     sampling.survey.totals.flagged > 0
-      ? { grid: new MomentGrid(flaggedForm(sampling, form)), coverage: request.coverage() }
+      ? {
+          grid: new MomentGrid(flaggedForm(sampling, form)),
+          coverage: new CoverageTally(request.coverageForm),
+        }
       : null;
+  const all = { grid, coverage, flagged };
+  if (await fillShared(request, { kind: "all" }, sumsOf(all))) return all;
   const flaggedRow = new RowWeights(dataset, sampling.products);
   await eachRow(request, (block, at, rowFrom, levelFrom) => {
     row.fill(block.weight, rowFrom, variance, levelFrom);
@@ -87,14 +109,19 @@ export async function gridDataset(request: GridRequest): Promise<Gridded> {
       deposit.cover(flagged.coverage, flaggedRow, 1);
     }
   });
-  return { grid, coverage, flagged };
+  return all;
+}
+
+export function sumsOf({ grid, coverage, flagged }: Gridded): GridSums {
+  if (flagged === null) return { grids: [grid], tallies: [coverage] };
+  return { grids: [grid, flagged.grid], tallies: [coverage, flagged.coverage] };
 }
 
 /** Cells from the origin to the edge of a grid of which only the filled cells are asked. */
 const MOST_FLAGGED_HALF = 2000;
 
 /** Flagged baselines may be longer than any that is left. */
-function flaggedForm({ everLongest }: Sampling, form: GridForm): GridForm {
+function flaggedForm({ everLongest }: GridSampling, form: GridForm): GridForm {
   const reach = Math.ceil(everLongest * form.field) + 2;
   return { ...form, order: 0, half: Math.max(form.half, Math.min(reach, MOST_FLAGGED_HALF)) };
 }
@@ -108,14 +135,19 @@ export interface SelectionGrid {
 
 /** Grid the usable samples of each selection, in one pass. */
 export async function gridSelections(
-  request: GridRequest,
+  request: GridSource,
   selections: readonly Selection[],
   index: CellIndex,
 ): Promise<SelectionGrid[]> {
   const { sampling, variance } = request;
   const { dataset } = sampling.survey;
   const form = { ...request.form, order: SELECTION_ORDER };
-  const grids = selections.map(() => ({ grid: new MomentGrid(form, index), lost: request.coverage() }));
+  const grids = selections.map(() => ({
+    grid: new MomentGrid(form, index),
+    lost: new CoverageTally(request.coverageForm),
+  }));
+  const sums = { grids: grids.map(({ grid }) => grid), tallies: grids.map(({ lost }) => lost) };
+  if (await fillShared(request, { kind: "selections", selections }, sums)) return grids;
   const matcher = compileSelections(dataset, selections);
   const parts = matcher.runs.map((bounds) => partOf(dataset, bounds));
   const whole = new RowWeights(dataset, sampling.products);
@@ -153,7 +185,7 @@ export function partOf(dataset: Dataset, bounds: Int32Array): RowPart {
 
 /** Visit the rows of the image with the offsets of their samples in the block and in the levels. */
 export async function eachRow(
-  request: GridRequest,
+  request: GridSource,
   visit: (block: SampleBlock, row: number, rowFrom: number, levelFrom: number) => void,
 ): Promise<void> {
   const { sampling, onProgress } = request;
@@ -161,11 +193,12 @@ export async function eachRow(
   const { subbands, channels, polarizations } = dataset.shape;
   const rowSamples = subbands * channels * polarizations;
   const chooser = new RowChooser(sampling);
-  for await (const block of dataset.blocks({ want: "weights" })) {
+  const [first, end] = request.rows ?? [0, dataset.rows];
+  for await (const block of dataset.blocks({ want: "weights", rows: [first, end] })) {
     for (let row = 0; row < block.rows; row++) {
       const levelFrom = chooser.offset(block, row);
       if (levelFrom >= 0) visit(block, row, row * rowSamples, levelFrom);
     }
-    onProgress?.(dataset.rows === 0 ? 1 : (block.firstRow + block.rows) / dataset.rows);
+    onProgress?.((block.firstRow + block.rows - first) / (end - first));
   }
 }

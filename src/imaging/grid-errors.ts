@@ -5,7 +5,8 @@
  */
 import type { Selection } from "../dataset/selection.ts";
 import { compileSelections } from "../dataset/selection-matcher.ts";
-import { eachRow, type GridRequest, partOf } from "./grid-dataset.ts";
+import { eachRow, type GridSource, partOf } from "./grid-dataset.ts";
+import { fillShared } from "./grid-share.ts";
 import { type CellIndex, type FilledCells, MomentGrid, turned } from "./moment-grid.ts";
 import { RowDeposit } from "./row-deposit.ts";
 import { RowWeights } from "./row-weights.ts";
@@ -21,16 +22,27 @@ export interface ErrorCells {
 
 /** Grid the samples of each selection, in one pass over the weights. */
 export async function gridErrors(
-  request: GridRequest,
+  request: GridSource,
   selections: readonly Selection[],
   index: CellIndex,
 ): Promise<ErrorCells[]> {
+  const grids = await errorGrids(request, selections, index);
+  return grids.map(({ ahead, behind }) => ({ ahead: ahead.cells(), behind: behind.cells() }));
+}
+
+export async function errorGrids(
+  request: GridSource,
+  selections: readonly Selection[],
+  index: CellIndex,
+): Promise<SignedGrid[]> {
   const { sampling, variance } = request;
   const { dataset } = sampling.survey;
   const form = { ...request.form, order: ORDER };
   const grids = selections.map(
     () => new SignedGrid(new MomentGrid(form, index), new MomentGrid(form, index)),
   );
+  const sums = { grids: grids.flatMap(({ ahead, behind }) => [ahead, behind]), tallies: [] };
+  if (await fillShared(request, { kind: "errors", selections }, sums)) return grids;
   const signs = selections.map(signOf);
   const matcher = compileSelections(dataset, selections);
   const parts = matcher.runs.map((bounds) => partOf(dataset, bounds));
@@ -48,7 +60,7 @@ export async function gridErrors(
       deposit.addTo(grid, row);
     }
   });
-  return grids.map(({ ahead, behind }) => ({ ahead: ahead.cells(), behind: behind.cells() }));
+  return grids;
 }
 
 /** -1 where an antenna of the selection is the second of the row's, or where a baseline is stored the other way round. */
@@ -59,7 +71,7 @@ function signOf({ antennas }: Selection): (antenna1: number, antenna2: number) =
 }
 
 /** Two grids, between which samples are shared out by the sign of their error in the half of the plane that is kept. */
-class SignedGrid {
+export class SignedGrid {
   readonly ahead: MomentGrid;
   readonly behind: MomentGrid;
   sign: 1 | -1 = 1;

@@ -35,6 +35,15 @@ export interface FilledCells {
   readonly moments: Float64Array;
 }
 
+/** The sums of a grid as plain data. */
+export interface GridState {
+  /** (filled) cells by their place in the half plane */
+  readonly cells: Int32Array<ArrayBuffer>;
+  /** (filled x sums of a cell) */
+  readonly sums: Float64Array<ArrayBuffer>;
+  readonly outside: number;
+}
+
 const NONE = -1;
 
 /** Where the cells of a grid are kept; grids of the same form may share one. */
@@ -65,6 +74,16 @@ export class CellIndex {
     return this.slotOf[iu * this.columns + iv + this.half]!;
   }
 
+  /** (slots) the cell of each, as a place in the half plane. */
+  cellOf(): Int32Array {
+    const cells = new Int32Array(this.slots);
+    for (let cell = 0; cell < this.slotOf.length; cell++) {
+      const slot = this.slotOf[cell]!;
+      if (slot !== NONE) cells[slot] = cell;
+    }
+    return cells;
+  }
+
   /** Slots and the cells they stand for, in order of (iu, iv). */
   *inOrder(): Generator<readonly [slot: number, iu: number, iv: number]> {
     for (let cell = 0; cell < this.slotOf.length; cell++) {
@@ -81,7 +100,7 @@ export class MomentGrid {
   private readonly stride: number;
   /** (slots of the index) place of the slot's sums plus 1, or 0: a grid of few cells stays small */
   private placeOf = new Int32Array(1024);
-  private sums: Float64Array;
+  private sums: Float64Array<ArrayBuffer>;
   private places = 0;
   private readonly field: number;
   private readonly half: number;
@@ -163,6 +182,29 @@ export class MomentGrid {
       this.sums = larger;
     }
     return (this.places - 1) * this.stride;
+  }
+
+  /** The sums by cell, for another thread. @param cellOf from the index */
+  state(cellOf: Int32Array): GridState {
+    const { places, stride, sums, outside } = this;
+    const cells = new Int32Array(places);
+    for (let slot = 0; slot < Math.min(cellOf.length, this.placeOf.length); slot++) {
+      const place = this.placeOf[slot]!;
+      if (place !== 0) cells[place - 1] = cellOf[slot]!;
+    }
+    return { cells, sums: sums.slice(0, places * stride), outside };
+  }
+
+  /** Add what another thread has summed in a grid of the same form. Sums are exact: the order does not matter. */
+  merge({ cells, sums, outside }: GridState): void {
+    const { index, stride } = this;
+    for (let i = 0; i < cells.length; i++) {
+      const cell = cells[i]!;
+      const slot = index.slot(Math.floor(cell / index.columns), (cell % index.columns) - index.half);
+      const at = this.place(slot);
+      for (let k = 0; k < stride; k++) this.sums[at + k]! += sums[i * stride + k]!;
+    }
+    this.outside += outside;
   }
 
   /** bytes held, without the index */
