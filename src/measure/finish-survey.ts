@@ -47,6 +47,7 @@ export function finishSurvey(part: SurveyPart): Survey {
     integration,
     scans,
     totals: totalsOf(part, counts, duplicateRows),
+    screen: gathered.screen.finish(order),
   };
   const { channels } = gathered;
   return {

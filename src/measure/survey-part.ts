@@ -12,6 +12,7 @@ import { ChannelCounts } from "./channel-counts.ts";
 import { KeptRows } from "./kept-rows.ts";
 import { NoiseSketches } from "./noise-sketches.ts";
 import { PreparedBlock } from "./prepared.ts";
+import { Screen } from "./screen/screen.ts";
 import { type SurveySettings, settleSurvey } from "./settings.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
@@ -30,9 +31,11 @@ export interface Gathered {
   readonly baselines: BaselineTally;
   readonly order: TimeOrder;
   readonly tracks: TrackKeeper;
+  readonly screen: Screen;
 }
 
-function gatherers({ shape, rows }: Dataset, settings: SurveySettings): Gathered {
+function gatherers(dataset: Dataset, settings: SurveySettings): Gathered {
+  const { shape, rows } = dataset;
   const { sketchBytes, trackBytes } = settings;
   const rowBytes = CELL_BYTES + PRODUCT_BYTES * shape.subbands * shape.polarizations;
   return {
@@ -42,6 +45,7 @@ function gatherers({ shape, rows }: Dataset, settings: SurveySettings): Gathered
     baselines: new BaselineTally(shape),
     order: new TimeOrder(),
     tracks: rows * rowBytes <= trackBytes ? new KeptRows(shape) : new BinnedRows(shape, trackBytes),
+    screen: new Screen(dataset),
   };
 }
 

@@ -4,6 +4,7 @@
  * u, v, w negated. Autocorrelations are counted and otherwise left out.
  */
 import type { Dataset } from "../dataset/dataset.ts";
+import type { Screened } from "./screen/screen.ts";
 import type { Measures } from "./table.ts";
 
 /** A baseline met in the data; index in `Survey.baselines` is its number everywhere below. */
@@ -84,6 +85,8 @@ export interface Survey {
   /** [start, end] of each scan, MJD, by index; a scan ends at a change of field or a gap of 5 integrations and 60 s */
   readonly scans: readonly { readonly start: number; readonly end: number; readonly field: number }[];
   readonly totals: Totals;
+  /** where the samples deserve a second look; without it everywhere */
+  readonly screen?: Screened;
   readonly measures: Measures;
 }
 
