@@ -4,6 +4,6 @@ import { basename } from "node:path";
 /** File name without folder, `.gz` and the suffixes that FITS files go by. */
 export function datasetName(path: string): string {
   const name = basename(path);
-  const bare = name.replace(/\.gz$/i, "").replace(/\.(uvfits|uvfit|uvf|fits|fit|fts)$/i, "");
+  const bare = name.replace(/\.gz$/i, "").replace(/\.(uvfits|uvfit|uvf|idifits|idi|fits|fit|fts)$/i, "");
   return bare === "" ? name : bare;
 }

@@ -2,6 +2,7 @@
 import { InputError } from "../util/errors.ts";
 import { axisLengths, type FitsFile, type Hdu, openFits } from "./fits/hdus.ts";
 import { openSource } from "./fits/source.ts";
+import { openFitsIdi } from "./fits-idi/open.ts";
 import { openRandomGroups } from "./random-groups/open.ts";
 import type { OpenedDataset, RowSummary } from "./row-summary.ts";
 
@@ -38,11 +39,7 @@ async function openByKind(file: FitsFile, path: string, known?: RowSummary): Pro
     case "random-groups":
       return openRandomGroups(file, known);
     case "fits-idi":
-      throw new InputError(
-        "this is a FITS-IDI file: this version reads random groups only",
-        place,
-        "Export the data as a random-groups FITS file (often called UVFITS)",
-      );
+      return openFitsIdi(file, known);
     case null:
       throw noVisibilities(file, primary, place);
   }

@@ -146,13 +146,15 @@ function blockDecoder(
 }
 
 function sampleFiller(
-  { samples, weights }: RowReader,
+  { samples: stored, weights }: RowReader,
   plan: ReadPlan,
   want: BlockRequest["want"],
   scratch: Float64Array,
   moved: (offset: number) => number,
 ): (raw: RawRows, block: SampleBlock) => void {
   if (want === "rows") return () => {};
+  const readsArray = want === "samples" || stored.hasWeight || stored.blank !== undefined;
+  const samples = readsArray ? { ...stored, rowBytes: plan.rowBytes, start: moved(stored.start) } : stored;
   if (isPlainFloat(samples)) {
     return want === "samples"
       ? (raw, block) => fillPlainSamples(raw.view, raw.rows, samples, block)
@@ -168,7 +170,7 @@ function sampleFiller(
   return (raw, block) => {
     fillFactors(raw);
     if (want === "samples" && plain) fillPlainPairs(raw.view, raw.rows, samples, block);
-    if (plain || (want === "weights" && samples.blank === undefined)) {
+    if (plain || !readsArray) {
       fillFactorWeights(raw.rows, samples.shape, factors, block.weight);
     } else {
       fillScaledSamples(raw.view, raw.rows, samples, factors, block, want === "samples");

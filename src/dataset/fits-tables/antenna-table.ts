@@ -45,8 +45,16 @@ export interface AntennaTable {
 const MOST_ANTENNAS = 65_535;
 const MOST_SUBARRAY = 9999;
 
-/** @throws InputError when the table is malformed */
-export async function readAntennaTable(cursor: Cursor, hdu: Hdu, notes: Notes): Promise<AntennaTable> {
+/**
+ * @param numbers of antennas by `nameKey`, where another table gives them: they stand before those of this table
+ * @throws InputError when the table is malformed
+ */
+export async function readAntennaTable(
+  cursor: Cursor,
+  hdu: Hdu,
+  notes: Notes,
+  numbers: ReadonlyMap<string, number> = new Map(),
+): Promise<AntennaTable> {
   const { header } = hdu;
   const layout = tableLayout(hdu);
   if (layout.rows > MOST_ANTENNAS) {
@@ -66,7 +74,7 @@ export async function readAntennaTable(cursor: Cursor, hdu: Hdu, notes: Notes): 
   return {
     subarray: hdu.version,
     part,
-    antennas: readAntennas(table, part, notes),
+    antennas: readAntennas(table, part, numbers, notes),
     arrayName: (header.shown("ARRNAM") ?? "").trim(),
     origin: [
       header.looseNumber("ARRAYX") ?? 0,
@@ -84,40 +92,63 @@ export async function readAntennaTable(cursor: Cursor, hdu: Hdu, notes: Notes): 
   };
 }
 
-function readAntennas(table: Table, part: string, notes: Notes): TableAntenna[] {
+/** Antennas of several tables are one when their names are, whatever the case and padding. */
+export function nameKey(name: string): string {
+  return name.trim().toUpperCase();
+}
+
+function readAntennas(
+  table: Table,
+  part: string,
+  numbers: ReadonlyMap<string, number>,
+  notes: Notes,
+): TableAntenna[] {
   const { layout } = table;
   const name = findColumn(layout, "ANNAME");
   const position = [findColumn(layout, "STABXYZ")].find((column) => (column?.repeat ?? 0) >= 3);
   const number = findColumn(layout, "NOSTA");
   const diameter = findColumn(layout, "DIAMETER");
-  if (number === undefined) {
+  if (number === undefined && numbers.size === 0) {
     const text = `${part} has no column NOSTA: antennas are numbered by their rows`;
     notes.note("missing-antenna-numbers", text);
   }
   if (name === undefined && position === undefined) requireColumn(layout, "STABXYZ");
+  const taken = new Set(numbers.values());
   const found = new Map<number, TableAntenna>();
   const twice: number[] = [];
+  const unnumbered: string[] = [];
   for (let row = 0; row < table.rows; row++) {
-    const id = number === undefined ? row + 1 : table.number(row, number);
-    if (!Number.isInteger(id) || id < 0 || id > MOST_ANTENNAS) {
-      throw layout.hdu.header.error(
-        `row ${row + 1}: NOSTA is ${id}: expected a whole number from 0 to ${MOST_ANTENNAS}`,
-      );
-    }
-    if (found.has(id)) {
-      twice.push(id);
-      continue;
-    }
     const text = name === undefined ? "" : table.text(row, name).trim();
-    found.set(id, {
-      number: id,
-      name: text === "" ? String(id) : text,
-      offset: position === undefined ? null : positionOf(table, row, position),
-      diameter: diameterOf(table, row, diameter),
-    });
+    const given = numbers.get(nameKey(text));
+    const id = given ?? (number === undefined ? row + 1 : antennaNumber(table, row, number));
+    if (given === undefined && taken.has(id)) unnumbered.push(text);
+    else if (found.has(id)) twice.push(id);
+    else {
+      found.set(id, {
+        number: id,
+        name: text === "" ? String(id) : text,
+        offset: position === undefined ? null : positionOf(table, row, position),
+        diameter: diameterOf(table, row, diameter),
+      });
+    }
+  }
+  if (unnumbered.length > 0) {
+    const text = `${part}: no number is given to ${unnumbered.slice(0, 10).join(", ")}: no row can name them`;
+    notes.note("antenna-without-number", text);
   }
   noteOdd([...found.values()], twice, position, part, notes);
   return [...found.values()];
+}
+
+/** @throws InputError when it is no number of an antenna */
+export function antennaNumber(table: Table, row: number, column: Column): number {
+  const id = table.number(row, column);
+  if (!Number.isInteger(id) || id < 0 || id > MOST_ANTENNAS) {
+    throw table.layout.hdu.header.error(
+      `row ${row + 1}: ${column.name} is ${id}: expected a whole number from 0 to ${MOST_ANTENNAS}`,
+    );
+  }
+  return id;
 }
 
 function positionOf(table: Table, row: number, column: Column): Position | null {
