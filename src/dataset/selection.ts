@@ -29,3 +29,9 @@ export const EVERYTHING: Selection = {
   polarizations: null,
   fields: null,
 };
+
+/** Without what a flag carries besides: a recipe is sent to other threads. */
+export function selectionAlone(selection: Selection): Selection {
+  const { antennas, baselines, time, subbands, channels, polarizations, fields } = selection;
+  return { antennas, baselines, time, subbands, channels, polarizations, fields };
+}

@@ -6,6 +6,7 @@ import type { DetectedEvent } from "../detect/event.ts";
 import type { Judged } from "../rules/hit.ts";
 import type { RuleSet } from "../rules/rule.ts";
 import { type AntennaLabel, antennaLabels, scopeWords } from "../rules/scope.ts";
+import type { Workers } from "../util/workers.ts";
 import type { Candidate } from "./candidate.ts";
 import { flagCandidates } from "./candidates.ts";
 import type { FlagCost, FlagEntry } from "./entry.ts";
@@ -22,6 +23,8 @@ export interface FlagRequest {
   /** of the data as they are */
   readonly judged: Judged;
   readonly rules: RuleSet;
+  /** threads that share the passes over the weights; none: this one reads them */
+  readonly workers?: Workers | undefined;
 }
 
 /** Samples that look at fault but that a person should judge. */
@@ -46,10 +49,10 @@ interface Counted extends Candidate {
 
 /** Two passes over the weights; none where nothing is at fault. */
 export async function suggestFlags(request: FlagRequest): Promise<FlagSuggestion> {
-  const { dataset, times, events, judged, rules } = request;
+  const { dataset, times, events, judged, rules, workers } = request;
   const merged = mergeCandidates(flagCandidates(events, judged, rules), times);
   if (merged.length === 0) return { flags: [], doubts: [] };
-  const { each, total } = await countOf(dataset, merged);
+  const { each, total } = await countOf(dataset, merged, workers);
   const label = antennaLabels(dataset.array.antennas);
   const doubts: Doubt[] = [];
   const worthy: Counted[] = [];
@@ -62,17 +65,22 @@ export async function suggestFlags(request: FlagRequest): Promise<FlagSuggestion
     else doubts.push({ selection: one.selection, rule: one.rule, reason: reasonOf(one, label), why });
   }
   const ranked = withoutInner(worthy).sort(byRank);
-  const { each: ofRanked } = await countOf(dataset, ranked);
+  const { each: ofRanked } = await countOf(dataset, ranked, workers);
   // Without those whose samples the ones before them take all together.
   const uncovered = ranked.filter((_, i) => ofRanked[i]!.fresh > 0);
   const flags = uncovered.map((one, i) => entryOf(one, total, `F${i + 1}`, label));
   return { flags, doubts };
 }
 
-function countOf(dataset: Dataset, candidates: readonly Candidate[]): Promise<SelectionCounts> {
+function countOf(
+  dataset: Dataset,
+  candidates: readonly Candidate[],
+  workers: Workers | undefined,
+): Promise<SelectionCounts> {
   return countSelections(
     dataset,
     candidates.map((one) => one.selection),
+    workers,
   );
 }
 
@@ -106,8 +114,12 @@ function entryOf(one: Counted, total: SelectionCount, id: string, label: Antenna
 }
 
 /** What selections cost together: 1 - sqrt(sum of kept weights / sum of all), natural weighting. */
-export async function lossTogether(dataset: Dataset, selections: readonly Selection[]): Promise<number> {
-  const { union, total } = await countSelections(dataset, selections);
+export async function lossTogether(
+  dataset: Dataset,
+  selections: readonly Selection[],
+  workers?: Workers,
+): Promise<number> {
+  const { union, total } = await countSelections(dataset, selections, workers);
   return lossOf(union, total);
 }
 

@@ -1,5 +1,5 @@
 /** The passes that fill uv grids, shared out among threads by rows. Sums and counts are exact: they add up to the same. */
-import type { Selection } from "../dataset/selection.ts";
+import { type Selection, selectionAlone } from "../dataset/selection.ts";
 import { sharedArray } from "../util/shared-array.ts";
 import { moduleBeside, shareOut } from "../util/workers.ts";
 import type { CoverageState, CoverageTally } from "./coverage-tally.ts";
@@ -38,7 +38,7 @@ export async function fillShared(request: GridSource, work: GridWork, into: Grid
     variance: sharedArray(request.variance),
     form,
     coverageForm,
-    work: work.kind === "all" ? work : { ...work, selections: work.selections.map(plain) },
+    work: work.kind === "all" ? work : { ...work, selections: work.selections.map(selectionAlone) },
   };
   const states = await workers.run<GridTask, SumsState>(
     moduleBeside("./grid-task", import.meta.url),
@@ -50,10 +50,4 @@ export async function fillShared(request: GridSource, work: GridWork, into: Grid
     for (const [i, tally] of tallies.entries()) into.tallies[i]!.merge(tally);
   }
   return true;
-}
-
-/** Without what an event or a flag carries besides, which may not go through structured cloning. */
-function plain(selection: Selection): Selection {
-  const { antennas, baselines, time, subbands, channels, polarizations, fields } = selection;
-  return { antennas, baselines, time, subbands, channels, polarizations, fields };
 }

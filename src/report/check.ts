@@ -10,6 +10,7 @@ import { reconcile } from "../flags/reconcile.ts";
 import { lossTogether, suggestFlags, withCosts } from "../flags/suggest.ts";
 import { forecastAfter } from "../imaging/forecast.ts";
 import { blindSpots } from "./blind-spots.ts";
+import { judgeFields } from "./fields.ts";
 import { type CheckRequest, look } from "./look.ts";
 import type { Check } from "./report.ts";
 
@@ -17,11 +18,18 @@ export type { CheckRequest } from "./look.ts";
 
 /** @throws InputError where the dataset turns out to be malformed */
 export async function checkDataset(dataset: Dataset, request: CheckRequest): Promise<Check> {
-  const { rules } = request;
+  const { rules, workers } = request;
   const first = await look(dataset, request, null, "");
   const { survey, events, plan, judged } = first;
   request.onStage?.("Weighing flags", 0);
-  const suggestion = await suggestFlags({ dataset, times: survey.times, events, judged, rules });
+  const suggestion = await suggestFlags({
+    dataset,
+    times: survey.times,
+    events,
+    judged,
+    rules,
+    workers,
+  });
   const again = (flags: readonly FlagEntry[]) =>
     flags.length === 0 ? first : look(flaggedView(dataset, flags), request, plan, ", flags applied");
   let second = await again(suggestion.flags);
@@ -39,10 +47,11 @@ export async function checkDataset(dataset: Dataset, request: CheckRequest): Pro
     after: second.judged,
     findings,
     flags,
-    sensitivityLossFraction: flags.length === 0 ? 0 : await lossTogether(dataset, flags),
+    sensitivityLossFraction: flags.length === 0 ? 0 : await lossTogether(dataset, flags, workers),
     doubts: [...suggestion.doubts, ...paying.doubts],
     image:
       second === first ? first.forecast.image : forecastAfter(first.forecast.image, second.forecast.image),
+    byField: await judgeFields(dataset, survey, flags, request),
     beamPicture: first.forecast.picture,
     verdict,
     rulesFrom: rules.rules.map(({ id, from }) => ({ id, from })),

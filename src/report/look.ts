@@ -13,12 +13,15 @@ import type { Measures } from "../measure/table.ts";
 import type { Judged } from "../rules/hit.ts";
 import { judge } from "../rules/judge.ts";
 import type { RuleSet } from "../rules/rule.ts";
+import type { Workers } from "../util/workers.ts";
 
 export interface CheckRequest {
   readonly plan: PlanRequest;
   readonly rules: RuleSet;
   /** told the stage at hand and the share of it that is done, 0..1 */
   readonly onStage?: (stage: string, share: number) => void;
+  /** threads that share the passes over the samples; none: this one reads them. The result is the same. */
+  readonly workers?: Workers | undefined;
 }
 
 /** What one look at the data gives, as they are or with flags applied. */
@@ -42,12 +45,13 @@ export async function look(
   settled: Plan | null,
   suffix: string,
 ): Promise<Look> {
+  const { workers } = request;
   const tell = (stage: string) => (share: number) => request.onStage?.(stage + suffix, share);
   const byRows = (stage: string) => {
     const told = tell(stage);
     return (rows: number, of: number) => told(of === 0 ? 1 : rows / of);
   };
-  const survey = await surveyDataset(dataset, { onProgress: byRows("Surveying") });
+  const survey = await surveyDataset(dataset, { workers, onProgress: byRows("Surveying") });
   const plan = settled ?? derivePlan(request.plan, survey);
   const { purpose, lineChannels } = plan;
   const events = await detect(survey, {
@@ -55,7 +59,11 @@ export async function look(
     lineChannels: lineChannels.value,
     onProgress: byRows("Looking for faults"),
   });
-  const forecasted = await forecast(survey, plan, { events, onProgress: tell("Forecasting the image") });
+  const forecasted = await forecast(survey, plan, {
+    events,
+    workers,
+    onProgress: tell("Forecasting the image"),
+  });
   const all = [...survey.measures.values(), ...eventMeasures(survey, events), ...forecasted.measures];
   const measures: Measures = new Map(all.map((measure) => [measure.name, measure]));
   return {
