@@ -4,6 +4,7 @@ import yargs from "yargs";
 import { hideBin } from "yargs/helpers";
 import { InputError, nearest } from "../util/errors.ts";
 import { plainText } from "../util/terminal.ts";
+import { apply } from "./apply.ts";
 import { check } from "./check.ts";
 import { describe } from "./describe.ts";
 import { explain } from "./explain.ts";
@@ -12,7 +13,9 @@ import { simulate } from "./simulate.ts";
 /** Could not be judged: bad usage, unreadable or malformed input. */
 const EXIT_NOT_JUDGED = 2;
 
-const COMMANDS = [check, describe, explain, simulate].map(({ command }) => String(command).split(" ")[0]!);
+const COMMANDS = [check, apply, describe, explain, simulate].map(
+  ({ command }) => String(command).split(" ")[0]!,
+);
 
 // A reader that has seen enough (`visvet check … | head`) is no error.
 process.stdout.on("error", (error: NodeJS.ErrnoException) => {
@@ -25,6 +28,7 @@ try {
     .scriptName("visvet")
     .usage("$0 <command>\n\nVet a visibility dataset before anyone images it.")
     .command(check)
+    .command(apply)
     .command(describe)
     .command(explain)
     .command(simulate)
