@@ -20,14 +20,20 @@ export function writeBytesFile(path: string, bytes: Uint8Array): Promise<void> {
   return writeWhole(path, bytes);
 }
 
-async function writeWhole(path: string, content: string | Uint8Array): Promise<void> {
+/** The same for bytes in pieces, one after the other. */
+export function writePieces(path: string, pieces: Iterable<Uint8Array>): Promise<void> {
+  return writeWhole(path, pieces);
+}
+
+async function writeWhole(path: string, content: string | Uint8Array | Iterable<Uint8Array>): Promise<void> {
   written += 1;
   const beside = `${path}.${process.pid}-${written}.tmp`;
   try {
     // "wx": never write through a link or into a file that somebody else put there.
     const handle = await open(beside, "wx");
     try {
-      await handle.writeFile(content, "utf8");
+      if (typeof content === "string" || ArrayBuffer.isView(content)) await handle.writeFile(content, "utf8");
+      else for (const piece of content) await handle.writeFile(piece);
       // Some file systems tell of a full disk only here; after the rename it would be too late.
       await handle.sync();
     } finally {

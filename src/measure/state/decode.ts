@@ -22,12 +22,13 @@ import {
 /**
  * @param bytes  begin at a multiple of 8 of their buffer, which arrays of the result keep alive and share
  * @param place  of the first byte in its file
+ * @param padded  zeros may follow
  * @throws InputError at the byte where they are no state
  */
-export function decodeState(bytes: Uint8Array<ArrayBuffer>, place: Place = {}): StateValue {
+export function decodeState(bytes: Uint8Array<ArrayBuffer>, place: Place = {}, padded = false): StateValue {
   const decoder = new Decoder(bytes, place);
   const value = decoder.value(0);
-  decoder.end();
+  decoder.end(padded);
   return value;
 }
 
@@ -68,9 +69,10 @@ class Decoder {
     }
   }
 
-  end(): void {
-    if (this.at !== this.bytes.length)
-      throw this.error(`${this.bytes.length - this.at} bytes follow the state`);
+  end(padded: boolean): void {
+    const rest = this.bytes.subarray(this.at);
+    if (padded && rest.length < ALIGNMENT && rest.every((byte) => byte === 0)) return;
+    if (rest.length > 0) throw this.error(`${this.bytes.length - this.at} bytes follow the state`);
   }
 
   private string(): string {

@@ -35,6 +35,22 @@ export class StateReader {
     return value;
   }
 
+  isNull(key: string): boolean {
+    return this.at(key) === null;
+  }
+
+  text(key: string): string {
+    const value = this.at(key);
+    if (typeof value !== "string") throw this.error("expected a text", key);
+    return value;
+  }
+
+  texts(key: string): readonly string[] {
+    const value = this.at(key);
+    if (Array.isArray(value) && value.every((item) => typeof item === "string")) return value;
+    throw this.error("expected a list of texts", key);
+  }
+
   /** Any number, NaN too. */
   number(key: string): number {
     const value = this.at(key);
