@@ -1,35 +1,29 @@
 /**
  * A block as the accumulators take it: each row's baseline, of each sample what it is and its amplitude, of each
  * product of a row its sums over channels. Made once a block, so that no accumulator decides again what a usable sample
- * is, and samples are looked at once.
+ * is, and samples are looked at once. All of it lies in the kernels' memory.
  */
 import type { SampleBlock, Shape } from "../dataset/dataset.ts";
+import { Arena, kernelMemory } from "../util/kernels/memory.ts";
 import type { BaselineIndex } from "./baseline-index.ts";
+import { AUTOCORRELATION, KINDS, SUMS, USABLE } from "./kernels/layout.ts";
+import { prepareKernels } from "./kernels/prepare.ts";
+import { takeWideProduct } from "./kernels/wide-row.ts";
 
-/** What a sample is. A flag is a flag whatever value it hides; exact zeros with a weight are no measurement. */
-export const USABLE = 0;
-export const FLAGGED = 1;
-export const BAD = 2;
-export const ZERO = 3;
-/** Counts a product: by what its samples are, and of the flagged those with a weight of zero. */
-export const WEIGHTLESS = 4;
-export const KINDS = 5;
+export * from "./kernels/layout.ts";
 
-/** Sums a product, over channels; all but those of flagged ones of usable samples. */
-export const SUM_REAL = 0;
-export const SUM_IMAG = 1;
-export const SUM_AMPLITUDE = 2;
-export const SUM_WEIGHT = 3;
-export const SLOPE_REAL = 4;
-export const SLOPE_IMAG = 5;
-/** |weight| of flagged samples */
-export const FLAGGED_WEIGHT = 6;
-/** weight squared */
-export const SUM_SQUARE = 7;
-export const SUMS = 8;
-
-/** An autocorrelation, which only the totals count. */
-export const AUTOCORRELATION = -1;
+/** Addresses of a block's arrays. */
+export interface PreparedPlaces {
+  readonly real: number;
+  readonly imag: number;
+  readonly weight: number;
+  readonly bits: number;
+  readonly sums: number;
+  readonly counts: number;
+  readonly baseline: number;
+  readonly sign: number;
+  readonly whole: number;
+}
 
 export class PreparedBlock {
   readonly shape: Shape;
@@ -38,19 +32,24 @@ export class PreparedBlock {
   block!: SampleBlock;
   rows = 0;
   /** (rows) number in the BaselineIndex, or AUTOCORRELATION: nothing below is filled for such a row */
-  baseline = new Int32Array(0);
+  baseline: Int32Array = new Int32Array(0);
   /** (rows) 1, or -1 where the row is stored with the higher antenna first: conjugate it, negate its u, v, w */
-  sign = new Int8Array(0);
+  sign: Int8Array = new Int8Array(0);
   /** (rows x samples of a row) the bits of the float32 amplitude of a usable sample; of others minus what they are */
-  bits = new Int32Array(0);
-  /** the same memory as `bits` */
-  private amplitude = new Float32Array(0);
+  bits: Int32Array = new Int32Array(0);
   /** (rows x products x SUMS) of the visibility with the lower antenna first */
-  sums = new Float64Array(0);
+  sums: Float64Array = new Float64Array(0);
   /** (rows x products x KINDS) */
-  counts = new Uint32Array(0);
+  counts: Uint32Array = new Uint32Array(0);
   /** (rows) 1 where every sample is usable */
-  whole = new Uint8Array(0);
+  whole: Uint8Array = new Uint8Array(0);
+  /** where these are, and the samples of the block */
+  at!: PreparedPlaces;
+  private readonly arena: Arena = new Arena(this);
+  /** rows that there is room for */
+  private room = -1;
+  /** address of room for the samples of blocks that are kept elsewhere; undefined before the first */
+  private copies: number | undefined;
 
   constructor(shape: Shape) {
     this.shape = shape;
@@ -61,123 +60,112 @@ export class PreparedBlock {
   take(block: SampleBlock, index: BaselineIndex): void {
     this.block = block;
     this.rows = block.rows;
-    this.grow(block.rows);
-    const { baseline, sign, whole, rowSamples } = this;
+    this.reserve(block.rows);
+    const { baseline, sign } = this;
     const { antenna1, antenna2 } = block;
     for (let row = 0; row < block.rows; row++) {
       const first = antenna1[row]!;
       const second = antenna2[row]!;
-      if (first === second) {
-        baseline[row] = AUTOCORRELATION;
-        continue;
-      }
       sign[row] = first > second ? -1 : 1;
-      baseline[row] = index.indexOf(first, second);
-      whole[row] = this.takeRow(row) === rowSamples ? 1 : 0;
+      baseline[row] = first === second ? AUTOCORRELATION : index.indexOf(first, second);
     }
+    this.placeSamples(block);
+    this.prepare();
   }
 
-  /** @returns usable samples */
-  private takeRow(row: number): number {
+  /** Give back the memory, all of it. Room is made again for the next block. */
+  release(): void {
+    this.arena.release();
+    this.room = -1;
+    this.copies = undefined;
+  }
+
+  private prepare(): void {
+    const { at, rows } = this;
     const { subbands, channels, polarizations } = this.shape;
-    const { counts } = this;
-    let product = row * this.products;
-    let usable = 0;
-    for (let s = 0; s < subbands; s++) {
-      const first = row * this.rowSamples + s * channels * polarizations;
-      for (let p = 0; p < polarizations; p++, product++) {
-        this.takeProduct(first + p, product, this.sign[row]!);
-        usable += counts[product * KINDS]!;
-      }
+    const kernels = prepareKernels(polarizations);
+    for (let from = 0; from < rows; from++) {
+      from = kernels.prepareRows(
+        from,
+        rows,
+        subbands,
+        channels,
+        polarizations,
+        at.real,
+        at.imag,
+        at.weight,
+        at.baseline,
+        at.sign,
+        at.bits,
+        at.sums,
+        at.counts,
+        at.whole,
+      );
+      if (from < rows) this.takeWideRow(from);
     }
-    return usable;
   }
 
-  private takeProduct(first: number, product: number, sign: number): void {
-    const { amplitude, bits, sums, counts } = this;
-    const { real, imag, weight } = this.block;
+  private takeWideRow(row: number): void {
+    const { at, products, rowSamples, counts } = this;
     const { channels, polarizations } = this.shape;
-    const end = first + channels * polarizations;
-    let sumReal = 0;
-    let sumImag = 0;
-    let sumAmplitude = 0;
-    let sumWeight = 0;
-    let sumSquare = 0;
-    let slopeReal = 0;
-    let slopeImag = 0;
-    let flaggedWeight = 0;
-    let flagged = 0;
-    let bad = 0;
-    let zero = 0;
-    let weightless = 0;
-    // Zero before the first channel and after an unusable one: such a pair adds nothing to the slope.
-    let beforeReal = 0;
-    let beforeImag = 0;
-    for (let i = first; i < end; i += polarizations) {
-      const w = weight[i]!;
-      if (w > 0 && w < Number.POSITIVE_INFINITY) {
-        const re = real[i]!;
-        const im = imag[i]!;
-        // Squares of float32s neither overflow nor vanish in a double.
-        const power = re * re + im * im;
-        if (power > 0 && power < Number.POSITIVE_INFINITY) {
-          const a = Math.sqrt(power);
-          amplitude[i] = a;
-          sumReal += w * re;
-          sumImag += w * im;
-          sumAmplitude += a;
-          sumWeight += w;
-          sumSquare += w * w;
-          slopeReal += re * beforeReal + im * beforeImag;
-          slopeImag += im * beforeReal - re * beforeImag;
-          beforeReal = re;
-          beforeImag = im;
-          continue;
-        }
-        if (power === 0) {
-          bits[i] = -ZERO;
-          zero += 1;
-        } else {
-          bits[i] = -BAD;
-          bad += 1;
-        }
-      } else if (w <= 0 && w > Number.NEGATIVE_INFINITY) {
-        bits[i] = -FLAGGED;
-        flagged += 1;
-        flaggedWeight -= w;
-        if (w === 0) weightless += 1;
-      } else {
-        bits[i] = -BAD;
-        bad += 1;
-      }
-      beforeReal = 0;
-      beforeImag = 0;
+    let usable = 0;
+    for (let k = 0; k < products; k++) {
+      const subband = Math.floor(k / polarizations);
+      const first = 4 * (row * rowSamples + subband * channels * polarizations + (k % polarizations));
+      const product = row * products + k;
+      const place = {
+        real: at.real + first,
+        imag: at.imag + first,
+        weight: at.weight + first,
+        bits: at.bits + first,
+        sums: at.sums + 8 * SUMS * product,
+        counts: at.counts + 4 * KINDS * product,
+      };
+      takeWideProduct(place, channels, polarizations, this.sign[row]!);
+      usable += counts[product * KINDS + USABLE]!;
     }
-    const sum = product * SUMS;
-    sums[sum + SUM_REAL] = sumReal;
-    sums[sum + SUM_IMAG] = sign * sumImag;
-    sums[sum + SUM_AMPLITUDE] = sumAmplitude;
-    sums[sum + SUM_WEIGHT] = sumWeight;
-    sums[sum + SLOPE_REAL] = slopeReal;
-    sums[sum + SLOPE_IMAG] = sign * slopeImag;
-    sums[sum + FLAGGED_WEIGHT] = flaggedWeight;
-    sums[sum + SUM_SQUARE] = sumSquare;
-    const count = product * KINDS;
-    counts[count + USABLE] = channels - flagged - bad - zero;
-    counts[count + FLAGGED] = flagged;
-    counts[count + BAD] = bad;
-    counts[count + ZERO] = zero;
-    counts[count + WEIGHTLESS] = weightless;
+    this.whole[row] = usable === rowSamples ? 1 : 0;
   }
 
-  private grow(rows: number): void {
-    if (this.baseline.length >= rows) return;
-    this.baseline = new Int32Array(rows);
-    this.sign = new Int8Array(rows);
-    this.whole = new Uint8Array(rows);
-    this.bits = new Int32Array(rows * this.rowSamples);
-    this.amplitude = new Float32Array(this.bits.buffer);
-    this.sums = new Float64Array(rows * this.products * SUMS);
-    this.counts = new Uint32Array(rows * this.products * KINDS);
+  /** The block's samples where the kernels reach them: where they are, or copied. */
+  private placeSamples({ real, imag, weight, rows }: SampleBlock): void {
+    const columns = [real, imag, weight];
+    const known = columns.map((column) => kernelMemory.addressOf(column));
+    const length = rows * this.rowSamples;
+    if (known.includes(undefined)) {
+      this.copies ??= this.arena.require(4 * 3 * this.room * this.rowSamples);
+      const { f32 } = kernelMemory.heap;
+      for (const [k, column] of columns.entries()) {
+        known[k] = this.copies + 4 * k * length;
+        f32.set(column.subarray(0, length), known[k]! / 4);
+      }
+    }
+    this.at = { ...this.at, real: known[0]!, imag: known[1]!, weight: known[2]! };
+  }
+
+  private reserve(rows: number): void {
+    if (this.room >= rows) return;
+    this.release();
+    this.room = rows;
+    const { arena, rowSamples, products } = this;
+    const at = {
+      real: 0,
+      imag: 0,
+      weight: 0,
+      bits: arena.require(4 * rows * rowSamples),
+      sums: arena.require(8 * rows * products * SUMS),
+      counts: arena.require(4 * rows * products * KINDS),
+      baseline: arena.require(4 * rows),
+      sign: arena.require(rows),
+      whole: arena.require(rows),
+    };
+    const { buffer } = kernelMemory.heap.u8;
+    this.at = at;
+    this.bits = new Int32Array(buffer, at.bits, rows * rowSamples);
+    this.sums = new Float64Array(buffer, at.sums, rows * products * SUMS);
+    this.counts = new Uint32Array(buffer, at.counts, rows * products * KINDS);
+    this.baseline = new Int32Array(buffer, at.baseline, rows);
+    this.sign = new Int8Array(buffer, at.sign, rows);
+    this.whole = new Uint8Array(buffer, at.whole, rows);
   }
 }

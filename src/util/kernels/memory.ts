@@ -15,6 +15,8 @@ const MOST_PAGES = 32_768;
 const START = 4096;
 /** A cache line: rows of vectors neither straddle one nor share one. */
 const ALIGNMENT = 64;
+/** Bytes behind every allocation that belong to nobody: vectors may reach over its end. */
+const SLACK = 16;
 /** Least growth, pages: 4 MB. */
 const STEP = 64;
 
@@ -43,10 +45,11 @@ class KernelMemory {
   private readonly taken = new Map<number, number>();
 
   /**
-   * @returns address of as many bytes, whatever they hold, at a multiple of 64; undefined where there is no more room
+   * @returns address of as many bytes, whatever they hold, at a multiple of 64, with 16 more that vectors may reach into;
+   *          undefined where there is no more room
    */
   allocate(bytes: number): number | undefined {
-    const size = Math.max(1, Math.ceil(bytes / ALIGNMENT)) * ALIGNMENT;
+    const size = Math.ceil((bytes + SLACK) / ALIGNMENT) * ALIGNMENT;
     let range = this.free.find(({ start, end }) => end - start >= size);
     if (range === undefined) {
       if (!this.grow(size)) return undefined;
@@ -129,9 +132,14 @@ function heapOf(memory: WebAssemblyMemory): Heap {
 
 export const kernelMemory = new KernelMemory();
 
-/** Allocations that are released together. */
+/** Allocations that are released together, at the latest when their owner is collected. */
 export class Arena {
   private readonly addresses: number[] = [];
+
+  /** @param owner whatever uses the memory */
+  constructor(owner?: object) {
+    if (owner !== undefined) collected.register(owner, this.addresses);
+  }
 
   /** @returns undefined where there is no more room */
   allocate(bytes: number): number | undefined {
@@ -140,7 +148,22 @@ export class Arena {
     return address;
   }
 
-  release(): void {
-    for (const address of this.addresses.splice(0)) kernelMemory.release(address);
+  /** @throws RangeError where there is no more room */
+  require(bytes: number): number {
+    const address = this.allocate(bytes);
+    if (address === undefined) throw new RangeError(`no ${bytes} bytes are left of the kernels' memory`);
+    return address;
+  }
+
+  /** All of them, or the one at an address. */
+  release(address?: number): void {
+    const { addresses } = this;
+    const gone =
+      address === undefined ? addresses.splice(0) : addresses.splice(addresses.indexOf(address), 1);
+    for (const one of gone) kernelMemory.release(one);
   }
 }
+
+const collected = new FinalizationRegistry<number[]>((addresses) => {
+  for (const address of addresses.splice(0)) kernelMemory.release(address);
+});
