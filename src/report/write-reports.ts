@@ -1,10 +1,9 @@
 /** The four files of a check, each beside its final name and renamed into place. */
-import { mkdir } from "node:fs/promises";
 import { join } from "node:path";
-import { InputError } from "../util/errors.ts";
-import { adviceFor, writeTextFile } from "../util/write-file.ts";
+import { writeTextFile } from "../util/write-file.ts";
 import { writeHtml } from "./html.ts";
 import { flagsJson, reportJson } from "./json.ts";
+import { makeFolder } from "./make-folder.ts";
 import type { Check } from "./report.ts";
 import { writeText } from "./text.ts";
 
@@ -32,20 +31,4 @@ export async function writeReports(check: Check, folder: string): Promise<string
     paths.push(path);
   }
   return paths;
-}
-
-async function makeFolder(folder: string): Promise<void> {
-  try {
-    await mkdir(folder, { recursive: true });
-  } catch (cause) {
-    const code = (cause as NodeJS.ErrnoException).code ?? "";
-    throw new InputError(
-      `the folder cannot be made${code === "" ? "" : ` (${code})`}`,
-      { file: folder },
-      adviceFor(code),
-      {
-        cause,
-      },
-    );
-  }
 }
