@@ -17,7 +17,8 @@ export const simulate = command<SimulateArguments>({
         type: "string",
         demandOption: true,
         requiresArg: true,
-        describe: "Random-groups FITS file to write; never one that is there already",
+        describe:
+          "File to write: random-groups FITS, or FITS-IDI when its name ends in .idifits; never one that is there already",
       }),
   handler: async ({ scenario, out }) => {
     const { runSimulate } = await import("./run-simulate.ts");

@@ -2,10 +2,10 @@
 import { stat } from "node:fs/promises";
 import { basename } from "node:path";
 import { InputError } from "../util/errors.ts";
+import { formatOf, type WriteOptions, withoutSuffix } from "./file-formats.ts";
 import { readScenario } from "./scenario-file.ts";
 import { simulate } from "./simulate.ts";
 import { truthFile, writeTruth } from "./truth-file.ts";
-import { type UvfitsOptions, writeUvfits } from "./write-uvfits.ts";
 
 export interface SimulatedFile {
   readonly path: string;
@@ -22,15 +22,15 @@ export function truthPathOf(path: string): string {
   return `${withoutSuffix(path)}.truth.json`;
 }
 
-function withoutSuffix(path: string): string {
-  return path.replace(/\.(uvfits|fits|uvf|fit)$/i, "");
-}
-
-/** @throws InputError when the scenario is none, or a file to write is there already or cannot be written */
+/**
+ * The format is that of the suffix.
+ *
+ * @throws InputError when the scenario is none, or a file to write is there already or cannot be written
+ */
 export async function simulateFile(
   scenarioPath: string,
   path: string,
-  options: UvfitsOptions = {},
+  options: WriteOptions = {},
 ): Promise<SimulatedFile> {
   const { scenario, located } = await readScenario(scenarioPath);
   const truthPath = truthPathOf(path);
@@ -43,7 +43,7 @@ export async function simulateFile(
   }
   const { dataset, truth } = simulated;
   const history = [`simulated: ${scenario.name}, seed ${scenario.seed}; invented, no real observation`];
-  await writeUvfits(dataset, path, { history, ...options });
+  await formatOf(path).write(dataset, path, { history, ...options });
   const facts = await truthFile(truth, scenario, basename(withoutSuffix(path)));
   await writeTruth(facts, truthPath);
   const { size } = await stat(path);

@@ -2,7 +2,7 @@
  * A dataset as a random-groups FITS file, written row by row: what a correlator's export looks like, small tables after
  * the groups. Conventions of the visibility data on top of FITS as in Greisen 2016 (recalled).
  */
-import { type Dataset, POLARIZATIONS, type SampleBlock } from "../dataset/dataset.ts";
+import type { Dataset, SampleBlock } from "../dataset/dataset.ts";
 import {
   type AxisToWrite,
   bigEndian,
@@ -16,7 +16,7 @@ import {
   real,
 } from "../dataset/fits/write.ts";
 import { dateFromMjd, MJD_EPOCH_JD } from "../util/dates.ts";
-import { InputError } from "../util/errors.ts";
+import { stokesAxis, unfit } from "./stokes-axis.ts";
 import { antennaTable, frequencyTable, sourceTable } from "./uvfits-tables.ts";
 
 export interface UvfitsOptions {
@@ -122,35 +122,20 @@ function layoutOf(dataset: Dataset, options: UvfitsOptions): Layout {
   };
 }
 
-function unfit(dataset: Dataset, found: string, expected: string): InputError {
-  return new InputError(`${dataset.name} does not fit the file: ${found}, expected ${expected}`);
-}
-
 function axesOf(dataset: Dataset, withSubbands: boolean, sources: boolean): AxisToWrite[] {
   const { shape, setups, fields } = dataset;
   const { frequencies } = setups[0]!;
-  const codes = dataset.polarizations.map(stokesCode);
-  const step = codes.length > 1 ? codes[1]! - codes[0]! : codes[0]! < 0 ? -1 : 1;
-  const uneven = codes.some((code, i) => code !== codes[0]! + i * step);
-  if (uneven) {
-    throw unfit(dataset, `polarizations ${dataset.polarizations.join(", ")}`, "evenly spaced Stokes codes");
-  }
+  const stokes = stokesAxis(dataset);
   const channelStep = shape.channels > 1 ? frequencies[1]! - frequencies[0]! : setups[0]!.channelWidths[0]!;
   const centre = sources ? undefined : fields[0];
   return [
     { type: "COMPLEX", length: 3, value: 1, step: 1 },
-    { type: "STOKES", length: shape.polarizations, value: codes[0]!, step },
+    { type: "STOKES", length: shape.polarizations, ...stokes },
     { type: "FREQ", length: shape.channels, value: frequencies[0]!, step: channelStep },
     ...(withSubbands ? [{ type: "IF", length: shape.subbands, value: 1, step: 1 }] : []),
     { type: "RA", length: 1, value: (centre?.rightAscension ?? 0) * DEGREES, step: 1 },
     { type: "DEC", length: 1, value: (centre?.declination ?? 0) * DEGREES, step: 1 },
   ];
-}
-
-/** FITS Standard 4.0, table 29: 1 to 4 for I Q U V, -1 to -4 for RR LL RL LR, -5 to -8 for XX YY XY YX. */
-function stokesCode(name: Dataset["polarizations"][number]): number {
-  const place = POLARIZATIONS.indexOf(name);
-  return place < 4 ? place + 1 : 3 - place;
 }
 
 function parameterCards(

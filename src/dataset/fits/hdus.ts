@@ -107,7 +107,7 @@ async function requireFits(source: ByteSource, cursor: Cursor): Promise<void> {
   throw new InputError(
     "this is not a FITS file: expected the first card to be SIMPLE  = T",
     place,
-    "visvet reads random-groups FITS files, plain or gzipped",
+    "visvet reads random-groups FITS and FITS-IDI files, plain or gzipped",
   );
 }
 
@@ -121,7 +121,7 @@ const KNOWN_STARTS = [
   {
     bytes: [0x89, 0x48, 0x44, 0x46],
     what: "an HDF5 file",
-    advice: "visvet reads random-groups FITS files, plain or gzipped",
+    advice: "visvet reads random-groups FITS and FITS-IDI files, plain or gzipped",
   },
 ];
 
@@ -238,7 +238,8 @@ function truncated(hdu: Hdu, fileEnd: number): InputError {
   const unitBytes = count === 0 ? dataBytes : Math.floor(dataBytes / count);
   const whole = Math.max(0, Math.floor((fileEnd - dataStart) / unitBytes));
   const promise = count === 0 ? `${dataBytes} bytes of data` : `${count} ${unit}s of ${unitBytes} bytes`;
-  const inside = count === 0 ? "inside them" : `inside ${unit} ${Math.min(whole, count - 1) + 1}`;
+  const fit = Math.min(whole, count - 1);
+  const inside = count === 0 ? "inside them" : `inside ${unit} ${fit + 1}: ${fit} of ${count} are whole`;
   return new InputError(
     `the header promises ${promise}, to byte ${end}; the file ends at byte ${fileEnd}, ${inside}`,
     { ...header.place, byte: count === 0 ? dataStart : dataStart + whole * unitBytes },

@@ -32,6 +32,25 @@ export interface TableToWrite {
   readonly columns: readonly ColumnToWrite[];
 }
 
+/** A table whose rows are written one by one, after the header. */
+export interface TableToStream extends Omit<TableToWrite, "columns"> {
+  readonly columns: readonly Omit<ColumnToWrite, "cells">[];
+  readonly rows: number;
+}
+
+/** The header of a table of `rows` rows, and the bytes of a row. Columns of fixed width only. */
+export function streamedTable(table: TableToStream): { header: Uint8Array; rowBytes: number } {
+  const rowBytes = table.columns.reduce((sum, { name, form }) => sum + fixedBytes(name, form), 0);
+  const header = tableHeader(table, table.columns, { width: rowBytes, rows: table.rows, heapBytes: 0 });
+  return { header, rowBytes };
+}
+
+function fixedBytes(name: string, form: string): number {
+  const match = /^(\d*)([LXBIJKAEDCM])$/.exec(form);
+  if (match === null) throw new RangeError(`column ${name}: form "${form}" has no fixed width`);
+  return cellBytes(match[2]!, match[1] === "" ? 1 : Number(match[1]));
+}
+
 interface Packed {
   readonly column: ColumnToWrite;
   readonly code: string;
@@ -58,7 +77,8 @@ export function binaryTable(table: TableToWrite): Uint8Array {
   });
   const width = packed.reduce((sum, { width: bytes }) => sum + bytes, 0);
   const heapBytes = heap.reduce((sum, part) => sum + part.length, 0);
-  const header = tableHeader(table, packed, { width, rows, heapBytes });
+  const forms = packed.map(({ column, form }) => ({ ...column, form }));
+  const header = tableHeader(table, forms, { width, rows, heapBytes });
   const dataBytes = width * rows + heapBytes;
   const out = new Uint8Array(header.length + dataBytes + padding(dataBytes));
   out.set(header);
@@ -77,8 +97,8 @@ export function binaryTable(table: TableToWrite): Uint8Array {
 }
 
 function tableHeader(
-  table: TableToWrite,
-  packed: readonly Packed[],
+  table: Omit<TableToWrite, "columns">,
+  columns: readonly Omit<ColumnToWrite, "cells">[],
   size: { width: number; rows: number; heapBytes: number },
 ): Uint8Array {
   const cards: CardToWrite[] = [
@@ -89,13 +109,13 @@ function tableHeader(
     card("NAXIS2", size.rows, "rows"),
     card("PCOUNT", size.heapBytes),
     card("GCOUNT", 1),
-    card("TFIELDS", packed.length),
+    card("TFIELDS", columns.length),
     card("EXTNAME", table.name),
     card("EXTVER", table.version ?? 1),
   ];
-  packed.forEach(({ column, form }, i) => {
+  columns.forEach((column, i) => {
     const n = i + 1;
-    cards.push(card(`TTYPE${n}`, column.name), card(`TFORM${n}`, form));
+    cards.push(card(`TTYPE${n}`, column.name), card(`TFORM${n}`, column.form));
     if (column.unit !== undefined) cards.push(card(`TUNIT${n}`, column.unit));
     for (const [word, value] of Object.entries(column.keywords ?? {})) cards.push(card(`${word}${n}`, value));
   });

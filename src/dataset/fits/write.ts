@@ -13,7 +13,14 @@ export {
   type ParameterToWrite,
 } from "./write-groups.ts";
 export { BLOCK, type CardToWrite, card, headerBlocks, padding, type Real, real } from "./write-header.ts";
-export { binaryTable, type CellToWrite, type ColumnToWrite, type TableToWrite } from "./write-table.ts";
+export {
+  binaryTable,
+  type CellToWrite,
+  type ColumnToWrite,
+  streamedTable,
+  type TableToStream,
+  type TableToWrite,
+} from "./write-table.ts";
 
 import { padding } from "./write-header.ts";
 

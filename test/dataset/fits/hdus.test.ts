@@ -88,7 +88,7 @@ describe("openFits", () => {
   it("refuses what is not FITS, naming the packing where it is known", async () => {
     expect(await lineOfError(open(Buffer.from("hello, world".repeat(300))))).toBe(
       "made.fits, byte 0: this is not a FITS file: expected the first card to be SIMPLE  = T. " +
-        "visvet reads random-groups FITS files, plain or gzipped",
+        "visvet reads random-groups FITS and FITS-IDI files, plain or gzipped",
     );
     expect(await lineOfError(open(Buffer.from("BZh91AY&SY")))).toContain(
       "this is a bzip2 file. Unpack it first",
