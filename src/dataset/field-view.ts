@@ -1,8 +1,41 @@
 /**
  * The rows of one field of a dataset, as a dataset of its own. Nothing is copied but the block at hand.
  */
-import { InputError } from "../util/errors.ts";
-import type { BlockRequest, Dataset, SampleBlock } from "./dataset.ts";
+import { InputError, nearest } from "../util/errors.ts";
+import type { BlockRequest, Dataset, Field, SampleBlock } from "./dataset.ts";
+
+/**
+ * The field that a user means, by its id or by its name, whatever the case.
+ *
+ * @throws InputError naming the fields there are, when it is none of them or several
+ */
+export function fieldNamed(dataset: Dataset, asked: string): Field {
+  const wanted = asked.trim();
+  const byId = dataset.fields.find(({ id }) => String(id) === wanted);
+  if (byId !== undefined) return byId;
+  const named = dataset.fields.filter(({ name }) => name.trim().toUpperCase() === wanted.toUpperCase());
+  if (named.length === 1) return named[0]!;
+  const place = { file: dataset.files[0] ?? dataset.name };
+  if (named.length > 1) {
+    const ids = named.map(({ id }) => id).join(", ");
+    throw new InputError(
+      `${named.length} fields are called "${wanted}": ${ids}`,
+      place,
+      "Give --field the id",
+    );
+  }
+  const near = nearest(
+    wanted,
+    dataset.fields.map(({ name }) => name.trim()),
+  );
+  const shown = dataset.fields.slice(0, 20).map(({ id, name }) => `${id} ${name.trim()}`);
+  const more = dataset.fields.length - shown.length;
+  throw new InputError(
+    `there is no field "${wanted}": the fields are ${shown.join(", ")}${more > 0 ? ` and ${more} more` : ""}`,
+    place,
+    near === undefined ? "Name one of these with --field, by id or name" : `Did you mean "${near}"?`,
+  );
+}
 
 /** Runs of consecutive rows of the field: the rows [start, start + length) of the whole dataset. Plain data. */
 export interface FieldRuns {
@@ -65,14 +98,26 @@ async function runsOf(dataset: Dataset, id: number): Promise<FieldRuns> {
   return { start: Float64Array.from(start), length: Float64Array.from(length), rows };
 }
 
-/** Row of the whole dataset that is row `at` of the field, 0 <= at < runs.rows. */
-function wholeRow(runs: FieldRuns, at: number): number {
-  let left = at;
-  for (let run = 0; run < runs.start.length; run++) {
-    if (left < runs.length[run]!) return runs.start[run]! + left;
-    left -= runs.length[run]!;
+/** Rows of other fields that are read along: a new start in the file costs more than so many. */
+const READ_ALONG = 2000;
+
+/** Rows of the whole dataset to read for the rows [first, last) of the field: runs, joined where little lies between. */
+function* spansOf(runs: FieldRuns, first: number, last: number): Generator<[number, number]> {
+  let span: [number, number] | undefined;
+  let before = 0;
+  for (let run = 0; run < runs.start.length && before < last; run++) {
+    const length = runs.length[run]!;
+    const from = runs.start[run]! + Math.max(0, first - before);
+    const to = runs.start[run]! + Math.min(length, last - before);
+    before += length;
+    if (from >= to) continue;
+    if (span !== undefined && from - span[1] <= READ_ALONG) span[1] = to;
+    else {
+      if (span !== undefined) yield span;
+      span = [from, to];
+    }
   }
-  throw new RangeError(`row ${at} of a field of ${runs.rows} rows`);
+  if (span !== undefined) yield span;
 }
 
 async function* blocksOfField(
@@ -83,18 +128,18 @@ async function* blocksOfField(
 ): AsyncIterable<SampleBlock> {
   const first = Math.max(0, request.rows?.[0] ?? 0);
   const last = Math.min(runs.rows, request.rows?.[1] ?? runs.rows);
-  if (first >= last) return;
   const { subbands, channels, polarizations } = dataset.shape;
   const rowSamples = subbands * channels * polarizations;
-  const rows: [number, number] = [wholeRow(runs, first), wholeRow(runs, last - 1) + 1];
   let done = first;
-  for await (const block of dataset.blocks({ ...request, rows })) {
-    const kept = keepField(block, id, rowSamples);
-    if (kept === 0) continue;
-    block.firstRow = done;
-    block.rows = kept;
-    done += kept;
-    yield block;
+  for (const rows of spansOf(runs, first, last)) {
+    for await (const block of dataset.blocks({ ...request, rows })) {
+      const kept = keepField(block, id, rowSamples);
+      if (kept === 0) continue;
+      block.firstRow = done;
+      block.rows = kept;
+      done += kept;
+      yield block;
+    }
   }
 }
 

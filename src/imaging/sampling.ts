@@ -36,7 +36,8 @@ const TOTAL_INTENSITY: readonly (readonly Polarization[])[] = [["I"], ["RR", "LL
 export function samplingOf(survey: Survey): Sampling {
   const { dataset } = survey;
   const products = intensityProducts(dataset);
-  const field = mainField(survey, products);
+  const weights = weightsOf(survey, products);
+  const field = mainField(dataset.fields, weights);
   const channelUsed = usedChannels(survey, products);
   const range = frequencyRange(dataset, channelUsed);
   return {
@@ -45,7 +46,7 @@ export function samplingOf(survey: Survey): Sampling {
     products,
     channelUsed,
     meanFrequency: range.mean,
-    totalWeight: weightOf(survey.tracks, dataset, products, field.id),
+    totalWeight: weights.get(field.id) ?? 0,
     ...spacings(survey, products, field.id, range),
     ...everySpacing(survey, field.id),
   };
@@ -79,23 +80,35 @@ export function trackWeight(tracks: Tracks, offset: number, products: Int32Array
   return sum;
 }
 
-function weightOf(tracks: Tracks, dataset: Dataset, products: Int32Array, field: number): number {
+/** Usable weight of the products that images add, by Field.id, of the fields that have rows. */
+export function fieldWeights(survey: Survey): ReadonlyMap<number, number> {
+  return weightsOf(survey, intensityProducts(survey.dataset));
+}
+
+function weightsOf({ tracks, dataset }: Survey, products: Int32Array): Map<number, number> {
+  const weights = new Map<number, number>();
+  let field = Number.NaN;
   let sum = 0;
   for (let cell = 0; cell < tracks.cells; cell++) {
-    if (tracks.field[cell] !== field) continue;
+    // Cells of one field follow each other: sums are looked up where it changes.
+    if (tracks.field[cell] !== field) {
+      if (cell > 0) weights.set(field, sum);
+      field = tracks.field[cell]!;
+      sum = weights.get(field) ?? 0;
+    }
     for (let s = 0; s < dataset.shape.subbands; s++) {
       sum += trackWeight(tracks, trackOffset(dataset, cell, s), products);
     }
   }
-  return sum;
+  if (tracks.cells > 0) weights.set(field, sum);
+  return weights;
 }
 
-function mainField(survey: Survey, products: Int32Array): Field {
-  const { dataset, tracks } = survey;
-  let best = dataset.fields[0] ?? NO_FIELD;
+function mainField(fields: readonly Field[], weights: ReadonlyMap<number, number>): Field {
+  let best = fields[0] ?? NO_FIELD;
   let most = -1;
-  for (const field of dataset.fields) {
-    const weight = weightOf(tracks, dataset, products, field.id);
+  for (const field of fields) {
+    const weight = weights.get(field.id) ?? 0;
     if (weight > most) {
       best = field;
       most = weight;

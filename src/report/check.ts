@@ -9,6 +9,7 @@ import { payingFlags } from "../flags/pays.ts";
 import { reconcile } from "../flags/reconcile.ts";
 import { lossTogether, suggestFlags, withCosts } from "../flags/suggest.ts";
 import { forecastAfter } from "../imaging/forecast.ts";
+import type { SurveyPart } from "../measure/survey-part.ts";
 import { blindSpots } from "./blind-spots.ts";
 import { judgeFields } from "./fields.ts";
 import { type CheckRequest, look } from "./look.ts";
@@ -16,10 +17,17 @@ import type { Check } from "./report.ts";
 
 export type { CheckRequest } from "./look.ts";
 
-/** @throws InputError where the dataset turns out to be malformed */
-export async function checkDataset(dataset: Dataset, request: CheckRequest): Promise<Check> {
+/**
+ * @param surveyed the state of a survey of all the rows, where there is one already: saves the first pass
+ * @throws InputError where the dataset turns out to be malformed
+ */
+export async function checkDataset(
+  dataset: Dataset,
+  request: CheckRequest,
+  surveyed?: SurveyPart,
+): Promise<Check> {
   const { rules, workers } = request;
-  const first = await look(dataset, request, null, "");
+  const first = await look(dataset, request, null, "", surveyed);
   const { survey, events, plan, judged } = first;
   request.onStage?.("Weighing flags", 0);
   const suggestion = await suggestFlags({

@@ -2,6 +2,7 @@
  * The HTML report: one file that needs no network, no script and nothing beside it. The same check gives the same
  * bytes.
  */
+import { fieldsSection } from "./page/fields.ts";
 import { figuresSection } from "./page/figures.ts";
 import { findingsSection } from "./page/findings.ts";
 import { flagsSection } from "./page/flags.ts";
@@ -26,6 +27,7 @@ const POLICY =
   "default-src 'none'; style-src 'unsafe-inline'; img-src data:; base-uri 'none'; form-action 'none'";
 
 const CONTENTS: readonly (readonly [string, string])[] = [
+  ["fields", "Fields"],
   ["flags", "Flags"],
   ["limits", "Limits"],
   ["findings", "Findings"],
@@ -54,10 +56,11 @@ export function writeHtml(check: Check): string {
 <div class="sheet">
 <header class="top">
 <p class="mark">visvet report</p>
-<nav aria-label="Contents"><ul>${CONTENTS.map(([id, title]) => html`<li><a href="#${id}">${title}</a></li>`)}</ul></nav>
+<nav aria-label="Contents"><ul>${CONTENTS.filter(([id]) => id !== "fields" || check.byField !== null).map(([id, title]) => html`<li><a href="#${id}">${title}</a></li>`)}</ul></nav>
 </header>
 <main id="main">
 ${verdictSection(check)}
+${fieldsSection(check)}
 ${flagsSection(check, words)}
 ${limitsSection(check, words)}
 ${findingsSection(check, words)}

@@ -8,13 +8,14 @@ import type { Plan } from "../imaging/plan.ts";
 import type { Measure } from "../measure/table.ts";
 import type { Finding } from "../rules/finding.ts";
 import { frequencyRange } from "./dataset-facts.ts";
+import type { FieldChecks } from "./fields.ts";
 import type { Check } from "./report.ts";
 import { tool } from "./tool.ts";
 import { exactly, jsonText } from "./trim.ts";
 
 /** The whole check as `report.json` holds it, ending in a line end. */
 export function reportJson(check: Check): string {
-  const { weightings, wTerm, smearing, coverage, limits, advice } = check.image;
+  const { advice } = check.image;
   return jsonText({
     format: "visvet-report",
     version: 1,
@@ -26,11 +27,35 @@ export function reportJson(check: Check): string {
     verdict: check.verdict,
     findings: check.findings.map(findingPart),
     flags: flagsPart(check),
-    image: { weightings, wTerm, smearing, coverage, limits } satisfies Omit<ImageForecast, "advice">,
+    image: imagePart(check.image),
     settings: advice,
+    byField: check.byField === null ? undefined : fieldsPart(check.byField),
     measures: Object.fromEntries([...check.measures].map(([name, measure]) => [name, measurePart(measure)])),
     provenance: provenancePart(check),
   });
+}
+
+function imagePart({ weightings, wTerm, smearing, coverage, limits }: ImageForecast): object {
+  return { weightings, wTerm, smearing, coverage, limits } satisfies Omit<ImageForecast, "advice">;
+}
+
+function fieldsPart({ judged, left, main }: FieldChecks): object {
+  return {
+    judged: judged.map((one) => ({
+      id: one.field.id,
+      name: one.field.name,
+      main: one.field.id === main,
+      rows: one.rows,
+      weightFraction: one.weightFraction,
+      score: Math.round(one.score),
+      scoreAfterFlags: Math.round(one.scoreAfterFlags),
+      verdict: one.verdict,
+      findings: one.findings.map(findingPart),
+      plan: planPart(one.plan),
+      image: imagePart(one.image),
+    })),
+    left: left.map(({ id, name, why }) => ({ id, name, why })),
+  };
 }
 
 /** The suggested flags as `flags.json` holds them, ending in a line end. */

@@ -9,6 +9,7 @@ import type { Plan } from "../imaging/plan.ts";
 import type { Survey } from "../measure/survey-result.ts";
 import type { Measure } from "../measure/table.ts";
 import type { Finding, Judgement, Verdict } from "../rules/finding.ts";
+import type { FieldChecks } from "./fields.ts";
 
 /** One check of one dataset, with everything the writers need. */
 export interface Check {
@@ -29,6 +30,8 @@ export interface Check {
   /** samples that look at fault but whose flags would not be worth their cost: for a person to judge */
   readonly doubts: readonly Doubt[];
   readonly image: ImageForecast;
+  /** each field judged on its own data; null where there is one alone */
+  readonly byField: FieldChecks | null;
   readonly beamPicture: BeamPicture | null;
   readonly verdict: Verdict;
   /** of the rules file set: id and what it was loaded from, "ours" or a path the user gave */

@@ -4,6 +4,7 @@ import { numberTables } from "./numbers.ts";
 import type { Check } from "./report.ts";
 import { scopeWords } from "./scope.ts";
 import { blindSection, notesSection } from "./text/closing.ts";
+import { fieldsSection } from "./text/fields.ts";
 import { findingsSection } from "./text/findings.ts";
 import { flagsSection } from "./text/flags.ts";
 import { limitsSection } from "./text/limits.ts";
@@ -22,6 +23,7 @@ export function writeText(check: Check, options: TextOptions): string {
   const paper = new Paper(options);
   const words = scopeWords(check.dataset);
   verdictSection(paper, check);
+  fieldsSection(paper, check);
   limitsSection(paper, check, words);
   findingsSection(paper, check, words);
   flagsSection(paper, check, words);

@@ -419,6 +419,7 @@ export function faultyCheck(dataset: Dataset = fixtureDataset()): Check {
       },
     ],
     image: fixtureImage(),
+    byField: null,
     beamPicture: fixtureBeam(),
     verdict: "hold",
     rulesFrom: [
