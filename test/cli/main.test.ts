@@ -104,7 +104,9 @@ describe("visvet check", () => {
   it("names the fields when there is none of an id", () => {
     const { status, err } = visvet("check", "good.uvfits", "--field", "9");
     expect(status).toBe(2);
-    expect(err).toMatch(/there is no field "9": the fields are 1 Heron\. Name one of these with --field, by id or name\n$/);
+    expect(err).toMatch(
+      /there is no field "9": the fields are 1 Heron\. Name one of these with --field, by id or name\n$/,
+    );
   });
 });
 
