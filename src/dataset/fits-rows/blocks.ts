@@ -1,10 +1,12 @@
-/** The rows of a file in blocks: one buffer is filled from the file while the block before it is used. */
-import { InputError } from "../../util/errors.ts";
+/** The rows of a file in blocks. */
+import { Arena } from "../../util/kernels/memory.ts";
 import type { BlockRequest, SampleBlock } from "../dataset.ts";
-import type { ByteSource, Cursor } from "../fits/byte-source.ts";
+import type { ByteSource } from "../fits/byte-source.ts";
 import { newBlock } from "../new-block.ts";
 import type { TableFlags } from "../table-flags.ts";
+import { Chunks } from "./chunks.ts";
 import { movedColumns, movedSum, type WeightColumns } from "./columns.ts";
+import { fillPairs, fillSamples, fillWeights } from "./kernel-samples.ts";
 import {
   type BlockRange,
   blockRange,
@@ -16,9 +18,6 @@ import {
 import { fillRows, fillSum, type RawRows, type RowContext } from "./rows.ts";
 import {
   fillFactorWeights,
-  fillPlainPairs,
-  fillPlainSamples,
-  fillPlainWeights,
   fillScaledSamples,
   isPlainFloat,
   isPlainPairs,
@@ -42,77 +41,28 @@ export async function* readBlocks(reader: RowReader, request: BlockRequest): Asy
   const { source, store, samples, flags } = reader;
   const plan = planReads(store, samples.shape, request);
   if (plan.firstRow === plan.endRow) return;
-  const decode = blockDecoder(reader, plan, request);
+  const arena = new Arena();
+  const decode = blockDecoder(reader, plan, request, arena);
   const laysFlags = request.want !== "rows" && flags !== undefined;
   const cursor = await source.cursor(blockRange(store, plan, plan.firstRow).byte);
-  const buffers = [newBuffer(plan), newBuffer(plan)];
-  const read = (row: number, k: number) => {
-    const range = blockRange(store, plan, row);
-    const reading = readRange(source, cursor, store, plan, range, buffers[k % 2]!);
-    // Rejections are met where the block is awaited; an iterator that is left early must not leave one unhandled.
-    reading.catch(() => {});
-    return reading;
-  };
-  let pending = read(plan.firstRow, 0);
+  const chunks = new Chunks(source, cursor, store, plan, arena);
   try {
-    for (let row = plan.firstRow, k = 0; row < plan.endRow; row += plan.blockRows, k++) {
-      const bytes = await pending;
-      const range = blockRange(store, plan, row);
-      if (row + range.rows < plan.endRow) pending = read(row + range.rows, k + 1);
-      const block = decode(bytes, range);
-      if (laysFlags) flags.apply(block, samples.shape);
-      yield block;
+    for (let first = plan.firstRow; first < plan.endRow; first += chunks.rows) {
+      const read = chunks.read(first);
+      const bytes = read instanceof Promise ? await read : read;
+      const end = Math.min(plan.endRow, first + chunks.rows);
+      for (let row = first; row < end; row += plan.blockRows) {
+        const at = (row - first) * plan.rowBytes;
+        const block = decode(bytes.subarray(at), blockRange(store, plan, row));
+        if (laysFlags) flags.apply(block, samples.shape);
+        yield block;
+      }
     }
   } finally {
-    await pending.catch(() => {});
+    await chunks.settle();
     await cursor.close();
+    arena.release();
   }
-}
-
-function newBuffer(plan: ReadPlan): Uint8Array {
-  return new Uint8Array(plan.blockRows * plan.rowBytes);
-}
-
-/** Piece by piece when most of each row is skipped, else in one read. */
-async function readRange(
-  source: ByteSource,
-  cursor: Cursor,
-  store: RowStore,
-  plan: ReadPlan,
-  range: BlockRange,
-  buffer: Uint8Array,
-): Promise<Uint8Array> {
-  const bytes = buffer.subarray(0, range.rows * plan.rowBytes);
-  if (!plan.scattered) {
-    requireAll(store, range, await cursor.read(bytes, range.byte), bytes.length);
-    return bytes;
-  }
-  const readRow = async (row: number) => {
-    let at = row * plan.rowBytes;
-    for (const { offset, bytes: length } of plan.pieces) {
-      const part = bytes.subarray(at, at + length);
-      const got = await cursor.read(part, range.byte + row * store.rowBytes + offset);
-      requireAll(store, { ...range, firstRow: range.firstRow + row }, got, length);
-      at += length;
-    }
-  };
-  const together = source.sequential ? 1 : 32;
-  for (let row = 0; row < range.rows; row += together) {
-    const count = Math.min(together, range.rows - row);
-    await Promise.all(Array.from({ length: count }, (_, k) => readRow(row + k)));
-  }
-  return bytes;
-}
-
-/** The size was right when the file was opened. */
-function requireAll(store: RowStore, range: BlockRange, got: number, expected: number): void {
-  if (got === expected) return;
-  throw new InputError(
-    `the file now ends at byte ${range.byte + got}: expected ${expected} bytes of ${store.word} ${range.firstRow + 1} ` +
-      "and after",
-    { ...store.place, byte: range.byte },
-    "The file became shorter while it was read: wait until it is written",
-  );
 }
 
 /** A function that turns the bytes of a range into the one block that it fills again and again. */
@@ -120,9 +70,10 @@ function blockDecoder(
   reader: RowReader,
   plan: ReadPlan,
   request: BlockRequest,
+  arena: Arena,
 ): (bytes: Uint8Array, range: BlockRange) => SampleBlock {
   const { store, samples } = reader;
-  const block = newBlock(plan.blockRows, samples.shape, request.want);
+  const block = newBlock(plan.blockRows, samples.shape, request.want, arena);
   const scratch = new Float64Array(plan.blockRows);
   const moved = (offset: number) => placeInPieces(plan.pieces, offset);
   const context = { ...reader.context, columns: movedColumns(reader.context.columns, moved) };
@@ -157,8 +108,8 @@ function sampleFiller(
   const samples = readsArray ? { ...stored, rowBytes: plan.rowBytes, start: moved(stored.start) } : stored;
   if (isPlainFloat(samples)) {
     return want === "samples"
-      ? (raw, block) => fillPlainSamples(raw.view, raw.rows, samples, block)
-      : (raw, block) => fillPlainWeights(raw.view, raw.rows, samples, block.weight);
+      ? (raw, block) => fillSamples(raw.view, raw.rows, samples, block)
+      : (raw, block) => fillWeights(raw.view, raw.rows, samples, block.weight);
   }
   if (samples.hasWeight) {
     return (raw, block) =>
@@ -169,7 +120,7 @@ function sampleFiller(
   const plain = weights.scale === undefined && isPlainPairs(samples);
   return (raw, block) => {
     fillFactors(raw);
-    if (want === "samples" && plain) fillPlainPairs(raw.view, raw.rows, samples, block);
+    if (want === "samples" && plain) fillPairs(raw.view, raw.rows, samples, block);
     if (plain || !readsArray) {
       fillFactorWeights(raw.rows, samples.shape, factors, block.weight);
     } else {

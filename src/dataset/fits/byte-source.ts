@@ -18,6 +18,8 @@ export interface Cursor {
    * @throws InputError when the content is damaged
    */
   read(into: Uint8Array, at: number): Promise<number>;
+  /** The same without waiting for others, where that is possible at all; quickest where the bytes are in memory. */
+  readNow?(into: Uint8Array, at: number): number;
   /** `at`, or the size of the content when that is less. */
   reach(at: number): Promise<number>;
   close(): Promise<void>;

@@ -2,7 +2,7 @@
  * Bytes of a file, plain or gzipped, at any position, without ever holding the file.
  * Positions and sizes are of the content: of what a gzipped file unpacks to.
  */
-import { constants } from "node:fs";
+import { constants, readSync } from "node:fs";
 import { access, open, stat } from "node:fs/promises";
 import { InputError } from "../../util/errors.ts";
 import type { ByteSource, Cursor } from "./byte-source.ts";
@@ -95,8 +95,25 @@ class PlainSource implements ByteSource {
         }
         return done;
       },
+      readNow(into, at) {
+        let done = 0;
+        while (done < into.length) {
+          const bytesRead = readNow(handle.fd, path, into, done, at + done);
+          if (bytesRead === 0) break;
+          done += bytesRead;
+        }
+        return done;
+      },
       reach: async (at) => Math.min(at, bytesOnDisk),
       close: () => handle.close(),
     };
+  }
+}
+
+function readNow(fd: number, path: string, into: Uint8Array, from: number, at: number): number {
+  try {
+    return readSync(fd, into, from, into.length - from, at);
+  } catch (error) {
+    throw asInputError(error, path);
   }
 }

@@ -71,3 +71,36 @@ export function splitWeights(from: usize, stride: usize, rows: i32, samples: i32
     }
   }
 }
+
+export function splitPairs(
+  from: usize,
+  stride: usize,
+  rows: i32,
+  samples: i32,
+  real: usize,
+  imag: usize,
+): void {
+  const vectors = samples >> 2;
+  const rest = samples & 3;
+  let re = real;
+  let im = imag;
+  for (let row = 0; row < rows; row++) {
+    let at = from + <usize>row * stride;
+    for (let k = 0; k < vectors; k++) {
+      const a = v128.load(at);
+      const b = v128.load(at, 16);
+      v128.store(re, i8x16.shuffle(a, b, 3, 2, 1, 0, 11, 10, 9, 8, 19, 18, 17, 16, 27, 26, 25, 24));
+      v128.store(im, i8x16.shuffle(a, b, 7, 6, 5, 4, 15, 14, 13, 12, 23, 22, 21, 20, 31, 30, 29, 28));
+      at += 32;
+      re += 16;
+      im += 16;
+    }
+    for (let k = 0; k < rest; k++) {
+      store<i32>(re, number(at));
+      store<i32>(im, number(at + 4));
+      at += 8;
+      re += 4;
+      im += 4;
+    }
+  }
+}

@@ -22,7 +22,9 @@ export interface ByteOrderKernels {
     imag: number,
     weight: number,
   ): void;
-  /** The weights of such triples alone. */
+  /** Rows of (real, imaginary) pairs likewise. */
+  splitPairs(from: number, stride: number, rows: number, samples: number, real: number, imag: number): void;
+  /** The weights of triples alone. */
   splitWeights(from: number, stride: number, rows: number, samples: number, weight: number): void;
 }
 
@@ -39,6 +41,19 @@ export const plainByteOrder: ByteOrderKernels = {
         u32[real / 4 + out] = view.getUint32(at);
         u32[imag / 4 + out] = view.getUint32(at + 4);
         u32[weight / 4 + out] = view.getUint32(at + 8);
+      }
+    }
+  },
+  splitPairs(from, stride, rows, samples, real, imag) {
+    const { u32, u8 } = kernelMemory.heap;
+    const view = new DataView(u8.buffer);
+    let out = 0;
+    for (let row = 0; row < rows; row++) {
+      const start = from + row * stride;
+      const end = start + 8 * samples;
+      for (let at = start; at < end; at += 8, out++) {
+        u32[real / 4 + out] = view.getUint32(at);
+        u32[imag / 4 + out] = view.getUint32(at + 4);
       }
     }
   },

@@ -33,15 +33,18 @@ describe.each(KERNELS)("%s byte order", (_, kernels) => {
           number,
           number,
         ];
+        const pairs = [arena.allocate(size)!, arena.allocate(size)!];
         const { u8, u32 } = kernelMemory.heap;
         let state = seed;
         for (let i = 0; i < rows * stride; i++) {
           state = (Math.imul(state, 1664525) + 1013904223) >>> 0;
           u8[from + i] = state >>> 24;
         }
-        for (const out of [real, imag, weight, alone]) u32[out / 4 + rows * samples] = 77;
+        const ends = [real, imag, weight, alone, ...pairs].map((out) => out / 4 + rows * samples);
+        for (const end of ends) u32[end] = 77;
         kernels.splitTriples(from, stride, rows, samples, real, imag, weight);
         kernels.splitWeights(from, stride, rows, samples, alone);
+        kernels.splitPairs(from, stride, rows, samples, pairs[0]!, pairs[1]!);
         const view = new DataView(u8.buffer);
         for (let row = 0, i = 0; row < rows; row++) {
           for (let k = 0; k < samples; k++, i++) {
@@ -49,9 +52,14 @@ describe.each(KERNELS)("%s byte order", (_, kernels) => {
             expect([real, imag, weight, alone].map((out) => u32[out / 4 + i])).toEqual(
               [0, 4, 8, 8].map((offset) => view.getUint32(at + offset)),
             );
+            const pair = from + row * stride + 8 * k;
+            expect(pairs.map((out) => u32[out / 4 + i])).toEqual([
+              view.getUint32(pair),
+              view.getUint32(pair + 4),
+            ]);
           }
         }
-        for (const out of [real, imag, weight, alone]) expect(u32[out / 4 + rows * samples]).toBe(77);
+        for (const end of ends) expect(u32[end]).toBe(77);
         arena.release();
       }),
     );
