@@ -215,7 +215,7 @@ function readersOf(
   });
 }
 
-function sampleLayout(layout: UvLayout): SampleLayout {
+export function sampleLayout(layout: UvLayout): SampleLayout {
   const { flux, bitpix, table, complex, stokes, frequency, subband } = layout;
   const itemBytes = Math.abs(bitpix) / 8;
   return {

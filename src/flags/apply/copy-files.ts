@@ -2,6 +2,8 @@
 import type { Dataset } from "../../dataset/dataset.ts";
 import { openFits } from "../../dataset/fits/hdus.ts";
 import { openSource } from "../../dataset/fits/source.ts";
+import { copyAddingIdiFlags } from "../../dataset/fits-idi/copy-adding-flags.ts";
+import { copyFlaggingIdiWeights } from "../../dataset/fits-idi/flag-weights.ts";
 import { openFitsDataset } from "../../dataset/open-fits.ts";
 import { copyFlaggingWeights } from "../../dataset/random-groups/flag-weights.ts";
 import { copyAddingFlags } from "../../dataset/random-groups/write-flag-table.ts";
@@ -75,10 +77,11 @@ async function copyFitsFile(
   sink: ByteSink,
 ): Promise<number> {
   const file = await openFits(await openSource(own.files[0]!));
+  const isIdi = own.format === "fits-idi";
   if (place === "weights") {
-    await copyFlaggingWeights(file, rows, sink);
+    await (isIdi ? copyFlaggingIdiWeights : copyFlaggingWeights)(file, rows, sink);
     return 0;
   }
   const reasoned = flags.map((flag) => ({ selection: flag, reason: `${flag.id} ${flag.rule}` }));
-  return copyAddingFlags(file, rows, own, reasoned, sink);
+  return (isIdi ? copyAddingIdiFlags : copyAddingFlags)(file, rows, own, reasoned, sink);
 }
