@@ -3,6 +3,7 @@
  * it without having read any.
  */
 import type { Dataset } from "../dataset/dataset.ts";
+import { DEFAULT_MEMORY, surveyMemory } from "./memory.ts";
 
 export interface SurveySettings {
   /** bytes that the sketches may take before channels share them */
@@ -19,8 +20,6 @@ export interface SurveySettings {
   readonly spansEvery: number;
 }
 
-export const DEFAULT_MEMORY = 512e6;
-
 /** Differences between channels that the noise of a baseline needs: its median is then good to 1/90. */
 const ENOUGH_OF_BASELINE = 1 << 12;
 /** The same for the noise of a channel, over all baselines: its median is then good to 1/125. */
@@ -30,7 +29,7 @@ const ENOUGH_OF_SPANS = 1 << 17;
 const MOST_SPARING = 64;
 
 /** @param memory bytes that the survey's state may take, half for the sketches and half for the tracks */
-export function settleSurvey(dataset: Dataset, memory = DEFAULT_MEMORY): SurveySettings {
+export function settleSurvey(dataset: Dataset, memory = surveyMemory(DEFAULT_MEMORY)): SurveySettings {
   const antennas = Math.max(2, dataset.array.antennas.length);
   const baselines = Math.max(1, Math.min((antennas * (antennas - 1)) / 2, dataset.rows));
   const differences = dataset.rows * dataset.shape.channels;

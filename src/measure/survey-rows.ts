@@ -7,7 +7,7 @@ export interface SurveyRowsOptions {
   /** rows to survey, [first, last) from 0; default all */
   readonly rows?: readonly [number, number];
   /**
-   * Bytes that the survey's state may take, default 512 MB. Where they do not suffice, neighbouring channels share
+   * Bytes that the survey's state may take, default a quarter of 1 GB. Where they do not suffice, neighbouring channels share
    * amplitude levels, and time bins take the place of integrations in the tracks.
    */
   readonly memory?: number;

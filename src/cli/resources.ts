@@ -1,0 +1,69 @@
+/** `--jobs` and `--memory`, as every command that reads samples takes them. */
+import { availableParallelism } from "node:os";
+import type { Argv } from "yargs";
+import { InputError } from "../util/errors.ts";
+import { parseSize } from "../util/units.ts";
+import { Workers } from "../util/workers.ts";
+
+export interface ResourceOptions {
+  readonly jobs: number | undefined;
+  readonly memory: string | undefined;
+}
+
+/** Threads that are taken without being asked for. */
+const MOST_JOBS_UNASKED = 8;
+const MOST_JOBS = 256;
+/** Below this, starting threads costs more than they gain. */
+const SMALL_BYTES = 64e6;
+const DEFAULT_MEMORY = "1 GB";
+/** With less not even small data have room. */
+const LEAST_MEMORY = 256e6;
+/** A thread, with its buffers. */
+const THREAD_BYTES = 80e6;
+
+export function withResources(yargs: Argv): Argv {
+  return yargs
+    .option("jobs", {
+      type: "number",
+      requiresArg: true,
+      describe: `Threads that read and compute [default: one a processor, at most ${MOST_JOBS_UNASKED}]`,
+    })
+    .option("memory", {
+      type: "string",
+      requiresArg: true,
+      describe: `Memory to stay within, such as 4GB [default: ${DEFAULT_MEMORY}]`,
+    });
+}
+
+/** @returns bytes. @throws InputError when it is no size, or too small */
+export function memoryOf({ memory }: Pick<ResourceOptions, "memory">): number {
+  const bytes = Math.floor(parseSize(memory ?? DEFAULT_MEMORY, { part: "--memory" }));
+  if (bytes >= LEAST_MEMORY) return bytes;
+  throw new InputError(
+    `${memory} is too little: expected at least ${LEAST_MEMORY / 1e6} MB`,
+    { part: "--memory" },
+    "The default is 1 GB",
+  );
+}
+
+/**
+ * The threads to take for a dataset, or undefined for none but the main one. What they find does not depend on how many
+ * they are, so there may be fewer than asked for where the memory would not hold them.
+ *
+ * @param bytes of the dataset on disk
+ */
+export function workersFor(options: ResourceOptions, bytes: number): Workers | undefined {
+  const jobs = jobsOf(options, bytes);
+  return jobs === 1 ? undefined : new Workers(jobs);
+}
+
+function jobsOf(options: ResourceOptions, bytes: number): number {
+  const { jobs } = options;
+  if (jobs !== undefined && !(Number.isInteger(jobs) && jobs >= 1 && jobs <= MOST_JOBS)) {
+    throw new InputError(`${jobs} is no number of threads: expected a whole number from 1 to ${MOST_JOBS}`, {
+      part: "--jobs",
+    });
+  }
+  const wanted = jobs ?? (bytes < SMALL_BYTES ? 1 : Math.min(availableParallelism(), MOST_JOBS_UNASKED));
+  return Math.max(1, Math.min(wanted, Math.floor(memoryOf(options) / 2 / THREAD_BYTES)));
+}
