@@ -1,5 +1,6 @@
 /** `visvet check`: survey, judge, print the text report, write the output files. */
 import { command } from "./command.ts";
+import { withResources } from "./resources.ts";
 import type { CheckOptions } from "./run-check.ts";
 
 interface CheckArguments extends Omit<CheckOptions, "flagsAs"> {
@@ -16,7 +17,7 @@ export const check = command<CheckArguments>({
     ["check a.uvfits b.uvfits --out checks --strict", "several; a caution also exits with 1"],
   ],
   options: (yargs) =>
-    yargs
+    withResources(yargs)
       .positional("dataset", {
         type: "string",
         array: true,

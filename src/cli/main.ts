@@ -8,12 +8,14 @@ import { apply } from "./apply.ts";
 import { check } from "./check.ts";
 import { describe } from "./describe.ts";
 import { explain } from "./explain.ts";
+import { join } from "./join.ts";
+import { part } from "./part.ts";
 import { simulate } from "./simulate.ts";
 
 /** Could not be judged: bad usage, unreadable or malformed input. */
 const EXIT_NOT_JUDGED = 2;
 
-const COMMANDS = [check, apply, describe, explain, simulate].map(
+const COMMANDS = [check, apply, describe, explain, part, join, simulate].map(
   ({ command }) => String(command).split(" ")[0]!,
 );
 
@@ -31,6 +33,8 @@ try {
     .command(apply)
     .command(describe)
     .command(explain)
+    .command(part)
+    .command(join)
     .command(simulate)
     .demandCommand(1, "Name a command")
     .strictCommands()

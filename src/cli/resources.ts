@@ -21,7 +21,8 @@ const LEAST_MEMORY = 256e6;
 /** A thread, with its buffers. */
 const THREAD_BYTES = 80e6;
 
-export function withResources(yargs: Argv): Argv {
+/** @param memory what it is where the user says nothing */
+export function withResources(yargs: Argv, memory: string = DEFAULT_MEMORY): Argv {
   return yargs
     .option("jobs", {
       type: "number",
@@ -31,7 +32,7 @@ export function withResources(yargs: Argv): Argv {
     .option("memory", {
       type: "string",
       requiresArg: true,
-      describe: `Memory to stay within, such as 4GB [default: ${DEFAULT_MEMORY}]`,
+      describe: `Memory to stay within, such as 4GB [default: ${memory}]`,
     });
 }
 
