@@ -11,6 +11,7 @@ import { fieldsOfRows, headerEquinox, noteImpossibleFields, readFieldTable } fro
 import { headerFacts, noteDates, polarizationsOf, telescopeOf, unitOf } from "../fits-tables/header-facts.ts";
 import { noteRows } from "../fits-tables/note-rows.ts";
 import { readSetups } from "../fits-tables/setups.ts";
+import { distinctNumbers, withSubarrayNumbers } from "../fits-tables/subarray-numbers.ts";
 import { datasetName } from "../name.ts";
 import type { Notes } from "../notes.ts";
 import { type OpenedDataset, type RowSummary, summarizeRows } from "../row-summary.ts";
@@ -39,7 +40,8 @@ export async function openFitsIdi(file: FitsFile, known?: RowSummary): Promise<O
   noteDisagreements([...smallTables(hdus), ...layouts.map(({ hdu }) => hdu)], first, notes);
   const tables = await readTables(file, hdus, first, shape, notes);
   const rowTables = readersOf(file, layouts, tables, notes);
-  const blocks = (request: BlockRequest) => blocksOf(rowTables, request);
+  const { tables: antennas, numbers } = distinctNumbers(tables.antennas, notes);
+  const blocks = withSubarrayNumbers((request: BlockRequest) => blocksOf(rowTables, request), numbers);
   const rows = rowTables.reduce((sum, { store }) => sum + store.rows, 0);
   const summary = known ?? (await summarizeRows({ rows, blocks }));
   const { context } = rowTables[0]!;
@@ -50,7 +52,7 @@ export async function openFitsIdi(file: FitsFile, known?: RowSummary): Promise<O
   const named = rowTables.every((table) => table.context.columns.source !== undefined);
   const fields = fieldsOfRows(centre, named, tables.fields, summary, WORDS, notes);
   noteImpossibleFields(fields, notes);
-  const array = arrayInfo(tables.antennas, fields, summary, telescopeOf(headers), WORDS, notes);
+  const array = arrayInfo(antennas, fields, summary, telescopeOf(headers), WORDS, notes);
   return {
     name: datasetName(source.path),
     files: [source.path],

@@ -62,7 +62,7 @@ function nameless(number: number): Antenna {
   return { number, name: String(number), position: null, diameter: null };
 }
 
-/** Antennas of later sub-arrays join; a number that means another antenna there cannot be told apart in the rows. */
+/** Antennas of later sub-arrays join: tables whose numbers are distinct (`distinctNumbers`) disagree in a place at most. */
 function merged(
   tables: readonly AntennaTable[],
   framed: readonly FramedTable[],

@@ -10,6 +10,7 @@ import { fieldsOfRows, noteImpossibleFields, readFieldTable } from "../fits-tabl
 import { headerFacts, noteDates, polarizationsOf, telescopeOf, unitOf } from "../fits-tables/header-facts.ts";
 import { noteRows } from "../fits-tables/note-rows.ts";
 import { readSetups } from "../fits-tables/setups.ts";
+import { distinctNumbers, withSubarrayNumbers } from "../fits-tables/subarray-numbers.ts";
 import { datasetName } from "../name.ts";
 import type { Notes } from "../notes.ts";
 import { type OpenedDataset, type RowSummary, summarizeRows } from "../row-summary.ts";
@@ -44,14 +45,15 @@ export async function openRandomGroups(file: FitsFile, known?: RowSummary): Prom
     weights: groupWeights(columns),
     flags: tables.flags,
   };
-  const blocks = (request: BlockRequest) => readBlocks(reader, request);
+  const { tables: antennas, numbers } = distinctNumbers(tables.antennas, notes);
+  const blocks = withSubarrayNumbers((request: BlockRequest) => readBlocks(reader, request), numbers);
   const summary = known ?? (await summarizeRows({ rows: layout.groups, blocks }));
   noteRows(summary, tables.hasSetupTable ? context.strangeSetups : new Set(), WORDS, notes);
   noteDates([primary.header], summary, notes);
   const centre = { header: primary.header, ...layout };
   const fields = fieldsOfRows(centre, columns.source !== undefined, tables.fields, summary, WORDS, notes);
   noteImpossibleFields(fields, notes);
-  const array = arrayInfo(tables.antennas, fields, summary, telescopeOf([primary.header]), WORDS, notes);
+  const array = arrayInfo(antennas, fields, summary, telescopeOf([primary.header]), WORDS, notes);
   return {
     name: datasetName(source.path),
     files: [source.path],
