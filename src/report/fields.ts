@@ -72,7 +72,7 @@ export async function judgeFields(
   const judged: FieldCheck[] = [];
   for (const field of present) {
     if (!chosen.has(field)) continue;
-    judged.push(await judgeField(dataset, field, weightOf(field) / total, flags, request));
+    judged.push(await judgeField(dataset, survey, field, weightOf(field) / total, flags, request));
   }
   const left = present
     .filter((field) => !chosen.has(field))
@@ -87,12 +87,13 @@ export async function judgeFields(
 
 async function judgeField(
   dataset: Dataset,
+  survey: Survey,
   field: Field,
   weightFraction: number,
   flags: readonly FlagEntry[],
   request: CheckRequest,
 ): Promise<FieldCheck> {
-  const view = await fieldView(dataset, field.id);
+  const view = withOwnSubarrays(await fieldView(dataset, field.id), survey);
   const own = flags.filter(({ fields }) => fields === null || fields.includes(field.id));
   const named = `, field ${field.id}`;
   const first = await look(view, request, null, named);
@@ -112,4 +113,33 @@ async function judgeField(
     image:
       second === first ? first.forecast.image : forecastAfter(first.forecast.image, second.forecast.image),
   };
+}
+
+/**
+ * Antennas that were in another sub-array all the time are not missing from this field: they are left out of its array.
+ *
+ * @param survey of the whole dataset
+ */
+function withOwnSubarrays(view: Dataset, { tracks, baselines }: Survey): Dataset {
+  const ownField = view.fields[0]!.id;
+  const own = new Set<number>();
+  for (let cell = 0; cell < tracks.cells; cell++) {
+    if (tracks.field[cell] === ownField) own.add(tracks.subarray[cell]!);
+  }
+  const inOwn = new Set<number>();
+  const elsewhere = new Set<number>();
+  for (let b = 0; b < baselines.length; b++) {
+    const { antenna1, antenna2 } = baselines[b]!;
+    let before = Number.NaN;
+    for (let cell = tracks.firstCell[b]!; cell < tracks.firstCell[b + 1]!; cell++) {
+      if (tracks.subarray[cell] === before) continue;
+      before = tracks.subarray[cell]!;
+      (own.has(before) ? inOwn : elsewhere).add(antenna1).add(antenna2);
+    }
+  }
+  const antennas = view.array.antennas.filter(({ number }) => inOwn.has(number) || !elsewhere.has(number));
+  if (antennas.length === view.array.antennas.length) return view;
+  // Another thread would open it with all antennas, and settle on other sizes: this one reads it alone.
+  const { recipe: _, ...rest } = view;
+  return { ...rest, array: { ...view.array, antennas } };
 }
