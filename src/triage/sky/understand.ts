@@ -1,0 +1,169 @@
+/**
+ * What of an image are sources, what is their response, and what is left. Sources are found in the image, refined on
+ * the visibilities, and taken out of both: whatever is wrong is in the rest.
+ */
+import type { Weighting } from "../../dataset/plan-request.ts";
+import type { Sampling } from "../../imaging/sampling.ts";
+import { InputError } from "../../util/errors.ts";
+import type { SkyImage } from "../image/sky-image.ts";
+import type { Atoms } from "../samples/atoms.ts";
+import { type ImageFrame, skyOffset } from "../uv/frame.ts";
+import { UvTransformer } from "../uv/transformer.ts";
+import { imageNoise } from "../uv/weighting.ts";
+import type { Cluster } from "./clusters.ts";
+import { findExtended } from "./extended.ts";
+import { type Imager, isExtended, nuisanceOf } from "./look.ts";
+import type { Source, Visibilities } from "./model.ts";
+import { beamMoments, gaussianOfMoments, momentsOfGaussian, type PixelGaussian, widthsOf } from "./patch.ts";
+import { mainLobe, readImageAs } from "./patches.ts";
+import { robustRms } from "./peel.ts";
+import { Projector } from "./residual.ts";
+import { agreed, restOf, type Solved, solveSources } from "./solve-sources.ts";
+
+export interface Understanding extends Imager {
+  readonly sampling: Sampling;
+  /** of the main lobe, radians and from north through east */
+  readonly beam: { readonly major: number; readonly minor: number; readonly angle: number };
+  readonly deconvolved: boolean;
+  readonly weighting: Weighting;
+  /** as the data hold them; an extended one, found in the data, last */
+  readonly sources: readonly Source[];
+  /** false: the data do not hold the sources of the image, so nothing is told from their values */
+  readonly held: boolean;
+  /** image flux over data flux; NaN where the data do not hold the sources */
+  readonly scale: number;
+  /** (atoms) data less the sources, dataset unit */
+  readonly rest: Visibilities;
+  /** takes the sources, and what their place and height may be off by, out of an image */
+  readonly projector: Projector;
+  /** the image without its sources */
+  readonly residual: Float64Array;
+  /** share of the dirty beam's sidelobes of its sources that the image still has; 0 deconvolved, 1 dirty */
+  readonly sidelobes: number;
+  /** rms that the noise of the data makes in the image; NaN unknown */
+  readonly noise: number;
+}
+
+/** Sources that take part, at most. */
+const MOST_SOURCES = 16;
+/** How often the residual is searched for more of them. */
+const SEARCHES = 4;
+/** A pixel of the residual is worth a try as a source above this many robust sigmas, and so far above the lowest. */
+const SOURCE_SIGMAS = 6;
+const SOURCE_BALANCE = 1.3;
+
+export function understand(
+  image: SkyImage,
+  sampling: Sampling,
+  frame: ImageFrame,
+  gathered: Atoms,
+): Understanding {
+  if (gathered.count === 0) {
+    throw new InputError(
+      "no usable sample of the dataset is of the field and frequencies of this image",
+      { file: image.file },
+      "Name the dataset that the image was made from",
+    );
+  }
+  const transformer = new UvTransformer(image.width, image.height);
+  const lobe = mainLobe(image, frame) ?? roundLobe(sampling, frame);
+  const beam = image.beam ?? widthsOf(momentsOfGaussian(frame, lobe));
+  const reading = readImageAs(image, gathered, lobe);
+  const found = reading.clusters
+    .filter(({ flux }) => flux > 0)
+    .slice(0, MOST_SOURCES)
+    .map((cluster) => sourceOf(cluster, image, frame));
+  const solved = solveSources(found, gathered, frame.declination, beam.major);
+  const imager = { image, frame, transformer, atoms: solved.atoms, lobe, weights: reading.weights };
+  const sources = solved.held ? completed(imager, solved, beam.major, sampling.shortest) : found;
+  return {
+    ...imager,
+    sampling,
+    beam,
+    deconvolved: reading.deconvolved,
+    weighting: reading.weighting,
+    held: solved.held,
+    rest: solved.held
+      ? restOf(solved.atoms, sources, frame.declination)
+      : { re: solved.atoms.re, im: solved.atoms.im },
+    noise: imageNoise(solved.atoms, reading.weights),
+    ...withoutSources(imager, sources, solved.held),
+  };
+}
+
+type Without = Pick<Understanding, "sources" | "projector" | "residual" | "sidelobes" | "scale">;
+
+function withoutSources(imager: Imager, sources: readonly Source[], held: boolean): Without {
+  const { image } = imager;
+  const { templates, heightAt, sidelobesAt } = nuisanceOf(imager, sources);
+  const projector = new Projector(templates, image.known, image.width, image.height);
+  const { coefficients, left } = projector.take(image.pixels);
+  const ratios = sources.flatMap((source, i) =>
+    isExtended(source) || heightAt[i] === -1 ? [] : [coefficients[heightAt[i]!]! / source.flux],
+  );
+  ratios.sort((a, b) => a - b);
+  return {
+    sources,
+    projector,
+    residual: left,
+    sidelobes: sidelobesAt < 0 ? 0 : coefficients[sidelobesAt]!,
+    scale: held ? (ratios[ratios.length >> 1] ?? 1) : Number.NaN,
+  };
+}
+
+/** With the extended emission, and with the sources that show once the others are gone. */
+function completed(imager: Imager, solved: Solved, beam: number, shortest: number): Source[] {
+  const { atoms, frame } = imager;
+  const extended = findExtended(solved.fit, { ...imager, beam, shortest });
+  let sources = [...(extended ?? solved.fit).sources];
+  if (extended !== null) sources = [...agreed(sources, atoms, frame.declination, beam).sources];
+  for (let search = 0; search < SEARCHES && sources.length < MOST_SOURCES; search++) {
+    const more = brightPixel(imager, withoutSources(imager, sources, true).residual, sources);
+    if (more === null) break;
+    const points = [...sources.filter((source) => !isExtended(source)), more];
+    const all = [...points, ...sources.filter(isExtended)];
+    const next = agreed(all, atoms, frame.declination, beam).sources;
+    if (next.length <= sources.length) break;
+    sources = [...next];
+  }
+  return sources;
+}
+
+/** The brightest pixel of the residual, where it may be a source. */
+function brightPixel(
+  { image, frame, atoms }: Imager,
+  residual: Float64Array,
+  sources: readonly Source[],
+): Source | null {
+  let [high, low, at] = [0, 0, -1];
+  for (let i = 0; i < residual.length; i++) {
+    if (residual[i]! > high) {
+      high = residual[i]!;
+      at = i;
+    }
+    low = Math.min(low, residual[i]!);
+  }
+  const floor = Math.max(SOURCE_SIGMAS * robustRms(residual, image.known), -SOURCE_BALANCE * low);
+  if (at < 0 || high < floor || atoms.count === 0 || sources.length === 0) return null;
+  const [x, y] = [at % image.width, Math.floor(at / image.width)];
+  const [l, m] = skyOffset(frame, x - (image.width >> 1), y - (image.height >> 1));
+  return { flux: high, l, m, shape: [0, 0, 0] };
+}
+
+/** Where neither header nor image shows a beam: the resolution of the longest spacing. */
+function roundLobe(sampling: Sampling, frame: ImageFrame): PixelGaussian {
+  const width = 0.7 / sampling.longest;
+  return gaussianOfMoments(frame, beamMoments({ major: width, minor: width, angle: 0 }));
+}
+
+function sourceOf({ flux, x, y, moments, extended }: Cluster, image: SkyImage, frame: ImageFrame): Source {
+  const [l, m] = skyOffset(frame, x - (image.width >> 1), y - (image.height >> 1));
+  const [a, b, c, d] = frame.matrix;
+  const [xx, xy, yy] = moments;
+  const shape = [
+    a * a * xx + 2 * a * b * xy + b * b * yy,
+    a * c * xx + (a * d + b * c) * xy + b * d * yy,
+    c * c * xx + 2 * c * d * xy + d * d * yy,
+  ] as const;
+  return { flux, l, m, shape: extended ? shape : [0, 0, 0] };
+}
