@@ -134,7 +134,7 @@ export async function gatherParts(paths: readonly string[]): Promise<PartSet> {
   const missing = Array.from({ length: of }, (_, i) => i).filter((i) => !found.has(i));
   if (missing.length > 0) {
     throw new InputError(
-      `of ${of} parts, numbered from 0, ${missing.length} are missing: ${listOf(missing)}`,
+      `of ${of} parts, numbered from 0, these are missing: ${listOf(missing)}`,
       {},
       `Make them: visvet part … --index ${missing[0]} --of ${of}`,
     );

@@ -135,7 +135,10 @@ class Thread {
     | undefined;
 
   constructor() {
-    this.worker = new Worker(new URL(moduleBeside("./worker-thread", import.meta.url)));
+    this.worker = new Worker(new URL(moduleBeside("./worker-thread", import.meta.url)), {
+      // Options of the process, such as how its first module is read, are not for threads.
+      execArgv: [],
+    });
     this.worker.unref();
     this.worker.on("message", (reply: Reply) => this.settle((pending) => pending.resolve(reply)));
     this.worker.on("error", (error: NodeJS.ErrnoException) => this.fail(crashOf(error)));
