@@ -11,28 +11,39 @@
  * came, and so neither does the step.
  */
 
+import { Arena, kernelMemory } from "../util/kernels/memory.ts";
+import { countKernels, LINE, PAGES, stopOf } from "./kernels/count-sketches.ts";
 import type { SketchMap } from "./sharing-ladder.ts";
-import { type Book, bookFrom, bookState } from "./state/books.ts";
+import { SketchBook } from "./sketch-book.ts";
+import { bookFrom, bookState } from "./state/books.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
 
-/** Octaves of a page, as a power of two; positive float32s span 256 octaves, so 64 pages. */
-const PAGE_OCTAVE_BITS = 2;
-const PAGES = 256 >> PAGE_OCTAVE_BITS;
+/** Octaves of a page, as a power of two; positive float32s span 256 octaves. */
+const PAGE_OCTAVE_BITS = 8 - Math.log2(PAGES);
 const COUNT_BYTES = 2;
-const FULL = 65536;
-/** A bucket of no number. */
-const NONE = 65535;
 const MOST_STAGED_ROWS = 1 << 16;
 const GATHERED_ROWS = 128;
-/** numbers of 16 bits in a cache line */
-const LINE = 32;
 
 /** A number's bucket: its edges, and the number's place between them by rank, 0..1. */
 interface Place {
   readonly low: number;
   readonly high: number;
   readonly within: number;
+}
+
+/** Addresses of a bank's arrays. */
+interface Room {
+  /** (samples) int32: a row on its way */
+  readonly row: number;
+  /** (staged rows x samples) uint16 */
+  readonly staged: number;
+  /** (gathered rows x stride) uint16: rows of one owner side by side */
+  readonly gathered: number;
+  /** (samples) int32: the map in force */
+  readonly sketch: number;
+  /** int32 */
+  readonly pages: number;
 }
 
 export class SketchBank {
@@ -42,15 +53,16 @@ export class SketchBank {
   private readonly bucketShift: number;
   /** shift from a bucket to its page */
   private readonly pageShift: number;
-  private readonly books: (Book | undefined)[] = [];
+  private readonly books: (SketchBook | undefined)[] = [];
   private readonly samples: number;
   /** buckets of rows not counted yet: counted together, they cost a fraction of the memory traffic */
-  private readonly staged: Uint16Array;
   private readonly stagedOwner: Int32Array;
   private stagedRows = 0;
-  /** rows of one owner side by side, `stride` apart: an odd number of cache lines, so that they do not collide */
-  private readonly gathered: Uint16Array;
+  /** samples from one gathered row to the next: an odd number of cache lines, so that they do not collide */
   private readonly stride: number;
+  private readonly arena: Arena = new Arena(this);
+  /** addresses, made when the first row comes */
+  private room: Room | undefined;
   private level = 0;
   private bytes = 0;
 
@@ -70,10 +82,8 @@ export class SketchBank {
     this.pageShift = mantissaBits + PAGE_OCTAVE_BITS;
     this.samples = ladder[0]!.sketch.length;
     const rows = Math.max(1, Math.min(MOST_STAGED_ROWS, Math.floor(budget / 8 / COUNT_BYTES / this.samples)));
-    this.staged = new Uint16Array(rows * this.samples);
     this.stagedOwner = new Int32Array(rows);
     this.stride = (Math.ceil(this.samples / LINE) | 1) * LINE;
-    this.gathered = new Uint16Array(this.stride * Math.min(rows, GATHERED_ROWS));
   }
 
   /** The map in force: which sketch each sample counts in. Counts what is staged, so that it is the final one. */
@@ -89,12 +99,44 @@ export class SketchBank {
    * @param start  index in `bits` of the row's first sample
    */
   add(owner: number, bits: Int32Array, start: number): void {
-    const { staged, samples, bucketShift } = this;
+    const { samples } = this;
+    const { row } = this.placed();
+    kernelMemory.heap.i32.set(bits.subarray(start, start + samples), row / 4);
+    this.addAt(owner, row);
+  }
+
+  /** The same of bits at an address of the kernels' memory, a multiple of 4. */
+  addAt(owner: number, bits: number): void {
     if (this.stagedRows === this.stagedOwner.length) this.flush();
-    const first = this.stagedRows * samples;
-    // A negative number stays negative when shifted, and becomes NONE in 16 bits.
-    for (let i = 0; i < samples; i++) staged[first + i] = bits[start + i]! >> bucketShift;
+    const { samples } = this;
+    const to = this.placed().staged + COUNT_BYTES * this.stagedRows * samples;
+    countKernels.stageBuckets(bits, samples, to, this.bucketShift);
     this.stagedOwner[this.stagedRows++] = owner;
+  }
+
+  /** Give the memory back. Nothing can be asked or added after. */
+  release(): void {
+    this.arena.release();
+  }
+
+  private placed(): Room {
+    if (this.room !== undefined) return this.room;
+    const { arena, samples, stride } = this;
+    const rows = this.stagedOwner.length;
+    this.room = {
+      row: arena.require(4 * samples),
+      staged: arena.require(COUNT_BYTES * rows * samples),
+      gathered: arena.require(COUNT_BYTES * stride * Math.min(rows, GATHERED_ROWS)),
+      sketch: arena.require(4 * samples),
+      pages: arena.require(4),
+    };
+    this.placeMap();
+    return this.room;
+  }
+
+  private placeMap(): void {
+    if (this.room === undefined) return;
+    kernelMemory.heap.u32.set(this.ladder[this.level]!.sketch, this.room.sketch / 4);
   }
 
   /** Count the staged rows, owner by owner. */
@@ -117,65 +159,67 @@ export class SketchBank {
   }
 
   private gather(row: number, place: number): void {
-    const { samples, staged, gathered } = this;
-    const first = row * samples;
-    const at = place * this.stride;
-    if (samples > 2 * LINE) gathered.set(staged.subarray(first, first + samples), at);
-    else for (let i = 0; i < samples; i++) gathered[at + i] = staged[first + i]!;
+    const { samples } = this;
+    const { staged, gathered } = this.placed();
+    const first = staged + COUNT_BYTES * row * samples;
+    const bytes = COUNT_BYTES * samples;
+    kernelMemory.heap.u8.copyWithin(gathered + COUNT_BYTES * place * this.stride, first, first + bytes);
   }
 
   private countGathered(owner: number, rows: number): void {
-    const { sketch } = this.ladder[this.level]!;
-    const { gathered, stride, pageShift, samples } = this;
+    const { stride, pageShift, samples } = this;
+    const { gathered, sketch, pages } = this.placed();
     const book = this.bookOf(owner);
-    const end = rows * stride;
-    for (let i = 0; i < samples; i++) {
-      const first = sketch[i]! * PAGES;
-      // All rows of one sample together: its counts are fetched from memory once.
-      let at = i;
-      while (at < end) {
-        at = countRun(gathered, at, end, stride, book.directory, first, book.counts, pageShift);
-        if (at < end) {
-          this.countSlowly(book, first, gathered[at]!);
-          at += stride;
-        }
-      }
+    const before = book.bytes;
+    for (let at = 0; at >= 0; ) {
+      kernelMemory.heap.u32[pages / 4] = book.pages;
+      at = countKernels.countSketches(
+        gathered,
+        rows,
+        stride,
+        samples,
+        sketch,
+        book.directoryAt,
+        book.countsAt,
+        pageShift,
+        pages,
+        book.capacity,
+        at,
+      );
+      book.pages = kernelMemory.heap.u32[pages / 4]!;
+      if (at >= 0) at = this.countSlowly(book, rows, at);
     }
+    this.bytes += book.bytes - before;
     this.keepWithinBudget();
   }
 
-  /** Count a bucket whose page may be missing and whose count may be full. */
-  private countSlowly(book: Book, first: number, bucket: number): void {
-    const slot = first + (bucket >> this.pageShift);
-    const page = book.directory[slot]! || this.newPage(book, slot);
-    addAt(book, (page << this.pageShift) | (bucket & ((1 << this.pageShift) - 1)), 1);
+  /** Make room for a page, or count a bucket whose count is full. @returns where to go on */
+  private countSlowly(book: SketchBook, rows: number, stop: number): number {
+    const { gathered, sketch } = this.placed();
+    const { sample, row } = stopOf(stop, rows);
+    const { u16, u32 } = kernelMemory.heap;
+    const bucket = u16[gathered / 2 + row * this.stride + sample]!;
+    const slot = u32[sketch / 4 + sample]! * PAGES + (bucket >> this.pageShift);
+    const page = u32[book.directoryAt / 4 + slot]!;
+    if (page === 0) {
+      book.grow();
+      return stop;
+    }
+    // Full: 65536 is noted elsewhere, and the count begins again, from nothing, at this number.
+    const place = (page << this.pageShift) | (bucket & ((1 << this.pageShift) - 1));
+    book.passes.set(place, (book.passes.get(place) ?? 0) + 1);
+    u16[book.countsAt / 2 + place] = 0;
+    return next(stop, sample, this.samples, rows);
   }
 
-  private bookOf(owner: number): Book {
+  private bookOf(owner: number): SketchBook {
     let book = this.books[owner];
     if (book === undefined) {
-      book = emptyBook(this.ladder[this.level]!.sketches, this.pageShift);
+      book = new SketchBook(this.ladder[this.level]!.sketches, this.pageShift, this.arena);
       this.books[owner] = book;
-      this.bytes += this.bytesOf(book);
+      this.bytes += book.bytes;
     }
     return book;
-  }
-
-  private bytesOf(book: Book): number {
-    return book.directory.byteLength + book.pages * (COUNT_BYTES << this.pageShift);
-  }
-
-  private newPage(book: Book, slot: number): number {
-    const page = book.pages++;
-    const needed = book.pages << this.pageShift;
-    if (needed > book.counts.length) {
-      const grown = new Uint16Array(Math.max(needed, Math.ceil((book.counts.length * 5) / 4)));
-      grown.set(book.counts);
-      book.counts = grown;
-    }
-    book.directory[slot] = page;
-    this.bytes += COUNT_BYTES << this.pageShift;
-    return page;
   }
 
   private keepWithinBudget(): void {
@@ -188,27 +232,27 @@ export class SketchBank {
     const to = this.ladder[this.level]!;
     const next = new Uint32Array(from.sketches);
     for (let i = 0; i < from.sketch.length; i++) next[from.sketch[i]!] = to.sketch[i]!;
+    this.placeMap();
     this.bytes = 0;
     for (const [owner, fine] of this.books.entries()) {
       if (fine === undefined) continue;
-      const coarse = emptyBook(to.sketches, this.pageShift);
+      const coarse = new SketchBook(to.sketches, this.pageShift, this.arena);
       this.books[owner] = coarse;
-      this.bytes += this.bytesOf(coarse);
       this.pour(fine, coarse, next);
+      this.bytes += coarse.bytes;
+      fine.release();
     }
   }
 
   /** Add the counts of one book to another. @param sketchOf for each sketch of `from`, the one of `into` */
-  private pour(from: Book, into: Book, sketchOf: ArrayLike<number>): void {
+  private pour(from: SketchBook, into: SketchBook, sketchOf: ArrayLike<number>): void {
     const size = 1 << this.pageShift;
-    for (let slot = 0; slot < from.directory.length; slot++) {
-      const theirs = from.directory[slot]!;
+    for (const [slot, theirs] of Uint32Array.from(from.directory).entries()) {
       if (theirs === 0) continue;
-      const target = sketchOf[Math.floor(slot / PAGES)]! * PAGES + (slot % PAGES);
-      const ours = into.directory[target]! || this.newPage(into, target);
+      const ours = into.pageOf(sketchOf[Math.floor(slot / PAGES)]! * PAGES + (slot % PAGES));
       for (let k = 0; k < size; k++) {
-        const count = countAt(from, theirs * size + k);
-        if (count > 0) addAt(into, ours * size + k, count);
+        const count = from.countAt(theirs * size + k);
+        if (count > 0) into.addAt(ours * size + k, count);
       }
     }
   }
@@ -227,25 +271,30 @@ export class SketchBank {
     const sketchOf = new Uint32Array(from.sketches);
     for (let i = 0; i < this.samples; i++) sketchOf[from.sketch[i]!] = sketch[i]!;
     for (const [owner, book] of other.books.entries()) {
-      if (book !== undefined) this.pour(book, this.bookOf(owners[owner]!), sketchOf);
+      if (book === undefined) continue;
+      const ours = this.bookOf(owners[owner]!);
+      const before = ours.bytes;
+      this.pour(book, ours, sketchOf);
+      this.bytes += ours.bytes - before;
+      book.release();
     }
     this.keepWithinBudget();
   }
 
   state(): StateRecord {
     this.flush();
-    const { level, pageShift } = this;
-    return { level, books: Array.from(this.books, (book) => (book ? bookState(book, pageShift) : null)) };
+    return { level: this.level, books: Array.from(this.books, (book) => (book ? bookState(book) : null)) };
   }
 
   restore(from: StateReader, owners: number): void {
     this.level = from.integer("level", 0, this.ladder.length - 1);
-    const slots = this.ladder[this.level]!.sketches * PAGES;
+    this.placeMap();
+    const { sketches } = this.ladder[this.level]!;
     for (const [owner, book] of from.child("books").items(owners).entries()) {
       if (book === null) continue;
-      const restored = bookFrom(book, slots, this.pageShift);
+      const restored = bookFrom(book, sketches, this.pageShift, this.arena);
       this.books[owner] = restored;
-      this.bytes += this.bytesOf(restored);
+      this.bytes += restored.bytes;
     }
   }
 
@@ -255,20 +304,8 @@ export class SketchBank {
     const book = this.books[owner];
     let total = 0;
     if (book === undefined) return total;
-    for (let p = 0; p < PAGES; p++) total += this.countOfPage(book, book.directory[sketch * PAGES + p]!);
-    return total;
-  }
-
-  private countOfPage(book: Book, page: number): number {
-    if (page === 0) return 0;
-    const from = page << this.pageShift;
-    const to = from + (1 << this.pageShift);
-    const { counts } = book;
-    let total = 0;
-    for (let place = from; place < to; place++) total += counts[place]!;
-    if (book.passes.size > 0) {
-      for (let place = from; place < to; place++) total += FULL * (book.passes.get(place) ?? 0);
-    }
+    const { directory } = book;
+    for (let p = 0; p < PAGES; p++) total += book.countOfPage(directory[sketch * PAGES + p]!);
     return total;
   }
 
@@ -277,20 +314,21 @@ export class SketchBank {
     const total = this.count(owner, sketch);
     if (total === 0) return undefined;
     const book = this.books[owner]!;
+    const { directory } = book;
     const rank = Math.floor(Math.min(1, Math.max(0, share)) * (total - 1));
     let below = 0;
     let p = 0;
     let page = 0;
     for (; ; p++) {
-      page = book.directory[sketch * PAGES + p]!;
-      const count = this.countOfPage(book, page);
+      page = directory[sketch * PAGES + p]!;
+      const count = book.countOfPage(page);
       if (below + count > rank) break;
       below += count;
     }
     let k = 0;
     let count = 0;
     for (; ; k++) {
-      count = countAt(book, (page << this.pageShift) + k);
+      count = book.countAt((page << this.pageShift) + k);
       if (below + count > rank) break;
       below += count;
     }
@@ -347,57 +385,14 @@ function orderByOwner(owner: Int32Array, rows: number): Int32Array {
   return order;
 }
 
-/**
- * Count buckets at `at`, `at + stride` ... until one needs a new page or fills its count.
- * @returns where that one is, or the first place at or beyond `end`
- */
-function countRun(
-  gathered: Uint16Array,
-  start: number,
-  end: number,
-  stride: number,
-  directory: Uint32Array,
-  first: number,
-  counts: Uint16Array,
-  pageShift: number,
-): number {
-  const mask = (1 << pageShift) - 1;
-  let at = start;
-  for (; at < end; at += stride) {
-    const bucket = gathered[at]!;
-    if (bucket === NONE) continue;
-    const page = directory[first + (bucket >> pageShift)]!;
-    if (page === 0) return at;
-    const place = (page << pageShift) | (bucket & mask);
-    const count = counts[place]!;
-    if (count === FULL - 1) return at;
-    counts[place] = count + 1;
-  }
-  return at;
+/** The place after one where a count stopped. @returns -1 after the last */
+function next(stop: number, sample: number, samples: number, rows: number): number {
+  const atEnd = sample + 1 === samples || (sample + 1) % LINE === 0;
+  if (!atEnd) return stop + 1;
+  const lineOfRow = Math.floor(stop / LINE) + 1;
+  return lineOfRow === rows * Math.ceil(samples / LINE) ? -1 : lineOfRow * LINE;
 }
 
 const edgeValue = new Float32Array(1);
 const edgeBits = new Int32Array(edgeValue.buffer);
 const LARGEST = 3.4028234663852886e38;
-
-function emptyBook(sketches: number, pageShift: number): Book {
-  return {
-    directory: new Uint32Array(sketches * PAGES),
-    // Noise and steady signals fill three or four pages.
-    counts: new Uint16Array((1 + 3 * sketches) << pageShift),
-    pages: 1,
-    passes: new Map(),
-  };
-}
-
-function countAt(book: Book, place: number): number {
-  const passes = book.passes.size === 0 ? 0 : (book.passes.get(place) ?? 0);
-  return book.counts[place]! + passes * FULL;
-}
-
-function addAt(book: Book, place: number, count: number): void {
-  const sum = book.counts[place]! + count;
-  book.counts[place] = sum % FULL;
-  const passes = Math.floor(sum / FULL);
-  if (passes > 0) book.passes.set(place, (book.passes.get(place) ?? 0) + passes);
-}

@@ -1,30 +1,21 @@
-/** The pages of sketches of one owner, and their state. */
+/** The state of the sketches of one owner. */
+import type { Arena } from "../../util/kernels/memory.ts";
+import { PAGES } from "../kernels/count-sketches.ts";
+import { SketchBook } from "../sketch-book.ts";
 import type { StateReader } from "./reader.ts";
 import type { StateRecord } from "./value.ts";
 
-/** The sketches of one owner. */
-export interface Book {
-  /** (sketches x PAGES) page number, 0 none */
-  directory: Uint32Array;
-  /** (pages x buckets of a page); page 0 is not used */
-  counts: Uint16Array;
-  /** pages in use, page 0 included */
-  pages: number;
-  /** by place in `counts`: how often the count passed 65536 */
-  readonly passes: Map<number, number>;
-}
-
-export function bookState({ directory, counts, pages, passes }: Book, pageShift: number): StateRecord {
+export function bookState({ directory, counts, passes }: SketchBook): StateRecord {
   return {
-    directory,
-    counts: counts.subarray(0, pages << pageShift),
+    // Copies: the kernels' memory stays with this thread.
+    directory: Uint32Array.from(directory),
+    counts: Uint16Array.from(counts),
     passed: Float64Array.from(passes.keys()),
     passes: Float64Array.from(passes.values()),
   };
 }
 
-/** @param slots  of its directory */
-export function bookFrom(from: StateReader, slots: number, pageShift: number): Book {
+export function bookFrom(from: StateReader, sketches: number, pageShift: number, arena: Arena): SketchBook {
   const counts = from.array(Uint16Array, "counts");
   const pages = counts.length / (1 << pageShift);
   if (!Number.isInteger(pages) || pages < 1) {
@@ -32,10 +23,11 @@ export function bookFrom(from: StateReader, slots: number, pageShift: number): B
   }
   const passed = from.indices(Float64Array, "passed", undefined, 0, counts.length);
   const passes = from.counts(Float64Array, "passes", passed.length);
-  return {
-    directory: from.indices(Uint32Array, "directory", slots, 0, pages),
-    counts,
-    pages,
-    passes: new Map(Array.from(passed, (place, i) => [place, passes[i]!])),
-  };
+  const directory = from.indices(Uint32Array, "directory", sketches * PAGES, 0, pages);
+  const book = new SketchBook(sketches, pageShift, arena, pages);
+  book.pages = pages;
+  book.directory.set(directory);
+  book.counts.set(counts);
+  for (const [i, place] of passed.entries()) book.passes.set(place, passes[i]!);
+  return book;
 }
