@@ -8,14 +8,19 @@ import { delimiterOf } from "./text-table.ts";
 const MOST_ANTENNAS = 65_536;
 
 /** @throws InputError with the row that is wrong */
-export async function readAntennaFile(path: string, diameter: number | undefined): Promise<AntennaConstant[]> {
+export async function readAntennaFile(
+  path: string,
+  diameter: number | undefined,
+): Promise<AntennaConstant[]> {
   const text = await readSmallText(path, "table of antennas");
   let records: string[][];
   try {
     const delimiter = delimiterOf(text.split(/\r?\n/, 1)[0]!) ?? ",";
     records = parse(text, { bom: true, delimiter, comment: "#", skip_empty_lines: true, trim: true });
   } catch (cause) {
-    throw new InputError(`this is not CSV: ${(cause as Error).message}`, { file: path }, undefined, { cause });
+    throw new InputError(`this is not CSV: ${(cause as Error).message}`, { file: path }, undefined, {
+      cause,
+    });
   }
   const [header = [], ...rows] = records;
   const at = (...names: string[]) => header.findIndex((name) => names.includes(name.toLowerCase()));
@@ -29,7 +34,9 @@ export async function readAntennaFile(path: string, diameter: number | undefined
     );
   }
   if (rows.length > MOST_ANTENNAS) {
-    throw new InputError(`there are ${rows.length} antennas: expected at most ${MOST_ANTENNAS}`, { file: path });
+    throw new InputError(`there are ${rows.length} antennas: expected at most ${MOST_ANTENNAS}`, {
+      file: path,
+    });
   }
   return rows.map((row, i) => {
     const metres = (column: number) => {

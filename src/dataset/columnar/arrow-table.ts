@@ -114,7 +114,8 @@ function batchOf(batch: RecordBatch, columns: readonly string[], firstRow: numbe
   const read = new Map<string, ArrayLike<unknown>>();
   for (const name of columns) {
     const vector = batch.getChild(name);
-    if (vector === null) throw damage(path, new Error(`the record batch has no column ${name}`), firstRow + 1);
+    if (vector === null)
+      throw damage(path, new Error(`the record batch has no column ${name}`), firstRow + 1);
     read.set(name, cellsOf(vector));
   }
   return { firstRow, rows: batch.numRows, column: (name) => read.get(name)! };

@@ -1,6 +1,6 @@
 /** From what a table holds to the axes of a dataset: which sub-band, channel and polarization a cell belongs to. */
 import { InputError } from "../../util/errors.ts";
-import { type Polarization, POLARIZATIONS, type Setup, type Shape } from "../dataset.ts";
+import { POLARIZATIONS, type Polarization, type Setup, type Shape } from "../dataset.ts";
 import type { Notes } from "../notes.ts";
 import { axisCodes } from "./axis-codes.ts";
 import type { Axis, ColumnMap } from "./column-map.ts";
@@ -90,7 +90,9 @@ function resolvePolarizations(
 ): { names: readonly Polarization[] | undefined; codes: ReadonlyMap<Label, number> | undefined } {
   const given = constants.polarizations;
   if (labels === undefined) return { names: given, codes: undefined };
-  const met = labels.map((label) => [label, polarizationNamed(label, uses.polarization!.column, file)] as const);
+  const met = labels.map(
+    (label) => [label, polarizationNamed(label, uses.polarization!.column, file)] as const,
+  );
   const order = given ?? POLARIZATIONS.filter((name) => met.some(([, other]) => other === name));
   const codes = new Map<Label, number>();
   for (const [label, name] of met) {

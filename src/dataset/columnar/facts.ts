@@ -134,6 +134,12 @@ function nameless(id: number, name: string): Field {
 function noteUnplaced(fields: readonly Field[], notes: Notes): void {
   const unplaced = fields.filter(({ rightAscension }) => Number.isNaN(rightAscension));
   if (unplaced.length === 0) return;
-  const which = fields.length === 1 ? "" : ` of field ${unplaced.slice(0, 10).map(({ id }) => id).join(", ")}`;
+  const which =
+    fields.length === 1
+      ? ""
+      : ` of field ${unplaced
+          .slice(0, 10)
+          .map(({ id }) => id)
+          .join(", ")}`;
   notes.note("missing-phase-centre", `no phase centre${which}: geometry cannot be judged`);
 }

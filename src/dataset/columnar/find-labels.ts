@@ -6,14 +6,7 @@ import { type Label, Labels } from "./labels.ts";
 import { type Batch, rowPlace, type Table } from "./table.ts";
 import { toSi } from "./units.ts";
 
-export type LabelRole =
-  | "antenna1"
-  | "subband"
-  | "channel"
-  | "polarization"
-  | "field"
-  | "setup"
-  | "subarray";
+export type LabelRole = "antenna1" | "subband" | "channel" | "polarization" | "field" | "setup" | "subarray";
 
 /** What the label is of, for messages, and the most there can be. */
 const LIMITS: Readonly<Record<LabelRole, readonly [what: string, most: number]>> = {

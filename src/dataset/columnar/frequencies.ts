@@ -47,8 +47,7 @@ export function resolveFrequencies(request: Request): ResolvedFrequencies {
     grids[setup]![subband] = one;
   }
   const numbered = found.labels.get("channel");
-  const byFrequency =
-    numbered === undefined && found.frequencies.some(({ different }) => different.size > 0);
+  const byFrequency = numbered === undefined && found.frequencies.some(({ different }) => different.size > 0);
   const size = constants?.[0]?.frequencies[0]?.length;
   const codes =
     numbered === undefined

@@ -268,4 +268,3 @@ function isoTime(cell: unknown, column: string, where: Where): number {
     "Dates are written as 2026-04-17T10:00:30.5",
   );
 }
-

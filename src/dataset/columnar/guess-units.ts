@@ -78,7 +78,9 @@ function guess(
 function guessTime(kind: ColumnKind, values: readonly number[]): string | undefined {
   if (kind === "timestamp") return "unix";
   if (values.length === 0) return kind === "text" ? "iso" : undefined;
-  const fitting = TIME_RANGES.filter(([, low, high]) => values.every((value) => value >= low && value <= high));
+  const fitting = TIME_RANGES.filter(([, low, high]) =>
+    values.every((value) => value >= low && value <= high),
+  );
   return fitting.length === 1 ? fitting[0]![0] : undefined;
 }
 

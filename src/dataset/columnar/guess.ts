@@ -9,7 +9,19 @@ import type { TableColumn } from "./table.ts";
 /** Plain words for a role, without case, blanks, underscores and units. */
 const WORDS: Readonly<Record<Role, readonly string[]>> = {
   time: [
-    ...["time", "mjd", "jd", "timemjd", "mjdtime", "timejd", "mjdutc", "utc", "timeutc", "utctime", "timestamp"],
+    ...[
+      "time",
+      "mjd",
+      "jd",
+      "timemjd",
+      "mjdtime",
+      "timejd",
+      "mjdutc",
+      "utc",
+      "timeutc",
+      "utctime",
+      "timestamp",
+    ],
     ...["datetime", "juliandate", "julianday", "unixtime", "unix", "timeunix", "epochtime", "timecentroid"],
   ],
   antenna1: ["antenna1", "ant1", "a1", "station1", "stat1", "dish1", "telescope1", "antennaa", "anta"],

@@ -87,7 +87,15 @@ const KEYS: readonly string[] = [
   ...ROLES,
   ...AXES,
   ...["columns", "lists", "constants", "column", "unit", "since", "from", "precision"],
-  ...["array", "polarizations", "frequencies", "channel_width", "setups", "reference_frequency", "integration"],
+  ...[
+    "array",
+    "polarizations",
+    "frequencies",
+    "channel_width",
+    "setups",
+    "reference_frequency",
+    "integration",
+  ],
   ...["fields", "antennas", "antenna_positions", "dish_diameter", "frame", "reference_date", "sidereal_time"],
   ...["id", "name", "ra", "dec", "equinox", "number", "position", "diameter", "start", "step", "channels"],
 ];

@@ -3,7 +3,7 @@ import { z } from "zod";
 import { mjdFromDate } from "../../util/dates.ts";
 import { InputError, nearest } from "../../util/errors.ts";
 import { parseDuration, parseFrequency, parseLength } from "../../util/units.ts";
-import { type Polarization, POLARIZATIONS } from "../dataset.ts";
+import { POLARIZATIONS, type Polarization } from "../dataset.ts";
 import { AXES, type ColumnUse, type Constants, ROLES, type Role, type SetupConstant } from "./column-map.ts";
 import { parseDeclination, parseRightAscension } from "./sky-angles.ts";
 import { needsEpoch, unitsOf } from "./units.ts";
@@ -149,10 +149,7 @@ const field = z.strictObject({
 const antenna = z.strictObject({
   number: z.int().min(0).max(65_535).optional(),
   name: text.optional(),
-  position: z
-    .tuple([length, length, length], { error: "expected x, y, z in metres" })
-    .nullable()
-    .optional(),
+  position: z.tuple([length, length, length], { error: "expected x, y, z in metres" }).nullable().optional(),
   diameter: length.optional(),
 });
 const setup = z.strictObject({

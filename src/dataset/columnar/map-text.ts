@@ -4,13 +4,7 @@ import { Document, isSeq, visit, YAMLMap } from "yaml";
 import { dateFromMjd } from "../../util/dates.ts";
 import { InputError } from "../../util/errors.ts";
 import { writeTextFile } from "../../util/write-file.ts";
-import {
-  type ColumnMap,
-  type ColumnUse,
-  type Constants,
-  ROLES,
-  type SetupConstant,
-} from "./column-map.ts";
+import { type ColumnMap, type ColumnUse, type Constants, ROLES, type SetupConstant } from "./column-map.ts";
 
 /** Text that ends in a line end. */
 export function columnMapText({ uses, lists, constants }: ColumnMap): string {

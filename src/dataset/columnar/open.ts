@@ -4,8 +4,8 @@
  */
 import { stat } from "node:fs/promises";
 import { resolve } from "node:path";
-import { InputError } from "../../util/errors.ts";
 import { dateFromMjd, mjdFromDate } from "../../util/dates.ts";
+import { InputError } from "../../util/errors.ts";
 import type { ArrayInfo, Field, Note, Polarization, Setup, Shape } from "../dataset.ts";
 import { datasetName } from "../name.ts";
 import { Notes } from "../notes.ts";
@@ -133,7 +133,11 @@ async function unpack(tables: readonly Table[], map: ColumnMap, folder: string):
   const file = tables[0]!.file;
   const found = await findLabels(tables, map.uses, map.lists.length > 0);
   if (found.tableRows === 0) {
-    throw new InputError("the table has no rows", { file }, "Writing has not begun, or a filter left nothing");
+    throw new InputError(
+      "the table has no rows",
+      { file },
+      "Writing has not begun, or a filter left nothing",
+    );
   }
   const table = antennaFile === undefined ? (antennas ?? []) : await readAntennaFile(antennaFile, diameter);
   const axes = resolveAxes(map, found, notes, file);
@@ -186,7 +190,8 @@ function noteSamples(spooled: SpoolCounts, counts: GatherCounts, rowSamples: num
 }
 
 function noteRows(summary: RowSummary, notes: Notes): void {
-  if (summary.rowsWithoutTime > 0) notes.fault("time-not-finite", `${summary.rowsWithoutTime} rows have no time`);
+  if (summary.rowsWithoutTime > 0)
+    notes.fault("time-not-finite", `${summary.rowsWithoutTime} rows have no time`);
   if (summary.rowsWithoutUvw > 0) {
     notes.fault("uvw-not-finite", `${summary.rowsWithoutUvw} rows have a u, v or w that is not finite`);
   }

@@ -1,5 +1,11 @@
 /** A Parquet file as a table: its footer first, then row groups by byte range, never the whole file. */
-import { type AsyncBuffer, type FileMetaData, parquetMetadataAsync, parquetScan, parquetSchema } from "hyparquet";
+import {
+  type AsyncBuffer,
+  type FileMetaData,
+  parquetMetadataAsync,
+  parquetScan,
+  parquetSchema,
+} from "hyparquet";
 import { compressors } from "hyparquet-compressors";
 import { InputError } from "../../util/errors.ts";
 import type { ByteSource, Cursor } from "../fits/byte-source.ts";
@@ -28,9 +34,11 @@ export async function openParquet(source: ByteSource): Promise<Table> {
   }
   const metadata = await withCursor(source, async (cursor) => {
     await requireFooter(cursor, path, bytesOnDisk);
-    return parquetMetadataAsync(bufferOf(cursor, bytesOnDisk), { geoparquet: false }).catch((cause: unknown) => {
-      throw damaged(cause);
-    });
+    return parquetMetadataAsync(bufferOf(cursor, bytesOnDisk), { geoparquet: false }).catch(
+      (cause: unknown) => {
+        throw damaged(cause);
+      },
+    );
   });
   const mapText = metadata.key_value_metadata?.find(({ key }) => key === MAP_KEY)?.value;
   return {
@@ -83,7 +91,9 @@ async function requireFooter(cursor: Cursor, file: string, bytes: number): Promi
 function columnsOf(metadata: FileMetaData, file: string): TableColumn[] {
   const { children } = parquetSchema(metadata);
   if (children.length > MOST_COLUMNS) {
-    throw new InputError(`the table has ${children.length} columns: expected at most ${MOST_COLUMNS}`, { file });
+    throw new InputError(`the table has ${children.length} columns: expected at most ${MOST_COLUMNS}`, {
+      file,
+    });
   }
   return children.map(({ element, children: inner }): TableColumn => {
     const list =

@@ -43,10 +43,7 @@ function planRange({ rows, shape }: SpooledRows, request: BlockRequest): Range {
   return { first, end, blockRows: Math.min(wish ?? usual, most, Math.max(1, end - first)) };
 }
 
-export async function* spoolBlocks(
-  spooled: SpooledRows,
-  request: BlockRequest,
-): AsyncGenerator<SampleBlock> {
+export async function* spoolBlocks(spooled: SpooledRows, request: BlockRequest): AsyncGenerator<SampleBlock> {
   const { first, end, blockRows } = planRange(spooled, request);
   if (first === end) return;
   const { shape, folder } = spooled;

@@ -150,7 +150,10 @@ export class SpoolWriter {
 
   #flushRows(): void {
     const first = this.#rows + 1 - this.#bufferedRows;
-    this.#rowFile.write(new Uint8Array(this.#rowBuffer.buffer, 0, this.#bufferedRows * ROW_BYTES), first * ROW_BYTES);
+    this.#rowFile.write(
+      new Uint8Array(this.#rowBuffer.buffer, 0, this.#bufferedRows * ROW_BYTES),
+      first * ROW_BYTES,
+    );
     this.#bufferedRows = 0;
   }
 

@@ -6,6 +6,7 @@ import { createHash } from "node:crypto";
 import { mkdirSync, readdirSync, readFileSync, renameSync, rmSync, statSync, writeFileSync } from "node:fs";
 import { hostname, tmpdir } from "node:os";
 import { join } from "node:path";
+import { isMainThread } from "node:worker_threads";
 import { spoolError } from "./spool-file.ts";
 
 /** Folders for temporary files may be shared with other machines, whose process numbers say nothing here. */
@@ -108,9 +109,18 @@ function factsIn<Facts>(folder: string): Facts | undefined {
 function watch(): void {
   if (watching) return;
   watching = true;
-  process.on("exit", () => {
+  const removeAll = () => {
     for (const folder of owned) remove(folder);
-  });
+  };
+  process.on("exit", removeAll);
+  if (!isMainThread) return;
+  for (const signal of ["SIGINT", "SIGTERM", "SIGHUP"] as const) {
+    process.once(signal, () => {
+      removeAll();
+      // With our handler gone, and no other there, the signal does what it does by default.
+      if (process.listenerCount(signal) === 0) process.kill(process.pid, signal);
+    });
+  }
 }
 
 function remove(folder: string): void {

@@ -77,7 +77,11 @@ function headerNames(record: readonly string[], file: string): string[] {
   }
   const twice = names.find((name, i) => name !== "" && names.indexOf(name) !== i);
   if (twice !== undefined) {
-    throw new InputError(`two columns are called "${twice}"`, { file, line: 1 }, "Give each a name of its own");
+    throw new InputError(
+      `two columns are called "${twice}"`,
+      { file, line: 1 },
+      "Give each a name of its own",
+    );
   }
   return names;
 }

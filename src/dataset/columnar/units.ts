@@ -34,7 +34,19 @@ const DURATION_UNITS: Readonly<Record<string, number>> = {
 };
 const PHASE_UNITS: Readonly<Record<string, number>> = { rad: 1, deg: Math.PI / 180 };
 /** Time of day or since an epoch; "s", "min", "h" and "d" count from `since`. */
-const TIME_UNITS = ["mjd", "jd", "mjd_seconds", "unix", "unix_ms", "iso", "s", "ms", "min", "h", "d"] as const;
+const TIME_UNITS = [
+  "mjd",
+  "jd",
+  "mjd_seconds",
+  "unix",
+  "unix_ms",
+  "iso",
+  "s",
+  "ms",
+  "min",
+  "h",
+  "d",
+] as const;
 
 /** The units a role takes; empty: it takes none. */
 export function unitsOf(role: Role): readonly string[] {
