@@ -105,18 +105,15 @@ function recurringIn(
       .filter((check) => check.band === band)
       .map(({ night, start, end }) => ({ night, start, end }));
     const edges = [...new Set(own.flatMap(({ low, high }) => [low, high]))].sort((a, b) => a - b);
-    let open: RecurringInterference | null = null;
     for (let i = 0; i + 1 < edges.length; i++) {
       const [low, high] = [edges[i]!, edges[i + 1]!];
       const seen = own.filter((one) => one.low < high && one.high > low);
       const recurrence = recurrenceOf(seen, watched);
-      if (recurrence !== null && open?.high === low && sameHours(open.recurrence, recurrence)) {
-        open = { ...open, high };
-        found[found.length - 1] = open;
-      } else if (recurrence !== null) {
-        open = { band, low, high, recurrence };
-        found.push(open);
-      } else open = null;
+      if (recurrence === null) continue;
+      const last = found.at(-1);
+      if (last?.band === band && last.high === low && sameHours(last.recurrence, recurrence)) {
+        found[found.length - 1] = { ...last, high };
+      } else found.push({ band, low, high, recurrence });
     }
   }
   return found;
