@@ -5,11 +5,13 @@ import { SketchBook } from "../sketch-book.ts";
 import type { StateReader } from "./reader.ts";
 import type { StateRecord } from "./value.ts";
 
-export function bookState({ directory, counts, passes }: SketchBook): StateRecord {
+export function bookState({ directory, counts, passes, pages }: SketchBook): StateRecord {
+  // Copies: the kernels' memory stays with this thread. Page 0 is none, and whatever it holds is no state.
+  const held = Uint16Array.from(counts);
+  held.fill(0, 0, held.length / pages);
   return {
-    // Copies: the kernels' memory stays with this thread.
     directory: Uint32Array.from(directory),
-    counts: Uint16Array.from(counts),
+    counts: held,
     passed: Float64Array.from(passes.keys()),
     passes: Float64Array.from(passes.values()),
   };
