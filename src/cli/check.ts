@@ -30,6 +30,11 @@ export const check = command<CheckArguments>({
         requiresArg: true,
         describe: "Folder for the reports and flags [default: visvet-<dataset name>]",
       })
+      .option("columns", {
+        type: "string",
+        requiresArg: true,
+        describe: "What the columns of tables hold, a YAML file [default: the one beside them, or a guess]",
+      })
       .option("rules", {
         type: "string",
         array: true,

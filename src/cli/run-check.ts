@@ -9,6 +9,8 @@ export interface CheckOptions extends JudgeOptions {
   readonly dataset: readonly string[];
   readonly out: string | undefined;
   readonly field: string | undefined;
+  /** path of a column map */
+  readonly columns?: string | undefined;
 }
 
 /** @returns the exit status: 0, or 1 where the worst verdict is a hold (or, when strict, a caution) */
@@ -16,7 +18,7 @@ export async function runCheck(options: CheckOptions): Promise<number> {
   const judgement = await understand(options, memoryOf(options));
   let status = 0;
   for (const path of options.dataset) {
-    const whole = await openDataset(path);
+    const whole = await openDataset(path, { columnMap: options.columns });
     const dataset =
       options.field === undefined ? whole : await fieldView(whole, fieldNamed(whole, options.field).id);
     status = Math.max(status, await judgeDataset(judgement, dataset, outputFolder(options, dataset.name)));

@@ -1,9 +1,10 @@
 /** Open the visibilities of one observation, in one file or many, of any format that is read. */
 import { basename } from "node:path";
 import { InputError } from "../util/errors.ts";
+import { isMapName, looksColumnar } from "./columnar/open-tables.ts";
 import { type FoundFiles, findFiles } from "./find-files.ts";
 import { joinFits } from "./joined/join.ts";
-import { type FileKind, headOf, isBinaryTable, isFits, kindOfFile } from "./kinds.ts";
+import { type FileKind, headOf, isFits, kindOfFile } from "./kinds.ts";
 import { Notes } from "./notes.ts";
 import { openFitsDataset } from "./open-fits.ts";
 import type { KnownRows, OpenOptions } from "./recipe.ts";
@@ -46,20 +47,18 @@ export async function openFiles(
 }
 
 /** Whether a file that is not FITS is a table of visibilities. */
-function isTable(head: Uint8Array, _path: string): boolean {
-  return isBinaryTable(head);
+function isTable(head: Uint8Array, path: string): boolean {
+  return looksColumnar(head, path);
 }
 
 async function openTables(
   paths: readonly string[],
-  _options: OpenOptions,
-  _known?: KnownRows,
+  options: OpenOptions,
+  known?: KnownRows,
 ): Promise<OpenedDataset> {
-  throw new InputError(
-    "this is a columnar table: this version reads FITS files only",
-    { file: paths[0]! },
-    "Export the data as FITS",
-  );
+  // The readers of tables are large, and most datasets are FITS files.
+  const { openColumnar } = await import("./columnar/open.ts");
+  return openColumnar(paths, { ...options, known: known?.[0] });
 }
 
 const KIND_NAMES: Readonly<Record<FileKind, string>> = {
@@ -78,7 +77,7 @@ async function choose(found: FoundFiles, notes: Notes): Promise<string[]> {
     const kind = await kindOfFile(path, isTable);
     if (kind === null) {
       if (!searched) throw notVisibilities(path);
-      others.push(basename(path));
+      if (!isMapName(path)) others.push(basename(path));
       continue;
     }
     first ??= { path, kind };

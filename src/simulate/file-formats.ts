@@ -1,5 +1,6 @@
 /** The formats that a simulated dataset is written in, told by the suffix of the file's name. */
 import type { Dataset } from "../dataset/dataset.ts";
+import { writeColumnar } from "./write-columnar.ts";
 import { writeFitsIdi } from "./write-fits-idi.ts";
 import { writeUvfits } from "./write-uvfits.ts";
 
@@ -23,6 +24,7 @@ const RANDOM_GROUPS: FileFormat = { suffixes: [".uvfits", ".fits", ".uvf", ".fit
 const FORMATS: readonly FileFormat[] = [
   RANDOM_GROUPS,
   { suffixes: [".idifits", ".idi"], write: writeFitsIdi },
+  { suffixes: [".parquet", ".arrow", ".csv", ".tsv"], write: writeColumnar },
 ];
 
 /** Random groups for a suffix that is none of the formats'. */

@@ -3,7 +3,7 @@ import { parse } from "csv-parse/sync";
 import { InputError } from "../../util/errors.ts";
 import { readSmallText } from "../../util/small-text.ts";
 import type { AntennaConstant } from "./column-map.ts";
-import { delimiterOf } from "./text-table.ts";
+import { delimiterOf } from "./delimiter.ts";
 
 const MOST_ANTENNAS = 65_536;
 

@@ -2,8 +2,8 @@
 import { InputError } from "../../util/errors.ts";
 import { openSource } from "../fits/source.ts";
 import type { ColumnMap } from "./column-map.ts";
+import { delimiterOf, headerLine } from "./delimiter.ts";
 import type { Table } from "./table.ts";
-import { delimiterOf, headerLine } from "./text-table.ts";
 
 type TableFormat = Table["format"];
 
@@ -38,6 +38,11 @@ function isArrowStream(head: Uint8Array): boolean {
 /** No control characters but blanks and line ends. */
 function isText(head: Uint8Array): boolean {
   return head.length > 0 && head.every((byte) => byte >= 32 || (byte >= 9 && byte <= 13));
+}
+
+/** Whether a file is called as column maps are: found in a folder of tables, it is no part of them. */
+export function isMapName(path: string): boolean {
+  return /(^|[./\\])columns\.yaml$/.test(path);
 }
 
 /** Whether a file is a table whose columns may be visibilities, told by its first bytes. */

@@ -3,6 +3,7 @@ import { Readable } from "node:stream";
 import { CsvError, type Options, parse } from "csv-parse";
 import { InputError } from "../../util/errors.ts";
 import type { ByteSource } from "../fits/byte-source.ts";
+import { delimiterOf, headerLine } from "./delimiter.ts";
 import { BATCH_VALUES, type Batch, MOST_COLUMNS, type Table, type TableColumn } from "./table.ts";
 
 /** A longer record is a quote that was never closed, or no table. */
@@ -12,22 +13,6 @@ const HEAD_BYTES = 64 * 1024;
 /** Rows that are looked at to tell what a column holds. */
 const SNIFFED_ROWS = 200;
 const MOST_BATCH_ROWS = 8192;
-
-const DELIMITERS = [",", "\t", ";", "|"] as const;
-
-/** The delimiter of a line of names; undefined when nothing divides it. */
-export function delimiterOf(line: string): string | undefined {
-  const bare = line.replace(/"(?:[^"]|"")*"/g, "");
-  const counts = DELIMITERS.map((delimiter) => bare.split(delimiter).length - 1);
-  const most = Math.max(...counts);
-  return most === 0 ? undefined : DELIMITERS[counts.indexOf(most)];
-}
-
-/** The first line that is neither empty nor a comment. */
-export function headerLine(head: Uint8Array): string | undefined {
-  const text = new TextDecoder("utf-8").decode(head).replace(/^\ufeff/, "");
-  return text.split(/\r\n|\n|\r/).find((line) => line.trim() !== "" && !line.startsWith("#"));
-}
 
 /** @throws InputError when there is no header of column names */
 export async function openText(source: ByteSource): Promise<Table> {
