@@ -54,7 +54,7 @@ function noVisibilities(file: FitsFile, primary: Hdu, place: { file: string; par
     );
   }
   return new InputError(
-    `no visibilities: expected random groups (NAXIS1 = 0 and GROUPS = T), found ${contents(file)}`,
+    `no visibilities: expected random groups (NAXIS1 = 0 and GROUPS = T) or a table UV_DATA, found ${contents(file)}`,
     place,
     primary.header.shown("GROUPS") === "T" && primary.header.has("NAXIS1")
       ? "The header says GROUPS = T, but NAXIS1 is not 0: the file is damaged or of another kind"

@@ -6,6 +6,7 @@ import { binaryTable, card, headerBlocks } from "../../src/dataset/fits/write.ts
 import { datasetName } from "../../src/dataset/name.ts";
 import { openDataset } from "../../src/dataset/open.ts";
 import { fileMaker, groupFile } from "./group-file.ts";
+import { idiFile } from "./idi-file.ts";
 import { lineOfError } from "./read-all.ts";
 
 const file = fileMaker();
@@ -21,12 +22,13 @@ describe("openDataset", () => {
     expect(dataset.bytes).toBe(groupFile().length);
   });
 
-  it("says that FITS-IDI is not read yet, and what to do", async () => {
+  it("tells FITS-IDI by the names of its tables, and asks for the one with the visibilities", async () => {
+    const dataset = await openDataset(file(idiFile(), "night 12.dat"));
+    expect([dataset.format, dataset.rows, dataset.bytes]).toEqual(["fits-idi", 4, idiFile().length]);
     const idi = primary(card("NAXIS", 0), card("GROUPS", true), card("GCOUNT", 0), card("PCOUNT", 0));
     expect(await refusal(Buffer.concat([idi, table("ARRAY_GEOMETRY")]), "a.idifits")).toMatch(
-      /a\.idifits, HDU 1 \(primary\): this is a FITS-IDI file: this version reads random groups only\. Export the data/,
+      /a\.idifits, HDU 1 \(primary\): no table is called UV_DATA: expected one, or several, with the visibilities\./,
     );
-    expect(await refusal(Buffer.concat([idi, table("OTHER"), table("UV_DATA")]))).toContain("FITS-IDI");
   });
 
   it("knows the archive form whose visibilities are in a table", async () => {
@@ -41,7 +43,7 @@ describe("openDataset", () => {
       table("CATALOG"),
     ]);
     expect(await refusal(image)).toContain(
-      "no visibilities: expected random groups (NAXIS1 = 0 and GROUPS = T), found an image of 30 x 20, a binary table " +
+      "no visibilities: expected random groups (NAXIS1 = 0 and GROUPS = T) or a table UV_DATA, found an image of 30 x 20, a binary table " +
         "CATALOG. Name the file of visibilities, not an image or a table made from them",
     );
     const groups = Buffer.concat([
@@ -65,6 +67,7 @@ describe("datasetName", () => {
     ["/data/night12.uvfits", "night12"],
     ["night12.uvfits.gz", "night12"],
     ["a.b.FITS", "a.b"],
+    ["night12.idifits", "night12"],
     ["plain", "plain"],
     [".fits", ".fits"],
   ])("of %s is %s", (path, name) => {
