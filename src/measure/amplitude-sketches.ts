@@ -1,6 +1,8 @@
 /** Amplitude sketches by baseline, sub-band, channel and polarization, and the usable samples that they hold. */
 import type { Shape } from "../dataset/dataset.ts";
+import { Arena, kernelMemory } from "../util/kernels/memory.ts";
 import type { Accumulator } from "./accumulator.ts";
+import { countKernels } from "./kernels/count-sketches.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
 import { sharingLadder } from "./sharing-ladder.ts";
 import { SketchBank } from "./sketch-bank.ts";
@@ -15,8 +17,9 @@ export class AmplitudeSketches implements Accumulator {
   private readonly bank: SketchBank;
   /** by baseline */
   private readonly rows: number[] = [];
-  /** by baseline, only where there are any: (samples of a row) samples that are not usable */
-  private readonly unusable: (Uint32Array | undefined)[] = [];
+  /** by baseline, only where there are any: address of (samples of a row) uint32, samples that are not usable */
+  private readonly unusable: (number | undefined)[] = [];
+  private readonly arena: Arena = new Arena(this);
 
   /**
    * @param budget     bytes of the sketches: where they would take more, neighbouring channels share one
@@ -29,26 +32,35 @@ export class AmplitudeSketches implements Accumulator {
 
   add(prepared: PreparedBlock): void {
     const { samples, bank, rows } = this;
-    const { baseline: baselines, bits, whole } = prepared;
+    const { baseline: baselines, at, whole } = prepared;
     for (let row = 0; row < prepared.rows; row++) {
       const baseline = baselines[row]!;
       if (baseline === AUTOCORRELATION) continue;
-      const start = row * samples;
-      bank.add(baseline, bits, start);
+      const bits = at.bits + 4 * row * samples;
+      bank.addAt(baseline, bits);
       rows[baseline] = (rows[baseline] ?? 0) + 1;
-      if (whole[row] === 1) continue;
-      const unusable = this.unusableOf(baseline);
-      for (let i = 0; i < samples; i++) if (bits[start + i]! < 0) unusable[i]! += 1;
+      if (whole[row] === 0) countKernels.countUnusable(bits, samples, this.unusableOf(baseline));
     }
   }
 
-  private unusableOf(baseline: number): Uint32Array {
-    let unusable = this.unusable[baseline];
-    if (unusable === undefined) {
-      unusable = new Uint32Array(this.samples);
-      this.unusable[baseline] = unusable;
+  private unusableOf(baseline: number): number {
+    let at = this.unusable[baseline];
+    if (at === undefined) {
+      at = this.arena.require(4 * this.samples);
+      this.unusable[baseline] = at;
+      this.counters(at).fill(0);
     }
-    return unusable;
+    return at;
+  }
+
+  private counters(at: number): Uint32Array<SharedArrayBuffer> {
+    return kernelMemory.heap.u32.subarray(at / 4, at / 4 + this.samples);
+  }
+
+  /** Give the memory back. Nothing can be asked or added after. */
+  release(): void {
+    this.bank.release();
+    this.arena.release();
   }
 
   merge(other: this, baselines: Int32Array): void {
@@ -59,8 +71,9 @@ export class AmplitudeSketches implements Accumulator {
       this.rows[ours] = (this.rows[ours] ?? 0) + rows;
       const counts = other.unusable[theirs];
       if (counts === undefined) continue;
-      const unusable = this.unusableOf(ours);
-      for (let i = 0; i < this.samples; i++) unusable[i]! += counts[i]!;
+      const unusable = this.counters(this.unusableOf(ours));
+      const added = this.counters(counts);
+      for (let i = 0; i < this.samples; i++) unusable[i]! += added[i]!;
     }
   }
 
@@ -68,7 +81,10 @@ export class AmplitudeSketches implements Accumulator {
     return {
       bank: this.bank.state(),
       rows: Float64Array.from(this.rows, (rows) => rows ?? 0),
-      unusable: Array.from(this.unusable, (counts) => counts ?? null),
+      // Copies: the kernels' memory stays with this thread.
+      unusable: Array.from(this.unusable, (at) =>
+        at === undefined ? null : Uint32Array.from(this.counters(at)),
+      ),
     };
   }
 
@@ -81,7 +97,7 @@ export class AmplitudeSketches implements Accumulator {
     for (const [baseline, counts] of from
       .arrays(Uint32Array, "unusable", this.samples, baselines)
       .entries()) {
-      if (counts !== null) this.unusable[baseline] = counts;
+      if (counts !== null) this.counters(this.unusableOf(baseline)).set(counts);
     }
   }
 
@@ -94,7 +110,8 @@ export class AmplitudeSketches implements Accumulator {
    */
   fill(baseline: number, median: Float32Array, count: Uint32Array): void {
     const rows = this.rows[baseline] ?? 0;
-    const unusable = this.unusable[baseline];
+    const at = this.unusable[baseline];
+    const unusable = at === undefined ? undefined : this.counters(at);
     const shared = this.bank.map.sketch;
     const known = new Float32Array(this.bank.map.sketches);
     const asked = new Uint8Array(this.bank.map.sketches);

@@ -7,7 +7,9 @@
  * differences over one, two and three channels, of all baselines together, tell whether channels were smoothed.
  */
 import type { Shape } from "../dataset/dataset.ts";
+import { Arena } from "../util/kernels/memory.ts";
 import type { Accumulator } from "./accumulator.ts";
+import { differenceKernels } from "./kernels/differences.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
 import type { SurveySettings } from "./settings.ts";
 import { type SketchMap, sharingLadder } from "./sharing-ladder.ts";
@@ -32,8 +34,9 @@ export class NoiseSketches implements Accumulator {
   private readonly byChannel: SketchBank;
   /** owners: the second difference, then the spans; sketches by sub-band */
   private readonly bySpan: SketchBank;
-  private readonly differences: Float32Array;
-  private readonly bits: Int32Array;
+  private readonly arena: Arena = new Arena(this);
+  /** address of (samples) int32: bits of a row's differences; undefined before the first */
+  private bits: number | undefined;
 
   constructor(
     shape: Shape,
@@ -53,8 +56,6 @@ export class NoiseSketches implements Accumulator {
     );
     this.byChannel = new SketchBank(sharingLadder(shape), MANTISSA_BITS, budget / 4, 1);
     this.bySpan = new SketchBank([bySubband(shape)], MANTISSA_BITS, budget / 4, 1 + SPANS.length);
-    this.differences = new Float32Array(this.samples);
-    this.bits = new Int32Array(this.differences.buffer);
   }
 
   add(prepared: PreparedBlock): void {
@@ -67,21 +68,32 @@ export class NoiseSketches implements Accumulator {
       const chance = Math.imul(block.firstRow + row, 0x9e3779b1) >>> 8;
       if ((chance & (this.every - 1)) !== 0) continue;
       this.takeSecond(prepared, row);
-      this.byBaseline.add(baseline[row]!, this.bits, 0);
-      if ((chance & (this.every * this.channelEvery - 1)) === 0) this.byChannel.add(0, this.bits, 0);
+      const bits = this.placed();
+      this.byBaseline.addAt(baseline[row]!, bits);
+      if ((chance & (this.every * this.channelEvery - 1)) === 0) this.byChannel.addAt(0, bits);
       if ((chance & (this.every * this.spansEvery - 1)) !== 0) continue;
-      this.bySpan.add(0, this.bits, 0);
+      this.bySpan.addAt(0, bits);
       for (const [k, span] of SPANS.entries()) {
         this.takeFirst(prepared, row, span);
-        this.bySpan.add(1 + k, this.bits, 0);
+        this.bySpan.addAt(1 + k, bits);
       }
     }
   }
 
+  /** Give the memory back. Nothing can be asked or added after. */
+  release(): void {
+    for (const bank of [this.byBaseline, this.byChannel, this.bySpan]) bank.release();
+    this.arena.release();
+  }
+
+  private placed(): number {
+    this.bits ??= this.arena.require(4 * this.samples);
+    return this.bits;
+  }
+
   /** Second differences of a row, each at its middle channel; of two channels the first difference at the first. */
   private takeSecond(prepared: PreparedBlock, row: number): void {
-    const { channels } = this.shape;
-    if (channels === 2) this.takeFirst(prepared, row, 1);
+    if (this.shape.channels === 2) this.takeFirst(prepared, row, 1);
     else this.take(prepared, row, 1, 1);
   }
 
@@ -89,28 +101,20 @@ export class NoiseSketches implements Accumulator {
     this.take(prepared, row, 0, span);
   }
 
-  /** |V(c-before) - (1 or 2) V(c) + (0 or V(c+after))|: with nothing before, the first difference V(c+after) - V(c). */
-  private take(prepared: PreparedBlock, row: number, before: number, after: number): void {
-    const { differences, bits, samples } = this;
+  private take({ at }: PreparedBlock, row: number, before: number, after: number): void {
     const { subbands, channels, polarizations } = this.shape;
-    const { real, imag } = prepared.block;
-    const kinds = prepared.bits;
-    const offset = row * samples;
-    const down = before * polarizations;
-    const up = after * polarizations;
-    // Without a channel before, the middle one takes its place: V(c) - 2 V(c) + V(c+after).
-    bits.fill(-1);
-    for (let s = 0; s < subbands; s++) {
-      const first = (s * channels + before) * polarizations;
-      const end = (s * channels + channels - after) * polarizations;
-      for (let i = first; i < end; i++) {
-        const at = offset + i;
-        if ((kinds[at - down]! | kinds[at]! | kinds[at + up]!) < 0) continue;
-        const re = real[at - down]! - 2 * real[at]! + real[at + up]!;
-        const im = imag[at - down]! - 2 * imag[at]! + imag[at + up]!;
-        differences[i] = Math.sqrt(re * re + im * im);
-      }
-    }
+    const first = 4 * row * this.samples;
+    differenceKernels.fillDifferences(
+      at.real + first,
+      at.imag + first,
+      at.bits + first,
+      subbands,
+      channels,
+      polarizations,
+      before,
+      after,
+      this.placed(),
+    );
   }
 
   merge(other: this, baselines: Int32Array): void {

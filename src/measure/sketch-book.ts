@@ -27,6 +27,8 @@ export class SketchBook {
     this.directoryAt = arena.require(4 * this.slots);
     this.countsAt = arena.require(this.pageBytes * this.capacity);
     this.directory.fill(0);
+    // Pages are zeroed as they are made; this one is empty for good.
+    this.counts.fill(0);
   }
 
   get pageBytes(): number {
