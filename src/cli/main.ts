@@ -9,13 +9,14 @@ import { check } from "./check.ts";
 import { describe } from "./describe.ts";
 import { explain } from "./explain.ts";
 import { join } from "./join.ts";
+import { nightly } from "./nightly.ts";
 import { part } from "./part.ts";
 import { simulate } from "./simulate.ts";
 
 /** Could not be judged: bad usage, unreadable or malformed input. */
 const EXIT_NOT_JUDGED = 2;
 
-const COMMANDS = [check, apply, describe, explain, part, join, simulate].map(
+const COMMANDS = [check, apply, describe, explain, part, join, nightly, simulate].map(
   ({ command }) => String(command).split(" ")[0]!,
 );
 
@@ -35,6 +36,7 @@ try {
     .command(explain)
     .command(part)
     .command(join)
+    .command(nightly)
     .command(simulate)
     .demandCommand(1, "Name a command")
     .strictCommands()

@@ -13,6 +13,8 @@ import { tool } from "../report/tool.ts";
 import { writeReports } from "../report/write-reports.ts";
 import type { RuleSet } from "../rules/rule.ts";
 import { InputError } from "../util/errors.ts";
+import type { Workers } from "../util/workers.ts";
+import { writeTextFile } from "../util/write-file.ts";
 import { type Candidate, findCandidates } from "./find/candidates.ts";
 import { changedOf, contentOf, fingerprint, stillWritten } from "./find/fingerprint.ts";
 import { type Patience, settled } from "./find/settled.ts";
@@ -30,10 +32,14 @@ import {
   seenFiles,
 } from "./history/store.ts";
 import { takeLock } from "./lock.ts";
+import { indexContent, indexPage } from "./page/page.ts";
 import { choosePlan, type PlanChoice } from "./plans.ts";
 import { partsOfCheck } from "./record-check.ts";
 import { beyond, type Keep } from "./retention.ts";
+import { summaryJson } from "./summary.ts";
 import { type Trends, trendsOf } from "./trends.ts";
+
+export const INDEX_PAGE = "index.html";
 
 export interface NightlyRequest {
   readonly folder: string;
@@ -47,7 +53,9 @@ export interface NightlyRequest {
   /** delete what is beyond `keep`; otherwise it is only named */
   readonly prune: boolean;
   /** what every check is given besides its plan */
-  readonly check: Omit<CheckRequest, "plan" | "rules">;
+  readonly check: Omit<CheckRequest, "plan" | "rules" | "workers">;
+  /** threads for a dataset of so many bytes; closed when it is done */
+  readonly workersFor?: (bytes: number) => Workers | undefined;
   readonly onDataset?: (path: string, done: number, of: number) => void;
 }
 
@@ -155,7 +163,13 @@ class Night {
     const { rules, out } = this.request;
     const dataset = await openDataset(candidate.files.length === 1 ? candidate.files[0]! : candidate.files);
     const asked = plan === null ? {} : await readPlan(plan);
-    const check = await checkDataset(dataset, { ...this.request.check, plan: asked, rules });
+    const workers = this.request.workersFor?.(dataset.bytes);
+    const check = await checkDataset(dataset, {
+      ...this.request.check,
+      plan: asked,
+      rules,
+      workers,
+    }).finally(() => workers?.close());
     for (const file of files) {
       const now = await stat(file.path, { bigint: true }).catch(() => null);
       if (now === null || changedOf(now) !== file.changed) throw stillWritten(file.path);
@@ -239,10 +253,11 @@ class Night {
       }
       checks = await this.history.read(allChecks);
     }
-    const trends = await this.history.read((connection) =>
-      trendsOf(allSeries(connection), allInterference(connection), checks),
-    );
-    return {
+    const [interference, trends] = await this.history.read((connection) => {
+      const seen = allInterference(connection);
+      return [seen, trendsOf(allSeries(connection), seen, checks)] as const;
+    });
+    const result: NightlyResult = {
       news: checks.filter(({ content, judgedBy }) => this.news.has(`${content} ${judgedBy}`)),
       unchanged: this.unchanged,
       unsettled: this.unsettled,
@@ -250,6 +265,9 @@ class Night {
       trends,
       beyond: old,
     };
+    await writeTextFile(join(out, INDEX_PAGE), indexPage(indexContent(result, interference)));
+    await writeTextFile(join(out, "summary.json"), summaryJson(result));
+    return result;
   }
 }
 
