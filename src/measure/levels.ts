@@ -102,6 +102,8 @@ function sigmaInTime(tracks: Tracks, baseline: number, product: number, products
 function follow({ scan, setup, subarray, field }: Tracks, first: number, last: number): boolean {
   return (
     scan[first] === scan[last] &&
+    // Setups of one time come in turn.
+    setup[first] === setup[first + 1] &&
     setup[first] === setup[last] &&
     subarray[first] === subarray[last] &&
     field[first] === field[last]

@@ -2,6 +2,7 @@
 import type { Survey } from "../../measure/survey-result.ts";
 import type { DetectedEvent } from "../event.ts";
 import type { DetectRequest } from "../request.ts";
+import { arraysOf } from "./arrays.ts";
 import { closureFaults } from "./closure.ts";
 import { delaySlopes } from "./delays.ts";
 import { gainSteps } from "./gain-steps.ts";
@@ -13,12 +14,33 @@ import { silences } from "./silent.ts";
 import { noisyAntennas, weakAntennas, weightMismatches } from "./static-faults.ts";
 import { stuckZeros } from "./stuck-zeros.ts";
 
-/** @param cleaned channel averages without interference, where they are there */
+/**
+ * Array by array: antennas are compared with those they have baselines with, at their own frequencies.
+ *
+ * @param cleaned channel averages without interference, where they are there
+ */
 export function antennaFaults(
   survey: Survey,
   request: DetectRequest,
   cleaned: Cleaned | null = null,
 ): DetectedEvent[] {
+  const arrays = arraysOf(survey, cleaned);
+  const events = arrays.flatMap((one) => faultsOfArray(one.survey, request, one.cleaned));
+  return arrays.length === 1 ? events : once(events);
+}
+
+/** What two setups show alike is one event: the clearer one. */
+function once(events: readonly DetectedEvent[]): DetectedEvent[] {
+  const clearest = new Map<string, DetectedEvent>();
+  for (const event of events) {
+    const key = `${event.kind} ${JSON.stringify(event.scope)}`;
+    const known = clearest.get(key);
+    if (known === undefined || event.significance > known.significance) clearest.set(key, event);
+  }
+  return [...clearest.values()];
+}
+
+function faultsOfArray(survey: Survey, request: DetectRequest, cleaned: Cleaned | null): DetectedEvent[] {
   const grid = gridOf(survey, cleaned);
   if (grid.antennas.length === 0) return [];
   const zeros = stuckZeros(grid);
