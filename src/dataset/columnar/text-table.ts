@@ -153,7 +153,7 @@ async function* chunksOf(source: ByteSource): AsyncGenerator<Uint8Array> {
 
 function malformed(cause: unknown, file: string): unknown {
   if (!(cause instanceof CsvError)) return cause;
-  const line = typeof cause["lines"] === "number" ? cause["lines"] : undefined;
+  const line = typeof cause.lines === "number" ? cause.lines : undefined;
   const place = line === undefined ? { file } : { file, line };
   switch (cause.code) {
     case "CSV_MAX_RECORD_SIZE":
@@ -165,7 +165,7 @@ function malformed(cause: unknown, file: string): unknown {
       );
     case "CSV_RECORD_INCONSISTENT_FIELDS_LENGTH":
     case "CSV_RECORD_INCONSISTENT_COLUMNS": {
-      const found = Array.isArray(cause["record"]) ? cause["record"].length : "another number of";
+      const found = Array.isArray(cause.record) ? cause.record.length : "another number of";
       return new InputError(`the record has ${found} fields, unlike the line of names`, place, undefined, {
         cause,
       });
