@@ -20,7 +20,7 @@ import {
   stokes,
   subbands,
 } from "../../dataset/group-file.ts";
-import { readAll } from "../../dataset/read-all.ts";
+import { readAll } from "../../support/read-all.ts";
 import { copyOf, differences, flag, lineOfRejection, outputFolder } from "./copies.ts";
 
 const folder = outputFolder();

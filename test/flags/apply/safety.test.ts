@@ -8,7 +8,7 @@ import { applyFlags } from "../../../src/flags/apply/apply.ts";
 import { leftOver } from "../../../src/util/new-output.ts";
 import { groupFile } from "../../dataset/group-file.ts";
 import { pieceFolder, renumbered, rowsOf } from "../../dataset/joined/pieces.ts";
-import { readAll } from "../../dataset/read-all.ts";
+import { readAll } from "../../support/read-all.ts";
 import { simulated } from "../../support/scenarios.ts";
 import { flag, lineOfRejection, outputFolder } from "./copies.ts";
 
