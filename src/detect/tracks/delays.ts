@@ -112,8 +112,9 @@ function eventOf(grid: Grid, slope: Slope): DetectedEvent {
 
 /** Signed, Hz from one channel to the next. */
 function channelStep(grid: Grid, which: readonly number[]): number {
-  const { setups, shape } = grid.survey.dataset;
-  const { frequencies } = setups[0]!;
+  const { tracks, dataset } = grid.survey;
+  const { setups, shape } = dataset;
+  const { frequencies } = setups[tracks.setup[0] ?? 0]!;
   const subband = which.length === 0 ? 0 : grid.planes[which[0]!]!.subband;
   return frequencies[subband * shape.channels + 1]! - frequencies[subband * shape.channels]!;
 }
