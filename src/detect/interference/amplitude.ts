@@ -1,5 +1,5 @@
 /** How strong a feature is, from how many of its samples noise and it together lift over the mark. */
-import { ELEVATED_SHARE } from "../pass/second-pass.ts";
+import { ELEVATED_SHARE } from "../pass/marks.ts";
 import type { Feature } from "./features.ts";
 
 /** Power over 2 sigma^2 that a share ELEVATED_SHARE of noise exceeds. */

@@ -1,7 +1,7 @@
 /** Features as events, in numbers and words. */
 import { SECONDS_PER_DAY, SPEED_OF_LIGHT } from "../../util/constants.ts";
 import type { DetectedEvent } from "../event.ts";
-import { ELEVATED_SHARE } from "../pass/second-pass.ts";
+import { ELEVATED_SHARE } from "../pass/marks.ts";
 import type { DetectRequest } from "../request.ts";
 import { amplitudeOf } from "./amplitude.ts";
 import type { Feature } from "./features.ts";

@@ -1,7 +1,7 @@
 /** Edges of a rectangle moved to where its samples stop being elevated. */
 
 import type { Band } from "../pass/bands.ts";
-import { ELEVATED_SHARE } from "../pass/second-pass.ts";
+import { ELEVATED_SHARE } from "../pass/marks.ts";
 import { type Grid, noCounts, type Rectangle, type Subset } from "./grid.ts";
 import { likelihood } from "./subset.ts";
 

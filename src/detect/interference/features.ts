@@ -66,7 +66,7 @@ const BESIDE = 2;
 
 /** Everything that stands out in a band; takes it out of the grid's marks. */
 export function featuresOf(grid: Grid, band: Band): Feature[] {
-  const { mask, persistent } = new Finder(grid.pass.combined).find(band);
+  const { mask, persistent } = new Finder(grid.pass).find(band);
   const features: Feature[] = [];
   for (const burst of broadbandBursts(grid, band)) {
     const { firstStep, lastStep, ratio, significance } = burst;
@@ -112,18 +112,17 @@ export function featuresOfBaselines(grid: Grid, band: Band, known: readonly Feat
   const features: Feature[] = [];
   const { columns } = band;
   const mask = new Uint8Array(grid.steps * columns);
+  const firstSample = band.first * grid.polarizations;
+  const lastSample = (band.first + columns) * grid.polarizations;
   for (let baseline = 0; baseline < baselines.length; baseline++) {
     mask.fill(0);
     let some = 0;
     for (let cell = tracks.firstCell[baseline]!; cell < tracks.firstCell[baseline + 1]!; cell++) {
-      const at = grid.stepOfCell[cell]! * columns;
-      for (let c = 0; c < columns; c++) {
-        for (let p = 0; p < grid.polarizations; p++) {
-          if (!marks.outlying.has(cell, (band.first + c) * grid.polarizations + p)) continue;
-          mask[at + c] = 1;
-          some += 1;
-        }
-      }
+      const at = grid.stepOfCell[cell]! * columns - band.first;
+      marks.outlying.each(cell, firstSample, lastSample, (sample) => {
+        mask[at + Math.floor(sample / grid.polarizations)] = 1;
+        some += 1;
+      });
     }
     if (some < ALONE_SAMPLES) continue;
     const only = new Uint8Array(baselines.length);

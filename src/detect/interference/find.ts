@@ -2,6 +2,7 @@
 
 import type { Band } from "../pass/bands.ts";
 import { type CombinedScores, LENGTH_GROUPS } from "../pass/combined.ts";
+import type { SecondPass } from "../pass/second-pass.ts";
 import { medianInPlace, selectKth } from "../statistics/order.ts";
 import { SumThresholdRoom, sumThreshold } from "../statistics/sum-threshold.ts";
 
@@ -31,10 +32,12 @@ export interface Found {
 
 export class Finder {
   private readonly combined: CombinedScores;
+  private readonly sampled: CombinedScores | null;
   private readonly room = new SumThresholdRoom();
 
-  constructor(combined: CombinedScores) {
+  constructor({ combined, sampled }: Pick<SecondPass, "combined" | "sampled">) {
     this.combined = combined;
+    this.sampled = sampled;
   }
 
   /** What stands out in a band: on all baselines or on the shorter ones, in all products or in one. */
@@ -52,7 +55,8 @@ export class Finder {
       for (const product of products) {
         combined.fill(groups, band.first, columns, product, scores, marks, counts);
         this.level(scores, marks, counts, steps, columns);
-        this.markChannels(scores, marks, counts, steps, columns, persistent);
+        if (this.sampled === null) markChannels(scores, marks, counts, steps, columns, persistent);
+        else this.markSampled(this.sampled, groups, band, product, persistent);
         sumThreshold(
           scores,
           marks,
@@ -98,42 +102,60 @@ export class Finder {
     }
   }
 
-  private markChannels(
-    scores: Float32Array,
-    marks: Uint8Array,
-    counts: Float32Array,
-    steps: number,
-    columns: number,
+  /** What is there all the time, by what was looked at of each baseline at some times. */
+  private markSampled(
+    sampled: CombinedScores,
+    groups: number,
+    band: Band,
+    product: number | null,
     persistent: Uint8Array,
   ): void {
-    const sums = new Float64Array(columns);
-    const means = new Float64Array(columns);
-    const work = new Float64Array(columns);
-    let known = 0;
-    for (let c = 0; c < columns; c++) {
-      let sum = 0;
-      let weighted = 0;
-      let samples = 0;
-      let n = 0;
-      for (let i = c; i < steps * columns; i += columns) {
-        if (marks[i] === 2) continue;
-        sum += scores[i]!;
-        weighted += scores[i]! * Math.sqrt(counts[i]!);
-        samples += counts[i]!;
-        n += 1;
-      }
-      sums[c] = n === 0 ? Number.NaN : sum / Math.sqrt(n);
-      means[c] = weighted / samples;
-      if (n > 0) work[known++] = sums[c]!;
+    const { steps } = sampled;
+    const { columns } = band;
+    const scores = new Float32Array(steps * columns);
+    const marks = new Uint8Array(steps * columns);
+    const counts = new Float32Array(steps * columns);
+    sampled.fill(groups, band.first, columns, product, scores, marks, counts);
+    this.level(scores, marks, counts, steps, columns);
+    markChannels(scores, marks, counts, steps, columns, persistent);
+  }
+}
+
+function markChannels(
+  scores: Float32Array,
+  marks: Uint8Array,
+  counts: Float32Array,
+  steps: number,
+  columns: number,
+  persistent: Uint8Array,
+): void {
+  const sums = new Float64Array(columns);
+  const means = new Float64Array(columns);
+  const work = new Float64Array(columns);
+  let known = 0;
+  for (let c = 0; c < columns; c++) {
+    let sum = 0;
+    let weighted = 0;
+    let samples = 0;
+    let n = 0;
+    for (let i = c; i < steps * columns; i += columns) {
+      if (marks[i] === 2) continue;
+      sum += scores[i]!;
+      weighted += scores[i]! * Math.sqrt(counts[i]!);
+      samples += counts[i]!;
+      n += 1;
     }
-    if (known < 4) return;
-    const middle = medianInPlace(work, known);
-    for (let k = 0; k < known; k++) work[k] = Math.abs(work[k]! - middle);
-    const spread = Math.max(1, 1.4826 * medianInPlace(work, known));
-    for (let c = 0; c < columns; c++) {
-      const clear = sums[c]! - middle > LEAST_CHANNEL * spread && means[c]! > LEAST_MEAN;
-      if (clear && lasts(scores, marks, counts, steps, columns, c)) persistent[c] = 1;
-    }
+    sums[c] = n === 0 ? Number.NaN : sum / Math.sqrt(n);
+    means[c] = weighted / samples;
+    if (n > 0) work[known++] = sums[c]!;
+  }
+  if (known < 4) return;
+  const middle = medianInPlace(work, known);
+  for (let k = 0; k < known; k++) work[k] = Math.abs(work[k]! - middle);
+  const spread = Math.max(1, 1.4826 * medianInPlace(work, known));
+  for (let c = 0; c < columns; c++) {
+    const clear = sums[c]! - middle > LEAST_CHANNEL * spread && means[c]! > LEAST_MEAN;
+    if (clear && lasts(scores, marks, counts, steps, columns, c)) persistent[c] = 1;
   }
 }
 

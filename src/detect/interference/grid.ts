@@ -5,7 +5,9 @@ import type { Selection } from "../../dataset/selection.ts";
 import { compileSelections } from "../../dataset/selection-matcher.ts";
 import type { Survey } from "../../measure/survey-result.ts";
 import { ones } from "../pass/bits.ts";
-import { ELEVATED_SHARE, indexOfTime, type SecondPass } from "../pass/second-pass.ts";
+import { ELEVATED_SHARE } from "../pass/marks.ts";
+import type { SecondPass } from "../pass/second-pass.ts";
+import { indexOfTime } from "../pass/time-axis.ts";
 
 /** Integrations [firstStep, lastStep] by columns [low, high], ends included; columns count over all sub-bands. */
 export interface Rectangle {

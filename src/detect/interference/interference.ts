@@ -6,7 +6,8 @@ import { EVERYTHING, type Selection } from "../../dataset/selection.ts";
 import type { Survey } from "../../measure/survey-result.ts";
 import type { DetectedEvent } from "../event.ts";
 import type { Band } from "../pass/bands.ts";
-import { type SecondPass, SINGLE_SCORE, secondPass } from "../pass/second-pass.ts";
+import { SINGLE_SCORE } from "../pass/marks.ts";
+import { type SecondPass, secondPass } from "../pass/second-pass.ts";
 import type { DetectRequest } from "../request.ts";
 import { eventOf } from "./describe.ts";
 import { type Feature, featuresOf, featuresOfBaselines } from "./features.ts";
@@ -24,7 +25,12 @@ export async function detectInterference(
   explained: readonly Selection[],
 ): Promise<DetectedEvent[]> {
   if (survey.tracks.cells === 0) return [];
-  return interferenceOf(survey, await secondPass(survey, request.onProgress), request, explained);
+  return interferenceOf(
+    survey,
+    await secondPass(survey, { onProgress: request.onProgress }),
+    request,
+    explained,
+  );
 }
 
 /** The same from a second pass that is there already; uses up its marks. */
@@ -94,8 +100,8 @@ function countLone({ pass: { marks }, survey, polarizations }: Grid, leftOut: Ui
   for (let b = 0; b < baselines.length; b++) {
     const [first, end] = [tracks.firstCell[b]!, tracks.firstCell[b + 1]!];
     for (let cell = first; cell < end; cell++) {
-      for (let sample = 0; sample < rowSamples; sample++) {
-        if (!marks.bright.has(cell, sample) || leftOut[Math.floor(sample / polarizations)] === 1) continue;
+      marks.bright.each(cell, 0, rowSamples, (sample) => {
+        if (leftOut[Math.floor(sample / polarizations)] === 1) return;
         let near = 0;
         if (cell > first && marks.elevated.has(cell - 1, sample)) near += 1;
         if (cell + 1 < end && marks.elevated.has(cell + 1, sample)) near += 1;
@@ -103,7 +109,7 @@ function countLone({ pass: { marks }, survey, polarizations }: Grid, leftOut: Ui
         const after = sample + polarizations;
         if (after < rowSamples && marks.elevated.has(cell, after)) near += 1;
         if (near <= 1) count += 1;
-      }
+      });
     }
   }
   return count;

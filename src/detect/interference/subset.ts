@@ -3,7 +3,7 @@
  * elevated on each (in noise, ELEVATED_SHARE of them are).
  */
 import { lengthOrder, projectedLengths } from "../pass/lengths.ts";
-import { ELEVATED_SHARE } from "../pass/second-pass.ts";
+import { ELEVATED_SHARE } from "../pass/marks.ts";
 import { ALL, addCounts, type Counts, type Grid, noCounts, type Rectangle, type Subset } from "./grid.ts";
 
 export interface Who {

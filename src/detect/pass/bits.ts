@@ -4,7 +4,7 @@ export class SampleBits {
   readonly cells: number;
   readonly rowSamples: number;
   readonly words: number;
-  readonly bits: Uint32Array;
+  readonly bits: Uint32Array<ArrayBuffer>;
 
   constructor(cells: number, rowSamples: number) {
     this.cells = cells;
@@ -23,12 +23,32 @@ export class SampleBits {
     for (let w = 0; w < mask.length; w++) this.bits[at + w]! |= mask[w]!;
   }
 
+  /** Set the places of a cell that are set in row `row` of (rows x words). */
+  setRow(cell: number, rows: Uint32Array, row: number): void {
+    const { words, bits } = this;
+    for (let w = 0; w < words; w++) bits[cell * words + w]! |= rows[row * words + w]!;
+  }
+
   clear(cell: number, sample: number): void {
     this.bits[cell * this.words + (sample >>> 5)]! &= ~(1 << (sample & 31));
   }
 
   has(cell: number, sample: number): boolean {
     return ((this.bits[cell * this.words + (sample >>> 5)]! >>> (sample & 31)) & 1) === 1;
+  }
+
+  /** Call for each bit set in a cell from `first` to before `end`, ascending. */
+  each(cell: number, first: number, end: number, visit: (sample: number) => void): void {
+    const at = cell * this.words;
+    for (let w = first >>> 5; w <= (end - 1) >>> 5; w++) {
+      let word = this.bits[at + w]!;
+      while (word !== 0) {
+        const bit = 31 - Math.clz32(word & -word);
+        word &= word - 1;
+        const sample = w * 32 + bit;
+        if (sample >= first && sample < end) visit(sample);
+      }
+    }
   }
 
   /** Bits set in a cell at the places that are set in `mask`, (words). */

@@ -1,104 +1,56 @@
 /**
  * Tracks without what stands out: means over the channels with outlying samples, and those that are flagged in some
- * integrations only, replaced by the background, so that interference does not turn an antenna's phase.
+ * integrations only, replaced by the background, so that interference does not turn an antenna's phase. Cells whose rows
+ * the second pass did not read are left to the survey's tracks.
  */
 import type { Survey } from "../../measure/survey-result.ts";
-import type { Band } from "./bands.ts";
-import type { Plane } from "./plane.ts";
-import type { RowRun, Tile } from "./tiles.ts";
+import { newMeans, type RowMeans } from "./tile-result.ts";
 
-/** Arrays of products are (cells x subbands x polarizations) like those of the Tracks, NaN where nothing is usable. */
-export class CleanTracks {
-  readonly real: Float32Array;
-  readonly imag: Float32Array;
+/** Arrays of products are (cells x subbands x polarizations) like those of the Tracks. */
+export class CleanTracks implements RowMeans {
+  /** NaN where nothing is usable */
+  readonly real: RowMeans["real"];
+  readonly imag: RowMeans["imag"];
   /** mean over channels of V(c+1) V*(c) */
-  readonly slopeReal: Float32Array;
-  readonly slopeImag: Float32Array;
+  readonly slopeReal: RowMeans["slopeReal"];
+  readonly slopeImag: RowMeans["slopeImag"];
   /** samples that the mean rests on */
-  readonly count: Float32Array;
+  readonly count: RowMeans["count"];
   /** 2 sigma^2 of one sample of the cell; NaN where it cannot be told */
-  readonly noise: Float32Array;
+  readonly noise: RowMeans["noise"];
   private readonly rows: Uint16Array;
-  private readonly survey: Survey;
+  private readonly products: number;
 
-  constructor(survey: Survey) {
-    this.survey = survey;
-    const { subbands, polarizations } = survey.dataset.shape;
-    const size = survey.tracks.cells * subbands * polarizations;
-    const column = () => new Float32Array(size);
-    this.real = column();
-    this.imag = column();
-    this.slopeReal = column();
-    this.slopeImag = column();
-    this.count = column();
-    this.noise = column();
-    this.rows = new Uint16Array(size);
+  constructor({ dataset, tracks }: Survey) {
+    const { subbands, polarizations } = dataset.shape;
+    this.products = subbands * polarizations;
+    const means = newMeans(tracks.cells * this.products);
+    this.real = means.real;
+    this.imag = means.imag;
+    this.slopeReal = means.slopeReal;
+    this.slopeImag = means.slopeImag;
+    this.count = means.count;
+    this.noise = means.noise;
+    this.rows = new Uint16Array(this.real.length);
   }
 
-  /**
-   * @param typical  2 sigma^2 of the plane
-   * @param rowNoise (rows) over it; null where unknown
-   */
-  add(
-    tile: Tile,
-    run: RowRun,
-    band: Band,
-    polarization: number,
-    plane: Plane,
-    typical: number,
-    rowNoise: Float32Array | null,
-  ): void {
-    const { channels } = this.survey.dataset.shape;
-    const { columns } = plane;
-    for (let row = 0; row < run.rows; row++) {
-      const cell = tile.cell[tile.order[run.first + row]!]!;
-      const noise = rowNoise === null ? Number.NaN : typical * rowNoise[row]!;
-      for (let c = 0; c < columns; c += channels) {
-        this.addRow(cell, Math.floor((band.first + c) / channels), polarization, plane, row, c, noise);
+  /** @param cells (rows) cell of each */
+  add(cells: Int32Array, means: RowMeans): void {
+    const { products } = this;
+    for (let row = 0; row < cells.length; row++) {
+      let from = row * products;
+      let at = cells[row]! * products;
+      for (const end = from + products; from < end; from++, at++) {
+        if (means.count[from] === 0) continue;
+        this.real[at]! += means.real[from]!;
+        this.imag[at]! += means.imag[from]!;
+        this.slopeReal[at]! += means.slopeReal[from]!;
+        this.slopeImag[at]! += means.slopeImag[from]!;
+        this.count[at]! += means.count[from]!;
+        this.noise[at]! += means.noise[from]!;
+        this.rows[at]! += 1;
       }
     }
-  }
-
-  private addRow(
-    cell: number,
-    subband: number,
-    polarization: number,
-    plane: Plane,
-    row: number,
-    firstColumn: number,
-    noise: number,
-  ): void {
-    const { subbands, channels, polarizations } = this.survey.dataset.shape;
-    const { real, imag, modelReal, modelImag, marks, columns } = plane;
-    const from = row * columns + firstColumn;
-    let count = 0;
-    let re = 0;
-    let im = 0;
-    let slopeRe = 0;
-    let slopeIm = 0;
-    let beforeRe = 0;
-    let beforeIm = 0;
-    for (let i = from; i < from + channels; i++) {
-      const good = marks[i] === 0;
-      if (good) count += 1;
-      const x = good ? real[i]! : modelReal[i]!;
-      const y = good ? imag[i]! : modelImag[i]!;
-      re += x;
-      im += y;
-      slopeRe += x * beforeRe + y * beforeIm;
-      slopeIm += y * beforeRe - x * beforeIm;
-      beforeRe = x;
-      beforeIm = y;
-    }
-    if (count === 0) return;
-    const at = (cell * subbands + subband) * polarizations + polarization;
-    this.real[at]! += re / channels;
-    this.imag[at]! += im / channels;
-    this.slopeReal[at]! += channels > 1 ? slopeRe / (channels - 1) : 0;
-    this.slopeImag[at]! += channels > 1 ? slopeIm / (channels - 1) : 0;
-    this.count[at]! += count;
-    this.noise[at]! += noise;
-    this.rows[at]! += 1;
   }
 
   /** Turn sums over the rows of a cell into means. */

@@ -4,15 +4,18 @@
  */
 import type { Survey } from "../../measure/survey-result.ts";
 import { lengthOrder } from "./lengths.ts";
+import type { ScoreSums } from "./tile-result.ts";
 
 /** Quarters of the baselines by length. */
 export const LENGTH_GROUPS = 4;
 /** Scores are rounded to this. */
-const QUANTUM = 1 / 64;
+const STEPS_PER_SIGMA = 64;
+const QUANTUM = 1 / STEPS_PER_SIGMA;
 /** Sums that are kept at most: with more, neighbouring integrations share one. */
 const MOST_SUMS = 1 << 24;
 
-export class CombinedScores {
+/** How scores are summed up. */
+export interface ScoreForm {
   /** channels of all sub-bands, and products */
   readonly columns: number;
   readonly polarizations: number;
@@ -21,20 +24,44 @@ export class CombinedScores {
   readonly perStep: number;
   /** (baselines) quarter by length, 0 the shortest */
   readonly group: Uint8Array;
+}
+
+/** @param mostSteps bins of time at most */
+export function scoreForm(survey: Survey, mostSteps = Number.POSITIVE_INFINITY): ScoreForm {
+  const { subbands, channels, polarizations } = survey.dataset.shape;
+  const columns = subbands * channels;
+  const each = LENGTH_GROUPS * columns * polarizations;
+  const times = survey.times.length;
+  const perStep = Math.max(1, Math.ceil((times * each) / MOST_SUMS), Math.ceil(times / mostSteps));
+  return {
+    columns,
+    polarizations,
+    steps: Math.ceil(times / perStep),
+    perStep,
+    group: groupsByLength(survey),
+  };
+}
+
+export class CombinedScores implements ScoreForm {
+  readonly columns: number;
+  readonly polarizations: number;
+  readonly steps: number;
+  readonly perStep: number;
+  readonly group: Uint8Array;
   /** (groups x steps x columns x polarizations) */
   private readonly sums: Int32Array;
   private readonly counts: Uint32Array;
 
-  constructor(survey: Survey) {
-    const { subbands, channels, polarizations } = survey.dataset.shape;
-    this.columns = subbands * channels;
-    this.polarizations = polarizations;
-    const each = LENGTH_GROUPS * this.columns * polarizations;
-    this.perStep = Math.max(1, Math.ceil((survey.times.length * each) / MOST_SUMS));
-    this.steps = Math.ceil(survey.times.length / this.perStep);
-    this.sums = new Int32Array(this.steps * each);
-    this.counts = new Uint32Array(this.steps * each);
-    this.group = groupsByLength(survey);
+  /** @param form of one that is there, or a form of its own */
+  constructor(form: ScoreForm) {
+    this.columns = form.columns;
+    this.polarizations = form.polarizations;
+    this.perStep = form.perStep;
+    this.steps = form.steps;
+    this.group = form.group;
+    const size = LENGTH_GROUPS * this.steps * this.columns * this.polarizations;
+    this.sums = new Int32Array(size);
+    this.counts = new Uint32Array(size);
   }
 
   /** Bin of an integration. */
@@ -42,27 +69,16 @@ export class CombinedScores {
     return Math.floor(time / this.perStep);
   }
 
-  /**
-   * Add a row's scores of consecutive columns of one polarization.
-   *
-   * @param time index into Survey.times
-   */
-  add(
-    baseline: number,
-    time: number,
-    firstColumn: number,
-    polarization: number,
-    scores: Float32Array,
-    marks: Uint8Array,
-    from: number,
-    columns: number,
-  ): void {
-    const { sums, counts, polarizations } = this;
-    let at = this.place(this.group[baseline]!, this.stepOf(time), firstColumn, polarization);
-    for (let i = from; i < from + columns; i++, at += polarizations) {
-      if (marks[i] === 2) continue;
-      sums[at]! += Math.round(scores[i]! / QUANTUM);
-      counts[at]! += 1;
+  /** Add the sums of a tile. */
+  add({ firstStep, steps, sums, counts }: ScoreSums): void {
+    const each = steps * this.columns * this.polarizations;
+    for (let group = 0; group < LENGTH_GROUPS; group++) {
+      const from = group * each;
+      const to = this.place(group, firstStep, 0, 0);
+      for (let i = 0; i < each; i++) {
+        this.sums[to + i]! += sums[from + i]!;
+        this.counts[to + i]! += counts[from + i]!;
+      }
     }
   }
 
@@ -105,6 +121,60 @@ export class CombinedScores {
         if (samples !== undefined) samples[step * columns + c] = count;
       }
     }
+  }
+}
+
+/** Sums of the scores of one tile, as they grow. */
+export class TileScores implements ScoreSums {
+  readonly firstStep: number;
+  readonly steps: number;
+  readonly sums: Int32Array<ArrayBuffer>;
+  readonly counts: Uint32Array<ArrayBuffer>;
+  private readonly form: ScoreForm;
+
+  /** @param firstTime,lastTime indices into Survey.times of the rows to come */
+  constructor(form: ScoreForm, firstTime: number, lastTime: number) {
+    this.form = form;
+    this.firstStep = Math.floor(firstTime / form.perStep);
+    this.steps = Math.floor(lastTime / form.perStep) - this.firstStep + 1;
+    const size = LENGTH_GROUPS * this.steps * form.columns * form.polarizations;
+    this.sums = new Int32Array(size);
+    this.counts = new Uint32Array(size);
+  }
+
+  /**
+   * Add a row's scores of consecutive columns of one polarization.
+   *
+   * @param time index into Survey.times
+   */
+  add(
+    baseline: number,
+    time: number,
+    firstColumn: number,
+    polarization: number,
+    scores: Float32Array,
+    marks: Uint8Array,
+    from: number,
+    columns: number,
+  ): void {
+    const { sums, counts } = this;
+    const { group, perStep, polarizations } = this.form;
+    const step = Math.floor(time / perStep) - this.firstStep;
+    let at =
+      ((group[baseline]! * this.steps + step) * this.form.columns + firstColumn) * polarizations +
+      polarization;
+    for (let i = from; i < from + columns; i++, at += polarizations) {
+      if (marks[i] === 2) continue;
+      // Rounded to the nearest: scores are far from the largest whole number.
+      sums[at]! += Math.floor(scores[i]! * STEPS_PER_SIGMA + 0.5);
+      counts[at]! += 1;
+    }
+  }
+
+  /** What another thread can be sent. */
+  plain(): ScoreSums {
+    const { firstStep, steps, sums, counts } = this;
+    return { firstStep, steps, sums, counts };
   }
 }
 

@@ -5,6 +5,7 @@
 import { spectralKurtosis, spectralKurtosisLimits } from "../statistics/spectral-kurtosis.ts";
 import type { Band } from "./bands.ts";
 import type { Plane } from "./plane.ts";
+import type { KurtosisTallies } from "./tile-result.ts";
 
 /** Integrations below which the limits are no good approximation. */
 const FEWEST = 16;
@@ -18,13 +19,12 @@ export interface KurtosisCounts {
   readonly unsteady: number;
 }
 
-export class ChannelKurtosis {
+export class ChannelKurtosis implements KurtosisTallies {
   private readonly polarizations: number;
   /** (columns of all bands x polarizations) */
-  private readonly planes: Uint32Array;
-  private readonly steady: Uint32Array;
-  private readonly unsteady: Uint32Array;
-  private readonly limits = new Map<number, { readonly lower: number; readonly upper: number }>();
+  readonly planes: KurtosisTallies["planes"];
+  readonly steady: KurtosisTallies["steady"];
+  readonly unsteady: KurtosisTallies["unsteady"];
   private sums = new Float64Array(0);
   private squares = new Float64Array(0);
   private counts = new Int32Array(0);
@@ -61,7 +61,7 @@ export class ChannelKurtosis {
       const n = counts[c]!;
       if (n < FEWEST) continue;
       const at = (band.first + c) * this.polarizations + polarization;
-      const { lower, upper } = this.limitsOf(n);
+      const { lower, upper } = limitsOf(n);
       const value = spectralKurtosis(sums[c]!, squares[c]!, n);
       this.planes[at]! += 1;
       if (value < lower) this.steady[at]! += 1;
@@ -69,13 +69,19 @@ export class ChannelKurtosis {
     }
   }
 
-  private limitsOf(count: number): { readonly lower: number; readonly upper: number } {
-    let limits = this.limits.get(count);
-    if (limits === undefined) {
-      limits = spectralKurtosisLimits(count);
-      this.limits.set(count, limits);
+  /** What another thread can be sent. */
+  plain(): KurtosisTallies {
+    const { planes, steady, unsteady } = this;
+    return { planes, steady, unsteady };
+  }
+
+  /** Add the planes of a tile. */
+  join({ planes, steady, unsteady }: KurtosisTallies): void {
+    for (let i = 0; i < planes.length; i++) {
+      this.planes[i]! += planes[i]!;
+      this.steady[i]! += steady[i]!;
+      this.unsteady[i]! += unsteady[i]!;
     }
-    return limits;
   }
 
   /** Columns [low, high] over all sub-bands, and the products where `chosen` is 1; null: all. */
@@ -92,4 +98,16 @@ export class ChannelKurtosis {
     }
     return total;
   }
+}
+
+/** By count of powers: dear to compute, and the same for every tile. */
+const LIMITS = new Map<number, { readonly lower: number; readonly upper: number }>();
+
+function limitsOf(count: number): { readonly lower: number; readonly upper: number } {
+  let limits = LIMITS.get(count);
+  if (limits === undefined) {
+    limits = spectralKurtosisLimits(count);
+    LIMITS.set(count, limits);
+  }
+  return limits;
 }

@@ -2,22 +2,10 @@
  * Rows gathered into tiles: as many as the dataset's shape alone says, sorted so that each baseline's integrations lie
  * together in order of time. What is found does not depend on how the reader cuts its blocks.
  */
-import type { Dataset, SampleBlock } from "../../dataset/dataset.ts";
+import type { SampleBlock } from "../../dataset/dataset.ts";
+import type { TileShape } from "../../measure/screen/shape.ts";
 import type { Survey } from "../../measure/survey-result.ts";
-
-/** Samples of a tile, and the integrations that it should hold if this many more samples allow. */
-const TILE_SAMPLES = 1 << 22;
-const MOST_TILE_SAMPLES = 1 << 24;
-const WANTED_INTEGRATIONS = 32;
-
-export function tileRows(dataset: Dataset, baselines: number): number {
-  const { subbands, channels, polarizations } = dataset.shape;
-  const rowSamples = subbands * channels * polarizations;
-  const usual = TILE_SAMPLES / rowSamples;
-  const wanted = WANTED_INTEGRATIONS * baselines;
-  const most = MOST_TILE_SAMPLES / rowSamples;
-  return Math.max(1, Math.min(dataset.rows, Math.floor(Math.min(most, Math.max(usual, wanted)))));
-}
+import { UNSEEN } from "./choice.ts";
 
 /** Rows of one baseline and setup, in order of time. */
 export interface RowRun {
@@ -82,50 +70,60 @@ export class Tile {
   }
 }
 
-/**
- * The tiles of a dataset, one after the other in one buffer: valid until the next is asked for. Autocorrelations and
- * rows without a time are left out.
- */
-export async function* tilesOf(
-  survey: Survey,
-  onRows: (rows: number) => void = () => {},
-): AsyncIterable<Tile> {
-  const { dataset } = survey;
-  const { subbands, channels, polarizations } = dataset.shape;
-  const rowSamples = subbands * channels * polarizations;
-  const capacity = tileRows(dataset, survey.baselines.length);
-  const tile = new Tile(capacity, rowSamples);
-  const places = new RowPlaces(survey);
-  let read = 0;
-  // A tile ends at a row's number in the dataset, not at a count of rows kept.
-  let end = capacity;
-  for await (const block of dataset.blocks({ want: "samples" })) {
-    for (let row = 0; row < block.rows; row++) {
-      if (block.firstRow + row >= end) {
-        yield tile;
-        tile.rows = 0;
-        end += capacity;
-      }
-      takeRow(tile, block, row, places);
-    }
-    read += block.rows;
-    onRows(read);
+/** Reads tiles, into one buffer: a tile is valid until the next is read. */
+export class TileReader {
+  private readonly survey: Survey;
+  private readonly cut: TileShape;
+  private readonly places: RowPlaces;
+  private tile: Tile | null = null;
+
+  constructor(survey: Survey, cut: TileShape) {
+    this.survey = survey;
+    this.cut = cut;
+    this.places = new RowPlaces(survey);
   }
-  if (tile.rows > 0) yield tile;
+
+  /**
+   * Autocorrelations, rows without a time and unseen baselines are left out.
+   *
+   * @param look  (baselines) UNSEEN: left out
+   * @param other told of every row with a place in the survey that is left out
+   * @throws InputError where the dataset turns out to be malformed
+   */
+  async read(number: number, look: Uint8Array, other: OnRow | null): Promise<Tile> {
+    const { dataset } = this.survey;
+    const { subbands, channels, polarizations } = dataset.shape;
+    const { tileRows } = this.cut;
+    const capacity = Math.min(tileRows, dataset.rows);
+    this.tile ??= new Tile(capacity, subbands * channels * polarizations);
+    const { tile, places } = this;
+    tile.rows = 0;
+    const rows = [number * tileRows, Math.min(dataset.rows, (number + 1) * tileRows)] as const;
+    for await (const block of dataset.blocks({ want: "samples", rows })) {
+      for (let row = 0; row < block.rows; row++) {
+        const baseline = places.baselineOf(block.antenna1[row]!, block.antenna2[row]!);
+        if (baseline < 0 || Number.isNaN(block.time[row]!)) continue;
+        const seen = look[baseline] !== UNSEEN;
+        if (!seen && other === null) continue;
+        const cell = places.cellOfRow(baseline, block, row);
+        if (cell < 0) continue;
+        if (seen) takeRow(tile, block, row, baseline, cell);
+        else other!(block, row, cell);
+      }
+    }
+    return tile;
+  }
 }
 
-function takeRow(tile: Tile, block: SampleBlock, row: number, places: RowPlaces): void {
-  const baseline = places.baselineOf(block.antenna1[row]!, block.antenna2[row]!);
-  const time = block.time[row]!;
-  if (baseline < 0 || Number.isNaN(time)) return;
-  const cell = places.cellOf(baseline, time, block.field[row]!, block.setup[row]!, block.subarray[row]!);
-  if (cell < 0) return;
+export type OnRow = (block: SampleBlock, row: number, cell: number) => void;
+
+function takeRow(tile: Tile, block: SampleBlock, row: number, baseline: number, cell: number): void {
   const { rowSamples } = tile;
   const to = tile.rows++;
   tile.baseline[to] = baseline;
   tile.cell[to] = cell;
   tile.setup[to] = block.setup[row]!;
-  tile.time[to] = time;
+  tile.time[to] = block.time[row]!;
   const sign = block.antenna1[row]! > block.antenna2[row]! ? -1 : 1;
   const from = row * rowSamples;
   const at = to * rowSamples;
@@ -167,7 +165,12 @@ class RowPlaces {
   }
 
   /** -1 where the survey knows no such row */
-  cellOf(baseline: number, time: number, field: number, setup: number, subarray: number): number {
+  cellOfRow(baseline: number, block: SampleBlock, row: number): number {
+    const [field, setup, subarray] = [block.field[row]!, block.setup[row]!, block.subarray[row]!];
+    return this.cellOf(baseline, block.time[row]!, field, setup, subarray);
+  }
+
+  private cellOf(baseline: number, time: number, field: number, setup: number, subarray: number): number {
     const { tracks } = this.survey;
     const first = tracks.firstCell[baseline]!;
     const end = tracks.firstCell[baseline + 1]!;

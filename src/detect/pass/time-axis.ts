@@ -47,3 +47,19 @@ export function fillScoresInTime(plane: Plane, scanOf: (row: number) => number):
     for (let row = 0; row < rows; row++) power[row * columns + c] = work[row]!;
   }
 }
+
+/** Index of the integration that a time belongs to: the last that does not begin after it. */
+export function indexOfTime(times: Float64Array, time: number, near = 0): number {
+  // Rows come in order of time: the next integration is the usual answer.
+  for (let i = near; i < Math.min(near + 2, times.length); i++) {
+    if (times[i]! <= time && (i + 1 === times.length || times[i + 1]! > time)) return i;
+  }
+  let low = 0;
+  let high = times.length;
+  while (low < high) {
+    const middle = (low + high) >>> 1;
+    if (times[middle]! <= time) low = middle + 1;
+    else high = middle;
+  }
+  return Math.max(0, low - 1);
+}

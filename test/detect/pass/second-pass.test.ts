@@ -1,5 +1,6 @@
 import { beforeAll, describe, expect, it } from "vitest";
 import type { BlockRequest, Dataset } from "../../../src/dataset/dataset.ts";
+import { wholeChoice } from "../../../src/detect/pass/choice.ts";
 import { LENGTH_GROUPS } from "../../../src/detect/pass/combined.ts";
 import { type SecondPass, secondPass } from "../../../src/detect/pass/second-pass.ts";
 import { surveyDataset } from "../../../src/measure/survey.ts";
@@ -15,7 +16,7 @@ interface Looked {
 
 async function look(dataset: Dataset): Promise<Looked> {
   const survey = await surveyDataset(dataset);
-  return { survey, pass: await secondPass(survey) };
+  return { survey, pass: await secondPass(survey, { choice: wholeChoice(survey) }) };
 }
 
 /** (steps x columns) scores added over all baselines and products. */
@@ -74,7 +75,10 @@ describe("the second pass over good data", () => {
 
   it("counts its way through the rows", async () => {
     const told: number[] = [];
-    await secondPass(clean.survey, (done, rows) => told.push(done / rows));
+    await secondPass(clean.survey, {
+      choice: wholeChoice(clean.survey),
+      onProgress: (done, rows) => told.push(done / rows),
+    });
     expect(told.at(-1)).toBe(1);
     expect([...told].sort((a, b) => a - b)).toEqual(told);
   });

@@ -1,7 +1,16 @@
 import { describe, expect, it } from "vitest";
-import { tileRows, tilesOf } from "../../../src/detect/pass/tiles.ts";
+import { wholeChoice } from "../../../src/detect/pass/choice.ts";
+import { type Tile, TileReader } from "../../../src/detect/pass/tiles.ts";
+import { tileShape } from "../../../src/measure/screen/shape.ts";
 import { surveyDataset } from "../../../src/measure/survey.ts";
+import type { Survey } from "../../../src/measure/survey-result.ts";
 import { CLEAN, FAULTY } from "../../support/scenarios.ts";
+
+async function* tilesOf(survey: Survey): AsyncIterable<Tile> {
+  const { cut, looks } = wholeChoice(survey);
+  const reader = new TileReader(survey, cut);
+  for (const [number, look] of looks.entries()) yield await reader.read(number, look!, null);
+}
 
 describe("tiles", () => {
   it("take every row of the cross-correlations once, into the cell of its baseline and time", async () => {
@@ -33,15 +42,18 @@ describe("tiles", () => {
     }
   });
 
-  it("hold enough integrations to know noise by channel, within a bound on memory", () => {
-    const { dataset } = CLEAN.circular();
-    const shape = { subbands: 1, channels: 256, polarizations: 4 };
+  it("hold enough integrations to know noise by channel, within a bound on memory, and whole slots", () => {
+    const { dataset } = CLEAN.twentySevenAntennas();
+    const shape = { subbands: 1, channels: 256, polarizations: 4 } as const;
     const large = { ...dataset, shape, rows: 1e9 };
-    // 64 antennas: 2016 baselines
-    const rows = tileRows(large, 2016);
-    expect(rows / 2016).toBeGreaterThan(8);
-    expect(rows * 1024).toBeLessThanOrEqual(1 << 24);
-    expect(tileRows(dataset, 36)).toBe(dataset.rows);
-    expect(tileRows({ ...large, shape: { subbands: 64, channels: 65536, polarizations: 4 } }, 10)).toBe(1);
+    const { tileRows, slotRows, slotsPerTile, tiles } = tileShape(large);
+    expect(tileRows / 351).toBeGreaterThan(8);
+    expect(tileRows * 1024).toBeLessThanOrEqual(1 << 24);
+    expect(tileRows).toBe(slotRows * slotsPerTile);
+    expect(tiles * tileRows).toBeGreaterThanOrEqual(1e9);
+    const small = CLEAN.circular().dataset;
+    expect(tileShape(small)).toMatchObject({ tileRows: small.rows, tiles: 1 });
+    const wide = { ...large, shape: { subbands: 64, channels: 65536, polarizations: 4 } };
+    expect(tileShape(wide).tileRows).toBe(1);
   });
 });

@@ -1,0 +1,176 @@
+/** Where the screen's sums over baselines stand out: tiles, and channels in which something is there all the time. */
+import type { Shape } from "../../dataset/dataset.ts";
+import { STEPS_PER_OCTAVE } from "../../measure/screen/row-screen.ts";
+import type { Screened } from "../../measure/screen/screen.ts";
+import type { Survey } from "../../measure/survey-result.ts";
+import { medianInPlace } from "../statistics/order.ts";
+import { SumThresholdRoom, type SumThresholdSettings, sumThreshold } from "../statistics/sum-threshold.ts";
+import { type Band, bandsOf } from "./bands.ts";
+
+/** Standard deviation of the logarithm of an exponential variable, pi/sqrt(6), in steps of the screen. */
+const SPREAD = ((Math.PI / Math.sqrt(6)) * STEPS_PER_OCTAVE) / Math.LN2;
+/** Fainter than what the second pass tells from its background; what noise does comes back for a second look. */
+const THRESHOLDS: SumThresholdSettings = { first: 6, ratio: 1.5, longestTime: 64, longestFrequency: 16 };
+/** A channel's typical excess over its neighbours, in its errors and in steps (4 % of power), to be always there. */
+const PERSISTENT_ERRORS = 6;
+const PERSISTENT_STEPS = 2;
+const NEIGHBOURS = 6;
+/** Channels between two that stand out may be inside of what has its edges there. */
+const INSIDE = 16;
+/** Level of a slot over the usual, in its scatter and in steps (16 % of power), to be loud. */
+const LOUD_SCATTER = 6;
+const LOUD_STEPS = 7;
+
+export interface Suspects {
+  /** (tiles) 1 where sums over baselines stand out for a while */
+  readonly tiles: Uint8Array;
+  /** (channels of all sub-bands) 1 where they do all the time */
+  readonly persistent: Uint8Array;
+}
+
+export function suspectsOf({ dataset }: Survey, screen: Screened): Suspects {
+  const { subbands, channels, polarizations } = dataset.shape;
+  const tiles = new Uint8Array(screen.cut.tiles);
+  const persistent = new Uint8Array(subbands * channels);
+  const products: (number | null)[] = polarizations === 1 ? [null] : [null, ...Array(polarizations).keys()];
+  const room = new SumThresholdRoom();
+  for (const band of bandsOf(dataset.shape)) {
+    for (const product of products) {
+      const plane = planeOf(dataset.shape, screen, band, product);
+      levelRows(plane);
+      markPersistent(plane, persistent, band.first);
+      standardise(plane);
+      sumThreshold(plane.scores, plane.marks, plane.slots, plane.columns, THRESHOLDS, room);
+      for (let i = 0; i < plane.marks.length; i++) {
+        const slot = Math.floor(i / plane.columns);
+        if (plane.marks[i] === 1) tiles[Math.floor(slot / screen.cut.slotsPerTile)] = 1;
+      }
+    }
+  }
+  return { tiles, persistent };
+}
+
+interface SlotPlane {
+  readonly slots: number;
+  readonly columns: number;
+  /** (slots x columns) mean steps over baselines, then scores; and differences in them */
+  readonly scores: Float32Array;
+  readonly counts: Float64Array;
+  /** 2 where there are none */
+  readonly marks: Uint8Array;
+  /** (columns) typical mean, NaN unknown */
+  readonly usual: Float64Array;
+}
+
+function planeOf(shape: Shape, { tiles, cut }: Screened, band: Band, product: number | null): SlotPlane {
+  const { subbands, channels, polarizations } = shape;
+  const rowSamples = subbands * channels * polarizations;
+  const { slotsPerTile } = cut;
+  const { columns } = band;
+  const slots = tiles.length * slotsPerTile;
+  const scores = new Float32Array(slots * columns);
+  const counts = new Float64Array(slots * columns);
+  const marks = new Uint8Array(slots * columns).fill(2);
+  const [from, to] = product === null ? [0, polarizations] : [product, product + 1];
+  for (const [number, tile] of tiles.entries()) {
+    if (tile === null) continue;
+    for (let slot = 0; slot < slotsPerTile; slot++) {
+      for (let c = 0; c < columns; c++) {
+        const place = (band.first + c) % channels;
+        // The first and last channel of a sub-band have a neighbour on one side only.
+        if (place === 0 || place === channels - 1) continue;
+        let sum = 0;
+        let count = 0;
+        for (let p = from; p < to; p++) {
+          const at = slot * rowSamples + (band.first + c) * polarizations + p;
+          sum += tile.sums[at]!;
+          count += tile.counts[at]! + tile.whole[slot]!;
+        }
+        if (count === 0) continue;
+        const i = (number * slotsPerTile + slot) * columns + c;
+        scores[i] = sum / count;
+        counts[i] = count;
+        marks[i] = 0;
+      }
+    }
+  }
+  return { slots, columns, scores, counts, marks, usual: new Float64Array(columns).fill(Number.NaN) };
+}
+
+/** Take out what the channels of a slot have in common. */
+function levelRows({ slots, columns, scores, marks }: SlotPlane): void {
+  const work = new Float64Array(columns);
+  for (let from = 0; from < slots * columns; from += columns) {
+    let count = 0;
+    for (let i = from; i < from + columns; i++) if (marks[i] === 0) work[count++] = scores[i]!;
+    const middle = medianInPlace(work, count);
+    for (let i = from; i < from + columns; i++) if (marks[i] === 0) scores[i]! -= middle;
+  }
+}
+
+/** Fill `usual`, and mark channels whose typical mean stands out of their neighbours'. */
+function markPersistent(plane: SlotPlane, persistent: Uint8Array, first: number): void {
+  const { slots, columns, scores, counts, marks, usual } = plane;
+  const work = new Float64Array(Math.max(slots, columns));
+  const errors = new Float64Array(columns);
+  for (let c = 0; c < columns; c++) {
+    let known = 0;
+    let differences = 0;
+    for (let i = c; i < slots * columns; i += columns) {
+      if (marks[i] !== 0) continue;
+      work[known++] = scores[i]!;
+      differences += counts[i]!;
+    }
+    // The median is less certain than the mean by 1.25.
+    errors[c] = (1.25 * SPREAD) / Math.sqrt(differences);
+    usual[c] = medianInPlace(work, known);
+  }
+  let before = -1;
+  for (let c = 0; c < columns; c++) {
+    let known = 0;
+    for (let k = Math.max(0, c - NEIGHBOURS); k <= Math.min(columns - 1, c + NEIGHBOURS); k++) {
+      if (!Number.isNaN(usual[k]!)) work[known++] = usual[k]!;
+    }
+    const excess = usual[c]! - medianInPlace(work, known);
+    if (!(excess > Math.max(PERSISTENT_STEPS, PERSISTENT_ERRORS * errors[c]!))) continue;
+    const from = before >= 0 && c - before <= INSIDE ? before : c;
+    persistent.fill(1, first + from, first + c + 1);
+    before = c;
+  }
+}
+
+/** Over the column's usual mean, in its error. */
+function standardise({ slots, columns, scores, counts, marks, usual }: SlotPlane): void {
+  for (let from = 0; from < slots * columns; from += columns) {
+    for (let c = 0; c < columns; c++) {
+      const i = from + c;
+      if (marks[i] === 0) scores[i] = ((scores[i]! - usual[c]!) * Math.sqrt(counts[i]!)) / SPREAD;
+    }
+  }
+}
+
+/** Tiles in or beside which the level of the noise is raised in some slot. */
+export function loudTiles({ subbands, polarizations }: Shape, { tiles, cut }: Screened): number[] {
+  const { slotsPerTile } = cut;
+  const products = subbands * polarizations;
+  const found = new Set<number>();
+  const levels = new Float64Array(tiles.length * slotsPerTile);
+  for (let product = 0; product < products; product++) {
+    for (const [number, tile] of tiles.entries()) {
+      for (let slot = 0; slot < slotsPerTile; slot++) {
+        const at = slot * products + product;
+        levels[number * slotsPerTile + slot] = tile === null ? Number.NaN : tile.level[at]! / tile.rows[at]!;
+      }
+    }
+    const known = levels.filter((level) => !Number.isNaN(level));
+    const middle = medianInPlace(known.slice());
+    const scatter = 1.4826 * medianInPlace(known.map((level) => Math.abs(level - middle)));
+    const limit = middle + Math.max(LOUD_STEPS, LOUD_SCATTER * scatter);
+    for (const [slot, level] of levels.entries()) {
+      if (level > limit) found.add(Math.floor(slot / slotsPerTile));
+    }
+  }
+  // What is usual of a baseline is to be seen besides.
+  const wider = [...found].flatMap((tile) => [tile - 1, tile, tile + 1]);
+  return [...new Set(wider)].filter((tile) => tile >= 0 && tile < tiles.length);
+}
