@@ -29,6 +29,11 @@ const FINDERS = {
   /** a Python that has NumPy, SciPy and Astropy */
   astropy: findPython,
   fitsverify: () => onPath("fitsverify"),
+  /** a whole Slurm: its controller, its node daemon, its commands and their authentication; root starts them */
+  slurm: () => {
+    const rest = ["slurmd", "sbatch", "munged"].every((name) => onPath(name) !== undefined);
+    return rest && process.getuid?.() === 0 ? onPath("slurmctld") : undefined;
+  },
   chromium: () => onPath("chromium", "chromium-browser", "google-chrome"),
 };
 export type SystemTool = keyof typeof FINDERS;
