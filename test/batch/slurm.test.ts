@@ -80,7 +80,8 @@ exec ${folder}/visvet "$@"
       cwd: folder,
       encoding: "utf8",
     });
-    expect(once.status).toBe(0);
+    // A hold: a result, with which the job of the join has ended well all the same.
+    expect(once.status).toBe(1);
     expect(await cluster.log(join(folder, "out/join.log"))).toContain(once.stdout);
     for (const name of REPORTS) {
       const [joined, single] = [join(folder, "out", name), join(folder, "once", name)];
