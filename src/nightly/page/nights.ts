@@ -3,7 +3,7 @@ import { verdictIcon } from "../../report/page/icons.ts";
 import { html, Markup } from "../../report/page/markup.ts";
 import { VERDICT_NAME } from "../../report/words.ts";
 import type { CheckRow } from "../history/records.ts";
-import { verdictOf } from "../summary.ts";
+import { type NightlyVerdict, verdictOf } from "../summary.ts";
 
 /** Datasets that the page shows, the newest. */
 export const MOST_SHOWN = 3000;
@@ -45,8 +45,15 @@ export function nightsList(checks: readonly CheckRow[]): Markup {
       night,
       own,
     ]) => html`<li class="night"><h3>${night}<small>${own.length} dataset${own.length === 1 ? "" : "s"}</small></h3>
-<ul class="tiles">${own.map(tile)}</ul></li>\n`,
+<ul class="tiles">${worstFirst(own).map(tile)}</ul></li>\n`,
   )}</ol>`;
+}
+
+const ORDER: readonly NightlyVerdict[] = ["unreadable", "hold", "caution", "ready"];
+
+/** Those alike in the order of their time. */
+function worstFirst(checks: readonly CheckRow[]): CheckRow[] {
+  return [...checks].sort((a, b) => ORDER.indexOf(verdictOf(a)) - ORDER.indexOf(verdictOf(b)));
 }
 
 function tile(check: CheckRow): Markup {
@@ -62,7 +69,7 @@ function tile(check: CheckRow): Markup {
   const score = Math.round(check.score);
   return html`<li ${data}><a href="${linkOf(check.report)}">${verdictIcon(check.verdict)}<span class="tile-name" title="${check.path}">${check.name}</span>
 <span class="tile-score"><span class="unseen">score </span>${score}</span>
-<span class="tile-verdict">${VERDICT_NAME[check.verdict]}</span><span class="tile-cause">${check.cause ?? "nothing found"}</span></a></li>\n`;
+<span class="tile-verdict">${VERDICT_NAME[check.verdict]}</span>${check.cause !== null && html`<span class="tile-cause">${check.cause}</span>`}</a></li>\n`;
 }
 
 /** A path below the page as a link. */

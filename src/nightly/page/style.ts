@@ -9,7 +9,7 @@ export const NIGHTS_STYLE = `
 .night { display: grid; grid-template-columns: 7rem minmax(0, 1fr); gap: 0 1rem; padding-top: 0.5rem; border-top: 1px solid var(--rule); }
 .night h3 { font-size: 0.95rem; font-weight: 650; padding-top: 0.35rem; }
 .night h3 small { display: block; font-weight: 400; font-size: 0.8rem; color: var(--muted); }
-.tiles { list-style: none; padding: 0; display: grid; grid-template-columns: repeat(auto-fill, minmax(min(100%, 13.5rem), 1fr)); gap: 0.5rem; }
+.tiles { list-style: none; padding: 0; display: grid; grid-template-columns: repeat(auto-fill, minmax(min(100%, 11.5rem), 1fr)); gap: 0.5rem; }
 .tile { background: var(--surface); border: 1px solid var(--rule); border-left: 5px solid var(--tone); border-radius: 3px; }
 .tile.unreadable { --tone: var(--bad); }
 .tile > :is(a, div) { display: grid; grid-template-columns: auto minmax(0, 1fr) auto; gap: 0.1rem 0.5rem; align-items: center; padding: 0.45rem 0.65rem 0.5rem; color: inherit; text-decoration: none; height: 100%; align-content: start; }
