@@ -13,7 +13,7 @@ import { antennaFaults } from "./tracks/antenna-faults.ts";
 export async function detect(survey: Survey, request: DetectRequest): Promise<DetectedEvent[]> {
   if (survey.tracks.cells === 0) return [];
   // The pass over the samples first: interference must not turn an antenna's phase.
-  const pass = await secondPass(survey, { onProgress: request.onProgress });
+  const pass = await secondPass(survey, { onProgress: request.onProgress, workers: request.workers });
   // Too few channels for a background leave nothing to put in place of what stands out.
   const { real, imag, slopeReal, slopeImag, count } = pass.clean;
   const spoilt = spoiltAverages(survey, pass);

@@ -83,7 +83,9 @@ export function gather<C extends CellColumns | ProductColumns>(
 }
 
 function gatherColumn<N extends Numbers>(column: N, order: Uint32Array, width: number): N {
-  const out = new (column.constructor as new (length: number) => N)(order.length * width);
+  // In shared memory: threads of later passes see the tracks without copies of their own.
+  const shared = new SharedArrayBuffer(order.length * width * column.BYTES_PER_ELEMENT);
+  const out = new (column.constructor as new (buffer: SharedArrayBuffer) => N)(shared);
   for (let i = 0, at = 0; i < order.length; i++) {
     const from = order[i]! * width;
     for (let k = 0; k < width; k++) out[at++] = column[from + k]!;

@@ -71,6 +71,7 @@ export async function look(
   const events = await detect(survey, {
     purpose: purpose.value,
     lineChannels: lineChannels.value,
+    workers,
     onProgress: byRows("Looking for faults"),
   });
   const forecasted = await forecast(survey, plan, {

@@ -3,12 +3,14 @@
  * out, scores added over baselines, and tracks without what stands out.
  */
 import type { Survey } from "../../measure/survey-result.ts";
+import type { Workers } from "../../util/workers.ts";
 import { type Band, bandsOf } from "./bands.ts";
 import { type Choice, choose } from "./choice.ts";
 import { CleanTracks } from "./clean-tracks.ts";
 import { CombinedScores, scoreForm } from "./combined.ts";
 import { ChannelKurtosis } from "./kurtosis.ts";
 import { newSampleMarks, type SampleMarks } from "./marks.ts";
+import { sharedTiles } from "./share-tiles.ts";
 import { SAMPLED_STEPS, TileAnalysis } from "./tile-analysis.ts";
 import type { TileResult } from "./tile-result.ts";
 
@@ -29,6 +31,8 @@ export interface SecondPassOptions {
   readonly onProgress?: ((rowsDone: number, rows: number) => void) | undefined;
   /** what to look at; default by the screen */
   readonly choice?: Choice;
+  /** threads that share the tiles; none: this one does them all. The result is the same. */
+  readonly workers?: Workers | undefined;
 }
 
 /** @throws InputError where the dataset turns out to be malformed */
@@ -37,12 +41,27 @@ export async function secondPass(survey: Survey, options: SecondPassOptions = {}
   const { rows } = survey.dataset;
   const sum = new PassSum(survey, choice);
   const numbers = tilesToRead(choice);
-  const analysis = numbers.length === 0 ? null : new TileAnalysis(survey, choice);
-  for (const number of numbers) {
-    sum.add(await analysis!.tile(number));
-    options.onProgress?.(Math.min(rows, (number + 1) * choice.cut.tileRows), rows);
+  for await (const result of tileResults(survey, choice, numbers, options.workers)) {
+    sum.add(result);
+    options.onProgress?.(Math.min(rows, (result.tile + 1) * choice.cut.tileRows), rows);
   }
   return sum.finish();
+}
+
+/** In the order of the numbers. */
+async function* tileResults(
+  survey: Survey,
+  choice: Choice,
+  numbers: readonly number[],
+  workers: Workers | undefined,
+): AsyncGenerator<TileResult> {
+  if (numbers.length === 0) return;
+  if (workers !== undefined && survey.dataset.recipe !== undefined && numbers.length > 1) {
+    yield* sharedTiles(survey, choice, numbers, workers);
+    return;
+  }
+  const analysis = new TileAnalysis(survey, choice);
+  for (const number of numbers) yield await analysis.tile(number);
 }
 
 /** Numbers of the tiles that have to be read, ascending. */
