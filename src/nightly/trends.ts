@@ -79,12 +79,13 @@ export function alarmsOf(series: Series, measure: TrendMeasure, limits: ChartLim
         ? change.size
         : change.size * (days[begin + upTo - 1]! - days[begin + change.from - 1]!);
     if (Math.abs(moved) >= measure.least) {
-      alarms.push({
-        called: series.nights[begin + alarm.at]!,
-        before: series.nights[begin + change.from - 1]!,
-        since: series.nights[begin + change.from]!,
-        change,
-      });
+      const called = series.nights[begin + alarm.at]!;
+      const since = series.nights[begin + change.from]!;
+      const last = alarms.at(-1);
+      // A drift that goes on is the same one.
+      if (change.kind === "drift" && last?.change.kind === "drift" && change.size * last.change.size > 0) {
+        alarms[alarms.length - 1] = { ...last, change };
+      } else alarms.push({ called, before: series.nights[begin + change.from - 1]!, since, change });
     }
     // After a step the new level counts; a drift goes on, and is called again when it has gone as far again.
     begin += Math.max(1, change.kind === "step" ? change.from : alarm.at);

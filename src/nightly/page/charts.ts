@@ -1,5 +1,5 @@
 /** The plots of the index page: a series of nights with its alarms, and interference by the hour of the day. */
-import { barX, dot, line, ruleX } from "@observablehq/plot";
+import { barX, dot, line, rect, ruleX } from "@observablehq/plot";
 import { COLOUR, drawChart } from "../../report/plots/chart.ts";
 import { mjdFromDate } from "../../util/dates.ts";
 import type { SeenInterference } from "../history/store.ts";
@@ -7,6 +7,8 @@ import type { RecurringInterference, Trend } from "../trends.ts";
 import { alarmText, recurrenceText } from "../words.ts";
 
 const HEIGHT = 240;
+/** Nights that are labelled on an axis. */
+const MOST_LABELS = 12;
 
 /** Nights as points, levels and drifts as lines, the night of each alarm as a rule. */
 export function trendChart(id: string, trend: Trend): string {
@@ -67,23 +69,23 @@ export function hoursChart(
   return drawChart({
     id,
     label: recurrenceText(recurring),
-    height: Math.min(420, 80 + 14 * nights.length),
+    height: Math.min(360, 110 + 12 * nights.length),
     marginLeft: 86,
-    x: { domain: [0, 24], label: "hour of the day, UTC", labelArrow: "none", ticks: 8 },
-    y: { type: "band", domain: nights, label: null, padding: 0.35 },
+    x: { domain: [0, 24], label: "hour of the day, UTC", labelArrow: "none", ticks: 8, grid: true },
+    y: {
+      type: "band",
+      domain: nights,
+      label: null,
+      padding: 0.25,
+      ticks: nights.filter((_, i) => i % Math.ceil(nights.length / MOST_LABELS) === 0),
+    },
     marks: [
-      ...(recurring.recurrence.clock === "utc"
-        ? shaded.map(([start, end]) =>
-            barX(nights, {
-              x1: () => start!,
-              x2: () => end!,
-              y: (night) => night,
-              fill: COLOUR.limit,
-              fillOpacity: 0.12,
-              inset: -4,
-            }),
-          )
-        : []),
+      rect(recurring.recurrence.clock === "utc" ? shaded : [], {
+        x1: "0",
+        x2: "1",
+        fill: COLOUR.limit,
+        fillOpacity: 0.14,
+      }),
       barX(bars, { x1: "from", x2: "to", y: "night", fill: COLOUR.suggested }),
     ],
   });

@@ -23,6 +23,7 @@ export const NIGHTS_STYLE = `
 .counts div { display: flex; align-items: center; gap: 0.5rem; color: var(--tone, var(--ink)); font-size: 1.1rem; }
 .counts strong { font-size: 1.6rem; }
 .counts svg { width: 1.3rem; height: 1.3rem; }
+.plots figure { max-width: 36rem; }
 .alarms { list-style: none; padding: 0; display: grid; gap: 0.5rem; }
 .alarms li { background: var(--surface); border: 1px solid var(--rule); border-left: 5px solid var(--limit); border-radius: 3px; padding: 0.6rem 0.9rem; }
 @media screen and (max-width: 40rem) { .night { grid-template-columns: minmax(0, 1fr); } .night h3 small { display: inline; margin-left: 0.6rem; } }
