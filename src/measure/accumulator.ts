@@ -20,4 +20,6 @@ export interface Accumulator {
    * @throws InputError where it is no state of such an accumulator
    */
   restore(from: StateReader, baselines: number): void;
+  /** Give back what it holds of the kernels' memory, which no collector takes. It is not to be used after. */
+  release?(): void;
 }

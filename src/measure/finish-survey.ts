@@ -11,7 +11,11 @@ import { findScans, integrationsOf, typicalIntegration } from "./times.ts";
 const LEVEL_BYTES = 12;
 const MOST_LEVEL_BYTES = 8e9;
 
-/** @throws InputError when the array and band are too large for the memory of any machine at hand */
+/**
+ * The result of a survey. The part is used up.
+ *
+ * @throws InputError when the array and band are too large for the memory of any machine at hand
+ */
 export function finishSurvey(part: SurveyPart): Survey {
   const { dataset, index, gathered } = part;
   const places = index.sortedPlaces();
@@ -50,16 +54,15 @@ export function finishSurvey(part: SurveyPart): Survey {
     screen: gathered.screen.finish(order),
   };
   const { channels } = gathered;
-  return {
-    ...survey,
-    measures: surveyMeasures(survey, {
-      counts,
-      channels,
-      channelNoise,
-      integrations,
-      wKnown: gathered.order.wKnown,
-    }),
-  };
+  const measures = surveyMeasures(survey, {
+    counts,
+    channels,
+    channelNoise,
+    integrations,
+    wKnown: gathered.order.wKnown,
+  });
+  part.release();
+  return { ...survey, measures };
 }
 
 function requireRoom({ dataset }: SurveyPart, baselines: number): void {

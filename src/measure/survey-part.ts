@@ -68,10 +68,18 @@ export class SurveyPart {
   state(): StateRecord {
     const antennas = this.index.baselines.flatMap(({ antenna1, antenna2 }) => [antenna1, antenna2]);
     const entries = Object.entries(this.gathered as unknown as Record<string, Accumulator>);
-    return {
+    const state = {
       antennas: Int32Array.from(antennas),
       gathered: Object.fromEntries(entries.map(([name, accumulator]) => [name, accumulator.state()])),
     };
+    this.release();
+    return state;
+  }
+
+  /** Give back the kernels' memory, which no collector takes in time. It is not to be used after. */
+  release(): void {
+    this.prepared.release();
+    for (const accumulator of this.accumulators) accumulator.release?.();
   }
 
   /** The part that a state was taken of. @throws InputError where it can not be one of such a part */
@@ -104,5 +112,6 @@ export class SurveyPart {
     for (const [i, accumulator] of this.accumulators.entries()) {
       accumulator.merge(other.accumulators[i]!, baselines);
     }
+    other.release();
   }
 }
