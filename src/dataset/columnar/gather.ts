@@ -38,19 +38,25 @@ export async function gatherRows(
   codes: RowCodes,
   writer: SpoolWriter,
 ): Promise<GatherCounts> {
-  const gatherer = new Gatherer(map, axes, codes, writer);
+  const samples = (counts: GatherCounts) =>
+    new SampleReader(map.uses, axes.offsets, map.lists.length > 0, counts, writer);
+  const gatherer = new Gatherer(map, axes, codes, writer, samples);
   for (const table of tables) {
     for await (const batch of table.batches(gatherer.columns)) gatherer.add(batch, table.file);
   }
   return gatherer.counts;
 }
 
-class Gatherer {
+/** Takes the samples of table rows, once the row and sample that they belong to are known. */
+export type SampleTaker = Pick<SampleReader, "take" | "put">;
+
+/** Finds the row and sample that each table row belongs to. */
+export class Gatherer {
   readonly columns: readonly string[];
   readonly counts: GatherCounts = { tableRows: 0, empty: 0, uvwDiffer: 0 };
   readonly #uses: ColumnUses;
   readonly #axes: ResolvedAxes;
-  readonly #writer: SpoolWriter;
+  readonly #writer: Pick<SpoolWriter, "addRow">;
   readonly #onlyField: number;
   readonly #integration: number;
   /** Hz that u, v, w in wavelengths are of; undefined: of the sample's own channel */
@@ -58,7 +64,7 @@ class Gatherer {
   /** undefined: a table row is a row of the dataset */
   readonly #index: RowIndex | undefined;
   readonly #codings = new Map<Role, Coding>();
-  readonly #samples: SampleReader;
+  readonly #samples: SampleTaker;
   readonly #toHertz: (value: number) => number;
   readonly #row: SpoolRow = {
     time: 0,
@@ -77,7 +83,13 @@ class Gatherer {
   #firstUvw: Float64Array = new Float64Array(3);
   #firstRow = -1;
 
-  constructor(map: ColumnMap, axes: ResolvedAxes, codes: RowCodes, writer: SpoolWriter) {
+  constructor(
+    map: ColumnMap,
+    axes: ResolvedAxes,
+    codes: RowCodes,
+    writer: Pick<SpoolWriter, "addRow">,
+    samples: (counts: GatherCounts) => SampleTaker,
+  ) {
     const { uses, constants } = map;
     this.#uses = uses;
     this.#axes = axes;
@@ -103,7 +115,7 @@ class Gatherer {
       axes.subbandOf !== undefined || axes.channelOf !== undefined || axes.polarizationOf !== undefined;
     this.#index = spread ? new RowIndex() : undefined;
     this.#toHertz = uses.frequency === undefined ? (value) => value : toSi("frequency", uses.frequency);
-    this.#samples = new SampleReader(uses, axes.offsets, map.lists.length > 0, this.counts, writer);
+    this.#samples = samples(this.counts);
   }
 
   add(batch: Batch, file: string): void {

@@ -71,16 +71,18 @@ function plainOf(document: Document.Parsed, file: string): unknown {
 function deepest(issue: z.core.$ZodIssue): z.core.$ZodIssue {
   if (issue.code !== "invalid_union") return issue;
   let best: z.core.$ZodIssue = issue;
-  for (const branch of issue.errors) {
-    for (const inner of branch) {
-      const found = deepest(inner);
-      // A form that was met but for something inside it says more than the list of forms.
-      if (found.path.length > 0 || found.code === "custom" || found.code === "unrecognized_keys") {
-        best = { ...found, path: [...issue.path, ...found.path] };
-      }
-    }
+  for (const inner of issue.errors.flat()) {
+    const found = deepest(inner);
+    if (nearness(found) > nearness(best)) best = { ...found, path: [...issue.path, ...found.path] };
   }
   return best;
+}
+
+/** A form that was met but for something inside it says more than the list of forms. */
+function nearness(issue: z.core.$ZodIssue): number {
+  if (issue.code === "custom") return 3;
+  if (issue.code === "unrecognized_keys") return 2;
+  return issue.code !== "invalid_union" && issue.path.length > 0 ? 1 : 0;
 }
 
 const KEYS: readonly string[] = [

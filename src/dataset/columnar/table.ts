@@ -40,7 +40,7 @@ export const MAP_KEY = "visvet.columns";
 /** Values of a batch that are held at once, about. */
 export const BATCH_VALUES = 1 << 20;
 /** More is no table of visibilities. */
-export const MOST_COLUMNS = 10_000;
+export const MOST_COLUMNS = 4096;
 
 /** A row for messages, from 1. */
 export function rowPlace(file: string, batch: Batch, row: number): Place {

@@ -18,7 +18,10 @@ const MOST_BATCH_ROWS = 8192;
 export async function openText(source: ByteSource): Promise<Table> {
   const { path, bytesOnDisk } = source;
   const head = await headOf(source);
-  const delimiter = delimiterOf(headerLine(head) ?? "") ?? ",";
+  const line = headerLine(head) ?? "";
+  const delimiter = delimiterOf(line) ?? ",";
+  // Known before the line is read whole.
+  refuseWide(line.split(delimiter).length, path);
   let names: readonly string[] | undefined;
   const rows: string[][] = [];
   for await (const record of recordsOf(source, delimiter)) {
@@ -50,9 +53,7 @@ async function headOf(source: ByteSource): Promise<Uint8Array> {
 
 function headerNames(record: readonly string[], file: string): string[] {
   const names = record.map((name) => name.trim());
-  if (names.length > MOST_COLUMNS) {
-    throw new InputError(`the table has ${names.length} columns: expected at most ${MOST_COLUMNS}`, { file });
-  }
+  refuseWide(names.length, file);
   if (names.every((name) => name !== "" && Number.isFinite(Number(name)))) {
     throw new InputError(
       "the first line holds numbers: expected the names of the columns",
@@ -69,6 +70,15 @@ function headerNames(record: readonly string[], file: string): string[] {
     );
   }
   return names;
+}
+
+function refuseWide(columns: number, file: string): void {
+  if (columns <= MOST_COLUMNS) return;
+  throw new InputError(
+    `the line of names has ${columns} columns or more: expected at most ${MOST_COLUMNS}`,
+    { file, line: 1 },
+    "Take the columns that hold visibilities alone",
+  );
 }
 
 function sniff(cells: readonly string[]): TableColumn["kind"] {

@@ -92,7 +92,8 @@ describe("Ranges of rows and sizes of blocks", () => {
             const column = whole[key].subarray(rows[0] * each, rows[1] * each);
             return want === "rows" && each > 1 ? [] : want === "weights" && key === "real" ? [] : [...column];
           };
-          for (const key of ["time", "u", "weight", "real"] as const) expect([...part[key]]).toEqual(cut(key));
+          for (const key of ["time", "u", "weight", "real"] as const)
+            expect([...part[key]]).toEqual(cut(key));
         },
       ),
       { numRuns: 40 },
@@ -155,6 +156,8 @@ describe("Samples that are not as they should be", () => {
     const lines = csvOf(samples).split("\n");
     lines[4] = lines[4]!.replace(",100,", ",101,");
     const dataset = await openColumnar([tableFile(lines.join("\n"))]);
-    expect(dataset.notes.find(({ code }) => code === "uvw-disagree")?.text).toContain("1 samples have other u");
+    expect(dataset.notes.find(({ code }) => code === "uvw-disagree")?.text).toContain(
+      "1 samples have other u",
+    );
   });
 });

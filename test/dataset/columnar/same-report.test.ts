@@ -26,7 +26,10 @@ async function reportsOf(path: string): Promise<Reports> {
 
 /** Format, name and bytes are the file's own. */
 function withoutFile(json: string): string {
-  const report = JSON.parse(json) as { dataset: Record<string, unknown>; provenance: Record<string, unknown> };
+  const report = JSON.parse(json) as {
+    dataset: Record<string, unknown>;
+    provenance: Record<string, unknown>;
+  };
   delete report.dataset.format;
   delete report.provenance.files;
   delete report.provenance.bytes;

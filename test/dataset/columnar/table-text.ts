@@ -39,7 +39,12 @@ export function csvOf(samples: readonly TestSample[]): string {
 }
 
 /** Every sample of `antennas` antennas at `times` times, channel and polarization fastest; each value its own. */
-export function gridSamples(antennas: number, times: number, channels: number, pols = ["XX", "YY"]): TestSample[] {
+export function gridSamples(
+  antennas: number,
+  times: number,
+  channels: number,
+  pols = ["XX", "YY"],
+): TestSample[] {
   const samples: TestSample[] = [];
   for (let t = 0; t < times; t++) {
     for (let a1 = 1; a1 <= antennas; a1++) {
@@ -47,7 +52,16 @@ export function gridSamples(antennas: number, times: number, channels: number, p
         for (let channel = 0; channel < channels; channel++) {
           for (const pol of pols) {
             const re = samples.length + 0.25;
-            samples.push({ time: 60_000 + t / 8640, a1, a2, channel, pol, re, im: -re, weight: 1 + (re % 7) });
+            samples.push({
+              time: 60_000 + t / 8640,
+              a1,
+              a2,
+              channel,
+              pol,
+              re,
+              im: -re,
+              weight: 1 + (re % 7),
+            });
           }
         }
       }
