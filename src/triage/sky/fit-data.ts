@@ -22,8 +22,9 @@ export interface FitRequest {
   readonly rounds: number;
 }
 
-/** Atoms that are fitted, at most: every so many of more. */
-const MOST_FITTED = 30_000;
+/** Atoms that are fitted, at most, on the way and in the end: every so many of more. */
+const MOST_ON_THE_WAY = 6_000;
+const MOST_IN_THE_END = 30_000;
 const LARGEST_STEP = 0.4;
 /** Atoms further off than this many times the typical one are passed over. */
 const OUTLYING = 6;
@@ -31,19 +32,32 @@ const OUTLYING = 6;
 /** Sources keep their order. Extended are those whose shape is not 0. */
 export function fitToData(start: readonly Source[], request: FitRequest): DataFit {
   const { atoms } = request;
-  const stride = Math.max(1, Math.floor(atoms.count / MOST_FITTED));
   let sources = start;
   let errors: Float64Array = new Float64Array(start.length).fill(Number.NaN);
   let limit = Number.POSITIVE_INFINITY;
   // The fluxes first: places are only as good as the flux that they are weighed with.
   for (let round = 0; round <= request.rounds; round++) {
     const parameters = parametersOf(sources, round > 0);
+    const stride = strideOf(atoms, round === request.rounds ? MOST_IN_THE_END : MOST_ON_THE_WAY);
     const step = solveStep(sources, parameters, request, stride, limit);
     sources = moved(sources, parameters, step.values, request.beam);
     errors = fluxErrors(parameters, step.errors, sources.length);
-    limit = step.typical * OUTLYING ** 2;
+    limit = step.typical > 0 ? step.typical * OUTLYING ** 2 : Number.POSITIVE_INFINITY;
   }
-  return { sources, errors, left: powerLeft(sources, request, stride) };
+  return { sources, errors, left: powerLeft(sources, request, strideOf(atoms, MOST_IN_THE_END)) };
+}
+
+/** A prime that does not divide the channels: no channel and no time is favoured. */
+function strideOf({ count, bins }: Atoms, most: number): number {
+  let stride = Math.ceil(count / most);
+  if (stride <= 1) return 1;
+  while (!isPrime(stride) || bins.channels % stride === 0) stride += 1;
+  return stride;
+}
+
+function isPrime(value: number): boolean {
+  for (let factor = 2; factor * factor <= value; factor++) if (value % factor === 0) return false;
+  return true;
 }
 
 type Kind = "flux" | "l" | "m" | "ll" | "lm" | "mm";
@@ -87,7 +101,8 @@ function solveStep(
   const response = new Response(atoms, WHOLE, declination, true);
   const sizes: number[] = [];
   for (let k = 0; k < atoms.count; k += stride) {
-    let [re, im] = [atoms.re[k]!, atoms.im[k]!];
+    let re = atoms.re[k]!;
+    let im = atoms.im[k]!;
     let at = 0;
     for (let s = 0; s < sources.length; s++) {
       const source = sources[s]!;
@@ -95,7 +110,8 @@ function solveStep(
       re -= source.flux * response.re;
       im -= source.flux * response.im;
       while (at < n && parameters[at]!.source === s) {
-        fillRow(parameters[at]!.kind, source, atoms.u[k]!, atoms.v[k]!, response, rowRe, rowIm, at);
+        const { kind } = parameters[at]!;
+        fillRow(kind, source.flux, atoms.u[k]!, atoms.v[k]!, response.re, response.im, rowRe, rowIm, at);
         at += 1;
       }
     }
@@ -104,7 +120,8 @@ function solveStep(
     sizes.push(size);
     if (size > limit) continue;
     for (let i = 0; i < n; i++) {
-      const [wRe, wIm] = [weight * rowRe[i]!, weight * rowIm[i]!];
+      const wRe = weight * rowRe[i]!;
+      const wIm = weight * rowIm[i]!;
       right[i]! += wRe * re + wIm * im;
       for (let j = 0; j <= i; j++) matrix[i * n + j]! += wRe * rowRe[j]! + wIm * rowIm[j]!;
     }
@@ -121,34 +138,31 @@ function solveStep(
   };
 }
 
-/** Derivative of the model by a parameter, into place `at`. */
+/** Derivative of the model by a parameter, into place `at`: by place -2 pi i u times it, by shape a real factor. */
 function fillRow(
   kind: Kind,
-  { flux }: Source,
+  flux: number,
   u: number,
   v: number,
-  { re, im }: Response,
+  re: number,
+  im: number,
   rowRe: Float64Array,
   rowIm: Float64Array,
   at: number,
 ): void {
-  const turn = 2 * Math.PI * flux;
+  if (kind === "l" || kind === "m") {
+    const turn = 2 * Math.PI * flux * (kind === "l" ? u : v);
+    rowRe[at] = turn * im;
+    rowIm[at] = -turn * re;
+    return;
+  }
   const shrink = -2 * Math.PI ** 2 * flux;
-  // By place the derivative is -2 pi i u times the response, by shape a real factor times it.
-  const [real, imaginary] =
-    kind === "flux"
-      ? [1, 0]
-      : kind === "l"
-        ? [0, -turn * u]
-        : kind === "m"
-          ? [0, -turn * v]
-          : kind === "ll"
-            ? [shrink * u * u, 0]
-            : kind === "lm"
-              ? [shrink * 2 * u * v, 0]
-              : [shrink * v * v, 0];
-  rowRe[at] = real * re - imaginary * im;
-  rowIm[at] = real * im + imaginary * re;
+  let factor = 1;
+  if (kind === "ll") factor = shrink * u * u;
+  else if (kind === "lm") factor = shrink * 2 * u * v;
+  else if (kind === "mm") factor = shrink * v * v;
+  rowRe[at] = factor * re;
+  rowIm[at] = factor * im;
 }
 
 function moved(
@@ -191,7 +205,8 @@ function powerLeft(sources: readonly Source[], { atoms, declination }: FitReques
   const response = new Response(atoms, WHOLE, declination, true);
   let [left, all] = [0, 0];
   for (let k = 0; k < atoms.count; k += stride) {
-    let [re, im] = [atoms.re[k]!, atoms.im[k]!];
+    let re = atoms.re[k]!;
+    let im = atoms.im[k]!;
     all += atoms.weight[k]! * (re * re + im * im);
     for (const source of sources) {
       response.at(k, source);

@@ -56,9 +56,12 @@ export class Response {
   }
 
   /** Sets `re` and `im`. */
-  at(k: number, { l, m, shape }: Source): void {
+  at(k: number, source: Source): void {
+    const { l, m, shape } = source;
     const { atoms, physics } = this;
-    const [u, v, w] = [atoms.u[k]!, atoms.v[k]!, atoms.w[k]!];
+    const u = atoms.u[k]!;
+    const v = atoms.v[k]!;
+    const w = atoms.w[k]!;
     const rr = l * l + m * m;
     const nMinus1 = -rr / (1 + Math.sqrt(Math.max(0, 1 - rr)));
     const turns = u * l + v * m + w * nMinus1;

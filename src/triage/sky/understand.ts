@@ -74,8 +74,13 @@ export function understand(
     .slice(0, MOST_SOURCES)
     .map((cluster) => sourceOf(cluster, image, frame));
   const solved = solveSources(found, gathered, frame.declination, beam.major);
-  const imager = { image, frame, transformer, atoms: solved.atoms, lobe, weights: reading.weights };
-  const sources = solved.held ? completed(imager, solved, beam.major, sampling.shortest) : found;
+  const first = { image, frame, transformer, atoms: solved.atoms, lobe, weights: reading.weights };
+  const sources = solved.held ? completed(first, solved, beam.major, sampling.shortest) : found;
+  const rest = solved.held
+    ? restOf(solved.atoms, sources, frame.declination)
+    : { re: solved.atoms.re, im: solved.atoms.im };
+  const atoms = solved.held ? withLeastNoise(solved.atoms, rest) : solved.atoms;
+  const imager = { ...first, atoms };
   return {
     ...imager,
     sampling,
@@ -83,12 +88,31 @@ export function understand(
     deconvolved: reading.deconvolved,
     weighting: reading.weighting,
     held: solved.held,
-    rest: solved.held
-      ? restOf(solved.atoms, sources, frame.declination)
-      : { re: solved.atoms.re, im: solved.atoms.im },
-    noise: imageNoise(solved.atoms, reading.weights),
+    rest,
+    noise: imageNoise(atoms, reading.weights),
     ...withoutSources(imager, sources, solved.held),
   };
+}
+
+/** weight x |V|^2 over twice the noise is exponentially distributed: a quarter of it lies below this. */
+const EXPONENTIAL_QUARTER = -Math.log(0.75);
+const MOST_SAMPLED = 50_000;
+
+/**
+ * The noise that the quieter samples show without the sources, where that is less: interference in one channel is in
+ * the differences with its neighbours, too.
+ */
+function withLeastNoise(atoms: Atoms, rest: Visibilities): Atoms {
+  const step = Math.max(1, Math.floor(atoms.count / MOST_SAMPLED));
+  const powers: number[] = [];
+  for (let k = 0; k < atoms.count; k += step) {
+    powers.push(atoms.weight[k]! * (rest.re[k]! ** 2 + rest.im[k]! ** 2));
+  }
+  powers.sort((a, b) => a - b);
+  const quarter = powers[powers.length >> 2] ?? Number.NaN;
+  const shown = quarter / EXPONENTIAL_QUARTER / 2;
+  if (!(shown > 0)) return atoms;
+  return { ...atoms, noise: atoms.noise > 0 ? Math.min(atoms.noise, shown) : shown };
 }
 
 type Without = Pick<Understanding, "sources" | "projector" | "residual" | "sidelobes" | "scale">;

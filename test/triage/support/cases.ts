@@ -4,7 +4,7 @@ import type { ScenarioInput } from "../../../src/simulate/scenario.ts";
 import { type Simulated, simulate } from "../../../src/simulate/simulate.ts";
 import type { CauseKind } from "../../../src/triage/causes/cause.ts";
 import { type Changes, scenarioWith } from "../../support/scenarios.ts";
-import { dirtyImage, type Grid, restored, samplesOf, type TrueSource, without } from "./direct-image.ts";
+import { dirtyImage, type Grid, plus, restored, samplesOf, type TrueSource } from "./direct-image.ts";
 
 const ARCSEC = Math.PI / 180 / 3600;
 
@@ -315,12 +315,19 @@ export const CASES: readonly Case[] = [
   },
 ];
 
-/** The image of a game, and the rms that the noise of its data makes in it, Jy a beam. */
+/** The image of a game, by an imager that corrects w unless that is what goes wrong. Jy a beam. */
 export async function imageOf(of: Game, kind: ImageKind): Promise<Float64Array> {
-  const samples = await samplesOf(of.simulated.dataset);
-  if (kind === "dirty") return dirtyImage(samples, of.grid);
-  const image = dirtyImage(without(samples, of.sources), of.grid);
-  restored(of.sources, of.beam, of.grid).forEach((value, i) => {
+  const { simulated, sources, lost, grid, beam, truth } = of;
+  const corrects = truth.cause !== "w-term";
+  const samples = await samplesOf(simulated.dataset);
+  const errors = plus(samples, -1, sources, corrects);
+  if (kind === "dirty") {
+    // Corrected: with the sources as they would be without w.
+    const all = [...sources, ...lost];
+    return dirtyImage(corrects ? plus(plus(samples, -1, all, true), 1, all, false) : samples, grid);
+  }
+  const image = dirtyImage(errors, grid);
+  restored(sources, beam, grid).forEach((value, i) => {
     image[i]! += value;
   });
   return image;

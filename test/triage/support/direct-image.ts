@@ -26,6 +26,7 @@ export interface Samples {
   readonly count: number;
   readonly u: Float64Array;
   readonly v: Float64Array;
+  readonly w: Float64Array;
   readonly re: Float64Array;
   readonly im: Float64Array;
   readonly weight: Float64Array;
@@ -34,7 +35,8 @@ export interface Samples {
 export async function samplesOf(dataset: Dataset): Promise<Samples> {
   const { subbands, channels, polarizations } = dataset.shape;
   const most = dataset.rows * subbands * channels;
-  const [u, v, re, im, weight] = Array.from({ length: 5 }, () => new Float64Array(most)) as [
+  const [u, v, w, re, im, weight] = Array.from({ length: 6 }, () => new Float64Array(most)) as [
+    Float64Array,
     Float64Array,
     Float64Array,
     Float64Array,
@@ -57,6 +59,7 @@ export async function samplesOf(dataset: Dataset): Promise<Samples> {
         if (total === 0) continue;
         u[count] = block.u[row]! * frequencies[c]!;
         v[count] = block.v[row]! * frequencies[c]!;
+        w[count] = block.w[row]! * frequencies[c]!;
         re[count] = x / total;
         im[count] = y / total;
         weight[count] = total;
@@ -64,19 +67,28 @@ export async function samplesOf(dataset: Dataset): Promise<Samples> {
       }
     }
   }
-  return { count, u, v, re, im, weight };
+  return { count, u, v, w, re, im, weight };
 }
 
-/** The samples less those of the sources, as an imager that knows of no w, channel width or integration time has them. */
-export function without(samples: Samples, sources: readonly TrueSource[]): Samples {
+/**
+ * The samples and so many times those of the sources, as an imager that knows of no channel width or integration time
+ * has them: with the phases of w, or without.
+ */
+export function plus(
+  samples: Samples,
+  times: number,
+  sources: readonly TrueSource[],
+  withW: boolean,
+): Samples {
   const [re, im] = [samples.re.slice(), samples.im.slice()];
   for (const { flux, l, m, width = 0 } of sources) {
+    const nMinus1 = withW ? Math.sqrt(1 - l * l - m * m) - 1 : 0;
     for (let k = 0; k < samples.count; k++) {
-      const phase = -2 * Math.PI * (samples.u[k]! * l + samples.v[k]! * m);
+      const phase = -2 * Math.PI * (samples.u[k]! * l + samples.v[k]! * m + samples.w[k]! * nMinus1);
       const spacing = Math.hypot(samples.u[k]!, samples.v[k]!);
-      const size = flux * Math.exp(-((Math.PI * width * spacing) ** 2) / (4 * Math.LN2));
-      re[k]! -= size * Math.cos(phase);
-      im[k]! -= size * Math.sin(phase);
+      const size = times * flux * Math.exp(-((Math.PI * width * spacing) ** 2) / (4 * Math.LN2));
+      re[k]! += size * Math.cos(phase);
+      im[k]! += size * Math.sin(phase);
     }
   }
   return { ...samples, re, im };
