@@ -82,6 +82,6 @@ function severityLeft(
       // Samples that the flags take away have no value any more: that is the cure, not a blind spot.
       !flags.some((flag) => contains(flag, row.scope)),
   );
-  const worst = Math.max(0, ...hits.map((hit) => hit.severity));
+  const worst = hits.reduce((most, hit) => Math.max(most, hit.severity), 0);
   return unseen ? Math.max(worst, finding.severity) : worst;
 }

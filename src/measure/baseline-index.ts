@@ -2,8 +2,8 @@
 import { InputError } from "../util/errors.ts";
 import type { Baseline } from "./survey-result.ts";
 
-/** Of 1448 antennas: beyond, antenna numbers are damaged more likely than real. */
-const MOST_BASELINES = 1 << 20;
+/** Of 2048 antennas: beyond, antenna numbers are damaged more likely than real. */
+const MOST_BASELINES = 1 << 21;
 /** A pair of 32-bit numbers is an exact double while the first is below this. */
 const EXACT = 1 << 21;
 
@@ -40,7 +40,7 @@ export class BaselineIndex {
     const index = this.baselines.length;
     if (index === MOST_BASELINES) {
       throw new InputError(
-        `the rows name more than ${MOST_BASELINES} baselines: expected at most those of 1448 antennas`,
+        `the rows name more than ${MOST_BASELINES} baselines: expected at most those of 2048 antennas`,
         {},
         "The antenna numbers are damaged",
       );

@@ -30,10 +30,13 @@ export function judge(rules: RuleSet, given: Measures, plan: Plan): Judged {
   for (const rule of rules.rules) {
     const applied = applyRule(rule, measures, plan);
     if (applied.notJudged !== null) notJudged.push({ rule: rule.id, why: applied.notJudged });
-    unjudged.push(...applied.unjudged.map((scope) => ({ rule: rule.id, scope })));
+    for (const scope of applied.unjudged) unjudged.push({ rule: rule.id, scope });
     if (applied.hits.length === 0) continue;
-    hits.push(...applied.hits);
-    const severity = Math.max(...applied.hits.map((hit) => hit.severity));
+    let severity = 0;
+    for (const hit of applied.hits) {
+      hits.push(hit);
+      severity = Math.max(severity, hit.severity);
+    }
     worst.push({ weight: rule.weight, severity });
     if (rule.weight > 0) taken.push({ rule: rule.id, points: 100 * rule.weight * severity });
     findings.push(...findingsOf(rule, applied, plan, measures));

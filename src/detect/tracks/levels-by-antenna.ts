@@ -56,30 +56,64 @@ export function levelsByAntenna(
   points: LevelPoints,
   ignore: ReadonlySet<number>,
 ): AntennaLevel[] {
-  return grid.antennas.map((_, antenna) => levelOf(grid, points, antenna, ignore));
+  const planes = points.map((ofPlane) => planePoints(grid, ofPlane, ignore));
+  return grid.antennas.map((_, antenna) => levelOf(grid, planes, antenna, ignore));
+}
+
+/** The points of one plane, ready to be asked by antenna. */
+interface PlanePoints {
+  /** in the order of the baselines */
+  readonly all: readonly Point[];
+  /** (baselines + 1) first point of each */
+  readonly first: Int32Array;
+  /** of no ignored antenna; of very many an even choice, from which each antenna's others are taken */
+  readonly trusted: readonly Point[];
+}
+
+/** A choice of others is made from this many. */
+const MOST_TRUSTED = 16_000;
+
+function planePoints(grid: Grid, all: readonly Point[], ignore: ReadonlySet<number>): PlanePoints {
+  const first = new Int32Array(grid.baselines + 1);
+  for (const { baseline } of all) first[baseline + 1]! += 1;
+  for (let b = 0; b < grid.baselines; b++) first[b + 1]! += first[b]!;
+  const trusted =
+    ignore.size === 0
+      ? all
+      : all.filter(
+          ({ baseline }) => !ignore.has(grid.first[baseline]!) && !ignore.has(grid.second[baseline]!),
+        );
+  return { all, first, trusted: thinned(trusted, MOST_TRUSTED) };
+}
+
+function ownPoints(
+  grid: Grid,
+  { all, first }: PlanePoints,
+  antenna: number,
+  ignore: ReadonlySet<number>,
+): Point[] {
+  const own: Point[] = [];
+  for (const b of grid.touching[antenna]!) {
+    const other = grid.first[b] === antenna ? grid.second[b]! : grid.first[b]!;
+    if (ignore.has(other)) continue;
+    for (let i = first[b]!; i < first[b + 1]!; i++) own.push(all[i]!);
+  }
+  return own;
 }
 
 function levelOf(
   grid: Grid,
-  planes: LevelPoints,
+  planes: readonly PlanePoints[],
   antenna: number,
   ignore: ReadonlySet<number>,
 ): AntennaLevel {
-  const touches = ({ baseline }: Point, a: number) =>
-    grid.first[baseline] === a || grid.second[baseline] === a;
   const ratios: number[] = [];
   let [power, expected, variance, silent] = [0, 0, 0, 0];
   const told = new Set<number>();
   for (const points of planes) {
-    const own = thinned(
-      points.filter((point) => touches(point, antenna) && !ignoredBut(grid, point, ignore, antenna)),
-      MOST_OWN,
-    );
-    const all = points.filter(
-      (point) =>
-        !touches(point, antenna) &&
-        !ignore.has(grid.first[point.baseline]!) &&
-        !ignore.has(grid.second[point.baseline]!),
+    const own = thinned(ownPoints(grid, points, antenna, ignore), MOST_OWN);
+    const all = points.trusted.filter(
+      ({ baseline }) => grid.first[baseline] !== antenna && grid.second[baseline] !== antenna,
     );
     const others = thinned(all, MOST_OTHERS);
     const outer = outerLevel(others);
@@ -111,11 +145,6 @@ function levelOf(
 function thinned(points: readonly Point[], most: number): readonly Point[] {
   const stride = Math.ceil(points.length / most);
   return points.filter((_, i) => i % stride === 0);
-}
-
-function ignoredBut(grid: Grid, { baseline }: Point, ignore: ReadonlySet<number>, antenna: number): boolean {
-  const other = grid.first[baseline] === antenna ? grid.second[baseline]! : grid.first[baseline]!;
-  return ignore.has(other);
 }
 
 /** A source fading outwards makes the outermost baselines faint by nature. */
