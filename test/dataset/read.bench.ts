@@ -11,6 +11,7 @@ import { bench, describe } from "vitest";
 import type { BlockRequest, Dataset } from "../../src/dataset/dataset.ts";
 import { bigEndian, FitsFileWriter, groupItems, groupsHeader } from "../../src/dataset/fits/write.ts";
 import { openDataset } from "../../src/dataset/open.ts";
+import { writeFitsIdi } from "../../src/simulate/write-fits-idi.ts";
 import { antennaTable, COMPLEX, DAY, DEC, freq, RA, stokes } from "./group-file.ts";
 
 const BYTES = 64e6;
@@ -50,7 +51,7 @@ async function write(channels: number): Promise<Written> {
   return { path, groupBytes: 4 * items, dataset: await openDataset(path) };
 }
 
-async function bareRead(path: string): Promise<void> {
+async function bareRead(path: string, bytes = BYTES): Promise<void> {
   const handle = await open(path);
   const buffer = Buffer.alloc(1 << 20);
   let at = 0;
@@ -60,7 +61,7 @@ async function bareRead(path: string): Promise<void> {
     at += bytesRead;
   }
   await handle.close();
-  if (at < BYTES * 0.99) throw new Error(`${at} bytes read`);
+  if (at < bytes * 0.99) throw new Error(`${at} bytes read`);
 }
 
 async function readBlocks(dataset: Dataset, request: BlockRequest): Promise<void> {
@@ -76,6 +77,37 @@ for (const { path, groupBytes, dataset } of [await write(1), usual, await write(
   describe(`64 MB in groups of ${groupBytes} bytes`, () => {
     bench("a bare read", () => bareRead(path), options);
     bench("blocks of samples", () => readBlocks(dataset, { want: "samples" }), options);
+    bench("blocks of weights", () => readBlocks(dataset, { want: "weights" }), options);
+    bench("blocks of rows", () => readBlocks(dataset, { want: "rows" }), options);
+  });
+}
+
+/** The same samples in FITS-IDI, the weights in the matrix or, all 1, in a column. */
+async function rewritten({ dataset }: Written, weights: "matrix" | "column"): Promise<Written> {
+  const flat: Dataset = {
+    ...dataset,
+    async *blocks(request) {
+      for await (const block of dataset.blocks(request)) {
+        block.weight.fill(1);
+        yield block;
+      }
+    },
+  };
+  const path = join(folder, `${weights}.idifits`);
+  await writeFitsIdi(weights === "matrix" ? dataset : flat, path);
+  return { path, groupBytes: 0, dataset: await openDataset(path) };
+}
+
+for (const weights of ["matrix", "column"] as const) {
+  const { path, dataset } = await rewritten(usual, weights);
+  describe(`the samples of 64 MB of random groups in FITS-IDI, weights in a ${weights}`, () => {
+    bench("a bare read", () => bareRead(path, dataset.bytes), options);
+    bench("blocks of samples", () => readBlocks(dataset, { want: "samples" }), options);
+    bench(
+      "blocks of samples from random groups",
+      () => readBlocks(usual.dataset, { want: "samples" }),
+      options,
+    );
     bench("blocks of weights", () => readBlocks(dataset, { want: "weights" }), options);
     bench("blocks of rows", () => readBlocks(dataset, { want: "rows" }), options);
   });
