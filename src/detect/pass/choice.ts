@@ -8,7 +8,7 @@ import { type TileShape, tileShape } from "../../measure/screen/shape.ts";
 import type { Survey } from "../../measure/survey-result.ts";
 import { bandsOf } from "./bands.ts";
 import { oddBaselines, peakBaselines } from "./odd-baselines.ts";
-import { loudTiles, suspectsOf } from "./suspects.ts";
+import { suspectsOf } from "./suspects.ts";
 
 /** How a baseline of a tile is looked at: not at all; for its own marks; as one of a sample; with all others. */
 export const UNSEEN = 0;
@@ -45,7 +45,6 @@ export function choose(survey: Survey): Choice {
   if (screen === undefined || !screen.isOn || bandsOf(dataset.shape).length === 0) return all;
   if (!isByTime(screen, baselines.length)) return all;
   const { tiles: seen, persistent } = suspectsOf(survey, screen);
-  for (const tile of loudTiles(dataset.shape, screen)) seen[tile] = 1;
   const odd = oddBaselines(dataset.shape, screen, baselines.length);
   const peaks = peakBaselines(dataset.shape, screen, baselines.length, BRIGHT, seen);
   const isPersistent = persistent.includes(1);

@@ -1,25 +1,28 @@
 /** Where the screen's sums over baselines stand out: tiles, and channels in which something is there all the time. */
 import type { Shape } from "../../dataset/dataset.ts";
-import { STEPS_PER_OCTAVE } from "../../measure/screen/row-screen.ts";
 import type { Screened } from "../../measure/screen/screen.ts";
 import type { Survey } from "../../measure/survey-result.ts";
 import { medianInPlace } from "../statistics/order.ts";
-import { SumThresholdRoom, type SumThresholdSettings, sumThreshold } from "../statistics/sum-threshold.ts";
 import { type Band, bandsOf } from "./bands.ts";
 
-/** Standard deviation of the logarithm of an exponential variable, pi/sqrt(6), in steps of the screen. */
-const SPREAD = ((Math.PI / Math.sqrt(6)) * STEPS_PER_OCTAVE) / Math.LN2;
-/** Fainter than what the second pass tells from its background; what noise does comes back for a second look. */
-const THRESHOLDS: SumThresholdSettings = { first: 6, ratio: 1.5, longestTime: 64, longestFrequency: 16 };
+/** Standard deviation of the steps of noise: of 32 log2 of an exponential variable, cut 3 octaves below its log mean. */
+const SPREAD = 50.9;
+/**
+ * Sigmas of a run of any length: less than what the second pass tells from its background, and seldom enough in noise.
+ * Differences of neighbouring channels share samples, so that runs along frequency scatter more.
+ */
+const SIGNIFICANT = 6.5;
+const LONGEST_TIME = 64;
+const LONGEST_FREQUENCY = 16;
 /** A channel's typical excess over its neighbours, in its errors and in steps (4 % of power), to be always there. */
 const PERSISTENT_ERRORS = 6;
 const PERSISTENT_STEPS = 2;
 const NEIGHBOURS = 6;
 /** Channels between two that stand out may be inside of what has its edges there. */
 const INSIDE = 16;
-/** Level of a slot over the usual, in its scatter and in steps (16 % of power), to be loud. */
+/** Level of a slot over the usual, in its scatter and in steps (1.35 times the power), to be loud. */
 const LOUD_SCATTER = 6;
-const LOUD_STEPS = 7;
+const LOUD_STEPS = 14;
 
 export interface Suspects {
   /** (tiles) 1 where sums over baselines stand out for a while */
@@ -32,19 +35,15 @@ export function suspectsOf({ dataset }: Survey, screen: Screened): Suspects {
   const { subbands, channels, polarizations } = dataset.shape;
   const tiles = new Uint8Array(screen.cut.tiles);
   const persistent = new Uint8Array(subbands * channels);
-  const products: (number | null)[] = polarizations === 1 ? [null] : [null, ...Array(polarizations).keys()];
-  const room = new SumThresholdRoom();
+  const products: (number | null)[] = [...Array(polarizations).keys()];
+  if (polarizations > 1) products.push(null);
   for (const band of bandsOf(dataset.shape)) {
     for (const product of products) {
       const plane = planeOf(dataset.shape, screen, band, product);
-      levelRows(plane);
+      for (const tile of loudTiles(dataset.shape, screen, band, product, levelRows(plane))) tiles[tile] = 1;
       markPersistent(plane, persistent, band.first);
       standardise(plane);
-      sumThreshold(plane.scores, plane.marks, plane.slots, plane.columns, THRESHOLDS, room);
-      for (let i = 0; i < plane.marks.length; i++) {
-        const slot = Math.floor(i / plane.columns);
-        if (plane.marks[i] === 1) tiles[Math.floor(slot / screen.cut.slotsPerTile)] = 1;
-      }
+      for (const slot of slotsOfRuns(plane)) tiles[Math.floor(slot / screen.cut.slotsPerTile)] = 1;
     }
   }
   return { tiles, persistent };
@@ -97,15 +96,17 @@ function planeOf(shape: Shape, { tiles, cut }: Screened, band: Band, product: nu
   return { slots, columns, scores, counts, marks, usual: new Float64Array(columns).fill(Number.NaN) };
 }
 
-/** Take out what the channels of a slot have in common. */
-function levelRows({ slots, columns, scores, marks }: SlotPlane): void {
+/** Take out what the channels of a slot have in common. @returns (slots) that; NaN where there is nothing */
+function levelRows({ slots, columns, scores, marks }: SlotPlane): Float64Array {
   const work = new Float64Array(columns);
-  for (let from = 0; from < slots * columns; from += columns) {
+  return Float64Array.from({ length: slots }, (_, slot) => {
+    const from = slot * columns;
     let count = 0;
     for (let i = from; i < from + columns; i++) if (marks[i] === 0) work[count++] = scores[i]!;
     const middle = medianInPlace(work, count);
     for (let i = from; i < from + columns; i++) if (marks[i] === 0) scores[i]! -= middle;
-  }
+    return middle;
+  });
 }
 
 /** Fill `usual`, and mark channels whose typical mean stands out of their neighbours'. */
@@ -149,28 +150,78 @@ function standardise({ slots, columns, scores, counts, marks, usual }: SlotPlane
   }
 }
 
-/** Tiles in or beside which the level of the noise is raised in some slot. */
-export function loudTiles({ subbands, polarizations }: Shape, { tiles, cut }: Screened): number[] {
-  const { slotsPerTile } = cut;
-  const products = subbands * polarizations;
+/** Slots in which runs in time or frequency are significant. Uses up the scores: what is found counts no more in longer runs. */
+function slotsOfRuns({ slots, columns, scores, marks }: SlotPlane): Set<number> {
   const found = new Set<number>();
-  const levels = new Float64Array(tiles.length * slotsPerTile);
-  for (let product = 0; product < products; product++) {
-    for (const [number, tile] of tiles.entries()) {
-      for (let slot = 0; slot < slotsPerTile; slot++) {
-        const at = slot * products + product;
-        levels[number * slotsPerTile + slot] = tile === null ? Number.NaN : tile.level[at]! / tile.rows[at]!;
-      }
+  for (let i = 0; i < scores.length; i++) if (marks[i] !== 0) scores[i] = 0;
+  const fresh = new Uint8Array(scores.length);
+  for (let length = 1; length <= LONGEST_TIME; length *= 2) {
+    const limit = SIGNIFICANT * Math.sqrt(length);
+    let any = false;
+    for (let c = 0; c < columns; c++) any = markRuns(scores, c, columns, slots, length, limit, fresh) || any;
+    for (let slot = 0; length <= LONGEST_FREQUENCY && slot < slots; slot++) {
+      any = markRuns(scores, slot * columns, 1, columns, length, limit, fresh) || any;
     }
-    const known = levels.filter((level) => !Number.isNaN(level));
-    const middle = medianInPlace(known.slice());
-    const scatter = 1.4826 * medianInPlace(known.map((level) => Math.abs(level - middle)));
-    const limit = middle + Math.max(LOUD_STEPS, LOUD_SCATTER * scatter);
-    for (const [slot, level] of levels.entries()) {
-      if (level > limit) found.add(Math.floor(slot / slotsPerTile));
+    for (let i = 0; any && i < fresh.length; i++) {
+      if (fresh[i] === 0) continue;
+      found.add(Math.floor(i / columns));
+      scores[i] = 0;
+      fresh[i] = 0;
     }
   }
+  return found;
+}
+
+/** Mark runs along a line whose sum exceeds a limit. @returns whether there are any */
+function markRuns(
+  scores: Float32Array,
+  start: number,
+  stride: number,
+  count: number,
+  length: number,
+  limit: number,
+  fresh: Uint8Array,
+): boolean {
+  let sum = 0;
+  let any = false;
+  for (let k = 0; k < count; k++) {
+    sum += scores[start + k * stride]!;
+    if (k >= length) sum -= scores[start + (k - length) * stride]!;
+    if (k + 1 < length || !(sum > limit)) continue;
+    any = true;
+    for (let j = k - length + 1; j <= k; j++) fresh[start + j * stride] = 1;
+  }
+  return any;
+}
+
+/**
+ * Tiles in or beside which the noise of a band is raised in some slot.
+ *
+ * @param common (slots) what the channels have in common over the levels of their rows: narrow features raise those
+ */
+function loudTiles(
+  { polarizations, subbands }: Shape,
+  { tiles, cut }: Screened,
+  { subband }: Band,
+  product: number | null,
+  common: Float64Array,
+): number[] {
+  if (subband === null || product === null) return [];
+  const { slotsPerTile } = cut;
+  const products = subbands * polarizations;
+  const levels = common.map((middle, slot) => {
+    const tile = tiles[Math.floor(slot / slotsPerTile)]!;
+    const at = (slot % slotsPerTile) * products + subband * polarizations + product;
+    return tile === null ? Number.NaN : middle + tile.level[at]! / tile.rows[at]!;
+  });
+  const known = levels.filter((level) => !Number.isNaN(level));
+  const usual = medianInPlace(known.slice());
+  const scatter = 1.4826 * medianInPlace(known.map((level) => Math.abs(level - usual)));
+  const limit = usual + Math.max(LOUD_STEPS, LOUD_SCATTER * scatter);
+  const found = [...levels.keys()].filter((slot) => levels[slot]! > limit);
   // What is usual of a baseline is to be seen besides.
-  const wider = [...found].flatMap((tile) => [tile - 1, tile, tile + 1]);
+  const wider = found
+    .map((slot) => Math.floor(slot / slotsPerTile))
+    .flatMap((tile) => [tile - 1, tile, tile + 1]);
   return [...new Set(wider)].filter((tile) => tile >= 0 && tile < tiles.length);
 }

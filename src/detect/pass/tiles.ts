@@ -150,7 +150,8 @@ class RowPlaces {
 
   constructor(survey: Survey) {
     this.survey = survey;
-    this.stride = 1 + Math.max(0, ...survey.baselines.map(({ antenna2 }) => antenna2));
+    // An array of thousands has more baselines than a call may have arguments.
+    this.stride = 1 + survey.baselines.reduce((most, { antenna2 }) => Math.max(most, antenna2), 0);
     for (const [b, { antenna1, antenna2 }] of survey.baselines.entries()) {
       this.numbers.set(antenna1 * this.stride + antenna2, b);
     }
