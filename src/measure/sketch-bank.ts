@@ -12,9 +12,9 @@
  */
 
 import { Arena, kernelMemory } from "../util/kernels/memory.ts";
-import { countKernels, LINE, PAGES, stopOf } from "./kernels/count-sketches.ts";
+import { countKernels, LINE, PAGES } from "./kernels/count-sketches.ts";
 import type { SketchMap } from "./sharing-ladder.ts";
-import { SketchBook } from "./sketch-book.ts";
+import { type Ranked, SketchBook } from "./sketch-book.ts";
 import { bookFrom, bookState } from "./state/books.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
@@ -24,6 +24,8 @@ const PAGE_OCTAVE_BITS = 8 - Math.log2(PAGES);
 const COUNT_BYTES = 2;
 const MOST_STAGED_ROWS = 1 << 16;
 const GATHERED_ROWS = 128;
+/** Numbers that a sketch may be given in one go. */
+const MOST_AT_ONCE = 1 << 15;
 
 /** A number's bucket: its edges, and the number's place between them by rank, 0..1. */
 interface Place {
@@ -40,10 +42,12 @@ interface Room {
   readonly staged: number;
   /** (gathered rows x stride) uint16: rows of one owner side by side */
   readonly gathered: number;
-  /** (samples) int32: the map in force */
+  /** (samples) uint32: the map in force, as bytes of a directory */
   readonly sketch: number;
   /** int32 */
   readonly pages: number;
+  /** (3) uint32 */
+  readonly rank: number;
 }
 
 export class SketchBank {
@@ -63,6 +67,8 @@ export class SketchBank {
   private readonly arena: Arena = new Arena(this);
   /** addresses, made when the first row comes */
   private room: Room | undefined;
+  /** samples that share a sketch of the map in force, at most */
+  private largest = 1;
   private level = 0;
   private bytes = 0;
 
@@ -126,9 +132,10 @@ export class SketchBank {
     this.room = {
       row: arena.require(4 * samples),
       staged: arena.require(COUNT_BYTES * rows * samples),
-      gathered: arena.require(COUNT_BYTES * stride * Math.min(rows, GATHERED_ROWS)),
+      gathered: arena.require(COUNT_BYTES * (stride * Math.min(rows, GATHERED_ROWS) + LINE)),
       sketch: arena.require(4 * samples),
       pages: arena.require(4),
+      rank: arena.require(12),
     };
     this.placeMap();
     return this.room;
@@ -136,7 +143,15 @@ export class SketchBank {
 
   private placeMap(): void {
     if (this.room === undefined) return;
-    kernelMemory.heap.u32.set(this.ladder[this.level]!.sketch, this.room.sketch / 4);
+    const { u32 } = kernelMemory.heap;
+    const first = this.room.sketch / 4;
+    const { sketch, sketches } = this.ladder[this.level]!;
+    const sizes = new Uint32Array(sketches);
+    for (let i = 0; i < this.samples; i++) {
+      u32[first + i] = 4 * PAGES * sketch[i]!;
+      sizes[sketch[i]!]! += 1;
+    }
+    this.largest = sizes.reduce((most, size) => Math.max(most, size), 1);
   }
 
   /** Count the staged rows, owner by owner. */
@@ -167,49 +182,43 @@ export class SketchBank {
   }
 
   private countGathered(owner: number, rows: number): void {
-    const { stride, pageShift, samples } = this;
-    const { gathered, sketch, pages } = this.placed();
+    const { samples } = this;
+    const { pages } = this.placed();
     const book = this.bookOf(owner);
     const before = book.bytes;
-    for (let at = 0; at >= 0; ) {
-      kernelMemory.heap.u32[pages / 4] = book.pages;
-      at = countKernels.countSketches(
-        gathered,
-        rows,
-        stride,
-        samples,
-        sketch,
-        book.directoryAt,
-        book.countsAt,
-        pageShift,
-        pages,
-        book.capacity,
-        at,
-      );
-      book.pages = kernelMemory.heap.u32[pages / 4]!;
-      if (at >= 0) at = this.countSlowly(book, rows, at);
+    const lines = Math.ceil(samples / LINE);
+    // Counts are of 16 bits: no more at a time than they are sure to hold.
+    const each = rows * this.largest <= MOST_AT_ONCE ? lines : Math.floor(MOST_AT_ONCE / rows / LINE);
+    for (let line = 0; line < lines; line += each) {
+      const end = Math.min(lines, line + each);
+      book.expect(rows * Math.min(this.largest, each * LINE));
+      for (let from = line; from < end; ) {
+        kernelMemory.heap.u32[pages / 4] = book.pages;
+        from = this.countLines(book, rows, from, end);
+        book.pages = kernelMemory.heap.u32[pages / 4]!;
+        if (from < end) book.grow();
+      }
     }
     this.bytes += book.bytes - before;
     this.keepWithinBudget();
   }
 
-  /** Make room for a page, or count a bucket whose count is full. @returns where to go on */
-  private countSlowly(book: SketchBook, rows: number, stop: number): number {
-    const { gathered, sketch } = this.placed();
-    const { sample, row } = stopOf(stop, rows);
-    const { u16, u32 } = kernelMemory.heap;
-    const bucket = u16[gathered / 2 + row * this.stride + sample]!;
-    const slot = u32[sketch / 4 + sample]! * PAGES + (bucket >> this.pageShift);
-    const page = u32[book.directoryAt / 4 + slot]!;
-    if (page === 0) {
-      book.grow();
-      return stop;
-    }
-    // Full: 65536 is noted elsewhere, and the count begins again, from nothing, at this number.
-    const place = (page << this.pageShift) | (bucket & ((1 << this.pageShift) - 1));
-    book.passes.set(place, (book.passes.get(place) ?? 0) + 1);
-    u16[book.countsAt / 2 + place] = 0;
-    return next(stop, sample, this.samples, rows);
+  private countLines(book: SketchBook, rows: number, from: number, end: number): number {
+    const { gathered, sketch, pages } = this.placed();
+    return countKernels.countSketches(
+      gathered,
+      rows,
+      this.stride,
+      this.samples,
+      sketch,
+      book.directoryAt,
+      book.countsAt,
+      this.pageShift,
+      pages,
+      book.capacity,
+      from,
+      end,
+    );
   }
 
   private bookOf(owner: number): SketchBook {
@@ -247,7 +256,8 @@ export class SketchBank {
   /** Add the counts of one book to another. @param sketchOf for each sketch of `from`, the one of `into` */
   private pour(from: SketchBook, into: SketchBook, sketchOf: ArrayLike<number>): void {
     const size = 1 << this.pageShift;
-    for (const [slot, theirs] of Uint32Array.from(from.directory).entries()) {
+    for (let slot = 0; slot < from.slots; slot++) {
+      const theirs = from.pageAt(slot);
       if (theirs === 0) continue;
       const ours = into.pageOf(sketchOf[Math.floor(slot / PAGES)]! * PAGES + (slot % PAGES));
       for (let k = 0; k < size; k++) {
@@ -283,7 +293,10 @@ export class SketchBank {
 
   state(): StateRecord {
     this.flush();
-    return { level: this.level, books: Array.from(this.books, (book) => (book ? bookState(book) : null)) };
+    return {
+      level: this.level,
+      books: Array.from(this.books, (book) => (book ? bookState(book, this.pageShift) : null)),
+    };
   }
 
   restore(from: StateReader, owners: number): void {
@@ -304,36 +317,31 @@ export class SketchBank {
     const book = this.books[owner];
     let total = 0;
     if (book === undefined) return total;
-    const { directory } = book;
-    for (let p = 0; p < PAGES; p++) total += book.countOfPage(directory[sketch * PAGES + p]!);
+    for (let p = 0; p < PAGES; p++) total += book.countOfPage(book.pageAt(sketch * PAGES + p));
     return total;
   }
 
   /** The bucket that holds the number of rank floor(share (n - 1)), its edges and where in it that number lies. */
   private find(owner: number, sketch: number, share: number): Place | undefined {
-    const total = this.count(owner, sketch);
-    if (total === 0) return undefined;
-    const book = this.books[owner]!;
-    const { directory } = book;
-    const rank = Math.floor(Math.min(1, Math.max(0, share)) * (total - 1));
-    let below = 0;
-    let p = 0;
-    let page = 0;
-    for (; ; p++) {
-      page = directory[sketch * PAGES + p]!;
-      const count = book.countOfPage(page);
-      if (below + count > rank) break;
-      below += count;
-    }
-    let k = 0;
-    let count = 0;
-    for (; ; k++) {
-      count = book.countAt((page << this.pageShift) + k);
-      if (below + count > rank) break;
-      below += count;
-    }
-    const bucket = (p << this.pageShift) + k;
+    this.flush();
+    const book = this.books[owner];
+    if (book === undefined) return undefined;
+    const within = Math.min(1, Math.max(0, share));
+    const ranked = book.passes.size === 0 ? this.rank(book, sketch, within) : book.rank(sketch, within);
+    if (ranked === undefined) return undefined;
+    const { bucket, below, count } = ranked;
+    const rank = Math.floor(within * (ranked.total - 1));
     return { low: this.edge(bucket), high: this.edge(bucket + 1), within: (rank - below + 0.5) / count };
+  }
+
+  private rank(book: SketchBook, sketch: number, share: number): Ranked | undefined {
+    const { rank } = this.placed();
+    const directory = book.directoryAt + 4 * PAGES * sketch;
+    const bucket = countKernels.findRank(directory, book.countsAt, this.pageShift, share, rank);
+    if (bucket < 0) return undefined;
+    const { u32 } = kernelMemory.heap;
+    const at = rank / 4;
+    return { bucket, total: u32[at]!, below: u32[at + 1]!, count: u32[at + 2]! };
   }
 
   /**
@@ -383,14 +391,6 @@ function orderByOwner(owner: Int32Array, rows: number): Int32Array {
   const order = new Int32Array(rows);
   for (let row = 0; row < rows; row++) order[next[owner[row]!]!++] = row;
   return order;
-}
-
-/** The place after one where a count stopped. @returns -1 after the last */
-function next(stop: number, sample: number, samples: number, rows: number): number {
-  const atEnd = sample + 1 === samples || (sample + 1) % LINE === 0;
-  if (!atEnd) return stop + 1;
-  const lineOfRow = Math.floor(stop / LINE) + 1;
-  return lineOfRow === rows * Math.ceil(samples / LINE) ? -1 : lineOfRow * LINE;
 }
 
 const edgeValue = new Float32Array(1);

@@ -5,13 +5,14 @@ import { SketchBook } from "../sketch-book.ts";
 import type { StateReader } from "./reader.ts";
 import type { StateRecord } from "./value.ts";
 
-export function bookState({ directory, counts, passes, pages }: SketchBook): StateRecord {
-  // Copies: the kernels' memory stays with this thread. Page 0 is none, and whatever it holds is no state.
-  const held = Uint16Array.from(counts);
-  held.fill(0, 0, held.length / pages);
+export function bookState(book: SketchBook, pageShift: number): StateRecord {
+  const { passes } = book;
+  // Copies: the kernels' memory stays with this thread.
+  const counts = Uint16Array.from(book.counts);
+  counts.fill(0, 0, 1 << pageShift);
   return {
-    directory: Uint32Array.from(directory),
-    counts: held,
+    directory: Uint32Array.from({ length: book.slots }, (_, slot) => book.pageAt(slot)),
+    counts,
     passed: Float64Array.from(passes.keys()),
     passes: Float64Array.from(passes.values()),
   };
@@ -27,9 +28,10 @@ export function bookFrom(from: StateReader, sketches: number, pageShift: number,
   const passes = from.counts(Float64Array, "passes", passed.length);
   const directory = from.indices(Uint32Array, "directory", sketches * PAGES, 0, pages);
   const book = new SketchBook(sketches, pageShift, arena, pages);
-  book.pages = pages;
-  book.directory.set(directory);
-  book.counts.set(counts);
-  for (const [i, place] of passed.entries()) book.passes.set(place, passes[i]!);
+  book.restore(
+    directory,
+    counts,
+    Array.from(passed, (place, i) => [place, passes[i]!] as const),
+  );
   return book;
 }

@@ -1,7 +1,14 @@
 /** Compiled counting and differences against their plain twins, to the last bit. */
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
-import { type CountKernels, PAGES, plainCount } from "../../../src/measure/kernels/count-sketches.ts";
+import {
+  type CountKernels,
+  entryOf,
+  LINE,
+  PAGES,
+  pageOfEntry,
+  plainCount,
+} from "../../../src/measure/kernels/count-sketches.ts";
 import { type DifferenceKernels, plainDifferences } from "../../../src/measure/kernels/differences.ts";
 import { compiledKernels } from "../../../src/util/kernels/compiled.ts";
 import { Arena, kernelMemory } from "../../../src/util/kernels/memory.ts";
@@ -23,17 +30,22 @@ describe("counting sketches", () => {
     const sketches = Math.ceil(samples / 2);
     const arena = new Arena();
     const stride = samples + 3;
-    const staged = arena.require(2 * stride * rows.length + 16);
-    const [row, sketch, pages] = [arena.require(4 * samples), arena.require(4 * samples), arena.require(4)];
+    const staged = arena.require(2 * stride * rows.length + 64);
+    const [row, sketch, pages] = [
+      arena.require(4 * samples + 12),
+      arena.require(4 * samples),
+      arena.require(4),
+    ];
     const directory = arena.require(4 * PAGES * sketches);
     const pageShift = 7;
     const counts = arena.require(capacity * (2 << pageShift));
     const kinds = arena.require(4 * 4 * samples);
     const { i32, u16, u32 } = kernelMemory.heap;
-    i32.fill(0, directory / 4, directory / 4 + PAGES * sketches);
+    const none = Uint32Array.from({ length: PAGES }, (_, slot) => entryOf(0, slot, pageShift));
+    for (let k = 0; k < sketches; k++) u32.set(none, directory / 4 + PAGES * k);
     u16.fill(0, counts / 2, counts / 2 + (capacity << pageShift));
     u32.fill(0, kinds / 4, kinds / 4 + 4 * samples);
-    for (let i = 0; i < samples; i++) i32[sketch / 4 + i] = Math.floor(i / 2);
+    for (let i = 0; i < samples; i++) i32[sketch / 4 + i] = 4 * PAGES * Math.floor(i / 2);
     i32[pages / 4] = 1;
     for (const [k, numbers] of rows.entries()) {
       i32.set(numbers, row / 4);
@@ -53,13 +65,24 @@ describe("counting sketches", () => {
       pages,
       capacity,
       0,
+      Math.ceil(samples / LINE),
     );
     const used = i32[pages / 4]!;
+    const ranks = Array.from({ length: sketches }, (_, k) =>
+      [0, 0.3, 0.5, 1].map((share) => {
+        const bucket = kernels.findRank(directory + 4 * PAGES * k, counts, pageShift, share, row);
+        return [bucket, ...u32.slice(row / 4, row / 4 + (bucket < 0 ? 1 : 3))];
+      }),
+    );
     const result = {
       stop,
       used,
-      directory: [...i32.slice(directory / 4, directory / 4 + PAGES * sketches)],
-      counts: [...u16.slice(counts / 2, counts / 2 + (used << pageShift))],
+      directory: Array.from(u32.slice(directory / 4, directory / 4 + PAGES * sketches), (entry, slot) =>
+        pageOfEntry(entry, slot % PAGES, pageShift),
+      ),
+      ranks,
+      // Page 0 is of no sketch: what is no number is counted there.
+      counts: [...u16.slice(counts / 2 + (1 << pageShift), counts / 2 + (used << pageShift))],
       kinds: [...u32.slice(kinds / 4, kinds / 4 + 4 * samples)],
     };
     arena.release();
@@ -81,7 +104,7 @@ describe("counting sketches", () => {
     fc.assert(
       fc.property(rows, fc.constantFrom(8, 40, 1000), (made, capacity) => {
         const plain = run(plainCount, made, capacity);
-        if (plain.stop >= 0) stopped += 1;
+        if (plain.stop < Math.ceil(made[0]!.length / LINE)) stopped += 1;
         else done += 1;
         expect(run(compiled, made, capacity)).toEqual(plain);
       }),
