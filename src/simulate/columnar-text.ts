@@ -6,7 +6,7 @@ import type { RowFacts, WrittenColumn, WrittenTable } from "./columnar-columns.t
 
 /** A single-precision number in the fewest digits, at most nine, that round to it (IEEE 754-2008, 5.12.2). */
 export function singleText(value: number): string {
-  if (!Number.isFinite(value)) return oddText(value);
+  if (!Number.isFinite(value) || value === 0) return oddText(value);
   if (Number.isInteger(value) && Math.abs(value) < 1e7) return String(value);
   for (let digits = 6; digits < 9; digits++) {
     const short = Number(value.toPrecision(digits));
@@ -16,17 +16,18 @@ export function singleText(value: number): string {
 }
 
 export function doubleText(value: number): string {
-  return Number.isFinite(value) ? String(value) : oddText(value);
+  return Number.isFinite(value) && value !== 0 ? String(value) : oddText(value);
 }
 
 function oddText(value: number): string {
+  if (value === 0) return Object.is(value, -0) ? "-0" : "0";
   if (Number.isNaN(value)) return "nan";
   return value > 0 ? "inf" : "-inf";
 }
 
 /** Single-precision seconds of light travel as nanoseconds in the fewest digits that come back as the same. */
 function nanosecondsText(seconds: number): string {
-  if (!Number.isFinite(seconds)) return oddText(seconds);
+  if (!Number.isFinite(seconds) || seconds === 0) return oddText(seconds);
   for (let digits = 6; digits < 14; digits++) {
     const short = Number((seconds * 1e9).toPrecision(digits));
     if (Math.fround(short / 1e9) === seconds) return String(short);
