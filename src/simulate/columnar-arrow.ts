@@ -1,6 +1,5 @@
 /** Columns as an Arrow IPC file, one record batch a block. */
 import {
-  AsyncByteQueue,
   Bool,
   type Data,
   type DataType,
@@ -19,6 +18,7 @@ import {
 } from "apache-arrow";
 import { MAP_KEY } from "../dataset/columnar/table.ts";
 import type { SampleBlock } from "../dataset/dataset.ts";
+import { TakenBytes } from "../util/taken-bytes.ts";
 import type { CellType, WrittenColumn, WrittenTable } from "./columnar-columns.ts";
 
 function scalarType(type: CellType): DataType {
@@ -40,26 +40,10 @@ function typeOf({ type, listLength }: WrittenColumn): DataType {
   return listLength === 0 ? scalarType(type) : new List(new Field("item", scalarType(type), false));
 }
 
-/** Keeps what is written until it is taken: the writer's own queue would grow without end before a slow disk. */
-class Taken extends AsyncByteQueue {
-  #chunks: Uint8Array[] = [];
-
-  override write(value: Uint8Array): void {
-    // The writer's chunks share buffers that it writes again.
-    this.#chunks.push(value.slice());
-  }
-
-  take(): Uint8Array {
-    const bytes = Buffer.concat(this.#chunks);
-    this.#chunks = [];
-    return bytes;
-  }
-}
-
 export class ArrowBlocks {
   readonly #table: WrittenTable;
   readonly #schema: Schema;
-  readonly #taken = new Taken();
+  readonly #taken = new TakenBytes();
   readonly #writer = new RecordBatchFileWriter();
 
   /** @param mapText goes into the schema's metadata */

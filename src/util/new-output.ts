@@ -51,9 +51,14 @@ export class NewOutput {
     return join(this.folder, basename(this.#path));
   }
 
-  /** Give the one file made its name. Never replaces what has appeared there in the meantime. */
-  async keepFile(): Promise<void> {
+  /**
+   * Give the one file made its name. Never replaces what has appeared there in the meantime.
+   *
+   * @param besides endings of files made that belong to it, such as ".columns.yaml": they get their names first
+   */
+  async keepFile(besides: readonly string[] = []): Promise<void> {
     await this.#keep(async () => {
+      for (const ending of besides) await link(this.file + ending, this.#path + ending);
       try {
         // Unlike a rename, a link fails where the name is taken.
         await link(this.file, this.#path);

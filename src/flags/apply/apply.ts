@@ -9,6 +9,7 @@ import { countSelections, flaggedView, type SelectionCounts } from "../../datase
 import { openDataset } from "../../dataset/open.ts";
 import { InputError } from "../../util/errors.ts";
 import { cannotWrite, NewOutput, type OpenFile, requireNothing } from "../../util/new-output.ts";
+import { writeTextFile } from "../../util/write-file.ts";
 import type { AcceptedFlag } from "../accepted.ts";
 import { type Copied, copyFiles, type FlagPlace, placesOf } from "./copy-files.ts";
 import { refuseInside } from "./own-folder.ts";
@@ -54,6 +55,7 @@ export async function applyFlags(request: ApplyRequest): Promise<Applied> {
   const { dataset, flags, out } = request;
   await refuseInside(request.named ?? [], out);
   await requireNothing(out);
+  if (dataset.format === "columnar" && dataset.files.length === 1) await requireNothing(out + MAP_ENDING);
   request.onStage?.("Counting", 0);
   const counts = await countSelections(dataset, flags);
   const places = placesFor(dataset, request.into);
@@ -123,10 +125,12 @@ async function makeCopy(
       openFile: output.openFile,
       onFile: (share) => request.onStage?.("Copying", share),
     });
+    const map = await writeColumnMap(request, output);
     await verify(request, made, counts);
-    if (single) await output.keepFile();
+    if (single) await output.keepFile(map === null ? [] : [MAP_ENDING]);
     else await output.keepFolder();
-    return { ...copied, paths: single ? [out] : names.map((name) => join(out, name)) };
+    const paths = single ? [out] : names.map((name) => join(out, name));
+    return { ...copied, paths: map === null ? paths : [...paths, map] };
   } catch (error) {
     await output.drop();
     if (error instanceof InputError || error instanceof CannotHoldFlags) throw error;
@@ -134,6 +138,20 @@ async function makeCopy(
     if (typeof (error as NodeJS.ErrnoException).code === "string") throw cannotWrite(out, error);
     throw error;
   }
+}
+
+/** What a map of columns is called that lies beside one table, and beside the tables of a folder. */
+const MAP_ENDING = ".columns.yaml";
+const FOLDER_MAP = "columns.yaml";
+
+/** Tables are read by a map of their columns: the copy gets the one in force beside it. @returns its final path */
+async function writeColumnMap({ dataset, out }: ApplyRequest, output: NewOutput): Promise<string | null> {
+  if (dataset.format !== "columnar") return null;
+  const { columnMapTextOf } = await import("../../dataset/columnar/copy-flagged.ts");
+  const single = dataset.files.length === 1;
+  const text = columnMapTextOf(dataset);
+  await writeTextFile(single ? output.file + MAP_ENDING : join(output.folder, FOLDER_MAP), text);
+  return single ? out + MAP_ENDING : join(out, FOLDER_MAP);
 }
 
 /** Files of one name from several folders cannot all go into one. */
@@ -154,8 +172,8 @@ async function verify(
   counts: SelectionCounts,
 ): Promise<void> {
   onStage?.("Reading back", 0);
-  const options = dataset.recipe?.kind === "files" ? dataset.recipe.options : {};
-  const copy = await openDataset(made.length === 1 ? made[0]! : made, options);
+  // Of tables by the map beside them, as everybody will open them.
+  const copy = await openDataset(made.length === 1 ? made[0]! : made);
   const { difference, unflagged } = await compareDatasets(flaggedView(dataset, flags), copy);
   const expected = counts.total.unflagged - counts.union.unflagged;
   const wrong =

@@ -46,6 +46,10 @@ export interface Copied {
 /** @throws CannotHoldFlags where the place has no room for these flags */
 export async function copyFiles(request: CopyRequest): Promise<Copied> {
   const { dataset, paths } = request;
+  if (dataset.format === "columnar") {
+    await copyTables(request);
+    return { tableRows: 0 };
+  }
   let tableRows = 0;
   let firstRow = 0;
   for (const [i, path] of dataset.files.entries()) {
@@ -63,6 +67,13 @@ export async function copyFiles(request: CopyRequest): Promise<Copied> {
     request.onFile((i + 1) / dataset.files.length);
   }
   return { tableRows };
+}
+
+async function copyTables(request: CopyRequest): Promise<void> {
+  const { dataset, flags, place, paths, openFile, onFile } = request;
+  const { copyFlaggedTables } = await import("../../dataset/columnar/copy-flagged.ts");
+  const sinks = paths.map((path) => () => openSink(path, /\.gz$/i.test(path), openFile));
+  await copyFlaggedTables(dataset, flags, place === "weights" ? place : "flag-column", { sinks, onFile });
 }
 
 /** What the first opening of file `i` found in its rows. */
