@@ -76,7 +76,7 @@ const NARROW: Setting = {
   beam: 20 * ARCSEC,
   changes: {
     array: scattered("1km", "60m"),
-    time: { start: "2026-03-01T11:00:00", duration: "60min", integration: "20s" },
+    time: { start: "2026-03-01T11:00:00", duration: "60min", integration: "30s" },
     frequency: { start: "1.4GHz", channels: 4, width: "1MHz" },
   },
 };
