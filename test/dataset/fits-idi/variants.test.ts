@@ -272,6 +272,19 @@ describe("weights", () => {
     });
   });
 
+  it("hold for every channel, however many there are", async () => {
+    for (const length of [1, 63, 64, 65, 300]) {
+      const axes = USUAL_AXES.map((axis) => (axis.type === "FREQ" ? { ...axis, length } : axis));
+      const { weight } = await weightsOf({ axes });
+      const expected = [0, 1, 2, 3].flatMap((row) =>
+        [1, 3].flatMap((first) =>
+          Array.from({ length: length * PRODUCTS }, (_, i) => 100 * row + first + (i % PRODUCTS)),
+        ),
+      );
+      expect(weight).toEqual(expected);
+    }
+  });
+
   it("of another length are refused", async () => {
     expect(await lineOfError(open(column("3E", () => [1, 2, 3])))).toContain(
       "column WEIGHT holds 3 values a row: expected 4 (2 products of 2 sub-bands), 2 or 1",
