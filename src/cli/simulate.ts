@@ -18,7 +18,7 @@ export const simulate = command<SimulateArguments>({
         demandOption: true,
         requiresArg: true,
         describe:
-          "File to write: random-groups FITS, or FITS-IDI when its name ends in .idifits; never one that is there already",
+          "File to write, in the format of its suffix: .uvfits, .idifits, .parquet, .arrow, .csv; never one that is there already",
       }),
   handler: async ({ scenario, out }) => {
     const { runSimulate } = await import("./run-simulate.ts");
