@@ -1,6 +1,6 @@
 /** The work behind `visvet nightly`, apart from its options so that `--help` need not load it. */
 import { spawn } from "node:child_process";
-import { mkdir, stat } from "node:fs/promises";
+import { stat } from "node:fs/promises";
 import { join } from "node:path";
 import { INDEX_PAGE, type NightlyResult, runNightly } from "../nightly/nightly.ts";
 import { type PlanChoice, readPlanChoices } from "../nightly/plans.ts";
@@ -11,7 +11,6 @@ import { loadRules } from "../rules/load.ts";
 import { InputError } from "../util/errors.ts";
 import { plainText } from "../util/terminal.ts";
 import { parseDuration } from "../util/units.ts";
-import { adviceFor } from "../util/write-file.ts";
 import { memoryOf, type ResourceOptions, workersFor } from "./resources.ts";
 
 export interface NightlyOptions extends ResourceOptions {
@@ -44,7 +43,6 @@ export async function runNightlyCommand(options: NightlyOptions): Promise<number
   const choices = await choicesOf(options);
   const rules = await loadRules(options.rules ?? []);
   const memory = memoryOf(options);
-  await makeFolder(out);
   const progress = createProgress(process.stderr);
   const result = await runNightly({
     folder: dir,
@@ -69,15 +67,6 @@ async function choicesOf({ plans, dir }: NightlyOptions): Promise<PlanChoice[]> 
   if (plans !== undefined) return readPlanChoices(plans);
   const usual = join(dir, "plans.yaml");
   return (await stat(usual).catch(() => undefined)) === undefined ? [] : readPlanChoices(usual);
-}
-
-async function makeFolder(folder: string): Promise<void> {
-  try {
-    await mkdir(folder, { recursive: true });
-  } catch (cause) {
-    const code = (cause as NodeJS.ErrnoException).code ?? "";
-    throw new InputError(`the folder cannot be made (${code})`, { file: folder }, adviceFor(code), { cause });
-  }
 }
 
 function outputOf({ json, quiet, prune }: NightlyOptions, result: NightlyResult, page: string): string {

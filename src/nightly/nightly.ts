@@ -9,6 +9,7 @@ import { join, relative, resolve } from "node:path";
 import { openDataset } from "../dataset/open.ts";
 import { readPlan } from "../dataset/plan-file.ts";
 import { type CheckRequest, checkDataset } from "../report/check.ts";
+import { makeFolder } from "../report/make-folder.ts";
 import { tool } from "../report/tool.ts";
 import { writeReports } from "../report/write-reports.ts";
 import type { RuleSet } from "../rules/rule.ts";
@@ -103,6 +104,7 @@ class Night {
     const candidates = await findCandidates(folder, choices, [
       join(folder, relative(resolve(folder), resolve(out))),
     ]);
+    await makeFolder(out);
     let done = 0;
     const leave = ({ path }: Candidate) => void this.unsettled.push(path);
     for await (const candidate of settled(candidates, patience, leave)) {
