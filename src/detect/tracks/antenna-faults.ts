@@ -8,6 +8,7 @@ import { delaySlopes } from "./delays.ts";
 import { gainSteps } from "./gain-steps.ts";
 import { type Cleaned, type Grid, gridOf } from "./grid.ts";
 import { exchangedHands, takeOutAntennas } from "./hands.ts";
+import { samplesOf } from "./make-event.ts";
 import { phaseJumps } from "./phase-jumps.ts";
 import { phaseNoise } from "./phase-noise.ts";
 import { silences } from "./silent.ts";
@@ -26,7 +27,16 @@ export function antennaFaults(
 ): DetectedEvent[] {
   const arrays = arraysOf(survey, cleaned);
   const events = arrays.flatMap((one) => faultsOfArray(one.survey, request, one.cleaned));
-  return arrays.length === 1 ? events : once(events);
+  const distinct = arrays.length === 1 ? events : once(events);
+  const looked = arrays.reduce((sum, one) => sum + one.survey.tracks.cells, 0);
+  return looked === survey.tracks.cells ? distinct : distinct.map((event) => counted(survey, event));
+}
+
+/** An event that a choice of the baselines showed, with the samples that all of them have. */
+function counted(survey: Survey, event: DetectedEvent): DetectedEvent {
+  const samples = samplesOf(survey, event.scope);
+  const share = event.samples > 0 ? event.outlying / event.samples : 0;
+  return { ...event, samples, outlying: Math.round(share * samples) };
 }
 
 /** What two setups show alike is one event: the clearer one. */

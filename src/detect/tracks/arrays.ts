@@ -11,9 +11,19 @@ export interface OneArray {
   readonly cleaned: Cleaned | null;
 }
 
-/** The survey as it is where there is one array and one setup. */
+/**
+ * Baselines that detectors of antenna faults look at. Each antenna of thousands then keeps some sixty, which tell its
+ * faults as surely as two thousand would, and faults of single baselines are looked for on those chosen alone.
+ */
+export const MOST_BASELINES = 1 << 16;
+
+/** The survey as it is where there is one array and one setup, and not too many baselines. */
 export function arraysOf(survey: Survey, cleaned: Cleaned | null): OneArray[] {
   const { tracks, baselines } = survey;
+  if (baselines.length > MOST_BASELINES) {
+    const chosen = part(survey, cleaned, chosenCells(survey));
+    return arraysOf(chosen.survey, chosen.cleaned);
+  }
   const group = groupsOf(baselines);
   const cells = new Map<string, number[]>();
   let key = "";
@@ -29,6 +39,19 @@ export function arraysOf(survey: Survey, cleaned: Cleaned | null): OneArray[] {
   }
   if (cells.size < 2) return [{ survey, cleaned }];
   return [...cells.values()].map((own) => part(survey, cleaned, own));
+}
+
+/** Cells of an even choice of the baselines, the same whatever order they were met in. */
+function chosenCells({ tracks, baselines }: Survey): number[] {
+  const share = MOST_BASELINES / 1.1 / baselines.length;
+  const cells: number[] = [];
+  for (const [b, { antenna1, antenna2 }] of baselines.entries()) {
+    let hash = Math.imul(antenna1, 0x9e3779b1) ^ Math.imul(antenna2, 0x85ebca6b);
+    hash = Math.imul(hash ^ (hash >>> 15), 0xc2b2ae35);
+    if (((hash ^ (hash >>> 13)) >>> 0) / 2 ** 32 >= share) continue;
+    for (let cell = tracks.firstCell[b]!; cell < tracks.firstCell[b + 1]!; cell++) cells.push(cell);
+  }
+  return cells;
 }
 
 /** By baseline, which of the arrays without an antenna in common it belongs to. */

@@ -71,7 +71,7 @@ interface PlanePoints {
 }
 
 /** A choice of others is made from this many. */
-const MOST_TRUSTED = 16_000;
+const MOST_TRUSTED = 4000;
 
 function planePoints(grid: Grid, all: readonly Point[], ignore: ReadonlySet<number>): PlanePoints {
   const first = new Int32Array(grid.baselines + 1);
