@@ -28,6 +28,7 @@ export async function copyFlaggingArrow(
   sink: ByteSink,
 ): Promise<void> {
   const handle = await open(path);
+  const placed = batches[Symbol.asyncIterator]();
   try {
     const reader = await RecordBatchReader.from(handle);
     await reader.open();
@@ -37,7 +38,6 @@ export async function copyFlaggingArrow(
     const bytes = new TakenBytes();
     const writer = reader.isFile() ? new RecordBatchFileWriter() : new RecordBatchStreamWriter();
     writer.reset(bytes, schema);
-    const placed = batches[Symbol.asyncIterator]();
     for (;;) {
       const next = await reader.next();
       if (next.done === true) break;
@@ -53,6 +53,7 @@ export async function copyFlaggingArrow(
     writer.finish();
     await sink.write(bytes.take());
   } finally {
+    await placed.return?.();
     await handle.close().catch(() => {});
   }
 }

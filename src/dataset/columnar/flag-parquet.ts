@@ -34,12 +34,12 @@ export async function copyFlaggingParquet(
 ): Promise<void> {
   const source = await openSource(path);
   const cursor = await source.cursor();
+  const placed = batches[Symbol.asyncIterator]();
   try {
     const metadata = await parquetMetadataAsync(bufferOf(cursor, source.bytesOnDisk), { geoparquet: false });
     const elements = subtreeOf(metadata, column);
     requireType(elements, way);
     let at = await copyBytes(cursor, sink, 0, await footerStart(cursor, source.bytesOnDisk));
-    const placed = batches[Symbol.asyncIterator]();
     for (const group of metadata.row_groups) {
       const values = await groupValues(placed, Number(group.num_rows), column, way);
       if (values.length === 0) continue;
@@ -52,6 +52,7 @@ export async function copyFlaggingParquet(
     for (const group of metadata.row_groups) group.columns.forEach(dropUnsureStatistics(metadata));
     await sink.write(footerOf(metadata));
   } finally {
+    await placed.return?.();
     await cursor.close();
   }
 }

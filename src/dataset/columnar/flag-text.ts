@@ -17,6 +17,21 @@ export async function copyFlaggingText(
   sink: ByteSink,
 ): Promise<void> {
   const records = recordsOf(path);
+  try {
+    await copyRecords(path, records, column, new TextFlagger(way), batches, sink);
+  } finally {
+    await records.return(undefined);
+  }
+}
+
+async function copyRecords(
+  path: string,
+  records: AsyncGenerator<RawRecord | Passed>,
+  column: string,
+  flagger: TextFlagger,
+  batches: AsyncIterable<PlacedBatch>,
+  sink: ByteSink,
+): Promise<void> {
   const pending: string[] = [];
   const flush = async () => {
     await sink.write(Buffer.from(pending.join(""), "latin1"));
@@ -35,7 +50,6 @@ export async function copyFlaggingText(
   const at = names.findIndex((name) => Buffer.from(name, "latin1").toString("utf8").trim() === column);
   if (at < 0) throw changedMeanwhile(path);
   pending.push(header.text);
-  const flagger = new TextFlagger(way);
   for await (const { batch, length, taken } of batches) {
     for (let row = 0; row < batch.rows; row++) {
       const record = await next();
