@@ -3,18 +3,26 @@ import { type FileHandle, open } from "node:fs/promises";
 import {
   type AsyncRecordBatchFileReader,
   type AsyncRecordBatchStreamReader,
+  CompressionType,
+  compressionRegistry,
   DataType,
   type Field,
   type RecordBatch,
   RecordBatchReader,
   type Vector,
 } from "apache-arrow";
+import { decompressZstd } from "hyparquet-compressors";
 import { InputError } from "../../util/errors.ts";
 import type { ByteSource } from "../fits/byte-source.ts";
 import { type Batch, type ColumnKind, MAP_KEY, MOST_COLUMNS, type Table, type TableColumn } from "./table.ts";
 
 /** A record batch is read at once: the format has no smaller part. */
 const MOST_BATCH_BYTES = 1024 * 1024 * 1024;
+
+// LZ4 frames link their blocks, which no library at hand unpacks: they are refused below.
+if (compressionRegistry.get(CompressionType.ZSTD) === null) {
+  compressionRegistry.set(CompressionType.ZSTD, { decode: (packed) => decompressZstd(packed) });
+}
 
 type Reader = AsyncRecordBatchFileReader | AsyncRecordBatchStreamReader;
 
@@ -146,11 +154,11 @@ function damage(file: string, cause: unknown, row?: number): InputError {
   if (cause instanceof InputError) return cause;
   const why = cause instanceof Error ? cause.message : String(cause);
   const place = row === undefined ? { file } : { file, row };
-  if (/compress|codec/i.test(why)) {
+  if (/compressed but codec not found/.test(why)) {
     return new InputError(
-      "the bodies of this Arrow file are compressed, which is not read",
+      "the bodies of this Arrow file are compressed with LZ4, which is not read",
       place,
-      "Write it without compression, or as Parquet",
+      "Write it uncompressed, with ZSTD, or as Parquet",
       { cause },
     );
   }

@@ -1,4 +1,5 @@
 /** A Parquet file as a table: its footer first, then row groups by byte range, never the whole file. */
+import { brotliDecompressSync, gunzipSync } from "node:zlib";
 import {
   type AsyncBuffer,
   type FileMetaData,
@@ -6,10 +7,17 @@ import {
   parquetScan,
   parquetSchema,
 } from "hyparquet";
-import { compressors } from "hyparquet-compressors";
+import { compressors as everyCompressor } from "hyparquet-compressors";
 import { InputError } from "../../util/errors.ts";
 import type { ByteSource, Cursor } from "../fits/byte-source.ts";
 import { type Batch, type ColumnKind, MAP_KEY, MOST_COLUMNS, type Table, type TableColumn } from "./table.ts";
+
+/** Node's own where it has them. A page unpacks to what its header says, and no more. */
+const compressors: typeof everyCompressor = {
+  ...everyCompressor,
+  GZIP: (packed, maxOutputLength) => gunzipSync(packed, { maxOutputLength }),
+  BROTLI: (packed, maxOutputLength) => brotliDecompressSync(packed, { maxOutputLength }),
+};
 
 /** A row group of these columns is unpacked at once where it has no page index. */
 const MOST_GROUP_BYTES = 512 * 1024 * 1024;
