@@ -35,7 +35,7 @@ export function isConsistent(source: Source, rest: Visibilities, atoms: Atoms, d
   }
   if (!(total > 0)) return false;
   const flux = all / total;
-  const error = Math.sqrt((atoms.noise > 0 ? atoms.noise : 0) / total);
+  const error = Number.isFinite(atoms.noise) ? Math.sqrt(atoms.noise / total) : 0;
   const least = LEAST_SHARE * flux - SIGMAS * MEDIAN_ERROR * error;
   return groupings.every((groups) => !(groups.median() < least));
 }

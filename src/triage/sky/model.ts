@@ -50,8 +50,8 @@ export class Response {
     this.sinD = Math.sin(declination);
     this.cosD = Math.cos(declination);
     const { bins } = atoms;
-    const known = (seconds: number) => (seconds > 0 ? seconds : 0);
-    this.integration = known(averaged ? bins.duration : bins.integration);
+    const seconds = averaged ? bins.duration : bins.integration;
+    this.integration = Number.isFinite(seconds) ? seconds : 0;
     this.width = averaged ? bins.width : bins.channelWidth;
   }
 
