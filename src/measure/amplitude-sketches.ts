@@ -4,16 +4,22 @@ import { Arena, kernelMemory } from "../util/kernels/memory.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { countKernels } from "./kernels/count-sketches.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
+import type { SurveySettings } from "./settings.ts";
 import { sharingLadder } from "./sharing-ladder.ts";
 import { SketchBank } from "./sketch-bank.ts";
+import type { SketchOwners } from "./sketch-owners.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
 
 /** 32 buckets an octave: a quantile is within 1/65 of the exact one. */
 const MANTISSA_BITS = 5;
 
+/** Fills (samples of a row) medians and usable samples of a baseline. */
+export type LevelReader = (baseline: number, median: Float32Array, count: Uint32Array) => void;
+
 export class AmplitudeSketches implements Accumulator {
   private readonly samples: number;
+  private readonly owners: SketchOwners;
   private readonly bank: SketchBank;
   /** by baseline */
   private readonly rows: number[] = [];
@@ -22,12 +28,19 @@ export class AmplitudeSketches implements Accumulator {
   private readonly arena: Arena = new Arena(this);
 
   /**
-   * @param budget     bytes of the sketches: where they would take more, neighbouring channels share one
-   * @param baselines  how many there will be, as far as the dataset tells
+   * @param budget    bytes of the sketches: where they would take more, neighbouring channels share one
+   * @param settings  how many baselines and antennas there will be, as far as the dataset tells
    */
-  constructor(shape: Shape, budget: number, baselines: number) {
+  constructor(
+    shape: Shape,
+    budget: number,
+    settings: Pick<SurveySettings, "baselines" | "antennas">,
+    owners: SketchOwners,
+  ) {
+    this.owners = owners;
+    const expected = owners.shared ? settings.antennas : settings.baselines;
     this.samples = shape.subbands * shape.channels * shape.polarizations;
-    this.bank = new SketchBank(sharingLadder(shape), MANTISSA_BITS, budget, baselines);
+    this.bank = new SketchBank(sharingLadder(shape), MANTISSA_BITS, budget, expected);
   }
 
   add(prepared: PreparedBlock): void {
@@ -37,7 +50,7 @@ export class AmplitudeSketches implements Accumulator {
       const baseline = baselines[row]!;
       if (baseline === AUTOCORRELATION) continue;
       const bits = at.bits + 4 * row * samples;
-      bank.addAt(baseline, bits);
+      bank.addAt(this.owners.of(baseline), bits);
       rows[baseline] = (rows[baseline] ?? 0) + 1;
       if (whole[row] === 0) countKernels.countUnusable(bits, samples, this.unusableOf(baseline));
     }
@@ -64,7 +77,7 @@ export class AmplitudeSketches implements Accumulator {
   }
 
   merge(other: this, baselines: Int32Array): void {
-    this.bank.merge(other.bank, baselines);
+    this.bank.merge(other.bank, this.owners.joined(baselines));
     for (const [theirs, rows] of other.rows.entries()) {
       if (rows === undefined) continue;
       const ours = baselines[theirs]!;
@@ -89,7 +102,7 @@ export class AmplitudeSketches implements Accumulator {
   }
 
   restore(from: StateReader, baselines: number): void {
-    this.bank.restore(from.child("bank"), baselines);
+    this.bank.restore(from.child("bank"), this.owners.count(baselines));
     for (const [baseline, rows] of from.counts(Float64Array, "rows").entries()) {
       if (baseline >= baselines) throw from.error(`there are only ${baselines} baselines`, "rows");
       this.rows[baseline] = rows;
@@ -101,6 +114,15 @@ export class AmplitudeSketches implements Accumulator {
     }
   }
 
+  /** A reader of the levels of baselines, when all rows have been added. */
+  reader(): LevelReader {
+    const { sketches } = this.bank.map;
+    const medians = Array.from({ length: sketches }, (_, sketch) =>
+      this.owners.reader((owner) => this.bank.quantile(owner, sketch, 0.5)),
+    );
+    return (baseline, median, count) => this.fill(medians, baseline, median, count);
+  }
+
   /**
    * Levels of one baseline.
    *
@@ -108,7 +130,12 @@ export class AmplitudeSketches implements Accumulator {
    *                share its median.
    * @param count   out (samples of a row) usable samples
    */
-  fill(baseline: number, median: Float32Array, count: Uint32Array): void {
+  private fill(
+    medians: readonly ((baseline: number) => number)[],
+    baseline: number,
+    median: Float32Array,
+    count: Uint32Array,
+  ): void {
     const rows = this.rows[baseline] ?? 0;
     const at = this.unusable[baseline];
     const unusable = at === undefined ? undefined : this.counters(at);
@@ -119,7 +146,7 @@ export class AmplitudeSketches implements Accumulator {
       const sketch = shared[i]!;
       if (asked[sketch] === 0) {
         asked[sketch] = 1;
-        known[sketch] = this.bank.quantile(baseline, sketch, 0.5);
+        known[sketch] = medians[sketch]!(baseline);
       }
       count[i] = rows - (unusable === undefined ? 0 : unusable[i]!);
       median[i] = count[i]! > 0 ? known[sketch]! : Number.NaN;

@@ -46,14 +46,19 @@ export class NoiseReader {
   }
 
   /**
-   * Typical noise of a sample of a baseline's sub-band and polarization: rms of its real or imaginary part.
+   * A reader of the typical noise of a sample of a baseline's sub-band and polarization: rms of its real or imaginary
+   * part, NaN where there are fewer than `fewest` differences.
    *
    * @param odd  share of the differences to take for something else than noise, and for larger than noise
-   * @returns NaN where there are fewer than `fewest` differences
    */
-  ofBaseline(baseline: number, subband: number, polarization: number, odd: number, fewest: number): number {
-    if (this.sketches.count(baseline, subband, polarization) < fewest) return Number.NaN;
-    return this.factor[subband]! * this.sketches.ofBaseline(baseline, subband, polarization, 0.5 * (1 - odd));
+  ofBaselines(
+    subband: number,
+    polarization: number,
+    odd: number,
+    fewest: number,
+  ): (baseline: number) => number {
+    const quantile = this.sketches.reader(subband, polarization, 0.5 * (1 - odd), fewest);
+    return (baseline) => this.factor[subband]! * quantile(baseline);
   }
 
   ofChannels(subband: number, polarization: number): ChannelNoise {

@@ -45,15 +45,19 @@ export function finishLevels(
   const channelNoise = Array.from({ length: products }, (_, product) =>
     reader.ofChannels(Math.floor(product / polarizations), product % polarizations),
   );
+  const fill = amplitudes.reader();
+  const noiseAlong = channelNoise.map(({ odd }, product) =>
+    reader.ofBaselines(Math.floor(product / polarizations), product % polarizations, odd, FEWEST),
+  );
   for (const [place, number] of order.entries()) {
     const first = place * each;
     const last = first + each;
-    amplitudes.fill(number, levels.median.subarray(first, last), levels.count.subarray(first, last));
+    fill(number, levels.median.subarray(first, last), levels.count.subarray(first, last));
     for (let product = 0; product < products; product++) {
       const subband = Math.floor(product / polarizations);
       const polarization = product % polarizations;
-      const { odd, trend } = channelNoise[product]!;
-      const along = reader.ofBaseline(number, subband, polarization, odd, FEWEST);
+      const { trend } = channelNoise[product]!;
+      const along = noiseAlong[product]!(number);
       const even = tally.evenness(number, product) > EVEN;
       const sigma = settle(along, sigmaInTime(tracks, place, product, products), even);
       for (let c = 0; c < channels; c++) {

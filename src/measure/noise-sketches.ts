@@ -14,6 +14,7 @@ import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
 import type { SurveySettings } from "./settings.ts";
 import { type SketchMap, sharingLadder } from "./sharing-ladder.ts";
 import { SketchBank } from "./sketch-bank.ts";
+import type { SketchOwners } from "./sketch-owners.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
 
@@ -25,6 +26,7 @@ export const SPANS = [1, 2, 3] as const;
 export class NoiseSketches implements Accumulator {
   readonly shape: Shape;
   private readonly samples: number;
+  private readonly owners: SketchOwners;
   private readonly every: number;
   private readonly channelEvery: number;
   private readonly spansEvery: number;
@@ -41,8 +43,10 @@ export class NoiseSketches implements Accumulator {
   constructor(
     shape: Shape,
     budget: number,
-    { baselines, noiseEvery, channelEvery, spansEvery }: SurveySettings,
+    { baselines, antennas, noiseEvery, channelEvery, spansEvery }: SurveySettings,
+    owners: SketchOwners,
   ) {
+    this.owners = owners;
     this.shape = shape;
     this.samples = shape.subbands * shape.channels * shape.polarizations;
     this.every = noiseEvery;
@@ -52,7 +56,7 @@ export class NoiseSketches implements Accumulator {
       sharingLadder(shape, shape.channels),
       MANTISSA_BITS,
       budget / 2,
-      baselines,
+      owners.shared ? antennas : baselines,
     );
     this.byChannel = new SketchBank(sharingLadder(shape), MANTISSA_BITS, budget / 4, 1);
     this.bySpan = new SketchBank([bySubband(shape)], MANTISSA_BITS, budget / 4, 1 + SPANS.length);
@@ -69,7 +73,7 @@ export class NoiseSketches implements Accumulator {
       if ((chance & (this.every - 1)) !== 0) continue;
       this.takeSecond(prepared, row);
       const bits = this.placed();
-      this.byBaseline.addAt(baseline[row]!, bits);
+      this.byBaseline.addAt(this.owners.of(baseline[row]!), bits);
       if ((chance & (this.every * this.channelEvery - 1)) === 0) this.byChannel.addAt(0, bits);
       if ((chance & (this.every * this.spansEvery - 1)) !== 0) continue;
       this.bySpan.addAt(0, bits);
@@ -118,7 +122,7 @@ export class NoiseSketches implements Accumulator {
   }
 
   merge(other: this, baselines: Int32Array): void {
-    this.byBaseline.merge(other.byBaseline, baselines);
+    this.byBaseline.merge(other.byBaseline, this.owners.joined(baselines));
     this.byChannel.merge(other.byChannel, [0]);
     this.bySpan.merge(other.bySpan, [0, 1, 2, 3]);
   }
@@ -129,19 +133,19 @@ export class NoiseSketches implements Accumulator {
   }
 
   restore(from: StateReader, baselines: number): void {
-    this.byBaseline.restore(from.child("byBaseline"), baselines);
+    this.byBaseline.restore(from.child("byBaseline"), this.owners.count(baselines));
     this.byChannel.restore(from.child("byChannel"), 1);
     this.bySpan.restore(from.child("bySpan"), 1 + SPANS.length);
   }
 
-  /** Numbers in a baseline's sketch of a sub-band and polarization. */
-  count(baseline: number, subband: number, polarization: number): number {
-    return this.byBaseline.count(baseline, this.baselineSketch(subband, polarization));
-  }
-
-  /** Quantile of the second differences of a baseline's sub-band and polarization; NaN without any. */
-  ofBaseline(baseline: number, subband: number, polarization: number, share: number): number {
-    return this.byBaseline.smoothQuantile(baseline, this.baselineSketch(subband, polarization), share);
+  /** A reader of the quantile of the second differences of baselines; NaN where there are fewer than `fewest`. */
+  reader(subband: number, polarization: number, share: number, fewest: number): (baseline: number) => number {
+    const sketch = this.baselineSketch(subband, polarization);
+    return this.owners.reader((owner) =>
+      this.byBaseline.count(owner, sketch) < fewest
+        ? Number.NaN
+        : this.byBaseline.smoothQuantile(owner, sketch, share),
+    );
   }
 
   private baselineSketch(subband: number, polarization: number): number {

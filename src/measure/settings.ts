@@ -12,6 +12,9 @@ export interface SurveySettings {
   readonly trackBytes: number;
   /** how many there will be, at most, as far as the antennas tell */
   readonly baselines: number;
+  readonly antennas: number;
+  /** one sketch a baseline would not fit, not even with all its samples in it: antennas own the sketches */
+  readonly sharedSketches: boolean;
   /** 1 row in this many, a power of two, is asked for its noise: more would make it no better */
   readonly noiseEvery: number;
   /** of those 1 in this many, a power of two, is asked for the noise of each channel */
@@ -27,6 +30,8 @@ const ENOUGH_OF_CHANNEL = 1 << 13;
 /** The same for the comparison of spans, over all baselines. */
 const ENOUGH_OF_SPANS = 1 << 17;
 const MOST_SPARING = 64;
+/** Of the sketches of one baseline, of amplitudes and of noise, each with few pages. */
+const LEAST_BYTES = 2500;
 
 /** @param memory bytes that the survey's state may take, half for the sketches and half for the tracks */
 export function settleSurvey(dataset: Dataset, memory = surveyMemory(DEFAULT_MEMORY)): SurveySettings {
@@ -38,6 +43,8 @@ export function settleSurvey(dataset: Dataset, memory = surveyMemory(DEFAULT_MEM
     sketchBytes: memory / 2,
     trackBytes: memory / 2,
     baselines,
+    antennas,
+    sharedSketches: baselines * LEAST_BYTES > memory / 2,
     noiseEvery,
     channelEvery: sparing(dataset.rows / noiseEvery / ENOUGH_OF_CHANNEL),
     spansEvery: sparing(differences / noiseEvery / ENOUGH_OF_SPANS),

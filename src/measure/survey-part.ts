@@ -14,6 +14,7 @@ import { NoiseSketches } from "./noise-sketches.ts";
 import { PreparedBlock } from "./prepared.ts";
 import { Screen } from "./screen/screen.ts";
 import { type SurveySettings, settleSurvey } from "./settings.ts";
+import { SketchOwners } from "./sketch-owners.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
 import { TimeOrder } from "./time-order.ts";
@@ -34,13 +35,13 @@ export interface Gathered {
   readonly screen: Screen;
 }
 
-function gatherers(dataset: Dataset, settings: SurveySettings): Gathered {
+function gatherers(dataset: Dataset, settings: SurveySettings, owners: SketchOwners): Gathered {
   const { shape, rows } = dataset;
   const { sketchBytes, trackBytes } = settings;
   const rowBytes = CELL_BYTES + PRODUCT_BYTES * shape.subbands * shape.polarizations;
   return {
-    amplitudes: new AmplitudeSketches(shape, AMPLITUDE_SHARE * sketchBytes, settings.baselines),
-    noise: new NoiseSketches(shape, (1 - AMPLITUDE_SHARE) * sketchBytes, settings),
+    amplitudes: new AmplitudeSketches(shape, AMPLITUDE_SHARE * sketchBytes, settings, owners),
+    noise: new NoiseSketches(shape, (1 - AMPLITUDE_SHARE) * sketchBytes, settings, owners),
     channels: new ChannelCounts(shape),
     baselines: new BaselineTally(shape),
     order: new TimeOrder(),
@@ -60,7 +61,8 @@ export class SurveyPart {
   constructor(dataset: Dataset, memory?: number) {
     this.dataset = dataset;
     this.prepared = new PreparedBlock(dataset.shape);
-    this.gathered = gatherers(dataset, settleSurvey(dataset, memory));
+    const settings = settleSurvey(dataset, memory);
+    this.gathered = gatherers(dataset, settings, new SketchOwners(settings.sharedSketches, this.index));
     this.accumulators = Object.values(this.gathered);
   }
 
