@@ -41,8 +41,11 @@ export class SketchBook {
     this.directoryAt = arena.require(4 * this.slots);
     this.countsAt = arena.require(this.pageBytes * this.capacity);
     const { u32 } = kernelMemory.heap;
-    const none = Uint32Array.from({ length: PAGES }, (_, slot) => entryOf(0, slot, pageShift));
-    for (let slot = 0; slot < this.slots; slot += PAGES) u32.set(none, this.directoryAt / 4 + slot);
+    const first = this.directoryAt / 4;
+    for (let slot = 0; slot < PAGES; slot++) u32[first + slot] = entryOf(0, slot, pageShift);
+    for (let done = PAGES; done < this.slots; done *= 2) {
+      u32.copyWithin(first + done, first, first + Math.min(done, this.slots - done));
+    }
     this.clearPage(0);
   }
 

@@ -46,41 +46,55 @@ function rangeOfLine(from: usize, rows: i32, strideBytes: usize, none: i32): voi
   }
 }
 
-/** Make the pages that one sample's buckets fall into. @returns false where there is no more room */
+/** Make the page of a bucket if there is none. @returns false where there is no more room */
+function makePage<T>(bucket: i32, directory: usize, counts: usize, pages: usize, capacity: i32): bool {
+  const shift = shiftOf<T>();
+  const slot = bucket >> shift;
+  const entry = directory + ((<usize>slot) << 2);
+  if (load<i32>(entry) !== (PAGES - slot) << (shift + 1)) return true;
+  const page = load<i32>(pages);
+  if (page === capacity) return false;
+  store<i32>(pages, page + 1);
+  store<i32>(entry, (page + PAGES - slot) << (shift + 1));
+  memory.fill(counts + ((<usize>(page + PAGES)) << (shift + 1)), 0, (<usize>2) << shift);
+  return true;
+}
+
+/**
+ * Make the pages that one sample's buckets fall into: those of the lowest and the highest, and where there are others
+ * between them, those of all that are there.
+ *
+ * @returns false where there is no more room
+ */
 function makePages<T>(
   from: usize,
   rows: i32,
   strideBytes: usize,
   none: i32,
+  low: i32,
+  high: i32,
   directory: usize,
   counts: usize,
   pages: usize,
   capacity: i32,
 ): bool {
-  const shift = shiftOf<T>();
+  if (!makePage<T>(low, directory, counts, pages, capacity)) return false;
+  if (!makePage<T>(high, directory, counts, pages, capacity)) return false;
+  if ((high >> shiftOf<T>()) - (low >> shiftOf<T>()) < 2) return true;
   let at = from;
   for (let row = 0; row < rows; row++) {
     const bucket = <i32>load<u16>(at);
     at += strideBytes;
-    if (bucket === none) continue;
-    const slot = bucket >> shift;
-    const entry = directory + ((<usize>slot) << 2);
-    if (load<i32>(entry) !== (PAGES - slot) << (shift + 1)) continue;
-    const page = load<i32>(pages);
-    if (page === capacity) return false;
-    store<i32>(pages, page + 1);
-    store<i32>(entry, (page + PAGES - slot) << (shift + 1));
-    memory.fill(counts + ((<usize>(page + PAGES)) << (shift + 1)), 0, (<usize>2) << shift);
+    if (bucket !== none && !makePage<T>(bucket, directory, counts, pages, capacity)) return false;
   }
   return true;
 }
 
-/** Whether the pages of all buckets that the samples of a line can have are there. */
-function hasPages<T>(sample: i32, directory: usize): bool {
+/** Whether the pages of all buckets from `low` to `high` are there. */
+function hasPages<T>(low: i32, high: i32, directory: usize): bool {
   const shift = shiftOf<T>();
-  const low = <i32>load<i16>(LOW + ((<usize>sample) << 1)) >> shift;
-  const high = <i32>load<i16>(HIGH + ((<usize>sample) << 1)) >> shift;
-  for (let slot = low; slot <= high; slot++) {
+  const last = high >> shift;
+  for (let slot = low >> shift; slot <= last; slot++) {
     if (load<i32>(directory + ((<usize>slot) << 2)) === (PAGES - slot) << (shift + 1)) return false;
   }
   return true;
@@ -160,9 +174,12 @@ function countLines<T>(
     let hasLast = false;
     for (let s = 0; s < n; s++) {
       const own = directory + <usize>load<u32>(map + ((<usize>s) << 2));
-      if (!hasPages<T>(s, own)) {
+      const low = <i32>load<i16>(LOW + ((<usize>s) << 1));
+      const high = <i32>load<i16>(HIGH + ((<usize>s) << 1));
+      // A sample without a number has none above its lowest.
+      if (low <= high && !hasPages<T>(low, high, own)) {
         const at = from + ((<usize>s) << 1);
-        if (!makePages<T>(at, rows, strideBytes, none, own, base, pages, capacity)) return line;
+        if (!makePages<T>(at, rows, strideBytes, none, low, high, own, base, pages, capacity)) return line;
       }
       if (load<i32>(own, 4 * (PAGES - 1)) !== 1 << (shiftOf<T>() + 1)) hasLast = true;
     }

@@ -98,16 +98,14 @@ export const plainCount: CountKernels = {
     for (let line = firstLine; line < endLine; line++) {
       const end = Math.min(samples, (line + 1) * LINE);
       for (let sample = line * LINE; sample < end; sample++) {
-        for (let row = 0; row < rows; row++) {
-          const bucket = u16[gathered / 2 + row * stride + sample]!;
-          if (bucket === none) continue;
+        const own = (directory + u32[sketch / 4 + sample]!) / 4;
+        for (const bucket of pagedBuckets(gathered / 2 + sample, rows, stride, pageShift)) {
           const slot = bucket >> pageShift;
-          const entry = (directory + u32[sketch / 4 + sample]!) / 4 + slot;
-          if (u32[entry] !== entryOf(0, slot, pageShift)) continue;
+          if (u32[own + slot] !== entryOf(0, slot, pageShift)) continue;
           const page = u32[pages / 4]!;
           if (page === capacity) return line;
           u32[pages / 4] = page + 1;
-          u32[entry] = entryOf(page, slot, pageShift);
+          u32[own + slot] = entryOf(page, slot, pageShift);
           const at = counts / 2 + (page << pageShift);
           u16.fill(0, at, at + (1 << pageShift));
         }
@@ -155,6 +153,21 @@ export const plainCount: CountKernels = {
     }
   },
 };
+
+/**
+ * Buckets whose pages are needed, in the order in which they are made: the lowest and the highest, then, where there
+ * are pages between theirs, all.
+ */
+function pagedBuckets(first: number, rows: number, stride: number, pageShift: number): readonly number[] {
+  const { u16 } = kernelMemory.heap;
+  const none = (64 << pageShift) - 1;
+  const buckets = Array.from({ length: rows }, (_, row) => u16[first + row * stride]!).filter(
+    (bucket) => bucket !== none,
+  );
+  if (buckets.length === 0) return [];
+  const [low, high] = [Math.min(...buckets), Math.max(...buckets)];
+  return (high >> pageShift) - (low >> pageShift) < 2 ? [low, high] : [low, high, ...buckets];
+}
 
 function sumOf(numbers: Uint16Array, first: number, count: number): number {
   let sum = 0;
