@@ -1,5 +1,6 @@
 /** Polarizations as an axis of Stokes codes. */
-import { type Dataset, POLARIZATIONS, type Polarization } from "../dataset/dataset.ts";
+import type { Dataset } from "../dataset/dataset.ts";
+import { STOKES_CODES } from "../dataset/fits-idi/small-tables.ts";
 import { InputError } from "../util/errors.ts";
 
 /**
@@ -8,18 +9,12 @@ import { InputError } from "../util/errors.ts";
  * @throws InputError when the codes are not evenly spaced, as an axis of a FITS file has them
  */
 export function stokesAxis(dataset: Dataset): { value: number; step: number } {
-  const codes = dataset.polarizations.map(stokesCode);
+  const codes = dataset.polarizations.map((name) => STOKES_CODES[name]);
   const step = codes.length > 1 ? codes[1]! - codes[0]! : codes[0]! < 0 ? -1 : 1;
   if (codes.some((code, i) => code !== codes[0]! + i * step)) {
     throw unfit(dataset, `polarizations ${dataset.polarizations.join(", ")}`, "evenly spaced Stokes codes");
   }
   return { value: codes[0]!, step };
-}
-
-/** FITS Standard 4.0, table 29: 1 to 4 for I Q U V, -1 to -4 for RR LL RL LR, -5 to -8 for XX YY XY YX. */
-function stokesCode(name: Polarization): number {
-  const place = POLARIZATIONS.indexOf(name);
-  return place < 4 ? place + 1 : 3 - place;
 }
 
 export function unfit(dataset: Dataset, found: string, expected: string): InputError {

@@ -11,19 +11,20 @@ import {
   real,
   streamedTable,
 } from "../dataset/fits/write.ts";
-import { dateFromMjd, isoFromMjd } from "../util/dates.ts";
-import { type UvRowLayout, uvRowBytes, uvRowLayout } from "./fits-idi-layout.ts";
-import { type RowScan, scanRows } from "./fits-idi-scan.ts";
 import {
   antennaTable,
-  type Common,
+  arrayGeometry,
   channelStep,
-  commonCards,
   degreesOf,
   frequencyTable,
-  geometryTable,
+  type Reference,
+  sharedCards,
   sourceTable,
-} from "./fits-idi-tables.ts";
+} from "../dataset/fits-idi/small-tables.ts";
+import { dateFromMjd } from "../util/dates.ts";
+import { requireEvenChannels } from "./even-channels.ts";
+import { type UvRowLayout, uvRowBytes, uvRowLayout } from "./fits-idi-layout.ts";
+import { type RowScan, scanRows } from "./fits-idi-scan.ts";
 import { stokesAxis } from "./stokes-axis.ts";
 
 export interface FitsIdiOptions {
@@ -52,16 +53,17 @@ export async function writeFitsIdi(
 ): Promise<void> {
   const rows = options.rows ?? ([0, dataset.rows] as const);
   const scan = await scanRows(dataset, rows);
-  const common = commonOf(dataset, scan);
-  const layout = uvRowLayout(dataset, scan, common.referenceDay);
+  for (const setup of dataset.setups) requireEvenChannels(dataset, setup);
+  const reference = referenceOf(dataset, scan);
+  const layout = uvRowLayout(dataset, scan, reference.day);
   const count = rows[1] - rows[0];
   const { header, rowBytes } = streamedTable({
     name: "UV_DATA",
     columns: layout.columns,
     rows: count,
-    cards: dataCards(common, layout),
+    cards: dataCards(dataset, reference, layout),
   });
-  const small = smallTables(common, scan);
+  const small = smallTables(dataset, reference, scan);
   const writer = await FitsFileWriter.create(path, { overwrite: options.overwrite ?? false });
   try {
     await writer.blocks(primaryHeader(dataset, scan, options.history ?? []));
@@ -79,20 +81,21 @@ export async function writeFitsIdi(
   }
 }
 
-function commonOf(dataset: Dataset, { firstTime }: RowScan): Common {
-  const referenceDay = dataset.array.referenceDay ?? (Number.isFinite(firstTime) ? Math.floor(firstTime) : 0);
-  const referenceDate = Number.isInteger(referenceDay)
-    ? dateFromMjd(referenceDay)
-    : isoFromMjd(referenceDay, { seconds: 6 });
-  return { dataset, stokes: stokesAxis(dataset), referenceDay, referenceDate };
+function referenceOf(dataset: Dataset, { firstTime }: RowScan): Reference {
+  const firstDay = Number.isFinite(firstTime) ? Math.floor(firstTime) : 0;
+  return { day: dataset.array.referenceDay ?? firstDay, products: dataset.polarizations };
 }
 
-function smallTables(common: Common, { subarrays, firstTime, lastTime }: RowScan): Uint8Array[] {
+function smallTables(
+  dataset: Dataset,
+  reference: Reference,
+  { subarrays, firstTime, lastTime }: RowScan,
+): Uint8Array[] {
   return [
-    ...subarrays.map((subarray) => geometryTable(common, subarray)),
-    antennaTable(common, subarrays, [firstTime, lastTime]),
-    frequencyTable(common),
-    sourceTable(common),
+    ...subarrays.map((subarray) => arrayGeometry(dataset, reference, subarray)),
+    antennaTable(dataset, reference, subarrays, [firstTime, lastTime]),
+    frequencyTable(dataset, reference),
+    sourceTable(dataset, reference),
   ];
 }
 
@@ -126,9 +129,9 @@ function primaryHeader(dataset: Dataset, { firstTime }: RowScan, history: readon
   ]);
 }
 
-function dataCards(common: Common, { columns, weights }: UvRowLayout): CardToWrite[] {
-  const { dataset, stokes } = common;
+function dataCards(dataset: Dataset, reference: Reference, { columns, weights }: UvRowLayout): CardToWrite[] {
   const { shape, setups, fields } = dataset;
+  const stokes = stokesAxis(dataset);
   const centre = fields.length === 1 ? fields[0]! : undefined;
   const degrees = (radians: number | undefined) =>
     radians === undefined || Number.isNaN(radians) ? 0 : degreesOf(radians);
@@ -143,8 +146,8 @@ function dataCards(common: Common, { columns, weights }: UvRowLayout): CardToWri
     ["DEC", 1, degrees(centre?.declination), 1],
   ];
   return [
-    ...commonCards(common),
-    ...observationCards(dataset, common.referenceDay),
+    ...sharedCards(dataset, reference),
+    ...observationCards(dataset, reference.day),
     // A number: the FITS Standard reserves the keyword (section 8.3); the text of the convention is in table SOURCE.
     ...(equinoxes.size === 1 && !Number.isNaN(equinox) ? [card("EQUINOX", real(equinox!))] : []),
     card("WEIGHTYP", "NORMAL", "weights go with the inverse of the variance"),
