@@ -91,6 +91,10 @@ export class KeptRows implements TrackKeeper {
     }
   }
 
+  expect(rows: number): void {
+    this.reserve(this.cells + rows);
+  }
+
   private reserve(cells: number): void {
     if (cells <= this.room) return;
     this.room = Math.max(cells, Math.ceil(this.room * 1.5));

@@ -10,8 +10,10 @@ import { type BlockRange, blockRange, type ReadPlan, type RowStore } from "./pla
 
 /** Bytes of a chunk, at least a block. */
 const CHUNK_BYTES = 256 * 1024;
-/** Slower than this, bytes a second, a read was not of bytes in memory. */
-const FROM_DISK = 1e9;
+/** Slower than this, bytes a second, a read may have been of bytes on a disk. */
+const SLOW = 1e9;
+/** Slow reads in a row that are taken for such, whatever the system says: it does not know of every network's disks. */
+const MOST_SLOW = 16;
 /** Bytes that are read ahead before another try at bytes in memory. */
 const AHEAD_BYTES = 64e6;
 
@@ -28,6 +30,10 @@ export class Chunks {
   private pending: { readonly row: number; readonly bytes: Promise<Uint8Array> } | undefined;
   /** bytes still to be read ahead */
   private ahead = 0;
+  /** slow reads without another between them */
+  private slow = 0;
+  /** what the system has read from disks for this process, in its own unit */
+  private fromDisk = process.resourceUsage().fsRead;
 
   /** @param arena where the buffers are to lie if there is room */
   constructor(source: ByteSource, cursor: Cursor, store: RowStore, plan: ReadPlan, arena: Arena) {
@@ -60,10 +66,26 @@ export class Chunks {
     }
     const start = performance.now();
     const bytes = this.readAtOnce(row);
-    if (bytes.length < FROM_DISK * 1e-3 * (performance.now() - start)) return bytes;
-    this.ahead = AHEAD_BYTES;
-    this.readAhead(row + this.rows);
+    if (this.wasFromDisk(bytes.length / SLOW, (performance.now() - start) / 1e3)) {
+      this.ahead = AHEAD_BYTES;
+      this.readAhead(row + this.rows);
+    }
     return bytes;
+  }
+
+  /** A read that took long may also have waited for the processor: the system knows whether a disk was asked. */
+  private wasFromDisk(usual: number, seconds: number): boolean {
+    if (seconds < usual) {
+      this.slow = 0;
+      return false;
+    }
+    this.slow += 1;
+    const { fsRead } = process.resourceUsage();
+    const asked = fsRead > this.fromDisk;
+    this.fromDisk = fsRead;
+    if (!asked && this.slow < MOST_SLOW) return false;
+    this.slow = 0;
+    return true;
   }
 
   /** Wait for what is under way: its buffer is about to be released. */
