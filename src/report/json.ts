@@ -193,21 +193,34 @@ function findingPart(finding: Finding): object {
   };
 }
 
+/** Rows of a measure that are written: an array of hundreds of antennas has hundreds of thousands of baselines. */
+const MOST_ROWS = 20_000;
+
 /** A measure by columns: numbers that are unknown are null. */
 function measurePart(measure: Measure): object {
   const names = new Set(measure.table.columnNames());
+  const rows = measure.table.numRows();
+  const every = Math.max(1, Math.ceil(rows / MOST_ROWS));
   return {
     title: measure.title,
     each: measure.each,
-    rows: measure.table.numRows(),
+    rows,
+    // Only where not all rows are there: the others are in the tables that --tables writes.
+    every: every === 1 ? undefined : every,
     columns: measure.columns
       .filter(({ name }) => names.has(name))
-      .map(({ name, unit, meaning }) => ({ name, unit, meaning, values: valuesOf(measure, name, unit) })),
+      .map(({ name, unit, meaning }) => ({
+        name,
+        unit,
+        meaning,
+        values: valuesOf(measure, name, unit, every),
+      })),
   };
 }
 
-function valuesOf(measure: Measure, name: string, unit: string): unknown {
-  const values = measure.table.array(name);
+function valuesOf(measure: Measure, name: string, unit: string, every: number): unknown {
+  const all = Array.from(measure.table.array(name) as ArrayLike<unknown>);
+  const values = every === 1 ? all : all.filter((_, row) => row % every === 0);
   return unit === "d" ? exactly(values) : values;
 }
 

@@ -2,20 +2,14 @@
  * The arrays that a survey is of, each with its own tracks: sub-arrays that share no antenna look at different skies, and
  * frequency setups at different frequencies, so that one is no measure for the other.
  */
+import { evenChoice, MOST_BASELINES } from "../../measure/even-choice.ts";
 import type { Baseline, Levels, Survey, Tracks } from "../../measure/survey-result.ts";
-import type { Measures } from "../../measure/table.ts";
 import type { Cleaned } from "./grid.ts";
 
 export interface OneArray {
   readonly survey: Survey;
   readonly cleaned: Cleaned | null;
 }
-
-/**
- * Baselines that detectors of antenna faults look at. Each antenna of thousands then keeps some sixty, which tell its
- * faults as surely as two thousand would, and faults of single baselines are looked for on those chosen alone.
- */
-export const MOST_BASELINES = 1 << 16;
 
 /** The survey as it is where there is one array and one setup, and not too many baselines. */
 export function arraysOf(survey: Survey, cleaned: Cleaned | null): OneArray[] {
@@ -41,14 +35,10 @@ export function arraysOf(survey: Survey, cleaned: Cleaned | null): OneArray[] {
   return [...cells.values()].map((own) => part(survey, cleaned, own));
 }
 
-/** Cells of an even choice of the baselines, the same whatever order they were met in. */
+/** Cells of an even choice of the baselines: faults of single ones are looked for on those alone. */
 function chosenCells({ tracks, baselines }: Survey): number[] {
-  const share = MOST_BASELINES / 1.1 / baselines.length;
   const cells: number[] = [];
-  for (const [b, { antenna1, antenna2 }] of baselines.entries()) {
-    let hash = Math.imul(antenna1, 0x9e3779b1) ^ Math.imul(antenna2, 0x85ebca6b);
-    hash = Math.imul(hash ^ (hash >>> 15), 0xc2b2ae35);
-    if (((hash ^ (hash >>> 13)) >>> 0) / 2 ** 32 >= share) continue;
+  for (const b of evenChoice(baselines)) {
     for (let cell = tracks.firstCell[b]!; cell < tracks.firstCell[b + 1]!; cell++) cells.push(cell);
   }
   return cells;
@@ -93,7 +83,6 @@ function part(survey: Survey, cleaned: Cleaned | null, cells: readonly number[])
       baselines: kept.map((b) => survey.baselines[b]!),
       tracks: { ...tracksOf(tracks, cells, subbands * polarizations), baseline, firstCell },
       levels: levelsOf(survey.levels, kept, subbands * channels * polarizations),
-      measures: measuresOf(survey.measures, kept),
     },
     cleaned: cleaned === null ? null : gatherAll(cleaned, cells, subbands * polarizations),
   };
@@ -132,11 +121,4 @@ function gather(column: Numbers | null | undefined, rows: readonly number[], wid
     for (let k = 0; k < width; k++) out[i * width + k] = column[row * width + k]!;
   });
   return out;
-}
-
-/** Detectors ask the measure of baselines by their number. */
-function measuresOf(measures: Measures, baselines: readonly number[]): Measures {
-  const measure = measures.get("baseline");
-  if (measure === undefined) return measures;
-  return new Map(measures).set("baseline", { ...measure, table: measure.table.reify([...baselines]) });
 }

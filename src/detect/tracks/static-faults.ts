@@ -216,8 +216,17 @@ function weightsOf({ survey, baselines, planes }: Grid): number[] {
   });
 }
 
-/** A column of the measure "baseline", by number of the baseline. */
-function columnOf(grid: Grid, name: string): number[] {
-  const measure = grid.survey.measures.get("baseline");
-  return grid.survey.baselines.map((_, b) => Number(measure?.table.get(name, b) ?? Number.NaN));
+/** A column of the measure "baseline", by number of the baseline; NaN for those that the measure leaves out. */
+function columnOf({ survey }: Grid, name: string): number[] {
+  const table = survey.measures.get("baseline")?.table;
+  if (table === undefined) return survey.baselines.map(() => Number.NaN);
+  const [first, second, column] = ["antenna1", "antenna2", name].map((one) => table.array(one));
+  const rows = new Map<number, number>();
+  for (let row = 0; row < table.numRows(); row++) {
+    rows.set(Number(first![row]) * 65_536 + Number(second![row]), row);
+  }
+  return survey.baselines.map(({ antenna1, antenna2 }) => {
+    const row = rows.get(antenna1 * 65_536 + antenna2);
+    return row === undefined ? Number.NaN : Number(column![row]);
+  });
 }

@@ -10,7 +10,7 @@ import { Counts } from "./counts.ts";
 /** Rounds of the median polish; it settles in a few. */
 const ROUNDS = 10;
 
-export function antennaMeasure(survey: BareSurvey, facts: readonly BaselineFacts[]): Measure {
+export function antennaMeasure(survey: BareSurvey, facts: BaselineFacts): Measure {
   const { array } = survey.dataset;
   const names = new Map(array.antennas.map(({ number, name }) => [number, name]));
   const numbers = new Set([
@@ -26,16 +26,13 @@ export function antennaMeasure(survey: BareSurvey, facts: readonly BaselineFacts
   const gains = medianPolish(survey, facts, own);
   const counts = new Map(antennas.map((antenna) => [antenna, countsOf(own.get(antenna)!, facts)]));
   const typicalFlagged = median(antennas.map((antenna) => counts.get(antenna)!.flaggedFraction));
-  const ofOwn = (antenna: number, value: (fact: BaselineFacts) => number) =>
-    median(own.get(antenna)!.map((b) => value(facts[b]!)));
-  const sigmas = new Map(antennas.map((antenna) => [antenna, ofOwn(antenna, ({ sigma }) => sigma)]));
+  const ofOwn = (antenna: number, values: Float64Array) => median(own.get(antenna)!.map((b) => values[b]!));
+  const sigmas = new Map(antennas.map((antenna) => [antenna, ofOwn(antenna, facts.sigma)]));
   const typicalSigma = median([...sigmas.values()]);
-  const coherences = new Map(
-    antennas.map((antenna) => [antenna, ofOwn(antenna, ({ coherence }) => coherence)]),
-  );
+  const coherences = new Map(antennas.map((antenna) => [antenna, ofOwn(antenna, facts.coherence)]));
   const typicalCoherence = median([...coherences.values()]);
-  const typicalHands = median(facts.map(({ handRatio }) => handRatio));
-  const typicalWeightScatter = median(facts.map(({ weightScatter }) => weightScatter));
+  const typicalHands = median(facts.handRatio);
+  const typicalWeightScatter = median(facts.weightScatter);
   const rows = antennas.map((antenna) => ({
     antenna,
     name: names.get(antenna) ?? null,
@@ -43,21 +40,21 @@ export function antennaMeasure(survey: BareSurvey, facts: readonly BaselineFacts
     baselines: own.get(antenna)!.length,
     ...counts.get(antenna)!.row,
     flagged_beyond_typical: counts.get(antenna)!.flaggedFraction - typicalFlagged,
-    amplitude_median: ofOwn(antenna, ({ amplitude }) => amplitude),
+    amplitude_median: ofOwn(antenna, facts.amplitude),
     noise_sigma: sigmas.get(antenna)!,
     noise_ratio: sigmas.get(antenna)! / typicalSigma,
     amplitude_ratio: gains.get(antenna)!,
-    hand_ratio: ofOwn(antenna, ({ handRatio }) => handRatio) / typicalHands,
+    hand_ratio: ofOwn(antenna, facts.handRatio) / typicalHands,
     coherence: coherences.get(antenna)!,
     coherence_ratio: coherences.get(antenna)! / typicalCoherence,
-    weight_scatter_ratio: ofOwn(antenna, ({ weightScatter }) => weightScatter) / typicalWeightScatter,
+    weight_scatter_ratio: ofOwn(antenna, facts.weightScatter) / typicalWeightScatter,
   }));
   return fillMeasure(ANTENNA, rows);
 }
 
-function countsOf(own: readonly number[], facts: readonly BaselineFacts[]): Counts {
+function countsOf(own: readonly number[], facts: BaselineFacts): Counts {
   const counts = new Counts();
-  for (const b of own) counts.add(facts[b]!.counts);
+  for (const b of own) counts.add(facts.counts.of(b));
   return counts;
 }
 
@@ -65,13 +62,9 @@ function countsOf(own: readonly number[], facts: readonly BaselineFacts[]): Coun
  * Gain of each antenna over the typical one, from log amplitude = a_i + a_j by median polish (Tukey 1977, Exploratory
  * Data Analysis), which structure of the sky on fewer than half of the baselines does not move. NaN without data.
  */
-function medianPolish(
-  survey: BareSurvey,
-  facts: readonly BaselineFacts[],
-  own: ReadonlyMap<number, readonly number[]>,
-) {
+function medianPolish(survey: BareSurvey, facts: BaselineFacts, own: ReadonlyMap<number, readonly number[]>) {
   const { baselines } = survey;
-  const logs = facts.map(({ amplitude }) => Math.log(amplitude));
+  const logs = facts.amplitude.map(Math.log);
   const overall = median(logs) / 2;
   const gains = new Map([...own.keys()].map((antenna) => [antenna, 0]));
   const other = (b: number, antenna: number) =>

@@ -6,28 +6,32 @@ import { Counts } from "./counts.ts";
 export class BaselineCounts {
   private readonly tally: BaselineTally;
   private readonly order: Int32Array;
-  private readonly each: readonly Counts[];
+  /** (baselines x 4) usable, flagged, bad, zero */
+  private readonly each: Float64Array;
   readonly all = new Counts();
 
   /** @param order  the tally's number of each baseline, in the order of the result */
   constructor(tally: BaselineTally, order: Int32Array) {
     this.tally = tally;
     this.order = order;
-    this.each = Array.from(order, (number) => {
-      const counts = new Counts();
+    this.each = new Float64Array(4 * order.length);
+    for (let b = 0; b < order.length; b++) {
       for (let product = 0; product < tally.products; product++) {
-        counts.usable += tally.count(number, product, USABLE);
-        counts.flagged += tally.count(number, product, FLAGGED);
-        counts.bad += tally.count(number, product, BAD);
-        counts.zero += tally.count(number, product, ZERO);
+        for (const [i, kind] of [USABLE, FLAGGED, BAD, ZERO].entries()) {
+          this.each[4 * b + i]! += tally.count(order[b]!, product, kind);
+        }
       }
-      return counts;
-    });
-    for (const counts of this.each) this.all.add(counts);
+      this.all.add(this.of(b));
+    }
   }
 
   of(baseline: number): Counts {
-    return this.each[baseline]!;
+    const counts = new Counts();
+    counts.usable = this.each[4 * baseline]!;
+    counts.flagged = this.each[4 * baseline + 1]!;
+    counts.bad = this.each[4 * baseline + 2]!;
+    counts.zero = this.each[4 * baseline + 3]!;
+    return counts;
   }
 
   /** Typical weight of a usable sample of some products of a baseline; NaN without any. */

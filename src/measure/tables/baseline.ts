@@ -1,29 +1,27 @@
 /** The `baseline` measure, and the facts of each baseline that other tables build on. */
 import { SPEED_OF_LIGHT } from "../../util/constants.ts";
 import { median, robustSigma, standardDeviation } from "../../util/statistics.ts";
+import { evenChoice } from "../even-choice.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { BASELINE } from "../forms.ts";
 import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import type { BaselineCounts } from "./baseline-counts.ts";
-import type { Counts } from "./counts.ts";
 import { parallelNumbers, parallelProducts } from "./products.ts";
 
+/** What is known of each baseline, by its number: columns, since an array of thousands has millions of them. */
 export interface BaselineFacts {
-  readonly counts: Counts;
+  readonly counts: BaselineCounts;
   /** medians over sub-bands, channels and parallel hands; NaN unknown */
-  readonly amplitude: number;
-  readonly sigma: number;
-  readonly coherence: number;
-  readonly scatter: number;
-  readonly tail: number;
+  readonly amplitude: Float64Array;
+  readonly sigma: Float64Array;
+  readonly coherence: Float64Array;
+  readonly scatter: Float64Array;
+  readonly tail: Float64Array;
   /** amplitude of the first parallel hand over the second; NaN without two */
-  readonly handRatio: number;
+  readonly handRatio: Float64Array;
   /** typical noise times the square root of the typical weight of a sample */
-  readonly weightScatter: number;
-  readonly uvMin: number;
-  readonly uvMax: number;
-  readonly wMax: number;
+  readonly weightScatter: Float64Array;
 }
 
 /** Integrations that tell whether a scatter has long tails. */
@@ -31,12 +29,23 @@ const FEWEST_FOR_TAIL = 10;
 /** Integrations whose vector mean is held against their scalar mean. */
 const COHERENCE_WINDOW = 8;
 
-/** By number of the baseline. */
-export function baselineFacts(survey: BareSurvey, counts: BaselineCounts): BaselineFacts[] {
-  return survey.baselines.map((_, baseline) => factsOf(survey, counts, baseline));
+export function baselineFacts(survey: BareSurvey, counts: BaselineCounts): BaselineFacts {
+  const column = () => new Float64Array(survey.baselines.length);
+  const facts = {
+    counts,
+    amplitude: column(),
+    sigma: column(),
+    coherence: column(),
+    scatter: column(),
+    tail: column(),
+    handRatio: column(),
+    weightScatter: column(),
+  };
+  for (let baseline = 0; baseline < survey.baselines.length; baseline++) fillFacts(survey, facts, baseline);
+  return facts;
 }
 
-function factsOf(survey: BareSurvey, counts: BaselineCounts, baseline: number): BaselineFacts {
+function fillFacts(survey: BareSurvey, facts: BaselineFacts, baseline: number): void {
   const { tracks, levels, dataset } = survey;
   const { subbands, channels, polarizations } = dataset.shape;
   const products = subbands * polarizations;
@@ -49,18 +58,14 @@ function factsOf(survey: BareSurvey, counts: BaselineCounts, baseline: number): 
   const hands = parallel.flatMap((isParallel, p) => (isParallel ? [p] : []));
   const sigma = median(ofParallel(levels.sigma));
   const inTime = timeFacts(survey, first, last, parallel);
-  return {
-    counts: counts.of(baseline),
-    amplitude: median(ofParallel(levels.median)),
-    sigma,
-    coherence: inTime.coherence,
-    scatter: inTime.scatter,
-    tail: inTime.tail,
-    handRatio: hands.length === 2 ? ofHand(hands[0]!) / ofHand(hands[1]!) : Number.NaN,
-    weightScatter:
-      sigma * Math.sqrt(counts.meanWeight(baseline, parallelNumbers(subbands, dataset.polarizations))),
-    ...spacings(survey, first, last),
-  };
+  const weight = facts.counts.meanWeight(baseline, parallelNumbers(subbands, dataset.polarizations));
+  facts.amplitude[baseline] = median(ofParallel(levels.median));
+  facts.sigma[baseline] = sigma;
+  facts.coherence[baseline] = inTime.coherence;
+  facts.scatter[baseline] = inTime.scatter;
+  facts.tail[baseline] = inTime.tail;
+  facts.handRatio[baseline] = hands.length === 2 ? ofHand(hands[0]!) / ofHand(hands[1]!) : Number.NaN;
+  facts.weightScatter[baseline] = sigma * Math.sqrt(weight);
 }
 
 /** What the series of channel averages in time says, median over its parallel-hand products. */
@@ -127,14 +132,13 @@ function spacings(survey: BareSurvey, first: number, last: number) {
 }
 
 /** By antenna, the median flagged fraction of its baselines. */
-function flaggedByAntenna(survey: BareSurvey, facts: readonly BaselineFacts[]): Map<number, number> {
+function flaggedByAntenna(survey: BareSurvey, flagged: Float64Array): Map<number, number> {
   const fractions = new Map<number, number[]>();
   for (const [b, { antenna1, antenna2 }] of survey.baselines.entries()) {
     for (const antenna of [antenna1, antenna2]) {
       const known = fractions.get(antenna);
-      const fraction = facts[b]!.counts.flaggedFraction;
-      if (known === undefined) fractions.set(antenna, [fraction]);
-      else known.push(fraction);
+      if (known === undefined) fractions.set(antenna, [flagged[b]!]);
+      else known.push(flagged[b]!);
     }
   }
   return new Map([...fractions].map(([antenna, list]) => [antenna, median(list)]));
@@ -149,29 +153,42 @@ function highestFrequency({ dataset }: BareSurvey): number {
   return highest;
 }
 
-export function baselineMeasure(survey: BareSurvey, facts: readonly BaselineFacts[]): Measure {
-  const ofAntenna = flaggedByAntenna(survey, facts);
+export function baselineMeasure(survey: BareSurvey, facts: BaselineFacts): Measure {
+  const { baselines, tracks } = survey;
+  const flagged = Float64Array.from(baselines, (_, b) => facts.counts.of(b).flaggedFraction);
+  const ofAntenna = flaggedByAntenna(survey, flagged);
+  const beyond = (b: number) => {
+    const { antenna1, antenna2 } = baselines[b]!;
+    return flagged[b]! - Math.max(ofAntenna.get(antenna1)!, ofAntenna.get(antenna2)!);
+  };
   const highest = highestFrequency(survey);
-  const typicalSigma = median(facts.map(({ sigma }) => sigma));
-  const typicalWeightScatter = median(facts.map(({ weightScatter }) => weightScatter));
-  const rows = facts.map((fact, b) => ({
-    antenna1: survey.baselines[b]!.antenna1,
-    antenna2: survey.baselines[b]!.antenna2,
-    ...fact.counts.row,
-    flagged_beyond_antennas:
-      fact.counts.flaggedFraction -
-      Math.max(ofAntenna.get(survey.baselines[b]!.antenna1)!, ofAntenna.get(survey.baselines[b]!.antenna2)!),
-    uv_min_m: fact.uvMin,
-    uv_max_m: fact.uvMax,
-    w_max_m: fact.wMax,
-    w_max_wavelengths: (fact.wMax * highest) / SPEED_OF_LIGHT,
-    amplitude_median: fact.amplitude,
-    noise_sigma: fact.sigma,
-    noise_ratio: fact.sigma / typicalSigma,
-    amplitude_scatter: fact.scatter,
-    amplitude_tail: fact.tail,
-    coherence: fact.coherence,
-    weight_scatter_ratio: fact.weightScatter / typicalWeightScatter,
-  }));
-  return fillMeasure(BASELINE, rows);
+  const typicalSigma = median(facts.sigma);
+  const typicalWeightScatter = median(facts.weightScatter);
+  const chosen = evenChoice(baselines);
+  const rows = Array.from(chosen, (b) => {
+    const { uvMin, uvMax, wMax } = spacings(survey, tracks.firstCell[b]!, tracks.firstCell[b + 1]!);
+    return {
+      antenna1: baselines[b]!.antenna1,
+      antenna2: baselines[b]!.antenna2,
+      ...facts.counts.of(b).row,
+      flagged_beyond_antennas: beyond(b),
+      uv_min_m: uvMin,
+      uv_max_m: uvMax,
+      w_max_m: wMax,
+      w_max_wavelengths: (wMax * highest) / SPEED_OF_LIGHT,
+      amplitude_median: facts.amplitude[b]!,
+      noise_sigma: facts.sigma[b]!,
+      noise_ratio: facts.sigma[b]! / typicalSigma,
+      amplitude_scatter: facts.scatter[b]!,
+      amplitude_tail: facts.tail[b]!,
+      coherence: facts.coherence[b]!,
+      weight_scatter_ratio: facts.weightScatter[b]! / typicalWeightScatter,
+    };
+  });
+  const measure = fillMeasure(BASELINE, rows);
+  if (chosen.length === baselines.length) return measure;
+  return {
+    ...measure,
+    title: `${measure.title}: an even choice of ${chosen.length} of ${baselines.length}`,
+  };
 }

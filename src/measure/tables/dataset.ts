@@ -14,7 +14,7 @@ import { parallelNumbers } from "./products.ts";
 
 export function datasetMeasure(
   survey: BareSurvey,
-  facts: readonly BaselineFacts[],
+  facts: BaselineFacts,
   { counts, integrations, wKnown }: Gleanings,
 ): Measure {
   const { dataset, totals, times, scans } = survey;
@@ -50,9 +50,9 @@ export function datasetMeasure(
     bad_uvw_rows: totals.badUvwRows,
     bad_uvw_fraction: totals.badUvwRows / totals.rows,
     sensitivity_lost: counts.sensitivityLost(parallelNumbers(shape.subbands, dataset.polarizations)),
-    noise_sigma: median(facts.map(({ sigma }) => sigma)),
-    amplitude_median: median(facts.map(({ amplitude }) => amplitude)),
-    weight_scale: median(facts.map(({ weightScatter }) => weightScatter)) ** 2,
+    noise_sigma: median(facts.sigma),
+    amplitude_median: median(facts.amplitude),
+    weight_scale: median(facts.weightScatter) ** 2,
     header_faults: dataset.notes.filter(({ kind }) => kind === "fault").length,
     has_weights: dataset.hasWeights ? 1 : 0,
     w_known: wKnown ? 1 : 0,

@@ -96,14 +96,13 @@ export function scanMeasure(survey: BareSurvey): Measure {
 
 export function integrationMeasure(
   survey: BareSurvey,
-  facts: readonly BaselineFacts[],
+  facts: BaselineFacts,
   { earliest, latest }: Integrations,
 ): Measure {
   const { tracks, times } = survey;
   const of = Int32Array.from(tracks.time, (time) => nearestTime(times, time));
   const counts = countCells(tracks, productsOf(survey), times.length, (cell) => [of[cell]!]);
-  const own = Float64Array.from(facts, ({ amplitude }) => amplitude);
-  const typical = amplitudes(survey, times.length, (cell) => of[cell]!, own);
+  const typical = amplitudes(survey, times.length, (cell) => of[cell]!, facts.amplitude);
   const scan = new Int32Array(times.length).fill(-1);
   const baselines = new Int32Array(times.length);
   for (let cell = 0; cell < tracks.cells; cell++) {
