@@ -102,5 +102,5 @@ async function tell(command: string, summary: string): Promise<void> {
     child.stdin.on("error", () => {});
     child.stdin.end(summary);
   });
-  if (failed !== null) process.stderr.write(plainText(`--on-trouble ${command}: ${failed}\n`));
+  if (failed !== null) process.stderr.write(`${plainText(`--on-trouble ${command}: ${failed}`)}\n`);
 }

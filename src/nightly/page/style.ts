@@ -1,5 +1,6 @@
 /** The look of the index page beyond that of the reports. */
 export const NIGHTS_STYLE = `
+[hidden] { display: none !important; }
 .filters { display: flex; flex-wrap: wrap; gap: 0.75rem 1.25rem; align-items: end; margin-bottom: 1.25rem; }
 .filters label { display: grid; gap: 0.15rem; font-size: 0.8rem; color: var(--muted); }
 .filters select, .filters input, .filters button { font: inherit; font-size: 0.95rem; color: var(--ink); background: var(--surface); border: 1px solid var(--muted); border-radius: 3px; padding: 0.35rem 0.5rem; max-width: 16rem; }
