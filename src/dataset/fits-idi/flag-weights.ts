@@ -10,10 +10,11 @@ import { Notes } from "../notes.ts";
 import type { RowsOfFile } from "../rows-of-file.ts";
 import { compileSelections } from "../selection-matcher.ts";
 import { readUvLayouts } from "./data-tables.ts";
-import { sampleLayout } from "./open.ts";
+
 import { bitpixOfCode, holdsNumbers } from "./stored-columns.ts";
 import { findTables } from "./tables.ts";
 import type { UvLayout } from "./uv-layout.ts";
+import { sampleLayout } from "./uv-rows.ts";
 
 /** @throws CannotHoldFlags where the weights cannot say what is selected */
 export async function copyFlaggingIdiWeights(

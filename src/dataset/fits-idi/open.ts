@@ -1,11 +1,7 @@
 /** A FITS-IDI file as a Dataset: small tables first, then one pass over the rows, then what only both together tell. */
-import type { BlockRequest, Field, SampleBlock, Setup, Shape } from "../dataset.ts";
+import type { BlockRequest, Shape } from "../dataset.ts";
 import type { FitsFile } from "../fits/hdus.ts";
-import { type RowReader, readBlocks } from "../fits-rows/blocks.ts";
-import { requestedRows } from "../fits-rows/plan.ts";
-import type { RowContext } from "../fits-rows/rows.ts";
-import type { SampleLayout } from "../fits-rows/samples.ts";
-import { type AntennaTable, readAntennaTable, timeOffsets } from "../fits-tables/antenna-table.ts";
+import { type AntennaTable, readAntennaTable } from "../fits-tables/antenna-table.ts";
 import { arrayInfo } from "../fits-tables/array-info.ts";
 import { fieldsOfRows, headerEquinox, noteImpossibleFields, readFieldTable } from "../fits-tables/fields.ts";
 import { headerFacts, noteDates, polarizationsOf, telescopeOf, unitOf } from "../fits-tables/header-facts.ts";
@@ -21,8 +17,8 @@ import { readUvLayouts } from "./data-tables.ts";
 import { noteDisagreements } from "./disagreements.ts";
 import { readFlagTables } from "./flag-table.ts";
 import { findTables, type TableHdus } from "./tables.ts";
-import { uvColumns } from "./uv-columns.ts";
 import type { UvLayout } from "./uv-layout.ts";
+import { blocksOf, shapeOf, type TablesRead, uvTables } from "./uv-rows.ts";
 import { WORDS } from "./words.ts";
 
 /**
@@ -39,7 +35,7 @@ export async function openFitsIdi(file: FitsFile, known?: RowSummary): Promise<O
   const shape = shapeOf(first);
   noteDisagreements([...smallTables(hdus), ...layouts.map(({ hdu }) => hdu)], first, notes);
   const tables = await readTables(file, hdus, first, shape, notes);
-  const rowTables = readersOf(file, layouts, tables, notes);
+  const rowTables = uvTables(source, layouts, tables, notes);
   const { tables: antennas, numbers } = distinctNumbers(tables.antennas, notes);
   const blocks = withSubarrayNumbers((request: BlockRequest) => blocksOf(rowTables, request), numbers);
   const rows = rowTables.reduce((sum, { store }) => sum + store.rows, 0);
@@ -73,10 +69,6 @@ export async function openFitsIdi(file: FitsFile, known?: RowSummary): Promise<O
   };
 }
 
-function shapeOf({ subband, frequency, stokes }: UvLayout): Shape {
-  return { subbands: subband.length, channels: frequency.length, polarizations: stokes.length };
-}
-
 function smallTables({ geometries, antennas, frequencies, sources, flags }: TableHdus) {
   const single = [frequencies, sources].filter((hdu) => hdu !== undefined);
   return [...geometries, ...antennas, ...single, ...flags];
@@ -94,15 +86,6 @@ function noteWeights({ hdu }: UvLayout, notes: Notes): void {
     "weights-are-fractions",
     "weights are shares of valid data (WEIGHTYP = CORRELAT), not inverse variances: noise is that measured in the samples",
   );
-}
-
-interface TablesRead {
-  readonly antennas: readonly AntennaTable[];
-  /** CRVAL of the FREQ axis, or what stands in for it, Hz */
-  readonly reference: number;
-  readonly setups: readonly Setup[];
-  readonly fields: readonly Field[] | undefined;
-  readonly flags: TableFlags | undefined;
 }
 
 async function readTables(
@@ -161,94 +144,4 @@ function referenceFrequency(
   }
   notes.note("missing-frequency-axis", "no FREQ axis: the frequency is REF_FREQ of the tables");
   return stated;
-}
-
-/** One UV_DATA table. */
-interface UvTable extends RowReader {
-  readonly hasWeights: boolean;
-  /** index in the dataset of its first row */
-  readonly firstRow: number;
-}
-
-function readersOf(
-  file: FitsFile,
-  layouts: readonly UvLayout[],
-  tables: TablesRead,
-  notes: Notes,
-): UvTable[] {
-  const { setups, fields, antennas } = tables;
-  const common: Omit<RowContext, "columns"> = {
-    words: WORDS,
-    setupIndex: new Map(setups.map(({ id }, index) => [id, index])),
-    fallbackSetup: setups.length === 1 ? 0 : undefined,
-    strangeSetups: new Set(),
-    // A table of one source names the field of rows that do not.
-    onlyField: fields?.length === 1 ? fields[0]!.id : 1,
-    timeOffset: timeOffsets(antennas),
-  };
-  let firstRow = 0;
-  return layouts.map((layout) => {
-    const { hdu, table } = layout;
-    const { columns, weights, hasWeights, needs } = uvColumns(
-      layout,
-      tables.reference,
-      antennas[0]?.referenceDay ?? null,
-      notes,
-    );
-    const reader: UvTable = {
-      source: file.source,
-      store: {
-        place: hdu.header.place,
-        word: WORDS.row,
-        start: hdu.dataStart,
-        rows: table.rows,
-        rowBytes: table.rowBytes,
-        needs,
-      },
-      samples: sampleLayout(layout),
-      context: { ...common, columns },
-      weights,
-      flags: tables.flags,
-      hasWeights,
-      firstRow,
-    };
-    firstRow += table.rows;
-    return reader;
-  });
-}
-
-export function sampleLayout(layout: UvLayout): SampleLayout {
-  const { flux, bitpix, table, complex, stokes, frequency, subband } = layout;
-  const itemBytes = Math.abs(bitpix) / 8;
-  return {
-    bitpix,
-    rowBytes: table.rowBytes,
-    start: flux.offset,
-    shape: shapeOf(layout),
-    subbandStep: subband.stride * itemBytes,
-    channelStep: frequency.stride * itemBytes,
-    polarizationStep: stokes.stride * itemBytes,
-    complexStep: complex.stride * itemBytes,
-    hasWeight: complex.length === 3,
-    scale: flux.scale,
-    zero: flux.zero,
-    // Only integers have one (FITS Standard 4.0, section 7.3.2).
-    blank: bitpix > 0 ? flux.nullValue : undefined,
-  };
-}
-
-/** Table after table; a block never reaches over the end of one. */
-async function* blocksOf(tables: readonly UvTable[], request: BlockRequest): AsyncGenerator<SampleBlock> {
-  const total = tables.reduce((sum, { store }) => sum + store.rows, 0);
-  const [first, end] = requestedRows(total, request);
-  for (const table of tables) {
-    const { rows } = table.store;
-    const from = Math.max(first - table.firstRow, 0);
-    const to = Math.min(end - table.firstRow, rows);
-    if (from >= to) continue;
-    for await (const block of readBlocks(table, { ...request, rows: [from, to] })) {
-      block.firstRow += table.firstRow;
-      yield block;
-    }
-  }
 }

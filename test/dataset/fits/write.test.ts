@@ -12,6 +12,7 @@ import {
   headerBlocks,
   padding,
   real,
+  streamedTable,
 } from "../../../src/dataset/fits/write.ts";
 import { fileMaker, plainSpec } from "../group-file.ts";
 import { lineOfError } from "../read-all.ts";
@@ -134,6 +135,40 @@ describe("binaryTable", () => {
         ],
       }),
     ).toThrow("column B holds 0 rows, expected 1");
+  });
+});
+
+describe("streamedTable", () => {
+  const columns = [
+    { name: "TIME", form: "1D", unit: "DAYS" },
+    { name: "FLUX", form: "3E", keywords: { TSCAL: real(2) } },
+    { name: "NONE", form: "0D" },
+  ];
+
+  it("has the header of a table that is built in memory, and the bytes of its rows", () => {
+    const cards = [card("NO_BAND", 2)];
+    const { header, rowBytes } = streamedTable({ name: "UV_DATA", rows: 2, cards, columns });
+    const cells = [
+      [1, 2],
+      [
+        [1, 2, 3],
+        [4, 5, 6],
+      ],
+      [[], []],
+    ];
+    const built = binaryTable({
+      name: "UV_DATA",
+      cards,
+      columns: columns.map((column, i) => ({ ...column, cells: cells[i]! })),
+    });
+    expect(rowBytes).toBe(8 + 12);
+    expect(Buffer.from(built).subarray(0, header.length).equals(header)).toBe(true);
+    expect(built.length).toBe(header.length + 2880);
+  });
+
+  it("refuses columns whose width goes by the row", () => {
+    const variable = [{ name: "LIST", form: "1PE" }];
+    expect(() => streamedTable({ name: "X", rows: 1, columns: variable })).toThrow("has no fixed width");
   });
 });
 
