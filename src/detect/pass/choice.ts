@@ -2,12 +2,11 @@
  * Which baselines of which tiles the second pass looks at, by the survey's screen. What is not looked at holds nothing
  * that stands out: neither sums over baselines, nor the noise of integrations, nor a baseline by itself.
  */
-import { HIGHEST, STEPS_PER_OCTAVE } from "../../measure/screen/row-screen.ts";
 import type { Screened } from "../../measure/screen/screen.ts";
 import { type TileShape, tileShape } from "../../measure/screen/shape.ts";
 import type { Survey } from "../../measure/survey-result.ts";
 import { bandsOf } from "./bands.ts";
-import { oddBaselines, peakBaselines } from "./odd-baselines.ts";
+import { brightBaselines, oddBaselines } from "./odd-baselines.ts";
 import { suspectsOf } from "./suspects.ts";
 
 /** How a baseline of a tile is looked at: not at all; for its own marks; as one of a sample; with all others. */
@@ -27,6 +26,8 @@ export interface Choice {
    * everywhere alike; null: nothing, or everything is SEEN
    */
   readonly leftOut: Uint8Array | null;
+  /** (slots x channels of all sub-bands) 1 where samples tell no background; null: nowhere */
+  readonly heldOut: Uint8Array | null;
 }
 
 /** Integrations of a baseline in which something that is always there is looked at. */
@@ -34,9 +35,7 @@ const SAMPLE_INTEGRATIONS = 64;
 /** Share of the baselines that most tiles must have, or rows are in no order of time, and slots no integrations. */
 const LEAST_BASELINES = 0.5;
 /** Of baselines and tiles, those with a bright sample are looked at; a sample of them if they are more than this share. */
-const MOST_PEAKS = 0.2;
-/** A lone difference above this is bright: 15 times the mean power of noise. */
-const BRIGHT = HIGHEST - STEPS_PER_OCTAVE / 4;
+const MOST_BRIGHT = 0.2;
 
 export function choose(survey: Survey): Choice {
   const { dataset, screen, baselines } = survey;
@@ -44,19 +43,20 @@ export function choose(survey: Survey): Choice {
   const all = wholeChoice(survey);
   if (screen === undefined || !screen.isOn || bandsOf(dataset.shape).length === 0) return all;
   if (!isByTime(screen, baselines.length)) return all;
-  const { tiles: seen, persistent } = suspectsOf(survey, screen);
+  const { tiles: seen, persistent, strong } = suspectsOf(survey, screen);
+  const heldOut = strong.includes(1) ? strong : null;
   const odd = oddBaselines(dataset.shape, screen, baselines.length);
-  const peaks = peakBaselines(dataset.shape, screen, baselines.length, BRIGHT, seen);
+  const bright = brightBaselines(dataset.shape, screen, baselines.length, seen);
   const isPersistent = persistent.includes(1);
   const any =
     isPersistent ||
     seen.includes(1) ||
-    peaks.tiles.some(Boolean) ||
+    bright.tiles.some(Boolean) ||
     odd.tiles.some(Boolean) ||
     odd.always.includes(1);
   // One tile is too little to tell what is usual of it.
-  if (cut.tiles === 1 && any) return all;
-  const isSample = isPersistent || peaks.share > MOST_PEAKS;
+  if (cut.tiles === 1 && any) return { ...all, heldOut };
+  const isSample = isPersistent || bright.share > MOST_BRIGHT;
   const perTile = cut.tileRows / Math.max(1, baselines.length);
   const every = Math.max(1, Math.floor((cut.tiles * perTile) / SAMPLE_INTEGRATIONS));
   const looks = Array.from({ length: cut.tiles }, (_, tile): Uint8Array | null => {
@@ -66,7 +66,7 @@ export function choose(survey: Survey): Choice {
     raise(look, odd.tiles[tile], ALONE);
     if (isSample) {
       for (let b = (every - (tile % every)) % every; b < look.length; b += every) look[b] = SAMPLED;
-    } else raise(look, peaks.tiles[tile], ALONE);
+    } else raise(look, bright.tiles[tile], ALONE);
     if (!isPersistent) raise(look, odd.always, ALONE);
     return look.some((how) => how !== UNSEEN) ? look : null;
   });
@@ -75,6 +75,7 @@ export function choose(survey: Survey): Choice {
     looks,
     isWhole: looks.every((look) => look?.every((how) => how === SEEN) ?? false),
     leftOut: isPersistent ? persistent : null,
+    heldOut,
   };
 }
 
@@ -99,7 +100,7 @@ function isByTime({ tiles }: Screened, baselines: number): boolean {
 export function wholeChoice({ dataset, screen, baselines }: Survey): Choice {
   const cut = screen?.cut ?? tileShape(dataset);
   const looks = Array.from({ length: cut.tiles }, () => new Uint8Array(baselines.length).fill(SEEN));
-  return { cut, looks, isWhole: true, leftOut: null };
+  return { cut, looks, isWhole: true, leftOut: null, heldOut: null };
 }
 
 function raise(look: Uint8Array, which: Uint8Array | null | undefined, how: number): void {

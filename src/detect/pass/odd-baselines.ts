@@ -59,28 +59,46 @@ function isMore(high: number, asked: number, share: number): boolean {
   return high > share * asked + ERRORS * Math.sqrt(SHARED * share * asked);
 }
 
-export interface Peaks {
+/** Bright differences of one baseline and tile that are no chance, */
+const SEVERAL = 3;
+/** and the share of all that chance makes bright, with room for rows whose level is told by few channels; and so many more. */
+const CHANCE = 3e-6;
+const FEW = 10;
+
+export interface BrightBaselines {
   readonly tiles: readonly (Uint8Array | null)[];
   /** of the baselines and tiles that are not `seen` anyhow */
   readonly share: number;
 }
 
-/** Baselines with a difference above a limit. @param seen (tiles) 1 where it does not matter */
-export function peakBaselines(
+/**
+ * Baselines with bright differences: several each, or any where there are more in all than chance makes.
+ *
+ * @param seen (tiles) 1 where it does not matter
+ */
+export function brightBaselines(
   shape: Shape,
   { tiles }: Screened,
   baselines: number,
-  limit: number,
   seen: Uint8Array,
-): Peaks {
+): BrightBaselines {
   const products = shape.subbands * shape.polarizations;
+  let bright = 0;
+  let asked = 0;
+  for (const tile of tiles) {
+    for (const count of tile?.bright ?? []) bright += count;
+    for (const count of tile?.asked ?? []) asked += count;
+  }
+  const least = bright > CHANCE * asked + FEW ? 1 : SEVERAL;
   let some = 0;
   let all = 0;
   const found = tiles.map((tile, number) => {
     if (tile === null || seen[number] === 1) return null;
     const here = new Uint8Array(baselines);
-    for (let i = 0; i < tile.peak.length; i++) {
-      if (tile.peak[i]! > limit) here[Math.floor(i / products)] = 1;
+    for (let b = 0; b < baselines; b++) {
+      let count = 0;
+      for (let p = 0; p < products; p++) count += tile.bright[b * products + p]!;
+      if (count >= least) here[b] = 1;
     }
     const count = here.reduce((sum, one) => sum + one, 0);
     some += count;

@@ -14,12 +14,16 @@ const SPREAD = 50.9;
 const SIGNIFICANT = 6.5;
 const LONGEST_TIME = 64;
 const LONGEST_FREQUENCY = 16;
+/** Runs up to this long are of what is strong. */
+const STRONG_RUN = 4;
 /** A channel's typical excess over its neighbours, in its errors and in steps (4 % of power), to be always there. */
 const PERSISTENT_ERRORS = 6;
 const PERSISTENT_STEPS = 2;
 const NEIGHBOURS = 6;
+/** Share of the tiles in which it has to be more than half of what is typical. */
+const LASTING = 0.8;
 /** Channels between two that stand out may be inside of what has its edges there. */
-const INSIDE = 16;
+const INSIDE = 8;
 /** Level of a slot over the usual, in its scatter and in steps (1.35 times the power), to be loud. */
 const LOUD_SCATTER = 6;
 const LOUD_STEPS = 14;
@@ -29,24 +33,29 @@ export interface Suspects {
   readonly tiles: Uint8Array;
   /** (channels of all sub-bands) 1 where they do all the time */
   readonly persistent: Uint8Array;
+  /** (slots x channels of all sub-bands) 1 where they do so much that these samples tell no background */
+  readonly strong: Uint8Array;
 }
 
 export function suspectsOf({ dataset }: Survey, screen: Screened): Suspects {
   const { subbands, channels, polarizations } = dataset.shape;
   const tiles = new Uint8Array(screen.cut.tiles);
   const persistent = new Uint8Array(subbands * channels);
+  const strong = new Uint8Array(tiles.length * screen.cut.slotsPerTile * subbands * channels);
   const products: (number | null)[] = [...Array(polarizations).keys()];
   if (polarizations > 1) products.push(null);
   for (const band of bandsOf(dataset.shape)) {
     for (const product of products) {
       const plane = planeOf(dataset.shape, screen, band, product);
       for (const tile of loudTiles(dataset.shape, screen, band, product, levelRows(plane))) tiles[tile] = 1;
-      markPersistent(plane, persistent, band.first);
+      markPersistent(plane, persistent, band.first, screen.cut.slotsPerTile);
       standardise(plane);
-      for (const slot of slotsOfRuns(plane)) tiles[Math.floor(slot / screen.cut.slotsPerTile)] = 1;
+      const runs = findRuns(plane);
+      for (const slot of runs.slots) tiles[Math.floor(slot / screen.cut.slotsPerTile)] = 1;
+      keepStrong(runs.strong, plane.columns, strong, subbands * channels, band.first);
     }
   }
-  return { tiles, persistent };
+  return { tiles, persistent, strong };
 }
 
 interface SlotPlane {
@@ -110,7 +119,7 @@ function levelRows({ slots, columns, scores, marks }: SlotPlane): Float64Array {
 }
 
 /** Fill `usual`, and mark channels whose typical mean stands out of their neighbours'. */
-function markPersistent(plane: SlotPlane, persistent: Uint8Array, first: number): void {
+function markPersistent(plane: SlotPlane, persistent: Uint8Array, first: number, slotsPerTile: number): void {
   const { slots, columns, scores, counts, marks, usual } = plane;
   const work = new Float64Array(Math.max(slots, columns));
   const errors = new Float64Array(columns);
@@ -126,18 +135,51 @@ function markPersistent(plane: SlotPlane, persistent: Uint8Array, first: number)
     errors[c] = (1.25 * SPREAD) / Math.sqrt(differences);
     usual[c] = medianInPlace(work, known);
   }
+  const usuals = usual.slice();
   let before = -1;
   for (let c = 0; c < columns; c++) {
     let known = 0;
     for (let k = Math.max(0, c - NEIGHBOURS); k <= Math.min(columns - 1, c + NEIGHBOURS); k++) {
       if (!Number.isNaN(usual[k]!)) work[known++] = usual[k]!;
     }
-    const excess = usual[c]! - medianInPlace(work, known);
+    const around = medianInPlace(work, known);
+    const excess = usual[c]! - around;
     if (!(excess > Math.max(PERSISTENT_STEPS, PERSISTENT_ERRORS * errors[c]!))) continue;
+    if (!lasts(plane, c, slotsPerTile, around + excess / 2)) {
+      // There for long but not always: where it is, it stands out.
+      usuals[c] = around;
+      continue;
+    }
+    for (let i = c; i < slots * columns; i += columns) marks[i] = 2;
     const from = before >= 0 && c - before <= INSIDE ? before : c;
     persistent.fill(1, first + from, first + c + 1);
     before = c;
   }
+  usual.set(usuals);
+}
+
+/** Whether the mean of a channel exceeds a limit in nearly all tiles. */
+function lasts(
+  { slots, columns, scores, marks }: SlotPlane,
+  column: number,
+  perTile: number,
+  limit: number,
+): boolean {
+  let seen = 0;
+  let high = 0;
+  for (let first = 0; first < slots; first += perTile) {
+    let sum = 0;
+    let count = 0;
+    for (let slot = first; slot < first + perTile; slot++) {
+      if (marks[slot * columns + column] !== 0) continue;
+      sum += scores[slot * columns + column]!;
+      count += 1;
+    }
+    if (count === 0) continue;
+    seen += 1;
+    if (sum > limit * count) high += 1;
+  }
+  return high >= LASTING * seen;
 }
 
 /** Over the column's usual mean, in its error. */
@@ -150,9 +192,16 @@ function standardise({ slots, columns, scores, counts, marks, usual }: SlotPlane
   }
 }
 
-/** Slots in which runs in time or frequency are significant. Uses up the scores: what is found counts no more in longer runs. */
-function slotsOfRuns({ slots, columns, scores, marks }: SlotPlane): Set<number> {
+/**
+ * Slots in which runs in time or frequency are significant, and (slots x columns) 1 in short ones. Uses up the scores: what
+ * is found counts no more in longer runs.
+ */
+function findRuns({ slots, columns, scores, marks }: SlotPlane): {
+  readonly slots: Set<number>;
+  readonly strong: Uint8Array;
+} {
   const found = new Set<number>();
+  const strong = new Uint8Array(scores.length);
   for (let i = 0; i < scores.length; i++) if (marks[i] !== 0) scores[i] = 0;
   const fresh = new Uint8Array(scores.length);
   for (let length = 1; length <= LONGEST_TIME; length *= 2) {
@@ -165,11 +214,26 @@ function slotsOfRuns({ slots, columns, scores, marks }: SlotPlane): Set<number> 
     for (let i = 0; any && i < fresh.length; i++) {
       if (fresh[i] === 0) continue;
       found.add(Math.floor(i / columns));
+      if (length <= STRONG_RUN) strong[i] = 1;
       scores[i] = 0;
       fresh[i] = 0;
     }
   }
-  return found;
+  return { slots: found, strong };
+}
+
+/** Take over what is strong in a band, with what lies between or beside: a difference is of three channels. */
+function keepStrong(from: Uint8Array, columns: number, to: Uint8Array, stride: number, first: number): void {
+  for (let slot = 0; slot * columns < from.length; slot++) {
+    let before = -1;
+    for (let c = 0; c < columns; c++) {
+      if (from[slot * columns + c] === 0) continue;
+      const low = before >= 0 && c - before <= INSIDE ? before : Math.max(0, c - 1);
+      const high = Math.min(columns - 1, c + 1);
+      to.fill(1, slot * stride + first + low, slot * stride + first + high + 1);
+      before = c;
+    }
+  }
 }
 
 /** Mark runs along a line whose sum exceeds a limit. @returns whether there are any */

@@ -24,6 +24,8 @@ export class Tile {
   readonly cell: Int32Array;
   readonly setup: Int32Array;
   readonly time: Float64Array;
+  /** (rows) number in the dataset */
+  readonly number: Float64Array;
   /** (rows x samples of a row); the imaginary part as from the lower to the higher antenna number */
   readonly real: Float32Array;
   readonly imag: Float32Array;
@@ -37,6 +39,7 @@ export class Tile {
     this.cell = new Int32Array(rows);
     this.setup = new Int32Array(rows);
     this.time = new Float64Array(rows);
+    this.number = new Float64Array(rows);
     this.real = new Float32Array(rows * rowSamples);
     this.imag = new Float32Array(rows * rowSamples);
     this.missing = new Uint8Array(rows * rowSamples);
@@ -124,6 +127,7 @@ function takeRow(tile: Tile, block: SampleBlock, row: number, baseline: number, 
   tile.cell[to] = cell;
   tile.setup[to] = block.setup[row]!;
   tile.time[to] = block.time[row]!;
+  tile.number[to] = block.firstRow + row;
   const sign = block.antenna1[row]! > block.antenna2[row]! ? -1 : 1;
   const from = row * rowSamples;
   const at = to * rowSamples;

@@ -7,6 +7,7 @@
 const AT_LEVEL: i32 = 96;
 const HIGHEST: i32 = 255;
 const HIGH: i32 = 187;
+const BRIGHT: i32 = 247;
 const SHIFT: i32 = 18;
 
 function lanes(from: i32, count: i32): v128 {
@@ -17,12 +18,6 @@ function laneSum(v: v128, polarization: i32, polarizations: i32): i32 {
   let sum = 0;
   for (let l = polarization; l < 4; l += polarizations) sum += at(v, l);
   return sum;
-}
-
-function laneMax(v: v128, polarization: i32, polarizations: i32): i32 {
-  let most = 0;
-  for (let l = polarization; l < 4; l += polarizations) most = max(most, at(v, l));
-  return most;
 }
 
 function at(v: v128, lane: i32): i32 {
@@ -105,7 +100,8 @@ function addSteps(
   const zero = i32x4.splat(0);
   const highest = i32x4.splat(HIGHEST);
   const limit = i32x4.splat(HIGH);
-  let peak = zero;
+  const most = i32x4.splat(BRIGHT);
+  let bright = zero;
   let high = zero;
   for (let k = 0; k < n; k += 4) {
     const o = (<usize>k) << 2;
@@ -117,11 +113,11 @@ function addSteps(
       if (missing) v128.store(tally + o, i32x4.sub(v128.load(tally + o), good));
     }
     v128.store(to + o, i32x4.add(v128.load(to + o), x));
-    peak = i32x4.max_s(peak, x);
+    bright = i32x4.sub(bright, i32x4.gt_s(x, most));
     high = i32x4.sub(high, i32x4.gt_s(x, limit));
   }
   for (let p = 0; p < polarizations; p++) {
-    store<i32>(out + ((<usize>(2 * products + p)) << 2), laneMax(peak, p, polarizations));
+    store<i32>(out + ((<usize>(2 * products + p)) << 2), laneSum(bright, p, polarizations));
     store<i32>(out + ((<usize>(3 * products + p)) << 2), laneSum(high, p, polarizations));
   }
 }
@@ -149,7 +145,7 @@ function settle(out: usize, subbands: i32, polarizations: i32, together: bool): 
 /**
  * Rows one after the other; 16 bytes of room behind each array.
  *
- * @param out (rows x 4 x products) level, count, peak, high of each row
+ * @param out (rows x 4 x products) level, count, bright, high of each row
  * @returns rows that were whole
  */
 export function screenRows(

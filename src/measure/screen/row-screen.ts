@@ -16,13 +16,15 @@ export const AT_LEVEL = 96;
 export const HIGHEST = 255;
 /** Above this a difference is high: 4 times the mean power of noise, whose log mean is 0.5615 (e^-gamma) of it. */
 export const HIGH = 187;
+/** Above this it is bright: 15 times, which one in three million of noise is. */
+export const BRIGHT = 247;
 
-/** Numbers of each row and product that `screenRows` leaves: level, differences, highest, how many are above HIGH. */
+/** Numbers of each row and product that `screenRows` leaves: level, differences, how many of them are bright, and high. */
 export const OUTPUTS = 4;
 export const LEVEL = 0;
 export const COUNT = 1;
-export const PEAK = 2;
-export const ABOVE = 3;
+export const COUNT_BRIGHT = 2;
+export const COUNT_HIGH = 3;
 
 /** Bytes that the arrays of samples need behind their ends: vectors reach over them. */
 export const PADDING = 16;
@@ -186,19 +188,19 @@ function addSteps(
 ): void {
   const { i32, u32 } = kernelMemory.heap;
   const shift = AT_LEVEL - i32[out + LEVEL * products]!;
-  let peak = 0;
-  let above = 0;
+  let bright = 0;
+  let high = 0;
   for (let c = 1, o = stride; c < channels - 1; c++, o += stride) {
     const step = i32[scratch + o]!;
     if (step < 0) continue;
     const x = Math.max(0, Math.min(HIGHEST, step + shift));
     u32[sums + o]! += x;
     if (counts >= 0) u32[counts + o]! += 1;
-    if (x > peak) peak = x;
-    if (x > HIGH) above += 1;
+    if (x > BRIGHT) bright += 1;
+    if (x > HIGH) high += 1;
   }
-  i32[out + PEAK * products] = peak;
-  i32[out + ABOVE * products] = above;
+  i32[out + COUNT_BRIGHT * products] = bright;
+  i32[out + COUNT_HIGH * products] = high;
 }
 
 export const rowScreen: RowScreenKernels = kernelsOr(plainRowScreen);

@@ -9,7 +9,7 @@ import type { Accumulator } from "../accumulator.ts";
 import { AUTOCORRELATION, type PreparedBlock } from "../prepared.ts";
 import type { StateReader } from "../state/reader.ts";
 import type { StateRecord } from "../state/value.ts";
-import { ABOVE, COUNT, LEVEL, OUTPUTS, PADDING, PEAK, rowScreen } from "./row-screen.ts";
+import { COUNT, COUNT_BRIGHT, COUNT_HIGH, LEVEL, OUTPUTS, PADDING, rowScreen } from "./row-screen.ts";
 import { CHANNELS_OF_A_LEVEL, canScreen, type TileShape, tileShape } from "./shape.ts";
 import {
   inOrder,
@@ -141,10 +141,9 @@ export class Screen implements Accumulator {
         tile.level[slot * products + product]! += i32[at + LEVEL * products]!;
         tile.rows[slot * products + product]! += 1;
         const own = b * products + product;
-        tile.high[own]! += i32[at + ABOVE * products]!;
+        tile.high[own]! += i32[at + COUNT_HIGH * products]!;
         tile.asked[own]! += count;
-        const peak = i32[at + PEAK * products]!;
-        if (peak > tile.peak[own]!) tile.peak[own] = peak;
+        tile.bright[own]! += i32[at + COUNT_BRIGHT * products]!;
       }
     }
   }

@@ -14,10 +14,10 @@ export interface ScreenTile {
   /** (slots x subbands x polarizations) sum over rows of their level, steps; and rows in it */
   readonly level: Float64Array;
   readonly rows: Uint32Array;
-  /** (baselines x subbands x polarizations) differences above HIGH, differences in all, and the highest */
+  /** (baselines x subbands x polarizations) differences that are high, those that are bright, and all */
   high: Uint32Array;
+  bright: Uint32Array;
   asked: Uint32Array;
-  peak: Uint8Array;
 }
 
 export function newTile({ slotsPerTile }: TileShape, shape: Shape): ScreenTile {
@@ -31,20 +31,20 @@ export function newTile({ slotsPerTile }: TileShape, shape: Shape): ScreenTile {
     rows: new Uint32Array(slotsPerTile * products),
     high: new Uint32Array(0),
     asked: new Uint32Array(0),
-    peak: new Uint8Array(0),
+    bright: new Uint32Array(0),
   };
 }
 
 /** Make room for so many baselines. */
 export function withBaselines(tile: ScreenTile, baselines: number, products: number): void {
   const size = Math.max(2 * tile.high.length, baselines * products);
-  const [high, asked, peak] = [new Uint32Array(size), new Uint32Array(size), new Uint8Array(size)];
+  const [high, asked, bright] = [new Uint32Array(size), new Uint32Array(size), new Uint32Array(size)];
   high.set(tile.high);
   asked.set(tile.asked);
-  peak.set(tile.peak);
+  bright.set(tile.bright);
   tile.high = high;
   tile.asked = asked;
-  tile.peak = peak;
+  tile.bright = bright;
 }
 
 /** @param baselines for each baseline number of `from`, that of `to` */
@@ -60,7 +60,7 @@ export function joinTiles(to: ScreenTile, from: ScreenTile, baselines: Int32Arra
       const [at, other] = [own * products + p, b * products + p];
       to.high[at]! += from.high[other]!;
       to.asked[at]! += from.asked[other]!;
-      to.peak[at] = Math.max(to.peak[at]!, from.peak[other]!);
+      to.bright[at]! += from.bright[other]!;
     }
   }
 }
@@ -68,15 +68,15 @@ export function joinTiles(to: ScreenTile, from: ScreenTile, baselines: Int32Arra
 /** The same tile with its baselines in another order. @param order number of each in `tile` */
 export function inOrder(tile: ScreenTile, order: Int32Array, products: number): ScreenTile {
   const size = order.length * products;
-  const [high, asked, peak] = [new Uint32Array(size), new Uint32Array(size), new Uint8Array(size)];
+  const [high, asked, bright] = [new Uint32Array(size), new Uint32Array(size), new Uint32Array(size)];
   for (const [place, number] of order.entries()) {
     for (let p = 0; p < products; p++) {
       high[place * products + p] = tile.high[number * products + p] ?? 0;
       asked[place * products + p] = tile.asked[number * products + p] ?? 0;
-      peak[place * products + p] = tile.peak[number * products + p] ?? 0;
+      bright[place * products + p] = tile.bright[number * products + p] ?? 0;
     }
   }
-  return { ...tile, high, asked, peak };
+  return { ...tile, high, asked, bright };
 }
 
 export function tileState(tile: ScreenTile): StateRecord {
@@ -98,6 +98,6 @@ export function restoreTile(from: StateReader, cut: TileShape, shape: Shape, bas
     rows: from.array(Uint32Array, "rows", like.rows.length),
     high,
     asked: from.array(Uint32Array, "asked", high.length),
-    peak: from.array(Uint8Array, "peak", high.length),
+    bright: from.array(Uint32Array, "bright", high.length),
   };
 }

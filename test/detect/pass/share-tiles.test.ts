@@ -44,7 +44,13 @@ function choiceOf(baselines: number, leftOut: Uint8Array | null): Choice {
     if (tile % 2 === 1) for (let b = tile % 3; b < baselines; b += 3) look[b] = SAMPLED;
     return look;
   });
-  return { cut: { tileRows, tiles, slotRows: 65, slotsPerTile: 2 }, looks, isWhole: false, leftOut };
+  return {
+    cut: { tileRows, tiles, slotRows: 65, slotsPerTile: 2 },
+    looks,
+    isWhole: false,
+    leftOut,
+    heldOut: null,
+  };
 }
 
 describe("a second pass whose tiles are shared out", () => {

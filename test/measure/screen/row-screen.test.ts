@@ -1,13 +1,14 @@
 import { afterEach, describe, expect, it } from "vitest";
 import {
-  ABOVE,
   AT_LEVEL,
+  BRIGHT,
   COUNT,
+  COUNT_BRIGHT,
+  COUNT_HIGH,
   HIGH,
   LEVEL,
   OUTPUTS,
   PADDING,
-  PEAK,
   plainRowScreen,
   type RowScreenKernels,
   STEPS_PER_OCTAVE,
@@ -124,7 +125,7 @@ describe("screenRows", () => {
     const rows = { rows: 1, subbands: 1, channels: 256, polarizations: 1, together: false, real, imag };
     const result = screened(plainRowScreen, rows);
     // |-2 x 40|^2 over the log mean, e^-gamma of 12, of noise: 9.9 octaves, beyond the highest.
-    expect(result.of(0, PEAK, 0)).toBe(255);
+    expect(result.of(0, COUNT_BRIGHT, 0)).toBe(3);
     expect(result.sums[100]).toBe(255);
     // Beside it 40^2: 7.9 octaves.
     expect(result.sums[99]).toBe(255);
@@ -137,8 +138,11 @@ describe("screenRows", () => {
     const rows = { rows: 256, subbands: 1, channels: 256, polarizations: 1, together: false, real, imag };
     const result = screened(plainRowScreen, rows);
     let above = 0;
-    for (let row = 0; row < 256; row++) above += result.of(row, ABOVE, 0);
+    for (let row = 0; row < 256; row++) above += result.of(row, COUNT_HIGH, 0);
     expect(above / (256 * 254)).toBeCloseTo(Math.exp(-4), 2);
+    const at = (power: number) =>
+      AT_LEVEL + Math.round(STEPS_PER_OCTAVE * Math.log2(power / Math.exp(-0.5772156649)));
+    expect([HIGH, BRIGHT]).toEqual([at(4), at(15) - 1]);
     expect(HIGH).toBe(AT_LEVEL + Math.round(STEPS_PER_OCTAVE * Math.log2(4 / Math.exp(-0.5772156649))));
   });
 });
