@@ -18,9 +18,9 @@ import { join } from "node:path";
 import { fileURLToPath } from "node:url";
 import { afterAll, beforeAll, describe, expect, it } from "vitest";
 import * as z from "zod";
+import { SMALL_NIGHT, SMALL_PLAN } from "../support/small-night.ts";
 
 const ROOT = fileURLToPath(new URL("../..", import.meta.url));
-const SAMPLE = join(ROOT, "sample-inputs", "three-faults.uvfits");
 const EXAMPLES = ["check", "stages", "apply", "blocks"] as const;
 
 interface Packed {
@@ -102,24 +102,16 @@ describe("the package", () => {
     const help = run(bin, ["--help"]);
     expect([help.status, help.err]).toEqual([0, ""]);
     expect(help.out).toContain("visvet apply");
-    const describe = run(bin, ["describe", SAMPLE]);
-    expect([describe.status, describe.err]).toEqual([0, ""]);
-    const checked = run(bin, [
-      "check",
-      SAMPLE,
-      "--out",
-      "r",
-      "--quiet",
-      "--flags-as",
-      "csv",
-      "--tables",
-      "csv",
-    ]);
+    writeFileSync(join(folder, "night.scenario.yaml"), SMALL_NIGHT);
+    writeFileSync(join(folder, "plan.yaml"), SMALL_PLAN);
+    const made = run(bin, ["simulate", "night.scenario.yaml", "--out", "night.uvfits"]);
+    expect([made.status, made.err]).toEqual([0, ""]);
+    const words = ["--plan", "plan.yaml", "--out", "r", "--quiet", "--flags-as", "csv", "--tables", "csv"];
+    const checked = run(bin, ["check", "night.uvfits", ...words]);
     expect(checked.err).toBe("");
-    expect(checked.out).toMatch(/^three-faults: (hold|caution) /);
-    expect(readFileSync(join(folder, "r", "tables", "columns.csv"), "utf8")).toMatch(
-      /^table,row,column,type,unit/,
-    );
+    expect(checked.out).toMatch(/^night: (hold|caution) /);
+    const columns = readFileSync(join(folder, "r", "tables", "columns.csv"), "utf8");
+    expect(columns).toMatch(/^table,row,column,type,unit/);
   });
 
   it("publishes the schemas that what it writes keeps to", () => {
@@ -169,17 +161,22 @@ describe("the examples of the library", () => {
   });
 
   const said: Readonly<Record<(typeof EXAMPLES)[number], RegExp>> = {
-    check: /^three-faults: caution, score \d+\nF1 silent-antenna 16\.7 %\nF2 phase-jump 8\.3 %\n/,
+    check: /^night: caution, score \d+\nF1 silent-antenna 25\.0 %\nF2 persistent-line 12\.5 %\n/,
     stages:
-      /^least coherent: antenna 4\ncapped first by: \S.*\nrules that took points: .*silent-antenna.*\nflags: F1 F2/,
-    apply:
-      /^64000 samples flagged; left for later: F3 F4 F5\n64000 of 264000 samples of the copy are flagged\n$/,
-    // 110 of 132 baselines of rows are without antenna 4; 55 baselines, 100 integrations, 20 channels.
-    blocks: /^110000 samples of \S+, mean amplitude \d\.\d{3} Jy\n$/,
+      /^least coherent: antenna 3\ncapped first by: \S.*\nrules that took points: .*silent-antenna.*\nflags: F1 F2/,
+    // Antenna 3 has 7 of 28 baselines: a quarter of 28 baselines, 30 integrations, 8 channels, 2 products.
+    apply: /^3360 samples flagged; left for later: F2\n3360 of 13440 samples of the copy are flagged\n$/,
+    // 21 baselines without it, 30 integrations, 8 channels.
+    blocks: /^5040 samples of \S+, mean amplitude \d\.\d{3} Jy\n$/,
   };
 
   it.each(EXAMPLES)("run: %s", (name) => {
-    const { status, out, err } = run(process.execPath, [join("built", `${name}.js`), SAMPLE, "out"]);
+    const { status, out, err } = run(process.execPath, [
+      join("built", `${name}.js`),
+      "night.uvfits",
+      "plan.yaml",
+      "out",
+    ]);
     expect([status, err]).toEqual([0, ""]);
     expect(out).toMatch(said[name]);
   });

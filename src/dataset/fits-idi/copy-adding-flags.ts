@@ -62,6 +62,7 @@ function sharedCards({ data, geometries }: TableHdus): CardToWrite[] {
     });
   const date = ofArray.shown("RDATE");
   return [
+    card("TABREV", 2, "revision of the table"),
     card("OBSCODE", header.shown("OBSCODE") ?? ""),
     ...numbers(WHOLE, Math.round),
     ...numbers(REAL, real),

@@ -1,5 +1,5 @@
 /** Rows of a FLAG table (FITS Interferometry Data Interchange Convention, memo 114; columns recalled). */
-import { binaryTable, type CardToWrite, type ColumnToWrite, card } from "../fits/write.ts";
+import { binaryTable, type CardToWrite, type ColumnToWrite } from "../fits/write.ts";
 import { ascii } from "../fits/write-header.ts";
 import type { FlagRow } from "../fits-tables/flag-rows.ts";
 
@@ -34,7 +34,7 @@ export function flagTableBytes(
   return binaryTable({
     name: "FLAG",
     version,
-    cards: [card("TABREV", 2), ...cards],
+    cards,
     columns: [
       { name: "SOURCE_ID", form: "1J", cells: rows.map(({ field }) => field) },
       each("ARRAY", ANY_ARRAY),

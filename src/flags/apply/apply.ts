@@ -53,6 +53,7 @@ export async function countFlags(dataset: Dataset, flags: readonly AcceptedFlag[
  */
 export async function applyFlags(request: ApplyRequest): Promise<Applied> {
   const { dataset, flags, out } = request;
+  requireFiles(dataset);
   await refuseInside(request.named ?? [], out);
   await requireNothing(out);
   if (dataset.format === "columnar" && dataset.files.length === 1) await requireNothing(out + MAP_ENDING);
@@ -71,6 +72,18 @@ export async function applyFlags(request: ApplyRequest): Promise<Applied> {
     }
   }
   throw new RangeError(`format ${dataset.format} has no place for flags`);
+}
+
+/** Rows are told by their places in the files: a view of some of them has others. */
+function requireFiles({ name, files, recipe }: Dataset): void {
+  if (files.length > 0 && (recipe === undefined || recipe.kind === "files")) return;
+  throw new InputError(
+    files.length === 0
+      ? `${name} is not in a file: there is nothing to copy`
+      : `${name} is a view of a dataset: expected the dataset as it was opened`,
+    {},
+    "Give the dataset that openDataset gave",
+  );
 }
 
 function placesFor(dataset: Dataset, into: FlagPlace | undefined): readonly FlagPlace[] {

@@ -3,6 +3,8 @@ import { linkSync, mkdirSync, readdirSync, readFileSync, symlinkSync, writeFileS
 import { type FileHandle, open } from "node:fs/promises";
 import { join } from "node:path";
 import { describe, expect, it } from "vitest";
+import { fieldView } from "../../../src/dataset/field-view.ts";
+import { flaggedView } from "../../../src/dataset/flagged-view.ts";
 import { openDataset } from "../../../src/dataset/open.ts";
 import { applyFlags } from "../../../src/flags/apply/apply.ts";
 import { leftOver } from "../../../src/util/new-output.ts";
@@ -163,6 +165,22 @@ function dataEnd(length: number): number {
   if (header >= length) throw new Error("the file is shorter than its header");
   return header + groups;
 }
+
+describe("a dataset that is not the file", () => {
+  it("is refused: one in memory, a view of a field, one with flags laid over it", async () => {
+    const { at, path } = place();
+    const opened = await openDataset(path);
+    for (const [dataset, said] of [
+      [simulated().dataset, /is not in a file/],
+      [await fieldView(opened, 1), /is a view of a dataset/],
+      [flaggedView(opened, [FLAG]), /is a view of a dataset/],
+    ] as const) {
+      const out = join(at, "copy.uvfits");
+      expect(await lineOfRejection(applyFlags({ dataset, flags: [FLAG], out }))).toMatch(said);
+    }
+    expect(readdirSync(at)).toEqual(["night.uvfits"]);
+  });
+});
 
 describe("a dataset of several files", () => {
   const { folder: pieces, write } = pieceFolder();

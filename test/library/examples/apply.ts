@@ -1,4 +1,4 @@
-/** Check, write the flags and tables, accept two of the flags, and see what the copy is worth. */
+/** Check, write the flags and tables, accept one of the flags, and see what the copy is worth. */
 import { join } from "node:path";
 import {
   applyFlags,
@@ -7,21 +7,22 @@ import {
   loadRules,
   openDataset,
   readFlags,
+  readPlan,
   survey,
   writeFlags,
   writeReports,
   writeTables,
 } from "visvet";
 
-const [path = "night12.uvfits", folder = "."] = process.argv.slice(2);
+const [path = "night12.uvfits", planned = "plan.yaml", folder = "."] = process.argv.slice(2);
 const dataset = await openDataset(path);
-const result = await check(dataset, { plan: {}, rules: await loadRules() });
+const result = await check(dataset, { plan: await readPlan(planned), rules: await loadRules() });
 await writeReports(result, folder);
 await writeFlags(result, folder, ["csv", "idi"]);
 await writeTables(result, folder, "parquet");
 
 const { flags } = await readFlags(join(folder, "flags.csv"));
-const { chosen, skipped } = chooseFlags(flags, ["F1", "F2"], []);
+const { chosen, skipped } = chooseFlags(flags, ["F1"], []);
 const out = join(folder, "flagged.uvfits");
 const { counts } = await applyFlags({ dataset, flags: chosen, out, named: [path] });
 console.log(

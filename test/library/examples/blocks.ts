@@ -2,8 +2,8 @@
 import { flaggedView, openDataset, type Selection, sampleIndex } from "visvet";
 
 const dataset = await openDataset(process.argv[2] ?? "night12.uvfits");
-const without4: Selection = {
-  antennas: [4],
+const without3: Selection = {
+  antennas: [3],
   baselines: null,
   time: null,
   subbands: null,
@@ -14,7 +14,7 @@ const without4: Selection = {
 const { shape } = dataset;
 let sum = 0;
 let count = 0;
-for await (const block of flaggedView(dataset, [without4]).blocks({ want: "samples" })) {
+for await (const block of flaggedView(dataset, [without3]).blocks({ want: "samples" })) {
   for (let row = 0; row < block.rows; row++) {
     for (let channel = 0; channel < shape.channels; channel++) {
       const at = sampleIndex(shape, row, 0, channel, 0);

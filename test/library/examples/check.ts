@@ -1,10 +1,10 @@
 /** One call: can this data give the planned image, and what spoils it? */
-import { check, InputError, loadRules, openDataset, parsePlan } from "visvet";
+import { check, InputError, loadRules, openDataset, readPlan } from "visvet";
 
-const path = process.argv[2] ?? "night12.uvfits";
+const [path = "night12.uvfits", planned = "plan.yaml"] = process.argv.slice(2);
 try {
   const dataset = await openDataset(path);
-  const plan = parsePlan("dynamic_range: 1000\ncorrects_w: yes\n", "plan");
+  const plan = await readPlan(planned);
   const result = await check(dataset, { plan, rules: await loadRules() });
   console.log(`${dataset.name}: ${result.verdict}, score ${Math.round(result.before.score)}`);
   for (const { id, rule, fraction } of result.flags) {

@@ -9,13 +9,15 @@ import {
   type Measure,
   type Measures,
   openDataset,
+  readPlan,
   suggestFlags,
   survey,
 } from "visvet";
 
-const dataset = await openDataset(process.argv[2] ?? "night12.uvfits");
+const [path = "night12.uvfits", planned = "plan.yaml"] = process.argv.slice(2);
+const dataset = await openDataset(path);
 const surveyed = await survey(dataset);
-const plan = derivePlan({ dynamicRange: 1000, correctsW: true }, surveyed);
+const plan = derivePlan(await readPlan(planned), surveyed);
 const events = await detect(surveyed, { purpose: plan.purpose.value, lineChannels: plan.lineChannels.value });
 const { measures: ofImage, image } = await forecast(surveyed, plan, { events });
 
