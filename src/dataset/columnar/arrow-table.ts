@@ -88,11 +88,15 @@ function refuseHugeBatches(reader: Reader, file: string): void {
 
 function kindOf({ type }: Field): ColumnKind {
   const inner = DataType.isDictionary(type) ? type.dictionary : type;
-  if (DataType.isInt(inner) || DataType.isFloat(inner) || DataType.isDecimal(inner)) return "number";
-  if (DataType.isUtf8(inner) || DataType.isLargeUtf8(inner)) return "text";
+  if (DataType.isInt(inner) || DataType.isFloat(inner)) return "number";
+  if (DataType.isUtf8(inner) || DataType.isLargeUtf8(inner) || DataType.isUtf8View(inner)) return "text";
   if (DataType.isBool(inner)) return "boolean";
   if (DataType.isTimestamp(inner) || DataType.isDate(inner)) return "timestamp";
-  return DataType.isList(inner) || DataType.isFixedSizeList(inner) ? "list" : "other";
+  return isList(inner) ? "list" : "other";
+}
+
+function isList(type: DataType): boolean {
+  return DataType.isList(type) || DataType.isLargeList(type) || DataType.isFixedSizeList(type);
 }
 
 async function* readBatches(path: string, columns: readonly string[]): AsyncGenerator<Batch> {
@@ -141,7 +145,7 @@ function cellsOf(vector: Vector): ArrayLike<unknown> {
       return ms === null ? null : Number(ms) / 1e3;
     });
   }
-  if (DataType.isList(type) || DataType.isFixedSizeList(type)) {
+  if (isList(type)) {
     return Array.from({ length }, (_, i) => {
       const inner = vector.get(i) as Vector | null;
       return inner === null ? null : cellsOf(inner);

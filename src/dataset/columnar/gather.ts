@@ -253,7 +253,8 @@ export class Gatherer {
   }
 
   #rest({ field, setup, subarray }: SpoolRow): number {
-    if (this.#codings.size === 2 && this.#uses.subarray === undefined) return 0;
+    const { field: fields, setup: setups, subarray: subarrays } = this.#uses;
+    if (fields === undefined && setups === undefined && subarrays === undefined) return 0;
     const key = `${field}|${setup}|${subarray}`;
     const known = this.#rests.get(key);
     if (known !== undefined) return known;

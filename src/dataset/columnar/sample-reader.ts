@@ -89,6 +89,7 @@ export class SampleReader {
     // One flag, weight or sigma may be said of a whole row.
     const single =
       typeof cell === "number" ||
+      typeof cell === "bigint" ||
       typeof cell === "boolean" ||
       (typeof cell === "string" && !cell.includes("["));
     const whole = source === this.#flag || source === this.#weight || source === this.#sigma;

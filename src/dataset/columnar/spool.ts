@@ -10,7 +10,7 @@ import { isMainThread } from "node:worker_threads";
 import { spoolError } from "./spool-file.ts";
 
 /** Folders for temporary files may be shared with other machines, whose process numbers say nothing here. */
-const PREFIX = `visvet-table-${createHash("sha256").update(hostname()).digest("hex").slice(0, 8)}-`;
+export const SPOOL_PREFIX = `visvet-table-${createHash("sha256").update(hostname()).digest("hex").slice(0, 8)}-`;
 const FACTS_FILE = "facts.json";
 
 /** Holds a working copy: while it is reachable, the copy stays. */
@@ -38,11 +38,15 @@ export async function spoolOf<Facts>(
   make: (folder: string) => Promise<Facts>,
 ): Promise<Spool<Facts>> {
   const key = createHash("sha256").update(identity).digest("hex").slice(0, 24);
-  const folder = join(tmpdir(), `${PREFIX}${process.pid}-${key}`);
+  const folder = join(tmpdir(), `${SPOOL_PREFIX}${process.pid}-${key}`);
   const there = spools.get(folder)?.deref();
   if (there !== undefined) return there as Spool<Facts>;
   const known = factsIn<Facts>(folder);
-  if (known !== undefined) return { folder, facts: known };
+  if (known !== undefined) {
+    const spool = { folder, facts: known };
+    // Its last holder may be gone already, and the copy not yet.
+    return owned.has(folder) ? held(spool) : spool;
+  }
   if (!watching) removeAbandoned();
   return makeCopy(folder, make);
 }
@@ -78,9 +82,13 @@ async function makeCopy<Facts>(
   }
   owned.delete(beside);
   owned.add(final);
-  const spool: Spool<Facts> = { folder: final, facts: revive<Facts>(JSON.stringify(facts, keepOdd)) };
-  spools.set(final, new WeakRef(spool));
-  unreachable.register(spool, final);
+  return held({ folder: final, facts: revive<Facts>(JSON.stringify(facts, keepOdd)) });
+}
+
+/** The copy is taken away when nobody holds `spool` any more. */
+function held<Facts>(spool: Spool<Facts>): Spool<Facts> {
+  spools.set(spool.folder, new WeakRef(spool));
+  unreachable.register(spool, spool.folder);
   return spool;
 }
 
@@ -142,7 +150,9 @@ function removeAbandoned(): void {
     return;
   }
   for (const name of names) {
-    const owner = name.startsWith(PREFIX) ? Number.parseInt(name.slice(PREFIX.length), 10) : Number.NaN;
+    const owner = name.startsWith(SPOOL_PREFIX)
+      ? Number.parseInt(name.slice(SPOOL_PREFIX.length), 10)
+      : Number.NaN;
     if (Number.isInteger(owner) && owner !== process.pid && !isAlive(owner)) remove(join(tmpdir(), name));
   }
 }

@@ -5,6 +5,8 @@ import {
   CompressionType,
   compressionRegistry,
   Dictionary,
+  Field,
+  FixedSizeList,
   Float32,
   Int8,
   RecordBatchFileWriter,
@@ -77,6 +79,37 @@ async function expectRead(path: string): Promise<void> {
 }
 
 describe("Arrow IPC", () => {
+  it("is read with lists of a fixed size", async () => {
+    const path = join(folder, "fixed.arrow");
+    const item = new Field("item", new Float32(), true);
+    const lists = (cells: (number | null)[][]) => vectorFromArray(cells, new FixedSizeList(2, item));
+    const one = (value: number) => vectorFromArray(Float64Array.of(value, value));
+    const made = new Table({
+      mjd: one(60_000),
+      ant1: vectorFromArray(Int32Array.of(1, 1)),
+      ant2: vectorFromArray(BigInt64Array.of(2n, 3n)),
+      u_m: one(1),
+      v_m: one(2),
+      w_m: one(3),
+      freq_ghz: one(1.4),
+      re: lists([
+        [1, 2],
+        [3, null],
+      ]),
+      im: lists([
+        [0, 0],
+        [0, 0],
+      ]),
+    });
+    writeFileSync(path, RecordBatchFileWriter.writeAll(made).toUint8Array(true));
+    const map = join(folder, "fixed.yaml");
+    writeFileSync(map, "constants: { polarizations: [XX, YY], channel_width: 1MHz }\n");
+    const all = await readAll(await openColumnar([path], { columnMap: map }));
+    expect([...all.antenna2]).toEqual([2, 3]);
+    expect([...all.real]).toEqual([1, 2, 3, 0]);
+    expect([...all.weight]).toEqual([1, 1, 1, 0]);
+  });
+
   it("is read as a file", async () => {
     const path = join(folder, "a.arrow");
     writeFileSync(path, RecordBatchFileWriter.writeAll(table()).toUint8Array(true));

@@ -207,6 +207,33 @@ describe("The column map in force", () => {
     expect(parseColumnMap(text, "m", ".").constants).toMatchObject(constants);
   });
 
+  it("puts frequencies into the channels that it gives, falling ones too", async () => {
+    const constants =
+      "constants: { frequencies: [[1.403GHz, 1.402GHz, 1.401GHz, 1.4GHz]], channel_width: 1MHz }\n";
+    const table = csvOf(gridSamples(3, 1, 4)).replaceAll(",channel,", ",other,");
+    const dataset = await openColumnar([tableFile(table, { map: constants })]);
+    expect(dataset.shape.channels).toBe(4);
+    expect([...(await readAll(dataset)).real.subarray(0, 8)]).toEqual(
+      [6, 7, 4, 5, 2, 3, 0, 1].map((i) => i + 0.25),
+    );
+    const off = table.replaceAll(",1402,", ",1402.6,").replaceAll(",1403,", ",1404,");
+    expect(await lineOfError(openColumnar([tableFile(off, { map: constants })]))).toContain(
+      "a row is at 1404000000 Hz, and no channel of the column map is within half its width of that",
+    );
+  });
+
+  it("counts channels from 1 where the table does, and says so", async () => {
+    const constants = "constants: { frequencies: { start: 1.4GHz, step: 1MHz, channels: 3 } }\n";
+    const shifted = gridSamples(3, 1, 3).map((sample) => ({ ...sample, channel: sample.channel + 1 }));
+    const dataset = await openColumnar([tableFile(csvOf(shifted), { map: constants })]);
+    expect(dataset.notes.map(({ code }) => code)).toContain("counted-from-one");
+    expect([...(await readAll(dataset)).real.subarray(0, 2)]).toEqual([0.25, 1.25]);
+    const beyond = [...shifted, { ...shifted[0]!, channel: 4 }];
+    expect(await lineOfError(openColumnar([tableFile(csvOf(beyond), { map: constants })]))).toContain(
+      "channels run from 1 to 4: expected 1 to 3",
+    );
+  });
+
   it("that names a column which is not there is refused", async () => {
     const path = tableFile(`${HEADER}\n`, { map: map("  flag: bad\n") });
     expect(await lineOfError(openColumnar([path]))).toContain(
