@@ -76,8 +76,23 @@ function matrixAxes(header: Header): ArrayAxis[] {
     const lengthKey = `MAXIS${i + 1}`;
     return { number: i + 1, lengthKey, length: header.requiredInteger(lengthKey, 0) };
   });
-  return readAxes(header, lengths).map((axis) => withTableKeywords(header, axis));
+  const axes = readAxes(header, lengths).map((axis) => withTableKeywords(header, axis));
+  const first = header.looseNumber("STK_1");
+  if (first === undefined || axes.some(({ type }) => type === "STOKES")) return axes;
+  // One product needs no axis: the keyword names it.
+  return [...axes, { ...ONE, type: "STOKES", value: first, step: Math.sign(first) }];
 }
+
+const ONE: ArrayAxis = {
+  number: 0,
+  lengthKey: "STK_1",
+  type: "",
+  length: 1,
+  stride: 0,
+  value: 1,
+  step: 1,
+  pixel: 1,
+};
 
 /** What an axis leaves out may stand in the keywords that every table of the format carries. */
 function withTableKeywords(header: Header, axis: ArrayAxis): ArrayAxis {

@@ -102,6 +102,15 @@ describe("the matrix", () => {
     card("REF_PIXL", real(1.5)),
   ];
 
+  it("without a STOKES axis is the product that STK_1 names, or Stokes I", async () => {
+    const axes = USUAL_AXES.filter(({ type }) => type !== "STOKES");
+    const columns = { WEIGHT: undefined };
+    const named = await open({ axes, columns, cards: [card("STK_1", -6)] });
+    expect([named.polarizations, codes(named)]).toEqual([["YY"], []]);
+    const unnamed = await open({ axes, columns });
+    expect([unnamed.polarizations, codes(unnamed)]).toEqual([["I"], ["missing-stokes-axis"]]);
+  });
+
   it("without a band axis is one sub-band", async () => {
     const axes = [AXES.complex, AXES.stokes, AXES.freq];
     const dataset = await open({ axes, columns: { WEIGHT: { form: "2E", cell: () => [1, 2] } } }, [
