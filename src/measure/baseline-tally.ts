@@ -1,5 +1,6 @@
 /** Samples of each baseline, sub-band and polarization by what they are, and their weights. */
 import type { Shape } from "../dataset/dataset.ts";
+import { Arena, kernelMemory } from "../util/kernels/memory.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { ExactSums } from "./exact-sums.ts";
 import {
@@ -26,6 +27,10 @@ export class BaselineTally implements Accumulator {
   /** (baselines x products x WEIGHTS) */
   private readonly weights = new ExactSums(0);
 
+  private readonly arena: Arena = new Arena(this);
+  /** address of (products x WEIGHTS) float64: those of one row */
+  private row: { readonly values: number } | undefined;
+
   constructor(shape: Shape) {
     this.products = shape.subbands * shape.polarizations;
   }
@@ -44,15 +49,30 @@ export class BaselineTally implements Accumulator {
       for (let k = 0; k < products * KINDS; k++) {
         this.counts[to * KINDS + k]! += prepared.counts[from * KINDS + k]!;
       }
+      const { values } = this.placed();
+      const { f64 } = kernelMemory.heap;
       for (let k = 0; k < products; k++) {
         const sum = (from + k) * SUMS;
-        const first = WEIGHTS * (to + k);
+        const at = values / 8 + WEIGHTS * k;
         const weight = prepared.sums[sum + SUM_WEIGHT]!;
-        weights.add(first, weight);
-        weights.add(first + 1, prepared.sums[sum + FLAGGED_WEIGHT]!);
-        if (weight > 0) weights.add(first + 2, (weight * weight) / prepared.sums[sum + SUM_SQUARE]!);
+        f64[at] = weight;
+        f64[at + 1] = prepared.sums[sum + FLAGGED_WEIGHT]!;
+        f64[at + 2] = weight > 0 ? (weight * weight) / prepared.sums[sum + SUM_SQUARE]! : 0;
       }
+      weights.addGroups(WEIGHTS * to, values, 0, 1, WEIGHTS * products);
     }
+  }
+
+  /** Give the memory back. Nothing can be asked or added after. */
+  release(): void {
+    this.weights.release();
+    this.arena.release();
+    this.row = undefined;
+  }
+
+  private placed(): { readonly values: number } {
+    this.row ??= { values: this.arena.require(8 * WEIGHTS * this.products) };
+    return this.row;
   }
 
   private reserve(baseline: number): void {

@@ -47,6 +47,8 @@ const PRODUCT_SUMS = 6;
 /** Counts a product. */
 const PRODUCT_COUNTS = 4;
 const MAP_BYTES = 64;
+/** What the kernels' memory has room for beside the rest, also while it is moved to a larger place. */
+const MOST_BYTES = 512e6;
 
 /** Cells of one baseline, field, setup and sub-array, by number of their bin. */
 interface Stream {
@@ -77,6 +79,11 @@ class CellSums {
     this.products = new ExactSums(this.room * width * PRODUCT_SUMS);
     this.given = new Float64Array(this.room * CELL_SUMS);
     this.counts = new Float64Array(this.room * width * PRODUCT_COUNTS);
+  }
+
+  release(): void {
+    this.own.release();
+    this.products.release();
   }
 
   newCell(): number {
@@ -156,7 +163,7 @@ export class BinnedRows implements TrackKeeper {
       MAP_BYTES +
       CELL_SUMS * (ExactSums.BYTES + 8) +
       this.width * (PRODUCT_SUMS * ExactSums.BYTES + PRODUCT_COUNTS * 8);
-    this.most = Math.max(1024, Math.floor(bytes / cellBytes));
+    this.most = Math.max(1024, Math.floor(Math.min(bytes, MOST_BYTES) / cellBytes));
     this.sums = new CellSums(this.width);
   }
 
@@ -185,12 +192,11 @@ export class BinnedRows implements TrackKeeper {
     sums.addNumber(cell, 2, sign * block.v[row]!);
     sums.addNumber(cell, 3, sign * block.w[row]!);
     sums.addNumber(cell, 4, block.integration[row]!);
+    const values = prepared.at.sums + 8 * SUMS * row * width;
+    sums.products.addGroups(cell * width * PRODUCT_SUMS, values, SUMS, width, PRODUCT_SUMS);
     for (let product = 0; product < width; product++) {
       const from = row * width + product;
       const to = cell * width + product;
-      for (let k = 0; k < PRODUCT_SUMS; k++) {
-        sums.products.add(to * PRODUCT_SUMS + k, prepared.sums[from * SUMS + k]!);
-      }
       for (let k = 0; k < PRODUCT_COUNTS; k++) {
         sums.counts[to * PRODUCT_COUNTS + k]! += prepared.counts[from * KINDS + k]!;
       }
@@ -242,6 +248,7 @@ export class BinnedRows implements TrackKeeper {
         this.sums.merge(this.cellAt(stream, Math.floor(bin / 2)), before, cell);
       }
     }
+    before.release();
     // Streams without end cannot be joined: only time can.
     if (this.seconds > LONGEST) {
       throw new InputError(
@@ -306,6 +313,11 @@ export class BinnedRows implements TrackKeeper {
       held += stream.cells.size;
     }
     if (held !== cells.length) throw from.error(`${held} bins hold ${cells.length} cells`, "streams");
+  }
+
+  /** Give the kernels' memory back. Nothing can be asked or added after. */
+  release(): void {
+    this.sums.release();
   }
 
   tracks(places: Int32Array): TracksWithoutScans {

@@ -8,44 +8,25 @@
  * number a number added.
  */
 
+import { Arena, kernelMemory } from "../util/kernels/memory.ts";
+import { addTo, EMPTY, exactKernels, LOWEST, PIECES, raise, UNITS } from "./kernels/exact.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
 
-const WIDTH = 26;
-const PIECES = 3;
-/** Exponents of doubles are -1074..1023: powers from 2^-1092 up, which `unit` reaches by two factors. */
-const LOWEST = -42;
-const EMPTY = -32768;
-
-const word = new Float64Array(1);
-const words = new Uint32Array(word.buffer);
-/** Index of the half of a double that holds its exponent. */
-const HIGH = new Uint8Array(new Uint32Array([1]).buffer)[0] === 1 ? 1 : 0;
-
-/** The power of a number's first piece: floor(exponent / WIDTH). */
-function powerOf(value: number): number {
-  word[0] = value;
-  const exponent = ((words[HIGH]! >>> 20) & 2047) - 1023;
-  return Math.max(LOWEST + PIECES, Math.floor(exponent / WIDTH));
-}
-
-const UNITS = Float64Array.from({ length: 90 }, (_, i) => 2 ** Math.max(-1074, (i + LOWEST) * WIDTH));
-function unit(power: number): number {
-  return UNITS[power - LOWEST]!;
-}
-
 export class ExactSums {
   /** number of sums */
-  length: number;
+  length = 0;
   /** (length) power of the first piece; EMPTY for a sum of nothing but zeros */
-  private top: Int16Array;
+  private top: Int16Array = new Int16Array(0);
   /** (length x PIECES) sums of pieces, highest power first */
-  private pieces: Float64Array;
+  private pieces: Float64Array = new Float64Array(0);
+  private readonly arena: Arena = new Arena(this);
+  /** addresses of these */
+  private topAt = 0;
+  private piecesAt = 0;
 
   constructor(length: number) {
-    this.length = length;
-    this.top = new Int16Array(length).fill(EMPTY);
-    this.pieces = new Float64Array(length * PIECES);
+    if (length > 0) this.place(length);
   }
 
   /** Bytes a sum takes. */
@@ -53,64 +34,73 @@ export class ExactSums {
 
   /** Make room for more sums, which begin at 0. */
   grow(length: number): void {
-    const top = new Int16Array(length).fill(EMPTY);
-    top.set(this.top);
-    const pieces = new Float64Array(length * PIECES);
-    pieces.set(this.pieces);
-    this.top = top;
-    this.pieces = pieces;
+    this.place(length);
+  }
+
+  private place(length: number): void {
+    const { top, pieces, topAt, piecesAt } = this;
+    this.topAt = this.arena.require(2 * length);
+    this.piecesAt = this.arena.require(8 * PIECES * length);
+    const { buffer } = kernelMemory.heap.u8;
+    this.top = new Int16Array(buffer, this.topAt, length);
+    this.pieces = new Float64Array(buffer, this.piecesAt, length * PIECES);
+    this.top.set(top);
+    this.top.fill(EMPTY, top.length);
+    this.pieces.set(pieces);
+    this.pieces.fill(0, pieces.length);
+    if (this.length > 0) {
+      this.arena.release(topAt);
+      this.arena.release(piecesAt);
+    }
     this.length = length;
   }
 
-  /** The first `length` of them. */
+  /** Give the memory back. Nothing can be asked or added after. */
+  release(): void {
+    this.arena.release();
+    this.length = 0;
+  }
+
+  /** The first `length` of them, copied: the kernels' memory stays with this thread. */
   state(length: number): StateRecord {
-    return { top: this.top.subarray(0, length), pieces: this.pieces.subarray(0, length * PIECES) };
+    return { top: this.top.slice(0, length), pieces: this.pieces.slice(0, length * PIECES) };
   }
 
   restore(from: StateReader, length: number): void {
-    this.top = from.array(Int16Array, "top", length);
-    for (const power of this.top) {
+    const top = from.array(Int16Array, "top", length);
+    for (const power of top) {
       if (power !== EMPTY && !(power >= LOWEST + PIECES && power < LOWEST + UNITS.length)) {
         throw from.error(`there is no power ${power}`, "top");
       }
     }
-    this.pieces = from.finite(Float64Array, "pieces", length * PIECES);
-    this.length = length;
+    const pieces = from.finite(Float64Array, "pieces", length * PIECES);
+    this.release();
+    this.top = top;
+    this.pieces = pieces;
+    if (length > 0) this.place(length);
   }
 
   /** @param value finite */
   add(index: number, value: number): void {
-    if (value === 0) return;
-    let power = powerOf(value);
-    this.raise(index, power);
-    const top = this.top[index]!;
-    let rest = value;
-    for (; power > top - PIECES; power--) {
-      const size = unit(power);
-      const whole = Math.round(rest / size) * size;
-      this.pieces[index * PIECES + top - power]! += whole;
-      rest -= whole;
-      if (rest === 0) return;
-    }
+    addTo(this.top, this.pieces, index, value);
   }
 
-  /** Keep pieces up to `power`, dropping those that fall out at the low end. */
-  private raise(index: number, power: number): void {
-    const top = this.top[index]!;
-    if (power <= top) return;
-    const first = index * PIECES;
-    const shift = top === EMPTY ? PIECES : Math.min(PIECES, power - top);
-    for (let k = PIECES - 1; k >= 0; k--) {
-      this.pieces[first + k] = k >= shift ? this.pieces[first + k - shift]! : 0;
-    }
-    this.top[index] = power;
+  /**
+   * Add number k of group g to sum first + g x each + k.
+   *
+   * @param values address in the kernels' memory of float64, finite
+   * @param step   from one group to the next, numbers
+   */
+  addGroups(first: number, values: number, step: number, groups: number, each: number): void {
+    const { topAt, piecesAt } = this;
+    exactKernels.addExact(topAt + 2 * first, piecesAt + 8 * PIECES * first, values, step, groups, each);
   }
 
   /** Add a sum of another set to one of this. */
   merge(index: number, other: ExactSums, theirs: number): void {
     const power = other.top[theirs]!;
     if (power === EMPTY) return;
-    this.raise(index, power);
+    raise(this.top, this.pieces, index, power);
     const shift = this.top[index]! - power;
     for (let k = 0; k + shift < PIECES; k++) {
       this.pieces[index * PIECES + k + shift]! += other.pieces[theirs * PIECES + k]!;
