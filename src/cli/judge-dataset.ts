@@ -59,7 +59,7 @@ export async function judgeDataset(
   surveyed?: SurveyPart,
 ): Promise<number> {
   const progress = createProgress(process.stderr);
-  const workers = workersFor(options, dataset.bytes);
+  const workers = workersFor(options, dataset);
   try {
     const check = await checkDataset(dataset, { ...request, workers, onStage: progress.stage }, surveyed);
     progress.end();

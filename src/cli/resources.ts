@@ -1,6 +1,8 @@
 /** `--jobs` and `--memory`, as every command that reads samples takes them. */
 import { availableParallelism } from "node:os";
 import type { Argv } from "yargs";
+import type { Dataset } from "../dataset/dataset.ts";
+import { threadStateBytes } from "../measure/memory.ts";
 import { InputError } from "../util/errors.ts";
 import { parseSize } from "../util/units.ts";
 import { Workers } from "../util/workers.ts";
@@ -18,7 +20,8 @@ const SMALL_BYTES = 64e6;
 const DEFAULT_MEMORY = "1 GB";
 /** With less not even small data have room. */
 const LEAST_MEMORY = 256e6;
-/** A thread, with its buffers. */
+/** Of the memory, what threads may take between them: each its program and buffers, and its state of a survey. */
+const THREADS_SHARE = 0.6;
 const THREAD_BYTES = 80e6;
 
 /** @param memory what it is where the user says nothing */
@@ -51,20 +54,24 @@ export function memoryOf({ memory }: Pick<ResourceOptions, "memory">): number {
  * The threads to take for a dataset, or undefined for none but the main one. What they find does not depend on how many
  * they are, so there may be fewer than asked for where the memory would not hold them.
  *
- * @param bytes of the dataset on disk
+ * @param share of the rows that will be read
  */
-export function workersFor(options: ResourceOptions, bytes: number): Workers | undefined {
-  const jobs = jobsOf(options, bytes);
+export function workersFor(options: ResourceOptions, dataset: Dataset, share = 1): Workers | undefined {
+  const jobs = jobsOf(options, dataset, share);
   return jobs === 1 ? undefined : new Workers(jobs);
 }
 
-function jobsOf(options: ResourceOptions, bytes: number): number {
+function jobsOf(options: ResourceOptions, dataset: Dataset, share: number): number {
   const { jobs } = options;
   if (jobs !== undefined && !(Number.isInteger(jobs) && jobs >= 1 && jobs <= MOST_JOBS)) {
     throw new InputError(`${jobs} is no number of threads: expected a whole number from 1 to ${MOST_JOBS}`, {
       part: "--jobs",
     });
   }
-  const wanted = jobs ?? (bytes < SMALL_BYTES ? 1 : Math.min(availableParallelism(), MOST_JOBS_UNASKED));
-  return Math.max(1, Math.min(wanted, Math.floor(memoryOf(options) / 2 / THREAD_BYTES)));
+  const unasked =
+    share * dataset.bytes < SMALL_BYTES ? 1 : Math.min(availableParallelism(), MOST_JOBS_UNASKED);
+  const memory = memoryOf(options);
+  const room = THREADS_SHARE * memory;
+  const most = Math.floor(room / (THREAD_BYTES + threadStateBytes(dataset, memory)));
+  return Math.max(1, Math.min(jobs ?? unasked, most));
 }

@@ -54,7 +54,7 @@ export async function runNightlyCommand(options: NightlyOptions): Promise<number
     keep: kept,
     prune,
     check: { memory, onStage: progress.stage },
-    workersFor: (bytes) => workersFor(options, bytes),
+    workersFor: (dataset) => workersFor(options, dataset),
   }).finally(progress.end);
   process.stdout.write(outputOf(options, result, join(out, INDEX_PAGE)));
   if (options.onTrouble !== undefined && worstOf(result.news) !== "ready") {

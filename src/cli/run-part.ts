@@ -43,7 +43,7 @@ export async function runPart(options: PartOptions): Promise<void> {
   }
   const { firstRow, endRow } = identity;
   const progress = createProgress(process.stderr);
-  const workers = workersFor(options, dataset.bytes / of);
+  const workers = workersFor(options, dataset, 1 / of);
   try {
     await makePart(dataset, identity, out, {
       workers,

@@ -58,7 +58,9 @@ export async function eachSelection(
 ): Promise<void> {
   const { request, gridded, cells } = image;
   const cellBytes = 8 * (((SELECTION_ORDER + 1) * (SELECTION_ORDER + 2)) / 2 + 1);
-  const batch = Math.max(1, Math.floor(MOST_BYTES / Math.max(1, cells.count * cellBytes)));
+  // Every thread has grids of its own, and this one those of them all.
+  const share = MOST_BYTES / (1 + (request.workers?.jobs ?? 0));
+  const batch = Math.max(1, Math.floor(share / Math.max(1, cells.count * cellBytes)));
   for (let from = 0; from < selections.length; from += batch) {
     const some = selections.slice(from, from + batch);
     const grids = await gridSelections(request, some, gridded.grid.index);

@@ -85,7 +85,9 @@ function apart(parts: readonly GriddedPart[], factorOf: CellFactor): number {
 /** Few at a time in memory. */
 async function gridAll(image: GriddedImage, parts: readonly ErrorPart[]): Promise<ErrorCells[]> {
   const { request, gridded, cells } = image;
-  const batch = Math.max(1, Math.floor(MOST_BYTES / Math.max(1, cells.count * CELL_BYTES)));
+  // Every thread has grids of its own, and this one those of them all.
+  const share = MOST_BYTES / (1 + (request.workers?.jobs ?? 0));
+  const batch = Math.max(1, Math.floor(share / Math.max(1, cells.count * CELL_BYTES)));
   const all: ErrorCells[] = [];
   for (let from = 0; from < parts.length; from += batch) {
     const scopes = parts.slice(from, from + batch).map(({ scope }) => scope);

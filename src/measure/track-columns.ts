@@ -70,16 +70,16 @@ export function productColumns(length: number): ProductColumns {
   };
 }
 
-/** Copies of columns with their first `rows` rows of `width` numbers put in `order`; a column at a time. */
+/**
+ * Columns with their first rows of `width` numbers put in `order`. The given ones are used up: each is let go before the
+ * next is made, so that they are never there twice.
+ */
 export function gather<C extends CellColumns | ProductColumns>(
   columns: C,
   order: Uint32Array,
   width: number,
 ): C {
-  const entries = Object.entries(columns as unknown as Record<string, Numbers>);
-  return Object.fromEntries(
-    entries.map(([name, column]) => [name, gatherColumn(column, order, width)]),
-  ) as never;
+  return eachInTurn(columns, (column) => gatherColumn(column, order, width));
 }
 
 function gatherColumn<N extends Numbers>(column: N, order: Uint32Array, width: number): N {
@@ -93,16 +93,26 @@ function gatherColumn<N extends Numbers>(column: N, order: Uint32Array, width: n
   return out;
 }
 
-/** Copies of columns with room for `length` numbers, the first `used` taken over. */
+/** Columns with room for `length` numbers, the first `used` taken over. The given ones are used up. */
 export function resized<C extends CellColumns | ProductColumns>(columns: C, used: number, length: number): C {
-  const entries = Object.entries(columns as unknown as Record<string, Numbers>);
-  return Object.fromEntries(
-    entries.map(([name, column]) => {
-      const grown = new (column.constructor as new (length: number) => Numbers)(length);
-      grown.set(column.subarray(0, used) as never);
-      return [name, grown];
-    }),
-  ) as never;
+  return eachInTurn(columns, (column) => {
+    const grown = new (column.constructor as new (length: number) => Numbers)(length);
+    grown.set(column.subarray(0, used) as never);
+    return grown;
+  });
+}
+
+function eachInTurn<C extends CellColumns | ProductColumns>(
+  columns: C,
+  make: (column: Numbers) => Numbers,
+): C {
+  const left = columns as unknown as Record<string, Numbers>;
+  const made: Record<string, Numbers> = {};
+  for (const name of Object.keys(left)) {
+    made[name] = make(left[name]!);
+    delete left[name];
+  }
+  return made as never;
 }
 
 /** Append the first `count` numbers of other columns. */

@@ -6,6 +6,7 @@
 import { createHash } from "node:crypto";
 import { readFile, rm, stat } from "node:fs/promises";
 import { join, relative, resolve } from "node:path";
+import type { Dataset } from "../dataset/dataset.ts";
 import { openDataset } from "../dataset/open.ts";
 import { readPlan } from "../dataset/plan-file.ts";
 import { type CheckRequest, checkDataset } from "../report/check.ts";
@@ -55,8 +56,8 @@ export interface NightlyRequest {
   readonly prune: boolean;
   /** what every check is given besides its plan */
   readonly check: Omit<CheckRequest, "plan" | "rules" | "workers">;
-  /** threads for a dataset of so many bytes; closed when it is done */
-  readonly workersFor?: (bytes: number) => Workers | undefined;
+  /** threads for a dataset; closed when it is done */
+  readonly workersFor?: (dataset: Dataset) => Workers | undefined;
   readonly onDataset?: (path: string, done: number, of: number) => void;
 }
 
@@ -165,7 +166,7 @@ class Night {
     const { rules, out } = this.request;
     const dataset = await openDataset(candidate.files.length === 1 ? candidate.files[0]! : candidate.files);
     const asked = plan === null ? {} : await readPlan(plan);
-    const workers = this.request.workersFor?.(dataset.bytes);
+    const workers = this.request.workersFor?.(dataset);
     const check = await checkDataset(dataset, {
       ...this.request.check,
       plan: asked,
