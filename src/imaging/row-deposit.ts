@@ -21,6 +21,9 @@ export class RowDeposit {
   private readonly coefficients: Float64Array;
   private readonly sums: Float64Array;
   private readonly nodeWeights: Float64Array;
+  private readonly powers: Float64Array;
+  /** by setup: (subbands) 1 where channels lie evenly */
+  private readonly even: readonly Uint8Array[];
   private u = 0;
   private v = 0;
   private setup = 0;
@@ -30,6 +33,8 @@ export class RowDeposit {
     this.frequencies = dataset.setups.map((setup) => setup.frequencies);
     this.logs = this.frequencies.map((frequencies) => frequencies.map(Math.log));
     this.nodes = order + 1;
+    this.powers = powerSums(this.channels, this.nodes);
+    this.even = this.frequencies.map((frequencies) => evenSubbands(frequencies, this.channels));
     this.coefficients = lagrangeCoefficients(this.nodes);
     this.sums = new Float64Array(this.nodes);
     this.nodeWeights = new Float64Array(this.nodes);
@@ -68,7 +73,8 @@ export class RowDeposit {
       const first = s * channels;
       const step = channels > 1 ? Math.abs(frequencies[first + 1]! - frequencies[first]!) : 0;
       // Gathering pays where a cell holds more channels than a run becomes points.
-      if (channels > 1 && reach * step * 2 * nodes <= 1) this.addRuns(grid, row, first, first + channels);
+      if (this.even[this.setup]![s] === 1 && reach * step * 2 * nodes <= 1)
+        this.addRuns(grid, row, first, first + channels);
       else this.addEach(grid, row, first, first + channels);
     }
   }
@@ -82,43 +88,64 @@ export class RowDeposit {
     }
   }
 
-  /** Runs of channels in one cell are gathered before they are added. */
+  /**
+   * Runs of channels in one cell are gathered before they are added; in a run, stretches of one weight at once, by the
+   * sums of the powers of their places.
+   */
   private addRuns(grid: UvSink, row: RowWeights, first: number, last: number): void {
     const { sums, nodes } = this;
     const frequencies = this.frequencies[this.setup]!;
+    const { weight, noise } = row;
+    const powers = this.powers;
+    const step = frequencies[first + 1]! - frequencies[first]!;
+    let c = first;
+    while (c < last) {
+      if (weight[c] === 0) {
+        c += 1;
+        continue;
+      }
+      const start = c;
+      const end = this.endOfRun(grid, start, last, step);
+      sums.fill(0);
+      let count = 0;
+      let final = start;
+      let noiseSum = 0;
+      while (c < end) {
+        const from = c;
+        const value = weight[from]!;
+        while (c < end && weight[c] === value) c += 1;
+        if (value === 0) continue;
+        for (let i = from; i < c; i++) noiseSum += noise[i]!;
+        let scale = value;
+        for (let k = 0, at = (c - start) * nodes, before = (from - start) * nodes; k < nodes; k++) {
+          sums[k]! += scale * (powers[at + k]! - powers[before + k]!);
+          scale *= step;
+        }
+        count += c - from;
+        final = c - 1;
+      }
+      this.flush(grid, frequencies[start]!, frequencies[final]! - frequencies[start]!, count, noiseSum);
+    }
+  }
+
+  /** One past the last channel, before `last`, that lies in the cell of channel `start`. */
+  private endOfRun(grid: UvSink, start: number, last: number, step: number): number {
+    const frequencies = this.frequencies[this.setup]!;
     const u = this.u * grid.form.field;
     const v = this.v * grid.form.field;
-    let runU = Number.NaN;
-    let runV = Number.NaN;
-    let start = 0;
-    let span = 0;
-    let count = 0;
-    let noise = 0;
-    for (let c = first; c < last; c++) {
-      const weight = row.weight[c]!;
-      if (weight === 0) continue;
-      const frequency = frequencies[c]!;
-      const cellU = Math.floor(u * frequency + 0.5);
-      const cellV = Math.floor(v * frequency + 0.5);
-      if (cellU !== runU || cellV !== runV) {
-        this.flush(grid, start, span, count, noise);
-        runU = cellU;
-        runV = cellV;
-        start = frequency;
-        count = 0;
-        noise = 0;
-        sums.fill(0);
-      }
-      span = frequency - start;
-      let power = weight;
-      for (let k = 0; k < nodes; k++) {
-        sums[k]! += power;
-        power *= span;
-      }
-      count += 1;
-      noise += row.noise[c]!;
-    }
-    this.flush(grid, start, span, count, noise);
+    const cellU = Math.floor(u * frequencies[start]! + 0.5);
+    const cellV = Math.floor(v * frequencies[start]! + 0.5);
+    const inCell = (c: number) =>
+      Math.floor(u * frequencies[c]! + 0.5) === cellU && Math.floor(v * frequencies[c]! + 0.5) === cellV;
+    // About there, if channels lie evenly; then by the channels themselves.
+    const channels = Math.min(
+      channelsLeft(u * frequencies[start]! + 0.5 - cellU, u * step),
+      channelsLeft(v * frequencies[start]! + 0.5 - cellV, v * step),
+    );
+    let end = Math.min(last, start + 1 + Math.floor(channels));
+    while (end > start + 1 && !inCell(end - 1)) end -= 1;
+    while (end < last && inCell(end)) end += 1;
+    return end;
   }
 
   private flush(grid: UvSink, start: number, span: number, count: number, noise: number): void {
@@ -134,4 +161,38 @@ export class RowDeposit {
       grid.add(u * frequency, v * frequency, nodeWeights[j]!, j === 0 ? noise : 0);
     }
   }
+}
+
+/** Share of a channel by which channels may lie off their even places. */
+const UNEVEN = 1e-6;
+
+/** (subbands) 1 where the channels, at least two, lie evenly along the band. */
+function evenSubbands(frequencies: Float64Array, channels: number): Uint8Array {
+  return Uint8Array.from({ length: frequencies.length / channels }, (_, s) => {
+    if (channels < 2) return 0;
+    const own = frequencies.subarray(s * channels, (s + 1) * channels);
+    const step = own[1]! - own[0]!;
+    return own.every((f, c) => Math.abs(f - own[0]! - c * step) <= UNEVEN * Math.abs(step) * channels)
+      ? 1
+      : 0;
+  });
+}
+
+/** Steps from a place in a cell, 0..1, to its edge. */
+function channelsLeft(place: number, step: number): number {
+  if (step === 0) return Number.POSITIVE_INFINITY;
+  return step > 0 ? (1 - place) / step : place / -step;
+}
+
+/** (channels + 1 x nodes) sums of j^k over j below each number of channels. */
+function powerSums(channels: number, nodes: number): Float64Array {
+  const sums = new Float64Array((channels + 1) * nodes);
+  for (let j = 0; j < channels; j++) {
+    let power = 1;
+    for (let k = 0; k < nodes; k++) {
+      sums[(j + 1) * nodes + k] = sums[j * nodes + k]! + power;
+      power *= j;
+    }
+  }
+  return sums;
 }

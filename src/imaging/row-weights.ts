@@ -37,6 +37,10 @@ export class RowWeights {
     this.first = 0;
     this.last = this.subbands;
     const { products, polarizations, weight, noise } = this;
+    if (products.length === 2) {
+      this.fillTwo(weights, from, variance, varianceFrom);
+      return;
+    }
     for (let c = 0; c < weight.length; c++) {
       let sum = 0;
       let noiseSum = 0;
@@ -49,6 +53,22 @@ export class RowWeights {
       }
       weight[c] = sum;
       noise[c] = noiseSum;
+    }
+  }
+
+  /** The same for the usual case of two products. */
+  private fillTwo(weights: Float32Array, from: number, variance: Float64Array, varianceFrom: number): void {
+    const { products, polarizations, weight, noise } = this;
+    const second = products[1]! - products[0]!;
+    let i = from + products[0]!;
+    let v = varianceFrom + products[0]!;
+    for (let c = 0; c < weight.length; c++, i += polarizations, v += polarizations) {
+      const a = weights[i]!;
+      const b = weights[i + second]!;
+      const goodA = a > 0 && a < Number.POSITIVE_INFINITY;
+      const goodB = b > 0 && b < Number.POSITIVE_INFINITY;
+      weight[c] = (goodA ? a : 0) + (goodB ? b : 0);
+      noise[c] = (goodA ? a * variance[v]! : 0) + (goodB ? b * variance[v + second]! : 0);
     }
   }
 
