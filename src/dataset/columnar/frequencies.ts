@@ -7,6 +7,9 @@ import type { ColumnMap, SetupConstant } from "./column-map.ts";
 import type { FoundFrequencies, FoundLabels } from "./find-labels.ts";
 import type { Label } from "./labels.ts";
 
+/** Channel centres of all setups that are held: 128 MB. */
+const MOST_FREQUENCIES = 1 << 24;
+
 /** Which channel a cell means: by its number, or by its frequency in Hz within a setup and sub-band. */
 export type ChannelCodes =
   | { readonly by: "number"; readonly codes: ReadonlyMap<Label, number> }
@@ -54,6 +57,14 @@ export function resolveFrequencies(request: Request): ResolvedFrequencies {
       ? undefined
       : axisCodes(numbered.sorted(), size, map.uses.channel?.from, "channel", notes, file);
   const channels = size ?? countChannels(request, grids, codes);
+  if (setupIds.length * subbands * channels > MOST_FREQUENCIES) {
+    throw new InputError(
+      `there would be ${setupIds.length} x ${subbands} x ${channels} channels in all setups and sub-bands: expected at ` +
+        `most ${MOST_FREQUENCIES}`,
+      { file },
+      "A column probably holds something else than the column map says",
+    );
+  }
   const setups = setupIds.map((id, index) => {
     const constant = constants?.[constants.length === 1 ? 0 : index];
     const frequencies = new Float64Array(subbands * channels).fill(Number.NaN);

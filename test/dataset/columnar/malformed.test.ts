@@ -59,6 +59,16 @@ describe("A table of text that is malformed", () => {
     expect(process.memoryUsage().arrayBuffers - before).toBeLessThan(64e6);
   });
 
+  it("with sub-bands and channels without end is refused before they are held", async () => {
+    const rows = Array.from({ length: 4200 }, (_, i) =>
+      ROW.replace("60000,", `60000,${i % 4090},`).replace(",0,1400,", `,${i},1400,`),
+    );
+    const header = HEADER.replace("mjd,", "mjd,subband,");
+    expect(await lineOfError(openColumnar([tableFile(`${header}\n${rows.join("\n")}\n`)]))).toContain(
+      "there would be 1 x 4090 x 4200 channels in all setups and sub-bands",
+    );
+  });
+
   it("with a million columns is refused", async () => {
     const names = Array.from({ length: 1e6 }, (_, i) => `c${i}`).join(",");
     expect(await lineOfError(openColumnar([tableFile(`${names}\n`)]))).toContain(
