@@ -66,11 +66,11 @@ interface PlanePoints {
   readonly all: readonly Point[];
   /** (baselines + 1) first point of each */
   readonly first: Int32Array;
-  /** of no ignored antenna; of very many an even choice, from which each antenna's others are taken */
+  /** of no ignored antenna, from which each antenna's others are taken; of very many an even choice */
   readonly trusted: readonly Point[];
 }
 
-/** A choice of others is made from this many. */
+/** Of more than this many, one choice of others serves all antennas. */
 const MOST_TRUSTED = 4000;
 
 function planePoints(grid: Grid, all: readonly Point[], ignore: ReadonlySet<number>): PlanePoints {
@@ -83,7 +83,7 @@ function planePoints(grid: Grid, all: readonly Point[], ignore: ReadonlySet<numb
       : all.filter(
           ({ baseline }) => !ignore.has(grid.first[baseline]!) && !ignore.has(grid.second[baseline]!),
         );
-  return { all, first, trusted: thinned(trusted, MOST_TRUSTED) };
+  return { all, first, trusted: trusted.length > MOST_TRUSTED ? thinned(trusted, MOST_OTHERS) : trusted };
 }
 
 function ownPoints(
