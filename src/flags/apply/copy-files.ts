@@ -1,4 +1,5 @@
 /** Each file of a dataset copied with flags set, in the way of its format. */
+import { CannotHoldFlags } from "../../dataset/cannot-hold.ts";
 import type { Dataset } from "../../dataset/dataset.ts";
 import { openFits } from "../../dataset/fits/hdus.ts";
 import { openSource } from "../../dataset/fits/source.ts";
@@ -11,6 +12,13 @@ import type { RowsOfFile } from "../../dataset/rows-of-file.ts";
 import { type ByteSink, openSink } from "../../util/byte-sink.ts";
 import type { OpenFile } from "../../util/new-output.ts";
 import type { AcceptedFlag } from "../accepted.ts";
+
+/** Notes of a dataset whose numbers are not those of its files, which flag tables are in. */
+const RENUMBERED: ReadonlySet<string> = new Set([
+  "antennas-renumbered",
+  "fields-renumbered",
+  "subarrays-renumbered",
+]);
 
 /** Where flags are kept in a file. */
 export const PLACES = ["weights", "flag-table", "flag-column"] as const;
@@ -92,6 +100,10 @@ async function copyFitsFile(
   if (place === "weights") {
     await (isIdi ? copyFlaggingIdiWeights : copyFlaggingWeights)(file, rows, sink);
     return 0;
+  }
+  const other = rows.dataset.notes.find(({ code }) => RENUMBERED.has(code));
+  if (other !== undefined) {
+    throw new CannotHoldFlags("its files or sub-arrays number antennas or fields otherwise than the dataset");
   }
   const reasoned = flags.map((flag) => ({ selection: flag, reason: `${flag.id} ${flag.rule}` }));
   return (isIdi ? copyAddingIdiFlags : copyAddingFlags)(file, rows, own, reasoned, sink);
