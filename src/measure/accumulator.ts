@@ -17,9 +17,10 @@ export interface Accumulator {
    * Take over a state. This was just made, of the same dataset and settings.
    *
    * @param baselines  how many baselines there are
+   * @param setups     how many frequency setups the dataset has
    * @throws InputError where it is no state of such an accumulator
    */
-  restore(from: StateReader, baselines: number): void;
+  restore(from: StateReader, baselines: number, setups: number): void;
   /** Give back what it holds of the kernels' memory, which no collector takes. It is not to be used after. */
   release?(): void;
 }

@@ -291,7 +291,7 @@ export class BinnedRows implements TrackKeeper {
     };
   }
 
-  restore(from: StateReader, baselines: number): void {
+  restore(from: StateReader, baselines: number, setups: number): void {
     this.seconds = from.number("seconds");
     if (!(Number.isInteger(Math.log2(this.seconds / NARROWEST)) && this.seconds <= 2 * LONGEST)) {
       throw from.error(`${this.seconds} s is no width of a bin`, "seconds");
@@ -304,8 +304,11 @@ export class BinnedRows implements TrackKeeper {
     let held = 0;
     for (let i = 0, at = 0; i + 5 <= streams.length; i += 5) {
       const [baseline, field, setup, subarray, count] = streams.subarray(i, i + 5) as unknown as Five;
-      if (!(baseline >= 0 && baseline < baselines)) {
-        throw from.error(`there is no baseline ${baseline} of ${baselines}`, "streams");
+      if (!(baseline >= 0 && baseline < baselines && setup >= 0 && setup < setups)) {
+        throw from.error(
+          `there is no baseline ${baseline} of ${baselines} in setup ${setup} of ${setups}`,
+          "streams",
+        );
       }
       const stream = this.streamOf(baseline, field, setup, subarray);
       for (const end = Math.min(at + count, bins.length); at < end; at++)

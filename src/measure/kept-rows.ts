@@ -126,11 +126,12 @@ export class KeptRows implements TrackKeeper {
     };
   }
 
-  restore(from: StateReader, baselines: number): void {
+  restore(from: StateReader, baselines: number, setups: number): void {
     const cells = from.array(Float64Array, "place").length;
     this.place = from.counts(Float64Array, "place", cells);
     this.columns = readColumns(from.child("columns"), this.columns, cells);
     from.child("columns").indices(Int32Array, "baseline", cells, 0, baselines);
+    from.child("columns").indices(Int32Array, "setup", cells, 0, setups);
     this.products = readColumns(from.child("products"), this.products, cells * this.width);
     this.cells = cells;
     this.room = cells;

@@ -96,7 +96,7 @@ export class SurveyPart {
     const gathered = state.child("gathered");
     const entries = Object.entries(part.gathered as unknown as Record<string, Accumulator>);
     for (const [name, accumulator] of entries) {
-      accumulator.restore(gathered.child(name), part.index.baselines.length);
+      accumulator.restore(gathered.child(name), part.index.baselines.length, dataset.setups.length);
     }
     return part;
   }
