@@ -3,13 +3,18 @@
  * integrations, emission that the shortest spacing does not see. Each is predicted from the sources and the samples,
  * and its size fitted to the image: 1 where the image has all of it, 0 where the imager corrected it.
  */
-import { imageOf, isExtended, sidelobesOf } from "../sky/look.ts";
-import { modelOf, type Physics, PLAIN, type Source } from "../sky/model.ts";
+import { imageOf, isExtended, isInside, sidelobesOf } from "../sky/look.ts";
+import { modelOf, PLAIN, type Physics, type Source, WHOLE } from "../sky/model.ts";
 import { inner } from "../sky/residual.ts";
 import type { Understanding } from "../sky/understand.ts";
 import { type Evidence, excessOf } from "./evidence.ts";
 
-export type ImagerFault = "w-term" | "bandwidth-smearing" | "time-smearing" | "missing-short-spacings";
+export type ImagerFault =
+  | "w-term"
+  | "bandwidth-smearing"
+  | "time-smearing"
+  | "missing-short-spacings"
+  | "outside-source";
 
 export interface Predicted {
   readonly kind: ImagerFault;
@@ -70,7 +75,8 @@ interface Pattern {
 
 function patternsOf(seen: Understanding): Pattern[] {
   if (!seen.held) return [];
-  const { atoms, sources, frame, projector } = seen;
+  const { atoms, frame, projector } = seen;
+  const sources = seen.sources.filter((source) => isInside(seen, source));
   const plain = modelOf(atoms, sources, PLAIN, frame.declination, false);
   const patterns: Pattern[] = PHYSICS.map(([kind, physics]) => {
     const model = modelOf(atoms, sources, physics, frame.declination, false);
@@ -78,12 +84,16 @@ function patternsOf(seen: Understanding): Pattern[] {
     const im = model.im.map((x, k) => x - plain.im[k]!);
     return { kind, pattern: projector.take(imageOf(seen, { re, im })).left };
   });
+  const outside = seen.sources.filter((source) => !isInside(seen, source));
+  if (outside.length > 0) {
+    const image = imageOf(seen, modelOf(atoms, outside, WHOLE, frame.declination, false));
+    patterns.push({ kind: "outside-source", pattern: projector.take(image).left });
+  }
   const lost = missedSources(seen);
-  if (lost.length === 0) return patterns;
-  return [
-    ...patterns,
-    { kind: "missing-short-spacings", pattern: projector.take(sidelobesOf(seen, lost)).left },
-  ];
+  if (lost.length > 0) {
+    patterns.push({ kind: "missing-short-spacings", pattern: projector.take(sidelobesOf(seen, lost)).left });
+  }
+  return patterns;
 }
 
 /** Share of its flux that the shortest spacing misses, at least, for an extended source to be one that is missed. */

@@ -32,6 +32,12 @@ export function pixelOf({ image, frame }: Imager, { l, m }: Pick<Source, "l" | "
   return [x + (image.width >> 1), y + (image.height >> 1)];
 }
 
+/** Whether a source lies in the window of the image. */
+export function isInside(imager: Imager, source: Pick<Source, "l" | "m">): boolean {
+  const [x, y] = pixelOf(imager, source);
+  return x >= -0.5 && y >= -0.5 && x < imager.image.width - 0.5 && y < imager.image.height - 0.5;
+}
+
 export function isExtended({ shape }: Source): boolean {
   return shape[0] !== 0 || shape[2] !== 0;
 }
@@ -94,11 +100,11 @@ export function nuisanceOf(imager: Imager, sources: readonly Source[]): Nuisance
   const templates: Template[] = [];
   const heightAt: number[] = [];
   for (const source of sources) {
-    const made = restoredTemplates(imager, source);
+    const made = isInside(imager, source) ? restoredTemplates(imager, source) : null;
     heightAt.push(made === null ? -1 : templates.length);
     if (made !== null) templates.push(...(isExtended(source) ? made.slice(0, 1) : made));
   }
-  const points = sources.filter((source) => !isExtended(source));
+  const points = sources.filter((source) => !isExtended(source) && isInside(imager, source));
   if (points.length === 0) return { templates, heightAt, sidelobesAt: -1 };
   templates.push(wholeTemplate(sidelobesOf(imager, points), width, height));
   return { templates, heightAt, sidelobesAt: templates.length - 1 };

@@ -14,6 +14,7 @@ import type { Cluster } from "./clusters.ts";
 import { findExtended } from "./extended.ts";
 import { type Imager, isExtended, nuisanceOf } from "./look.ts";
 import type { Source, Visibilities } from "./model.ts";
+import { withOutside } from "./outside.ts";
 import { beamMoments, gaussianOfMoments, momentsOfGaussian, type PixelGaussian, widthsOf } from "./patch.ts";
 import { mainLobe, readImageAs } from "./patches.ts";
 import { robustRms } from "./peel.ts";
@@ -150,7 +151,7 @@ function completed(imager: Imager, solved: Solved, beam: number, shortest: numbe
     if (next.length <= sources.length) break;
     sources = [...next];
   }
-  return sources;
+  return [...withOutside(imager, sources, beam)];
 }
 
 /** The brightest pixel of the residual, where it may be a source. */

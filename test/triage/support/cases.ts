@@ -72,23 +72,23 @@ function scattered(radius: string, apart: string) {
 
 /** 1.4 GHz, 1 km: a beam of some 20 arcsec. */
 const NARROW: Setting = {
-  grid: { size: 96, cell: 5 * ARCSEC },
+  grid: { size: 64, cell: 6.5 * ARCSEC },
   beam: 20 * ARCSEC,
   changes: {
     array: scattered("1km", "60m"),
-    time: { start: "2026-03-01T11:00:00", duration: "60min", integration: "30s" },
-    frequency: { start: "1.4GHz", channels: 4, width: "1MHz" },
+    time: { start: "2026-03-01T11:00:00", duration: "60min", integration: "60s" },
+    frequency: { start: "1.4GHz", channels: 3, width: "1MHz" },
   },
 };
 
 /** 150 MHz, 300 m, low in the sky: w turns phases by radians at the edge. */
 const WIDE: Setting = {
-  grid: { size: 128, cell: 160 * ARCSEC },
+  grid: { size: 96, cell: 200 * ARCSEC },
   beam: 600 * ARCSEC,
   changes: {
     array: scattered("300m", "25m"),
-    time: { start: "2026-03-01T14:30:00", duration: "60min", integration: "30s" },
-    frequency: { start: "150MHz", channels: 3, width: "100kHz" },
+    time: { start: "2026-03-01T14:30:00", duration: "60min", integration: "60s" },
+    frequency: { start: "150MHz", channels: 2, width: "100kHz" },
   },
 };
 
@@ -98,7 +98,7 @@ const SPARSE: Setting = {
   changes: {
     ...NARROW.changes,
     array: scattered("1km", "360m"),
-    time: { start: "2026-03-01T10:00:00", duration: "180min", integration: "90s" },
+    time: { start: "2026-03-01T10:00:00", duration: "60min", integration: "60s" },
   },
 };
 
@@ -115,7 +115,7 @@ const LONG_INTEGRATIONS: Setting = {
   changes: {
     ...NARROW.changes,
     time: { start: "2026-03-01T09:00:00", duration: "6h", integration: "12min" },
-    frequency: { start: "1.4GHz", channels: 6, width: "200kHz" },
+    frequency: { start: "1.4GHz", channels: 4, width: "200kHz" },
   },
 };
 
@@ -206,7 +206,7 @@ export const CASES: readonly Case[] = [
     name: "one channel of interference",
     make: (seed) => {
       const draw = new Draw(seed);
-      const channel = draw.whole(0, 3);
+      const channel = draw.whole(0, 2);
       return game(
         "interference",
         seed,
@@ -297,6 +297,23 @@ export const CASES: readonly Case[] = [
       return game("time", seed, LONG_INTEGRATIONS, points(draw, LONG_INTEGRATIONS, true), () => ({
         cause: "time-smearing",
       }));
+    },
+  },
+  {
+    name: "a source outside the image",
+    make: (seed) => {
+      const draw = new Draw(seed);
+      const reach = (NARROW.grid.size / 2) * NARROW.grid.cell;
+      const angle = draw.between(0, 2 * Math.PI);
+      const radius = draw.between(1.6, 2.2) * reach;
+      const lost = {
+        flux: draw.between(0.5, 2),
+        l: radius * Math.cos(angle),
+        m: radius * Math.sin(angle),
+      };
+      return game("outside", seed, NARROW, points(draw, NARROW, false), () => ({ cause: "outside-source" }), {
+        lost: [lost],
+      });
     },
   },
   {
