@@ -13,12 +13,8 @@ import { type ByteSink, openSink } from "../../util/byte-sink.ts";
 import type { OpenFile } from "../../util/new-output.ts";
 import type { AcceptedFlag } from "../accepted.ts";
 
-/** Notes of a dataset whose numbers are not those of its files, which flag tables are in. */
-const RENUMBERED: ReadonlySet<string> = new Set([
-  "antennas-renumbered",
-  "fields-renumbered",
-  "subarrays-renumbered",
-]);
+/** Note of a file in which a number means another antenna in each sub-array: a row of a flag table would mean several. */
+const AMBIGUOUS = "subarrays-renumbered";
 
 /** Where flags are kept in a file. */
 export const PLACES = ["weights", "flag-table", "flag-column"] as const;
@@ -101,9 +97,9 @@ async function copyFitsFile(
     await (isIdi ? copyFlaggingIdiWeights : copyFlaggingWeights)(file, rows, sink);
     return 0;
   }
-  const other = rows.dataset.notes.find(({ code }) => RENUMBERED.has(code));
-  if (other !== undefined) {
-    throw new CannotHoldFlags("its files or sub-arrays number antennas or fields otherwise than the dataset");
+  // What joining several files renumbers is told by laying their rows beside the dataset's.
+  if (own.notes.some(({ code }) => code === AMBIGUOUS)) {
+    throw new CannotHoldFlags("the sub-arrays of the file use the same numbers for different antennas");
   }
   const reasoned = flags.map((flag) => ({ selection: flag, reason: `${flag.id} ${flag.rule}` }));
   return (isIdi ? copyAddingIdiFlags : copyAddingFlags)(file, rows, own, reasoned, sink);
