@@ -30,7 +30,7 @@ export type {
   Shape,
 } from "./dataset/dataset.ts";
 export { sampleIndex } from "./dataset/dataset.ts";
-export { fieldView } from "./dataset/field-view.ts";
+export { fieldNamed, fieldView } from "./dataset/field-view.ts";
 export {
   countSelections,
   flaggedView,
@@ -40,6 +40,7 @@ export {
 export { openDataset } from "./dataset/open.ts";
 export { parsePlan, readPlan } from "./dataset/plan-file.ts";
 export type { LineRange, PlanRequest, Weighting } from "./dataset/plan-request.ts";
+export { type DatasetRecipe, type OpenOptions, reopen } from "./dataset/recipe.ts";
 export type { Selection } from "./dataset/selection.ts";
 export { detect } from "./detect/detect.ts";
 export type { DetectedEvent, EventKind } from "./detect/event.ts";
@@ -62,11 +63,22 @@ export { derivePlan } from "./imaging/derive-plan.ts";
 export { type Forecast, forecast, forecastAfter } from "./imaging/forecast.ts";
 export type { ImageForecast } from "./imaging/image.ts";
 export type { Plan, PlanValue } from "./imaging/plan.ts";
+export {
+  gatherParts,
+  identityOf,
+  isMade,
+  joinPartFiles,
+  makePart,
+  type PartRequest,
+  type PartSet,
+} from "./measure/part-files.ts";
+export type { PartIdentity } from "./measure/state/identity.ts";
 export { type SurveyOptions, surveyDataset, surveyDataset as survey } from "./measure/survey.ts";
 export type { Baseline, Levels, Survey, Totals, Tracks } from "./measure/survey-result.ts";
 export type { Column, Measure, Measures } from "./measure/table.ts";
 export { type CheckRequest, checkDataset, checkDataset as check } from "./report/check.ts";
 export { describeText, describeText as describe } from "./report/describe.ts";
+export type { FieldCheck, FieldChecks } from "./report/fields.ts";
 export { writeHtml } from "./report/html.ts";
 export { flagsJson, reportJson } from "./report/json.ts";
 export type { Check } from "./report/report.ts";
@@ -84,3 +96,4 @@ export { type Simulated, simulate } from "./simulate/simulate.ts";
 export { simulateFile } from "./simulate/simulate-file.ts";
 export type { CellType, ColumnTable, NamedColumn, TableFormat } from "./util/column-table.ts";
 export { InputError, type Place } from "./util/errors.ts";
+export { Workers } from "./util/workers.ts";
