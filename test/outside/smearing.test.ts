@@ -45,6 +45,7 @@ function gaussianCoverage(channelWidth: number, integration: number): EdgeSample
   const fill = (value: number) => new Float64Array(u.length).fill(value);
   return {
     count: u.length,
+    share: 1,
     u: Float64Array.from(u),
     v: Float64Array.from(v),
     w: fill(0),
