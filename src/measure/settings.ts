@@ -30,6 +30,8 @@ const ENOUGH_OF_CHANNEL = 1 << 13;
 /** The same for the comparison of spans, over all baselines. */
 const ENOUGH_OF_SPANS = 1 << 17;
 const MOST_SPARING = 64;
+/** What the kernels' memory has room for beside the rest. */
+const MOST_SKETCH_BYTES = 800e6;
 /** Of the sketches of one baseline, of amplitudes and of noise, each with few pages. */
 const LEAST_BYTES = 2500;
 
@@ -40,7 +42,7 @@ export function settleSurvey(dataset: Dataset, memory = surveyMemory(DEFAULT_MEM
   const differences = dataset.rows * dataset.shape.channels;
   const noiseEvery = sparing(differences / baselines / ENOUGH_OF_BASELINE);
   return {
-    sketchBytes: memory / 2,
+    sketchBytes: Math.min(memory / 2, MOST_SKETCH_BYTES),
     trackBytes: memory / 2,
     baselines,
     antennas,

@@ -23,6 +23,7 @@ import type { StateRecord } from "./state/value.ts";
 const PAGE_OCTAVE_BITS = 8 - Math.log2(PAGES);
 const COUNT_BYTES = 2;
 const MOST_STAGED_ROWS = 1 << 16;
+const MOST_STAGED_BYTES = 48e6;
 const GATHERED_ROWS = 256;
 /** Numbers that a sketch may be given in one go. */
 const MOST_AT_ONCE = 1 << 15;
@@ -87,7 +88,9 @@ export class SketchBank {
     this.bucketShift = 23 - mantissaBits;
     this.pageShift = mantissaBits + PAGE_OCTAVE_BITS;
     this.samples = ladder[0]!.sketch.length;
-    const rows = Math.max(1, Math.min(MOST_STAGED_ROWS, Math.floor(budget / 4 / COUNT_BYTES / this.samples)));
+    const stagedBytes = Math.min(MOST_STAGED_BYTES, budget / 4);
+    const fit = Math.floor(stagedBytes / COUNT_BYTES / this.samples);
+    const rows = Math.max(1, Math.min(MOST_STAGED_ROWS, fit));
     this.stagedOwner = new Int32Array(rows);
     this.stride = (Math.ceil(this.samples / LINE) | 1) * LINE;
   }
