@@ -23,7 +23,7 @@ import { tool } from "./tool.ts";
 import { VERDICT_NAME } from "./words.ts";
 
 /** Styles of its own and pictures in the file itself; no script, no form, nothing fetched. */
-const POLICY =
+export const POLICY =
   "default-src 'none'; style-src 'unsafe-inline'; img-src data:; base-uri 'none'; form-action 'none'";
 
 const CONTENTS: readonly (readonly [string, string])[] = [

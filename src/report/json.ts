@@ -152,13 +152,13 @@ function flagsPart(check: Check): object {
   };
 }
 
-function selectionPart(selection: Selection): object {
+export function selectionPart(selection: Selection): object {
   const { antennas, baselines, time, subbands, channels, polarizations, fields } = selection;
   return { antennas, baselines, time: exactly(time), subbands, channels, polarizations, fields };
 }
 
 /** Keys in the order of the contract, whatever the order they were made in; times to the last bit. */
-function flagPart(flag: FlagEntry): object {
+export function flagPart(flag: FlagEntry): object {
   const { id, rule, reason, samples, fraction, confidence, cost } = flag;
   return {
     id,

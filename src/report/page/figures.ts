@@ -21,7 +21,7 @@ import type { ScopeWords } from "../scope.ts";
 import { html, Markup } from "./markup.ts";
 import { section } from "./parts.ts";
 
-type Key = readonly [shape: "" | "area" | "dot" | "hatch" | "line", colour: string, text: string];
+export type Key = readonly [shape: "" | "area" | "dot" | "hatch" | "line", colour: string, text: string];
 
 const KEPT: Key = ["dot", "kept", "usable"];
 const SUGGESTED: Key = ["dot", "suggested", "mostly taken by suggested flags"];
@@ -78,7 +78,7 @@ export function figuresSection(check: Check, words: ScopeWords): Markup {
   return section("plots", "The data in plots", html`<div class="plots">${figures}</div>`);
 }
 
-function figure(
+export function figure(
   id: string,
   title: string,
   svg: string,

@@ -4,7 +4,7 @@
  * and its size fitted to the image: 1 where the image has all of it, 0 where the imager corrected it.
  */
 import { imageOf, isExtended, isInside, sidelobesOf } from "../sky/look.ts";
-import { modelOf, PLAIN, type Physics, type Source, WHOLE } from "../sky/model.ts";
+import { modelOf, type Physics, PLAIN, type Source, WHOLE } from "../sky/model.ts";
 import { inner } from "../sky/residual.ts";
 import type { Understanding } from "../sky/understand.ts";
 import { type Evidence, excessOf } from "./evidence.ts";

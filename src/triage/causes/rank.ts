@@ -90,9 +90,9 @@ function findSampleFaults(first: Evidence): SampleFault[] {
       const count = members.reduce((sum, one) => sum + one, 0);
       return { candidate, count, share: shareOf(evidence, (k) => members[k] === 1) };
     });
-    if (judged.length === 0) break;
+    if (!judged.some(({ share }) => share > 0)) break;
     const most = Math.max(...judged.map(({ share }) => share));
-    const good = judged.filter(({ share }) => share >= AS_GOOD * most);
+    const good = judged.filter(({ share }) => share >= AS_GOOD * most || share === most);
     const { candidate: likeliest } = good.reduce((least, one) => (one.count < least.count ? one : least));
     // Sources that its samples had no part in tell its time and size better.
     const touches = touchesOf(seen, likeliest);
