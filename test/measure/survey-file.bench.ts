@@ -59,12 +59,12 @@ async function write(channels: number): Promise<string> {
 }
 
 function bareRead(path: string): void {
-  const file = openSync(path);
+  const file = openSync(path, "r");
   const buffer = new Uint8Array(256 * 1024);
   let bytes = 0;
   for (let got = 1; got > 0; bytes += got) got = readSync(file, buffer, {});
   closeSync(file);
-  if (bytes < 0.9 * BYTES) throw new Error(`${bytes} bytes read`);
+  if (bytes < 0.5 * BYTES) throw new Error(`${bytes} bytes read`);
 }
 
 for (const channels of [64, 1024, 4]) {
