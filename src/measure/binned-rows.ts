@@ -65,7 +65,7 @@ type Five = [number, number, number, number, number];
 class CellSums {
   readonly width: number;
   cells = 0;
-  private room = 256;
+  private room: number;
   readonly own: ExactSums;
   readonly products: ExactSums;
   /** (cells x CELL_SUMS) rows that gave a number */
@@ -73,8 +73,10 @@ class CellSums {
   /** (cells x products x PRODUCT_COUNTS) */
   counts: Float64Array;
 
-  constructor(width: number) {
+  /** @param room for so many cells at once: only those in use take memory */
+  constructor(width: number, room: number) {
     this.width = width;
+    this.room = room;
     this.own = new ExactSums(this.room * CELL_SUMS);
     this.products = new ExactSums(this.room * width * PRODUCT_SUMS);
     this.given = new Float64Array(this.room * CELL_SUMS);
@@ -87,12 +89,12 @@ class CellSums {
   }
 
   newCell(): number {
-    if (this.cells === this.room) this.grow();
+    if (this.cells === this.room) this.grow(2 * this.room);
     return this.cells++;
   }
 
-  private grow(): void {
-    this.room *= 2;
+  grow(room: number): void {
+    this.room = room;
     this.own.grow(this.room * CELL_SUMS);
     this.products.grow(this.room * this.width * PRODUCT_SUMS);
     const given = new Float64Array(this.room * CELL_SUMS);
@@ -164,7 +166,7 @@ export class BinnedRows implements TrackKeeper {
       CELL_SUMS * (ExactSums.BYTES + 8) +
       this.width * (PRODUCT_SUMS * ExactSums.BYTES + PRODUCT_COUNTS * 8);
     this.most = Math.max(1024, Math.floor(Math.min(bytes, MOST_BYTES) / cellBytes));
-    this.sums = new CellSums(this.width);
+    this.sums = new CellSums(this.width, this.most + 1);
   }
 
   add(prepared: PreparedBlock): void {
@@ -240,7 +242,7 @@ export class BinnedRows implements TrackKeeper {
   private widen(): void {
     this.seconds *= 2;
     const before = this.sums;
-    this.sums = new CellSums(this.width);
+    this.sums = new CellSums(this.width, this.most + 1);
     for (const stream of this.streams.values()) {
       const cells = stream.cells;
       stream.cells = new Map();
@@ -261,14 +263,15 @@ export class BinnedRows implements TrackKeeper {
 
   merge(other: this, baselines: Int32Array): void {
     while (this.seconds < other.seconds) this.widen();
-    const steps = this.seconds / other.seconds;
     for (const theirs of other.streams.values()) {
       const ours = this.streamOf(baselines[theirs.baseline]!, theirs.field, theirs.setup, theirs.subarray);
       for (const [bin, cell] of theirs.cells) {
+        const steps = this.seconds / other.seconds;
         this.sums.merge(this.cellAt(ours, Math.floor(bin / steps)), other.sums, cell);
+        // Cells that are too many for a part of the numbers are so for all of them.
+        while (this.sums.cells > this.most) this.widen();
       }
     }
-    while (this.sums.cells > this.most) this.widen();
   }
 
   state(): StateRecord {
@@ -297,6 +300,7 @@ export class BinnedRows implements TrackKeeper {
       throw from.error(`${this.seconds} s is no width of a bin`, "seconds");
     }
     this.sums.restore(from.child("sums"));
+    this.sums.grow(Math.max(this.most + 1, this.sums.cells));
     const cells = from.indices(Int32Array, "cells", this.sums.cells, 0, this.sums.cells);
     if (new Set(cells).size !== cells.length) throw from.error("a cell stands in two bins", "cells");
     const bins = from.finite(Float64Array, "bins", cells.length);
