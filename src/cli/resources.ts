@@ -2,7 +2,6 @@
 import { availableParallelism } from "node:os";
 import type { Argv } from "yargs";
 import type { Dataset } from "../dataset/dataset.ts";
-import { threadStateBytes } from "../measure/memory.ts";
 import { InputError } from "../util/errors.ts";
 import { parseSize } from "../util/units.ts";
 import { Workers } from "../util/workers.ts";
@@ -20,7 +19,7 @@ const SMALL_BYTES = 64e6;
 const DEFAULT_MEMORY = "1 GB";
 /** With less not even small data have room. */
 const LEAST_MEMORY = 256e6;
-/** Of the memory, what threads may take between them: each its program and buffers, and its state of a survey. */
+/** Of the memory, what threads may take between them, each its program and buffers; a survey may take fewer. */
 const THREADS_SHARE = 0.6;
 const THREAD_BYTES = 80e6;
 
@@ -72,6 +71,6 @@ function jobsOf(options: ResourceOptions, dataset: Dataset, share: number): numb
     share * dataset.bytes < SMALL_BYTES ? 1 : Math.min(availableParallelism(), MOST_JOBS_UNASKED);
   const memory = memoryOf(options);
   const room = THREADS_SHARE * memory;
-  const most = Math.floor(room / (THREAD_BYTES + threadStateBytes(dataset, memory)));
+  const most = Math.floor(room / THREAD_BYTES);
   return Math.max(1, Math.min(jobs ?? unasked, most));
 }

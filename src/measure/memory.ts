@@ -1,6 +1,7 @@
 /** Of the memory that the user grants the program, what goes to a survey. */
 
 import type { Dataset } from "../dataset/dataset.ts";
+import { CELL_BYTES, PRODUCT_BYTES } from "./track-columns.ts";
 
 /** Bytes that the program may take where the user says nothing. */
 export const DEFAULT_MEMORY = 1e9;
@@ -18,10 +19,30 @@ export function surveyMemory(memory: number): number {
 /** Bytes of a sketch of a steady amplitude or of noise, its directory among them. */
 const SKETCH_BYTES = 1100;
 
-/** About what a thread that surveys some of the rows holds for itself: sketches of all baselines, not their tracks. */
-export function threadStateBytes({ array, shape, rows }: Dataset, memory: number): number {
+/** A thread without its state: the program, its buffers, its stack. */
+const THREAD_BYTES = 80e6;
+/** Of all the memory, what the threads of a survey may take between them. */
+const THREADS_SHARE = 0.6;
+
+/** About what the sketches of all baselines take, which every thread that surveys some of the rows has for itself. */
+export function sketchBytesOf({ array, shape, rows }: Dataset, memory: number): number {
   const antennas = Math.max(2, array.antennas.length);
   const baselines = Math.min((antennas * (antennas - 1)) / 2, rows);
   const samples = shape.subbands * shape.channels * shape.polarizations;
-  return Math.min(surveyMemory(memory) / 2, baselines * samples * SKETCH_BYTES);
+  return Math.min(memory / 2, baselines * samples * SKETCH_BYTES);
+}
+
+/**
+ * Threads that a survey may be shared out to, as its memory goes. Rows that are kept are shared out with the work; time
+ * bins, which take their place where they do not fit, every thread has for itself, and twice where it widens them.
+ *
+ * @param memory of the survey
+ */
+export function surveyThreads(dataset: Dataset, memory: number): number {
+  const { subbands, polarizations } = dataset.shape;
+  const rowBytes = CELL_BYTES + PRODUCT_BYTES * subbands * polarizations;
+  const isBinned = dataset.rows * rowBytes > memory / 2;
+  // Sketches have half as much room again to grow into, and are there once more as they are handed over.
+  const own = THREAD_BYTES + 2 * sketchBytesOf(dataset, memory) + (isBinned ? memory : 0);
+  return Math.max(1, Math.floor((THREADS_SHARE * (memory / SURVEY_SHARE)) / own));
 }

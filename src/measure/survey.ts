@@ -2,6 +2,7 @@
 import type { Dataset } from "../dataset/dataset.ts";
 import { moduleBeside, shareOut, type Workers } from "../util/workers.ts";
 import { finishSurvey } from "./finish-survey.ts";
+import { DEFAULT_MEMORY, surveyMemory, surveyThreads } from "./memory.ts";
 import { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
 import { SurveyPart } from "./survey-part.ts";
@@ -26,7 +27,8 @@ export async function surveyShared(dataset: Dataset, options: SurveyOptions = {}
   const { workers, memory, blockRows, onProgress } = options;
   const { recipe } = dataset;
   const [first, end] = options.rows ?? [0, dataset.rows];
-  const ranges = shareOut(end - first, workers?.jobs ?? 1);
+  const most = surveyThreads(dataset, memory ?? surveyMemory(DEFAULT_MEMORY));
+  const ranges = shareOut(end - first, Math.min(workers?.jobs ?? 1, most));
   if (workers === undefined || recipe === undefined || ranges.length < 2) return surveyPart(dataset, options);
   const tasks = ranges.map(([from, to]): SurveyTask => {
     return { recipe, rows: [first + from, first + to], memory, blockRows };
