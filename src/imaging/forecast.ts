@@ -22,6 +22,7 @@ import { type GridRequest, gridDataset } from "./grid-dataset.ts";
 import type { BeamPicture, ImageForecast, WeightingResult } from "./image.ts";
 import { imageMeasures } from "./image-measures.ts";
 import { eventLimits } from "./limits.ts";
+import { withAntennas } from "./other-noise.ts";
 import type { Plan } from "./plan.ts";
 import { type Sampling, samplingOf } from "./sampling.ts";
 import { smearingAt } from "./smearing.ts";
@@ -79,7 +80,7 @@ async function gridImage(
   workers: Workers | undefined,
 ): Promise<GriddedImage> {
   const sampling = samplingOf(survey);
-  const variance = fillWeightedVariance(sampling);
+  const variance = withAntennas(survey, fillWeightedVariance(sampling));
   const coverageForm = coverageFormOf(sampling, plan);
   const request: GridRequest = {
     sampling,

@@ -9,6 +9,7 @@ import type { Workers } from "../util/workers.ts";
 import { type CoverageForm, CoverageTally } from "./coverage-tally.ts";
 import { fillShared, type GridSums } from "./grid-share.ts";
 import { type CellIndex, type GridForm, MomentGrid } from "./moment-grid.ts";
+import { AntennaNoise } from "./other-noise.ts";
 import { RowDeposit } from "./row-deposit.ts";
 import { type RowPart, RowWeights } from "./row-weights.ts";
 import type { Sampling } from "./sampling.ts";
@@ -22,9 +23,11 @@ export const SELECTION_ORDER = 3;
 class RowChooser {
   private readonly field: number;
   private readonly offsets = new Map<number, number>();
+  /** where there are baselines that are not in the survey */
+  private readonly others: AntennaNoise | null;
   private readonly rowSamples: number;
 
-  constructor(sampling: GridSampling) {
+  constructor({ sampling, variance }: GridSource) {
     const { survey } = sampling;
     const { subbands, channels, polarizations } = survey.dataset.shape;
     this.field = sampling.field.id;
@@ -32,6 +35,7 @@ class RowChooser {
     survey.baselines.forEach(({ antenna1, antenna2 }, index) => {
       this.offsets.set(pairKey(antenna1, antenna2), index * this.rowSamples);
     });
+    this.others = survey.others === undefined ? null : new AntennaNoise(survey, this.rowSamples, variance);
   }
 
   /** First sample of the row's baseline in the levels, or -1 when the image does not use the row. */
@@ -40,7 +44,7 @@ class RowChooser {
     const antenna2 = block.antenna2[row]!;
     if (antenna1 === antenna2 || block.field[row] !== this.field) return -1;
     if (!Number.isFinite(block.u[row]! + block.v[row]!)) return -1;
-    return this.offsets.get(pairKey(antenna1, antenna2)) ?? -1;
+    return this.offsets.get(pairKey(antenna1, antenna2)) ?? this.others?.offset(antenna1, antenna2) ?? -1;
   }
 }
 
@@ -57,13 +61,16 @@ export interface Gridded {
 
 /** What of a sampling the passes need: little enough to be sent to other threads. */
 export interface GridSampling extends Pick<Sampling, "field" | "products" | "everLongest"> {
-  readonly survey: Pick<Survey, "dataset" | "baselines" | "totals">;
+  readonly survey: Pick<Survey, "dataset" | "baselines" | "totals" | "others">;
 }
 
 /** What a pass needs, in whatever thread. */
 export interface GridSource {
   readonly sampling: GridSampling;
-  /** (baselines x subbands x channels x polarizations) weight x variance of a sample; NaN unknown */
+  /**
+   * (baselines x subbands x channels x polarizations) weight x variance of a sample; NaN unknown. Where there are
+   * baselines that are not in the survey, the same of antennas follows.
+   */
   readonly variance: Float64Array;
   readonly form: GridForm;
   readonly coverageForm: CoverageForm;
@@ -192,7 +199,7 @@ export async function eachRow(
   const { dataset } = sampling.survey;
   const { subbands, channels, polarizations } = dataset.shape;
   const rowSamples = subbands * channels * polarizations;
-  const chooser = new RowChooser(sampling);
+  const chooser = new RowChooser(request);
   const [first, end] = request.rows ?? [0, dataset.rows];
   for await (const block of dataset.blocks({ want: "weights", rows: [first, end] })) {
     for (let row = 0; row < block.rows; row++) {

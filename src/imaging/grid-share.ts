@@ -27,14 +27,14 @@ export interface SumsState {
 /** @returns false, and nothing is filled, where there is but one thread: the caller's */
 export async function fillShared(request: GridSource, work: GridWork, into: GridSums): Promise<boolean> {
   const { workers, sampling, form, coverageForm, onProgress } = request;
-  const { dataset, baselines, totals } = sampling.survey;
+  const { dataset, baselines, totals, others } = sampling.survey;
   const { recipe, rows } = dataset;
   const ranges = shareOut(rows, workers?.jobs ?? 1);
   if (workers === undefined || recipe === undefined || ranges.length < 2) return false;
   const { field, products, everLongest } = sampling;
   const common = {
     recipe,
-    sampling: { field, products, everLongest, survey: { baselines, totals } },
+    sampling: { field, products, everLongest, survey: { baselines, totals, ...(others && { others }) } },
     variance: sharedArray(request.variance),
     form,
     coverageForm,

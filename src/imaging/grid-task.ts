@@ -9,7 +9,7 @@ import { CellIndex } from "./moment-grid.ts";
 export interface GridTask extends Pick<GridSource, "variance" | "form" | "coverageForm"> {
   readonly recipe: DatasetRecipe;
   readonly sampling: Omit<GridSampling, "survey"> & {
-    readonly survey: Pick<GridSampling["survey"], "baselines" | "totals">;
+    readonly survey: Pick<GridSampling["survey"], "baselines" | "totals" | "others">;
   };
   readonly rows: readonly [number, number];
   readonly work: GridWork;

@@ -3,6 +3,7 @@
  * the weights and the noise. Later stages ask here and not the survey, so that they agree on what counts.
  */
 import type { Dataset, Field, Polarization } from "../dataset/dataset.ts";
+import { OCTAVES, type OtherRows } from "../measure/other-spacings.ts";
 import type { Survey, Tracks } from "../measure/survey-result.ts";
 
 export interface Sampling {
@@ -85,7 +86,7 @@ export function fieldWeights(survey: Survey): ReadonlyMap<number, number> {
   return weightsOf(survey, intensityProducts(survey.dataset));
 }
 
-function weightsOf({ tracks, dataset }: Survey, products: Int32Array): Map<number, number> {
+function weightsOf({ tracks, dataset, others }: Survey, products: Int32Array): Map<number, number> {
   const weights = new Map<number, number>();
   let field = Number.NaN;
   let sum = 0;
@@ -101,6 +102,13 @@ function weightsOf({ tracks, dataset }: Survey, products: Int32Array): Map<numbe
     }
   }
   if (tracks.cells > 0) weights.set(field, sum);
+  for (const rows of others?.rows ?? []) {
+    let weight = weights.get(rows.field) ?? 0;
+    for (let s = 0; s < dataset.shape.subbands; s++) {
+      for (const product of products) weight += rows.weight[s * dataset.shape.polarizations + product]!;
+    }
+    weights.set(rows.field, weight);
+  }
   return weights;
 }
 
@@ -185,6 +193,7 @@ function spacings(
 ): { shortest: number; longest: number; extent: number } {
   const { dataset, tracks } = survey;
   const { subbands } = dataset.shape;
+  const others = (survey.others?.rows ?? []).filter((rows) => rows.field === field);
   let longest = Number.NaN;
   let extent = Number.NaN;
   const each = (visit: (low: number, high: number, size: number) => void) => {
@@ -205,11 +214,38 @@ function spacings(
     if (!(longest >= high)) longest = high;
     if (!(extent >= size)) extent = size;
   });
+  eachOther(others, dataset, products, (rows, k, at) => {
+    const high = range.high[at]!;
+    if (!(longest >= rows.longest[k]! * high) && rows.longest[k]! >= 0) longest = rows.longest[k]! * high;
+    if (!(extent >= rows.extent[k]! * high) && rows.extent[k]! >= 0) extent = rows.extent[k]! * high;
+  });
   let shortest = Number.NaN;
   each((low) => {
     if (low > longest * SAME_PLACE && !(shortest <= low)) shortest = low;
   });
+  eachOther(others, dataset, products, (rows, k, at) => {
+    for (const spacing of rows.shortest.subarray(k * OCTAVES, (k + 1) * OCTAVES)) {
+      const low = spacing * range.low[at]!;
+      if (low > longest * SAME_PLACE && !(shortest <= low)) shortest = low;
+    }
+  });
   return { shortest, longest, extent };
+}
+
+/** @param visit told of each product of the image k, and where the frequencies of its setup and sub-band are */
+function eachOther(
+  others: readonly OtherRows[],
+  { shape }: Dataset,
+  products: Int32Array,
+  visit: (rows: OtherRows, k: number, at: number) => void,
+): void {
+  for (const rows of others) {
+    for (let s = 0; s < shape.subbands; s++) {
+      for (const product of products) {
+        visit(rows, s * shape.polarizations + product, rows.setup * shape.subbands + s);
+      }
+    }
+  }
 }
 
 function everySpacing(survey: Survey, field: number): { everShortest: number; everLongest: number } {
@@ -229,6 +265,11 @@ function everySpacing(survey: Survey, field: number): { everShortest: number; ev
     if (tracks.field[cell] !== field || !Number.isFinite(radius)) continue;
     radii.push(radius);
     longest = Math.max(longest, radius);
+  }
+  for (const rows of survey.others?.rows ?? []) {
+    if (rows.field !== field || Number.isNaN(rows.everLongest)) continue;
+    radii.push(...rows.everShortest.filter((radius) => radius >= 0));
+    longest = Math.max(longest, rows.everLongest);
   }
   let shortest = Number.POSITIVE_INFINITY;
   for (const radius of radii) if (radius > longest * SAME_PLACE) shortest = Math.min(shortest, radius);

@@ -3,7 +3,7 @@ import type { Shape } from "../dataset/dataset.ts";
 import { Arena, kernelMemory } from "../util/kernels/memory.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { countKernels } from "./kernels/count-sketches.ts";
-import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
+import { AUTOCORRELATION, OTHER, type PreparedBlock } from "./prepared.ts";
 import type { SurveySettings } from "./settings.ts";
 import { sharingLadder } from "./sharing-ladder.ts";
 import { SketchBank } from "./sketch-bank.ts";
@@ -50,7 +50,8 @@ export class AmplitudeSketches implements Accumulator {
       const baseline = baselines[row]!;
       if (baseline === AUTOCORRELATION) continue;
       const bits = at.bits + 4 * row * samples;
-      bank.addAt(this.owners.of(baseline), bits);
+      bank.addAt(this.owners.ofRow(prepared, row), bits);
+      if (baseline === OTHER) continue;
       rows[baseline] = (rows[baseline] ?? 0) + 1;
       if (whole[row] === 0) countKernels.countUnusable(bits, samples, this.unusableOf(baseline));
     }
@@ -74,6 +75,25 @@ export class AmplitudeSketches implements Accumulator {
   release(): void {
     this.bank.release();
     this.arena.release();
+  }
+
+  /** Sketches belong to antennas then, and stay. */
+  thin(baselines: Int32Array): void {
+    const { rows, unusable } = this;
+    const known = Math.min(rows.length, baselines.length);
+    for (let before = 0; before < known; before++) {
+      const now = baselines[before]!;
+      const at = unusable[before];
+      if (now === OTHER) {
+        if (at !== undefined) this.arena.release(at);
+        continue;
+      }
+      rows[now] = rows[before] ?? 0;
+      unusable[now] = at;
+    }
+    const kept = baselines.reduce((count, now) => count + (now === OTHER ? 0 : 1), 0);
+    rows.length = Math.min(rows.length, kept);
+    unusable.length = rows.length;
   }
 
   merge(other: this, baselines: Int32Array): void {

@@ -1,5 +1,11 @@
-/** Baselines in the order they are met, lower antenna number first. */
+/**
+ * Baselines in the order they are met, lower antenna number first; of very many an even choice, and which others there
+ * are.
+ */
 import { InputError } from "../util/errors.ts";
+import { lot } from "./even-choice.ts";
+import { OTHER } from "./kernels/layout.ts";
+import { PairSet } from "./pair-set.ts";
 import type { Baseline } from "./survey-result.ts";
 
 /** Of 2048 antennas: beyond, antenna numbers are damaged more likely than real. */
@@ -9,6 +15,10 @@ const EXACT = 1 << 21;
 
 export class BaselineIndex {
   readonly baselines: Baseline[] = [];
+  /** not among the choice */
+  readonly others = new PairSet();
+  /** those are chosen whose lot is below 2^-halvings */
+  halvings = 0;
   private readonly known = new Map<number | string, number>();
   private low = new Int32Array(64);
   private high = new Int32Array(64);
@@ -17,7 +27,7 @@ export class BaselineIndex {
   private last = 0;
 
   /**
-   * Index of the baseline, which may be new. Either way round is the same one.
+   * Index of the baseline, which may be new; OTHER where it is not chosen. Either way round is the same one.
    * @throws InputError when there are more baselines than any array has
    */
   indexOf(antenna1: number, antenna2: number): number {
@@ -26,6 +36,11 @@ export class BaselineIndex {
     let index = this.last;
     if (this.low[index] !== low || this.high[index] !== high) index = this.follower[index]!;
     if (this.low[index] !== low || this.high[index] !== high || this.baselines.length === 0) {
+      if (!this.chosen(low, high)) {
+        this.others.add(low, high);
+        if (this.others.size + this.baselines.length > MOST_BASELINES) throw tooMany();
+        return OTHER;
+      }
       index = this.find(low, high);
       this.follower[this.last] = index;
     }
@@ -33,18 +48,30 @@ export class BaselineIndex {
     return index;
   }
 
+  private chosen(low: number, high: number): boolean {
+    return this.halvings === 0 || lot(low, high) * 2 ** this.halvings < 1;
+  }
+
+  /** Choose half as many. @returns for each index so far the new one; OTHER where it is not chosen any more */
+  halve(): Int32Array {
+    this.halvings += 1;
+    const before = this.baselines.splice(0);
+    this.known.clear();
+    this.follower.fill(0);
+    this.last = 0;
+    return Int32Array.from(before, ({ antenna1, antenna2 }) => {
+      if (this.chosen(antenna1, antenna2)) return this.find(antenna1, antenna2);
+      this.others.add(antenna1, antenna2);
+      return OTHER;
+    });
+  }
+
   private find(low: number, high: number): number {
     const key = Math.abs(low) < EXACT ? low * 2 ** 32 + high : `${low} ${high}`;
     const known = this.known.get(key);
     if (known !== undefined) return known;
     const index = this.baselines.length;
-    if (index === MOST_BASELINES) {
-      throw new InputError(
-        `the rows name more than ${MOST_BASELINES} baselines: expected at most those of 2048 antennas`,
-        {},
-        "The antenna numbers are damaged",
-      );
-    }
+    if (index + this.others.size === MOST_BASELINES) throw tooMany();
     if (index === this.low.length) this.grow();
     this.low[index] = low;
     this.high[index] = high;
@@ -75,4 +102,12 @@ export class BaselineIndex {
     for (const [place, index] of order.entries()) places[index] = place;
     return places;
   }
+}
+
+function tooMany(): InputError {
+  return new InputError(
+    `the rows name more than ${MOST_BASELINES} baselines: expected at most those of 2048 antennas`,
+    {},
+    "The antenna numbers are damaged",
+  );
 }

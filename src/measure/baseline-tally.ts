@@ -3,10 +3,12 @@ import type { Shape } from "../dataset/dataset.ts";
 import { Arena, kernelMemory } from "../util/kernels/memory.ts";
 import type { Accumulator } from "./accumulator.ts";
 import { ExactSums } from "./exact-sums.ts";
+import type { OtherBaselines } from "./other-baselines.ts";
 import {
   AUTOCORRELATION,
   FLAGGED_WEIGHT,
   KINDS,
+  OTHER,
   type PreparedBlock,
   SUM_SQUARE,
   SUM_WEIGHT,
@@ -15,6 +17,7 @@ import {
 } from "./prepared.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
+import type { Baseline } from "./survey-result.ts";
 
 /** Sums a product: weight of usable samples, |weight| of flagged ones, effective number of usable ones. */
 const WEIGHTS = 3;
@@ -25,7 +28,7 @@ export class BaselineTally implements Accumulator {
   /** (baselines x products x KINDS); doubles hold counts beyond 2^32 exactly */
   private counts = new Float64Array(0);
   /** (baselines x products x WEIGHTS) */
-  private readonly weights = new ExactSums(0);
+  private weights = new ExactSums(0);
 
   private readonly arena: Arena = new Arena(this);
   /** address of (products x WEIGHTS) float64: those of one row */
@@ -43,6 +46,7 @@ export class BaselineTally implements Accumulator {
         this.autocorrelationRows += 1;
         continue;
       }
+      if (baseline === OTHER) continue;
       this.reserve(baseline);
       const from = row * products;
       const to = baseline * products;
@@ -83,6 +87,29 @@ export class BaselineTally implements Accumulator {
     counts.set(this.counts);
     this.counts = counts;
     this.weights.grow(WEIGHTS * room);
+  }
+
+  thin(baselines: Int32Array, before: readonly Baseline[], others: OtherBaselines): void {
+    const { products, counts, weights } = this;
+    this.counts = new Float64Array(0);
+    this.weights = new ExactSums(0);
+    for (const [number, now] of baselines.entries()) {
+      const first = number * products;
+      if (first * KINDS >= counts.length) break;
+      if (now === OTHER) {
+        others.addCounts(before[number]!.antenna1, before[number]!.antenna2, counts, first);
+        for (let k = first; k < first + products; k++) {
+          others.addWeights(k - first, weights, WEIGHTS * k, WEIGHTS * k + 1);
+        }
+        continue;
+      }
+      this.reserve(now);
+      this.counts.set(counts.subarray(first * KINDS, (first + products) * KINDS), now * products * KINDS);
+      for (let i = 0; i < WEIGHTS * products; i++) {
+        this.weights.merge(WEIGHTS * now * products + i, weights, WEIGHTS * first + i);
+      }
+    }
+    weights.release();
   }
 
   merge(other: this, baselines: Int32Array): void {

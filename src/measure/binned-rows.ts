@@ -9,7 +9,6 @@ import { SECONDS_PER_DAY } from "../util/constants.ts";
 import { InputError } from "../util/errors.ts";
 import { ExactSums } from "./exact-sums.ts";
 import {
-  AUTOCORRELATION,
   BAD,
   FLAGGED,
   KINDS,
@@ -173,7 +172,7 @@ export class BinnedRows implements TrackKeeper {
     const { block, baseline } = prepared;
     for (let row = 0; row < prepared.rows; row++) {
       const time = block.time[row]!;
-      if (baseline[row] === AUTOCORRELATION || !Number.isFinite(time)) continue;
+      if (baseline[row]! < 0 || !Number.isFinite(time)) continue;
       const stream = this.streamOf(
         baseline[row]!,
         block.field[row]!,

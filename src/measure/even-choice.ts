@@ -16,9 +16,14 @@ export function evenChoice(baselines: readonly Baseline[]): Int32Array {
   const chosen: number[] = [];
   for (let b = 0; b < length; b++) {
     const { antenna1, antenna2 } = baselines[b]!;
-    let hash = Math.imul(antenna1, 0x9e3779b1) ^ Math.imul(antenna2, 0x85ebca6b);
-    hash = Math.imul(hash ^ (hash >>> 15), 0xc2b2ae35);
-    if (((hash ^ (hash >>> 13)) >>> 0) / 2 ** 32 < share) chosen.push(b);
+    if (lot(antenna1, antenna2) < share) chosen.push(b);
   }
   return Int32Array.from(chosen);
+}
+
+/** A fixed, evenly spread number 0..1 of each baseline: those below a share are an even choice. */
+export function lot(antenna1: number, antenna2: number): number {
+  let hash = Math.imul(antenna1, 0x9e3779b1) ^ Math.imul(antenna2, 0x85ebca6b);
+  hash = Math.imul(hash ^ (hash >>> 15), 0xc2b2ae35);
+  return ((hash ^ (hash >>> 13)) >>> 0) / 2 ** 32;
 }

@@ -39,7 +39,7 @@ export function finishSurvey(part: SurveyPart): Survey {
     order,
     tracks,
   );
-  const counts = new BaselineCounts(gathered.baselines, order);
+  const counts = new BaselineCounts(gathered.baselines, order, gathered.others, index.others);
   const duplicateRows = gathered.tracks.duplicates(bare, integrations.centre);
   const survey = {
     dataset,
@@ -52,6 +52,9 @@ export function finishSurvey(part: SurveyPart): Survey {
     scans,
     totals: totalsOf(part, counts, duplicateRows),
     screen: gathered.screen.finish(order),
+    ...(index.others.size === 0
+      ? {}
+      : { others: { baselines: index.others.size, rows: gathered.others.rows() } }),
   };
   const { channels } = gathered;
   const measures = surveyMeasures(survey, {
@@ -81,6 +84,9 @@ function antennasWithData(baselines: readonly Baseline[], counts: BaselineCounts
   const numbers = new Set<number>();
   for (const [b, { antenna1, antenna2 }] of baselines.entries()) {
     if (counts.of(b).usable > 0) numbers.add(antenna1).add(antenna2);
+  }
+  for (const antenna of counts.otherAntennas) {
+    if (counts.ofOthers(antenna).usable > 0) numbers.add(antenna);
   }
   return [...numbers].sort((a, b) => a - b);
 }

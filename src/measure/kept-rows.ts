@@ -1,10 +1,11 @@
 /** The track cells of a dataset whose rows can all be kept: one a row. */
 import type { Shape } from "../dataset/dataset.ts";
+import type { OtherBaselines } from "./other-baselines.ts";
 import {
-  AUTOCORRELATION,
   BAD,
   FLAGGED,
   KINDS,
+  OTHER,
   type PreparedBlock,
   SLOPE_IMAG,
   SLOPE_REAL,
@@ -19,13 +20,17 @@ import {
 import { readColumns, usedOf } from "./state/columns.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
+import type { Baseline } from "./survey-result.ts";
 import { TIME_STEP_DAYS } from "./time-order.ts";
 import {
   append,
+  CELL_BYTES,
   cellColumns,
+  compact,
   firstCells,
   gather,
   orderOf,
+  PRODUCT_BYTES,
   productColumns,
   resized,
   type TracksWithoutScans,
@@ -52,7 +57,7 @@ export class KeptRows implements TrackKeeper {
     const { columns, place } = this;
     for (let row = 0; row < prepared.rows; row++) {
       const time = block.time[row]!;
-      if (baseline[row] === AUTOCORRELATION || !Number.isFinite(time)) continue;
+      if (baseline[row]! < 0 || !Number.isFinite(time)) continue;
       const cell = this.cells++;
       const s = sign[row]!;
       place[cell] = block.firstRow + row;
@@ -103,6 +108,34 @@ export class KeptRows implements TrackKeeper {
     const place = new Float64Array(this.room);
     place.set(this.place.subarray(0, this.cells));
     this.place = place;
+  }
+
+  /** Bytes in use. */
+  get bytes(): number {
+    return this.cells * (CELL_BYTES + PRODUCT_BYTES * this.width);
+  }
+
+  thin(baselines: Int32Array, _before: readonly Baseline[], others: OtherBaselines): void {
+    const { columns, products, place, width } = this;
+    const { baseline, field, setup, u, v } = columns;
+    const stays = new Uint8Array(this.cells);
+    let kept = 0;
+    for (let cell = 0; cell < this.cells; cell++) {
+      const now = baselines[baseline[cell]!]!;
+      if (now === OTHER) {
+        for (let k = 0; k < width; k++) {
+          others.setWeight(k, products.usable[cell * width + k]!, products.weight[cell * width + k]!);
+        }
+        others.addSpacing(field[cell]!, setup[cell]!, u[cell]!, v[cell]!);
+        continue;
+      }
+      baseline[cell] = now;
+      place[kept++] = place[cell]!;
+      stays[cell] = 1;
+    }
+    compact(columns, stays, 1);
+    compact(products, stays, width);
+    this.cells = kept;
   }
 
   merge(other: this, baselines: Int32Array): void {

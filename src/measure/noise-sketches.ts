@@ -73,7 +73,7 @@ export class NoiseSketches implements Accumulator {
       if ((chance & (this.every - 1)) !== 0) continue;
       this.takeSecond(prepared, row);
       const bits = this.placed();
-      this.byBaseline.addAt(this.owners.of(baseline[row]!), bits);
+      this.byBaseline.addAt(this.owners.ofRow(prepared, row), bits);
       if ((chance & (this.every * this.channelEvery - 1)) === 0) this.byChannel.addAt(0, bits);
       if ((chance & (this.every * this.spansEvery - 1)) !== 0) continue;
       this.bySpan.addAt(0, bits);

@@ -3,6 +3,7 @@
  * it without having read any.
  */
 import type { Dataset } from "../dataset/dataset.ts";
+import { MOST_BASELINES } from "./even-choice.ts";
 import { DEFAULT_MEMORY, surveyMemory } from "./memory.ts";
 
 export interface SurveySettings {
@@ -13,6 +14,8 @@ export interface SurveySettings {
   /** how many there will be, at most, as far as the antennas tell */
   readonly baselines: number;
   readonly antennas: number;
+  /** there may be so many baselines that only an even choice of them is looked at one by one */
+  readonly thins: boolean;
   /** one sketch a baseline would not fit, not even with all its samples in it: antennas own the sketches */
   readonly sharedSketches: boolean;
   /** 1 row in this many, a power of two, is asked for its noise: more would make it no better */
@@ -46,7 +49,8 @@ export function settleSurvey(dataset: Dataset, memory = surveyMemory(DEFAULT_MEM
     trackBytes: memory / 2,
     baselines,
     antennas,
-    sharedSketches: baselines * LEAST_BYTES > memory / 2,
+    thins: baselines > MOST_BASELINES,
+    sharedSketches: baselines > MOST_BASELINES || baselines * LEAST_BYTES > memory / 2,
     noiseEvery,
     channelEvery: sparing(dataset.rows / noiseEvery / ENOUGH_OF_CHANNEL),
     spansEvery: sparing(differences / noiseEvery / ENOUGH_OF_SPANS),

@@ -5,6 +5,7 @@
  */
 import { median } from "../util/statistics.ts";
 import type { BaselineIndex } from "./baseline-index.ts";
+import type { PreparedBlock } from "./prepared.ts";
 
 /** Antenna numbers go to 65535. */
 const MOST_OWNERS = 1 << 16;
@@ -20,9 +21,10 @@ export class SketchOwners {
     this.index = index;
   }
 
-  of(baseline: number): number {
-    if (!this.shared) return baseline;
-    const { antenna1, antenna2 } = this.index.baselines[baseline]!;
+  ofRow({ baseline, block }: PreparedBlock, row: number): number {
+    if (!this.shared) return baseline[row]!;
+    const antenna1 = block.antenna1[row]!;
+    const antenna2 = block.antenna2[row]!;
     // By turns, so that every antenna owns half of its baselines.
     return ((antenna1 + antenna2) % 2 === 0 ? antenna1 : antenna2) & (MOST_OWNERS - 1);
   }

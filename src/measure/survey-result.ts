@@ -4,6 +4,7 @@
  * u, v, w negated. Autocorrelations are counted and otherwise left out.
  */
 import type { Dataset } from "../dataset/dataset.ts";
+import type { OtherRows } from "./other-spacings.ts";
 import type { Screened } from "./screen/screen.ts";
 import type { Measures } from "./table.ts";
 
@@ -85,9 +86,22 @@ export interface Survey {
   /** [start, end] of each scan, MJD, by index; a scan ends at a change of field or a gap of 5 integrations and 60 s */
   readonly scans: readonly { readonly start: number; readonly end: number; readonly field: number }[];
   readonly totals: Totals;
+  /** where there are too many baselines for all to be above: the rest of them; absent: there is none */
+  readonly others?: Others;
   /** where the samples deserve a second look; without it everywhere */
   readonly screen?: Screened;
   readonly measures: Measures;
+}
+
+/**
+ * Baselines that are not among `Survey.baselines`, which are an even choice of all then: whatever is computed from
+ * tracks and levels is of the choice, whatever reads the samples is of all.
+ */
+export interface Others {
+  /** how many there are */
+  readonly baselines: number;
+  /** by field and setup */
+  readonly rows: readonly OtherRows[];
 }
 
 /** Counts over all cross-correlations, except `autocorrelationRows`. */
@@ -109,3 +123,8 @@ export interface Totals {
 
 /** A survey before its measures. */
 export type BareSurvey = Omit<Survey, "measures">;
+
+/** How many baselines there are in the data. */
+export function baselinesMet({ baselines, others }: Pick<Survey, "baselines" | "others">): number {
+  return baselines.length + (others?.baselines ?? 0);
+}

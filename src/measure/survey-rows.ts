@@ -28,7 +28,7 @@ export async function surveyPart(dataset: Dataset, options: SurveyRowsOptions = 
   const rows = options.rows ?? [0, dataset.rows];
   const blockRows = options.blockRows ?? Math.max(1, Math.floor(BLOCK_SAMPLES / rowSamples));
   const part = new SurveyPart(dataset, options.memory);
-  part.gathered.tracks.expect?.(rows[1] - rows[0]);
+  part.expect(rows[1] - rows[0]);
   let done = 0;
   for await (const block of dataset.blocks({ want: "samples", rows, blockRows })) {
     part.add(block);

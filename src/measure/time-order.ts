@@ -1,9 +1,10 @@
 /** The order of the rows in time, and the times at which each field was observed. */
 import { SECONDS_PER_DAY } from "../util/constants.ts";
 import type { Accumulator } from "./accumulator.ts";
-import { AUTOCORRELATION, type PreparedBlock } from "./prepared.ts";
+import { AUTOCORRELATION, OTHER, type PreparedBlock } from "./prepared.ts";
 import type { StateReader } from "./state/reader.ts";
 import type { StateRecord } from "./state/value.ts";
+import type { Baseline } from "./survey-result.ts";
 import { TimeList } from "./time-list.ts";
 
 /** A float32 day fraction near 0.6 resolves 5.15 ms: times closer than this are one integration. */
@@ -54,7 +55,9 @@ export class TimeOrder implements Accumulator {
         this.badTimeRows += 1;
         continue;
       }
-      step(run, time, baseline[row]!);
+      const number = baseline[row]!;
+      const isOther = number === OTHER;
+      step(run, time, isOther ? codeOf(block.antenna1[row]!, block.antenna2[row]!) : number);
       this.integrations.add(block.integration[row]!, 1);
       if (
         visits === undefined ||
@@ -85,14 +88,18 @@ export class TimeOrder implements Accumulator {
     return visits;
   }
 
+  thin(baselines: Int32Array, before: readonly Baseline[]): void {
+    this.runs = this.runs.map((run) =>
+      withBaselines(run, (baseline) => {
+        const now = baselines[baseline]!;
+        return now === OTHER ? codeOf(before[baseline]!.antenna1, before[baseline]!.antenna2) : now;
+      }),
+    );
+  }
+
   merge(other: this, baselines: Int32Array): void {
     for (const run of other.runs) {
-      const known = (baseline: number) => (baseline < 0 ? baseline : baselines[baseline]!);
-      this.runs.push({
-        ...run,
-        firstBaseline: known(run.firstBaseline),
-        lastBaseline: known(run.lastBaseline),
-      });
+      this.runs.push(withBaselines(run, (baseline) => baselines[baseline]!));
     }
     this.joinRuns();
     for (const { field, subarray, times } of other.visits.values()) {
@@ -198,6 +205,22 @@ function newRun(firstRow: number, rows: number): Run {
     backwardSame: 0,
     same: 0,
   };
+}
+
+/** Above the numbers of baselines: which one a row is of that has no number. */
+const FIRST_CODE = 2 ** 32;
+
+function codeOf(antenna1: number, antenna2: number): number {
+  const low = Math.min(antenna1, antenna2);
+  // Exact for the numbers that antennas have; of damaged ones two may look the same.
+  return FIRST_CODE + Math.abs(low * 65536 + (antenna1 + antenna2 - low));
+}
+
+/** A run with its baselines numbered otherwise. */
+function withBaselines(run: Run, numberOf: (baseline: number) => number): Run {
+  const known = (baseline: number) =>
+    baseline < 0 || baseline >= FIRST_CODE ? baseline : numberOf(baseline);
+  return { ...run, firstBaseline: known(run.firstBaseline), lastBaseline: known(run.lastBaseline) };
 }
 
 /** Note the next row with a time. */

@@ -128,6 +128,20 @@ export function append<C extends CellColumns | ProductColumns>(
   }
 }
 
+/** Move the rows of `width` numbers that stay to the front. @param stays (cells) 1 or 0 */
+export function compact<C extends CellColumns | ProductColumns>(
+  columns: C,
+  stays: Uint8Array,
+  width: number,
+): void {
+  for (const column of Object.values(columns as unknown as Record<string, Numbers>)) {
+    for (let cell = 0, to = 0; cell < stays.length; cell++) {
+      if (stays[cell] === 0) continue;
+      for (let k = 0; k < width; k++) column[to++] = column[cell * width + k]!;
+    }
+  }
+}
+
 /**
  * Cells by baseline, then time, field, setup, sub-array and place in the dataset.
  *

@@ -1,6 +1,6 @@
 /** What was looked at: the array, the times, the fields and the frequencies, in a few lines. */
 import type { Dataset } from "../dataset/dataset.ts";
-import type { Survey } from "../measure/survey-result.ts";
+import { baselinesMet, type Survey } from "../measure/survey-result.ts";
 import { isoFromMjd } from "../util/dates.ts";
 import {
   formatBytes,
@@ -44,7 +44,7 @@ function arrayText(survey: Survey): string {
   const used = survey.antennasWithData.length;
   const name = array.name.trim() === "" ? "unnamed" : array.name.trim();
   const data = used === all ? "all with data" : `${used} with data`;
-  return `${name}, ${formatCount(all)} antennas (${data}), ${formatCount(survey.baselines.length)} baselines`;
+  return `${name}, ${formatCount(all)} antennas (${data}), ${formatCount(baselinesMet(survey))} baselines`;
 }
 
 function timeText(survey: Survey): string {

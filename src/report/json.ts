@@ -5,6 +5,7 @@ import type { Selection } from "../dataset/selection.ts";
 import type { FlagEntry, FlagFile } from "../flags/entry.ts";
 import type { ImageForecast } from "../imaging/image.ts";
 import type { Plan } from "../imaging/plan.ts";
+import { baselinesMet } from "../measure/survey-result.ts";
 import type { Measure } from "../measure/table.ts";
 import type { Finding } from "../rules/finding.ts";
 import { frequencyRange } from "./dataset-facts.ts";
@@ -89,7 +90,7 @@ function datasetPart(check: Check): object {
     badTimeRows: totals.badTimeRows,
     badUvwRows: totals.badUvwRows,
     antennas: survey.antennasWithData.length,
-    baselines: survey.baselines.length,
+    baselines: baselinesMet(survey),
     integrations: times.length,
     channels: dataset.shape.channels,
     subbands: dataset.shape.subbands,

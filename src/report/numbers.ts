@@ -1,6 +1,6 @@
 /** The numbers behind the verdict: beams, noise, w, smearing, coverage and counts, as tables. */
 import type { Beam, Coverage, ImageForecast, WeightingResult } from "../imaging/image.ts";
-import type { Totals } from "../measure/survey-result.ts";
+import { baselinesMet, type Totals } from "../measure/survey-result.ts";
 import { antennaLabels } from "../rules/scope.ts";
 import {
   formatCount,
@@ -217,7 +217,7 @@ function countTable(totals: Totals, check: Check): DataTable {
       plain("rows without u, v, w", totals.badUvwRows),
       plain("integrations", survey.times.length),
       plain("antennas with data", survey.antennasWithData.length),
-      plain("baselines", survey.baselines.length),
+      plain("baselines", baselinesMet(survey)),
       plain("channels of all sub-bands", dataset.shape.subbands * dataset.shape.channels),
     ],
   };

@@ -24,3 +24,5 @@ export const SUMS = 8;
 
 /** An autocorrelation, which only the totals count. */
 export const AUTOCORRELATION = -1;
+/** Instead of the number of a baseline that is not among the choice of them that are looked at one by one. */
+export const OTHER = -2;

@@ -6,7 +6,7 @@
 import type { Dataset, Shape } from "../../dataset/dataset.ts";
 import { Arena, kernelMemory } from "../../util/kernels/memory.ts";
 import type { Accumulator } from "../accumulator.ts";
-import { AUTOCORRELATION, type PreparedBlock } from "../prepared.ts";
+import { AUTOCORRELATION, OTHER, type PreparedBlock } from "../prepared.ts";
 import type { StateReader } from "../state/reader.ts";
 import type { StateRecord } from "../state/value.ts";
 import { COUNT, COUNT_BRIGHT, COUNT_HIGH, LEVEL, OUTPUTS, PADDING, rowScreen } from "./row-screen.ts";
@@ -132,7 +132,7 @@ export class Screen implements Accumulator {
     const { i32 } = kernelMemory.heap;
     for (let row = first; row < last; row++) {
       const b = baseline[row]!;
-      if ((b + 1) * products > tile.high.length) withBaselines(tile, b + 1, products);
+      if (b >= 0 && (b + 1) * products > tile.high.length) withBaselines(tile, b + 1, products);
       const from = out + (row - first) * OUTPUTS * products;
       for (let product = 0; product < products; product++) {
         const at = from + product;
@@ -140,6 +140,8 @@ export class Screen implements Accumulator {
         if (count === 0) continue;
         tile.level[slot * products + product]! += i32[at + LEVEL * products]!;
         tile.rows[slot * products + product]! += 1;
+        // Of the others only the sums over all.
+        if (b < 0) continue;
         const own = b * products + product;
         tile.high[own]! += i32[at + COUNT_HIGH * products]!;
         tile.asked[own]! += count;
@@ -189,6 +191,14 @@ export class Screen implements Accumulator {
       return tile === undefined ? null : inOrder(tile, order, products);
     });
     return { cut: this.cut, isOn: this.isOn, tiles };
+  }
+
+  thin(baselines: Int32Array): void {
+    const products = this.shape.subbands * this.shape.polarizations;
+    const kept = Int32Array.from(baselines.keys()).filter((before) => baselines[before] !== OTHER);
+    for (const [number, tile] of this.tiles.entries()) {
+      if (tile !== undefined) this.tiles[number] = inOrder(tile, kept, products);
+    }
   }
 
   merge(other: this, baselines: Int32Array): void {

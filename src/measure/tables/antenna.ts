@@ -5,7 +5,7 @@ import { ANTENNA } from "../forms.ts";
 import type { BareSurvey } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import type { BaselineFacts } from "./baseline.ts";
-import { Counts } from "./counts.ts";
+import type { Counts } from "./counts.ts";
 
 /** Rounds of the median polish; it settles in a few. */
 const ROUNDS = 10;
@@ -16,6 +16,7 @@ export function antennaMeasure(survey: BareSurvey, facts: BaselineFacts): Measur
   const numbers = new Set([
     ...names.keys(),
     ...survey.baselines.flatMap(({ antenna1, antenna2 }) => [antenna1, antenna2]),
+    ...facts.counts.otherAntennas,
   ]);
   const antennas = [...numbers].sort((a, b) => a - b);
   const own = new Map<number, number[]>(antennas.map((antenna) => [antenna, []]));
@@ -24,7 +25,7 @@ export function antennaMeasure(survey: BareSurvey, facts: BaselineFacts): Measur
     own.get(antenna2)!.push(b);
   }
   const gains = medianPolish(survey, facts, own);
-  const counts = new Map(antennas.map((antenna) => [antenna, countsOf(own.get(antenna)!, facts)]));
+  const counts = new Map(antennas.map((antenna) => [antenna, countsOf(antenna, own.get(antenna)!, facts)]));
   const typicalFlagged = median(antennas.map((antenna) => counts.get(antenna)!.flaggedFraction));
   const ofOwn = (antenna: number, values: Float64Array) => median(own.get(antenna)!.map((b) => values[b]!));
   const sigmas = new Map(antennas.map((antenna) => [antenna, ofOwn(antenna, facts.sigma)]));
@@ -37,7 +38,7 @@ export function antennaMeasure(survey: BareSurvey, facts: BaselineFacts): Measur
     antenna,
     name: names.get(antenna) ?? null,
     in_table: array.fromTable && names.has(antenna) ? 1 : 0,
-    baselines: own.get(antenna)!.length,
+    baselines: own.get(antenna)!.length + facts.counts.otherBaselinesOf(antenna),
     ...counts.get(antenna)!.row,
     flagged_beyond_typical: counts.get(antenna)!.flaggedFraction - typicalFlagged,
     amplitude_median: ofOwn(antenna, facts.amplitude),
@@ -52,8 +53,8 @@ export function antennaMeasure(survey: BareSurvey, facts: BaselineFacts): Measur
   return fillMeasure(ANTENNA, rows);
 }
 
-function countsOf(own: readonly number[], facts: BaselineFacts): Counts {
-  const counts = new Counts();
+function countsOf(antenna: number, own: readonly number[], facts: BaselineFacts): Counts {
+  const counts = facts.counts.ofOthers(antenna);
   for (const b of own) counts.add(facts.counts.of(b));
   return counts;
 }

@@ -4,7 +4,7 @@ import { median, robustSigma, standardDeviation } from "../../util/statistics.ts
 import { evenChoice } from "../even-choice.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { BASELINE } from "../forms.ts";
-import type { BareSurvey } from "../survey-result.ts";
+import { type BareSurvey, baselinesMet } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import type { BaselineCounts } from "./baseline-counts.ts";
 import { parallelNumbers, parallelProducts } from "./products.ts";
@@ -186,9 +186,10 @@ export function baselineMeasure(survey: BareSurvey, facts: BaselineFacts): Measu
     };
   });
   const measure = fillMeasure(BASELINE, rows);
-  if (chosen.length === baselines.length) return measure;
+  const all = baselinesMet(survey);
+  if (chosen.length === all) return measure;
   return {
     ...measure,
-    title: `${measure.title}: an even choice of ${chosen.length} of ${baselines.length}`,
+    title: `${measure.title}: an even choice of ${chosen.length} of ${all}`,
   };
 }

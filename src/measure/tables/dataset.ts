@@ -5,7 +5,7 @@ import { median } from "../../util/statistics.ts";
 import { fillMeasure } from "../fill-measure.ts";
 import { DATASET } from "../forms.ts";
 import type { Gleanings } from "../gleanings.ts";
-import type { BareSurvey } from "../survey-result.ts";
+import { type BareSurvey, baselinesMet } from "../survey-result.ts";
 import type { Measure } from "../table.ts";
 import { longestPause } from "../times.ts";
 import type { BaselineFacts } from "./baseline.ts";
@@ -32,7 +32,7 @@ export function datasetMeasure(
     antennas_without_data: array.fromTable
       ? array.antennas.filter(({ number }) => !withData.has(number)).length
       : 0,
-    baselines: survey.baselines.length,
+    baselines: baselinesMet(survey),
     integrations: times.length,
     channels: shape.channels,
     subbands: shape.subbands,
