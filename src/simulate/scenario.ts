@@ -17,11 +17,14 @@ const notNegative = (schema: z.ZodType<number, string | 0>) =>
 
 const offsets = z.tuple([length, length, length]);
 
+/** What random groups can name in one number a baseline. */
+const MOST_ANTENNAS = 2047;
+
 /** Where the antennas stand, east, north and up from the array's centre. */
 const layout = z.discriminatedUnion("kind", [
   z.strictObject({
     kind: z.literal("spiral"),
-    antennas: z.int().min(3).max(260),
+    antennas: z.int().min(3).max(MOST_ANTENNAS),
     /** of the outermost antenna */
     radius: positive(length),
     /** of the innermost antenna */
@@ -34,13 +37,13 @@ const layout = z.discriminatedUnion("kind", [
   }),
   z.strictObject({
     kind: z.literal("ring"),
-    antennas: z.int().min(3).max(260),
+    antennas: z.int().min(3).max(MOST_ANTENNAS),
     radius: positive(length),
     relief: notNegative(length).default(0),
   }),
   z.strictObject({
     kind: z.literal("random"),
-    antennas: z.int().min(3).max(260),
+    antennas: z.int().min(3).max(MOST_ANTENNAS),
     radius: positive(length),
     /** no two antennas stand closer */
     apart: positive(length).default(20),
@@ -48,7 +51,7 @@ const layout = z.discriminatedUnion("kind", [
   }),
   z.strictObject({
     kind: z.literal("line"),
-    antennas: z.int().min(3).max(260),
+    antennas: z.int().min(3).max(MOST_ANTENNAS),
     /** between the first and the last antenna */
     length: positive(length),
     /** direction of the line, from north through east */
@@ -57,7 +60,7 @@ const layout = z.discriminatedUnion("kind", [
     crowding: z.number().min(0.2).max(5).default(1),
     relief: notNegative(length).default(0),
   }),
-  z.strictObject({ kind: z.literal("positions"), positions: z.array(offsets).min(3).max(260) }),
+  z.strictObject({ kind: z.literal("positions"), positions: z.array(offsets).min(3).max(MOST_ANTENNAS) }),
 ]);
 
 const array = z.strictObject({
