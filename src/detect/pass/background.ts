@@ -100,7 +100,7 @@ export class Background {
     // Several sources drifting against each other can pass for a shape of the band: try without one.
     this.keepShaped(plane);
     this.bandpass.flatten(columns);
-    plane.held.set(plane.told.subarray(0, rows * columns));
+    plane.held.set(plane.marks.subarray(0, rows * columns));
     this.fitRows(plane, noise);
     this.addDelays(plane, noise, steepest);
     if (misfit(plane, 0, rows, noise).cost > shaped.cost) this.restoreShaped(plane);

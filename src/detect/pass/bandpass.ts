@@ -98,7 +98,7 @@ export class Bandpass {
   }
 
   /** Rows spread over the plane, clipped. @returns how many */
-  private takeSample({ rows, columns, real, imag, usable, told }: Plane): number {
+  private takeSample({ rows, columns, real, imag, usable }: Plane): number {
     const { sampleReal, sampleImag } = this;
     const step = Math.max(1, rows / MOST_ROWS);
     let taken = 0;
@@ -107,12 +107,9 @@ export class Bandpass {
       if (usable[row]! * 2 < columns) continue;
       const from = row * columns;
       const to = taken * columns;
-      // What is held out is taken to be as the channel before it.
-      let last = from;
       for (let c = 0; c < columns; c++) {
-        if (told[from + c] !== 1) last = from + c;
-        sampleReal[to + c] = real[last]!;
-        sampleImag[to + c] = imag[last]!;
+        sampleReal[to + c] = real[from + c]!;
+        sampleImag[to + c] = imag[from + c]!;
       }
       taken += 1;
     }

@@ -26,8 +26,6 @@ export interface Choice {
    * everywhere alike; null: nothing, or everything is SEEN
    */
   readonly leftOut: Uint8Array | null;
-  /** (slots x channels of all sub-bands) 1 where samples tell no background; null: nowhere */
-  readonly heldOut: Uint8Array | null;
 }
 
 /** Integrations of a baseline in which something that is always there is looked at. */
@@ -43,8 +41,7 @@ export function choose(survey: Survey): Choice {
   const all = wholeChoice(survey);
   if (screen === undefined || !screen.isOn || bandsOf(dataset.shape).length === 0) return all;
   if (!isByTime(screen, baselines.length)) return all;
-  const { tiles: seen, persistent, strong } = suspectsOf(survey, screen);
-  const heldOut = strong.includes(1) ? strong : null;
+  const { tiles: seen, persistent } = suspectsOf(survey, screen);
   const odd = oddBaselines(dataset.shape, screen, baselines.length);
   const bright = brightBaselines(dataset.shape, screen, baselines.length, seen);
   const isPersistent = persistent.includes(1);
@@ -55,7 +52,7 @@ export function choose(survey: Survey): Choice {
     odd.tiles.some(Boolean) ||
     odd.always.includes(1);
   // One tile is too little to tell what is usual of it.
-  if (cut.tiles === 1 && any) return { ...all, heldOut };
+  if (cut.tiles === 1 && any) return all;
   const isSample = isPersistent || bright.share > MOST_BRIGHT;
   const perTile = cut.tileRows / Math.max(1, baselines.length);
   const every = Math.max(1, Math.floor((cut.tiles * perTile) / SAMPLE_INTEGRATIONS));
@@ -75,7 +72,6 @@ export function choose(survey: Survey): Choice {
     looks,
     isWhole: looks.every((look) => look?.every((how) => how === SEEN) ?? false),
     leftOut: isPersistent ? persistent : null,
-    heldOut,
   };
 }
 
@@ -100,7 +96,7 @@ function isByTime({ tiles }: Screened, baselines: number): boolean {
 export function wholeChoice({ dataset, screen, baselines }: Survey): Choice {
   const cut = screen?.cut ?? tileShape(dataset);
   const looks = Array.from({ length: cut.tiles }, () => new Uint8Array(baselines.length).fill(SEEN));
-  return { cut, looks, isWhole: true, leftOut: null, heldOut: null };
+  return { cut, looks, isWhole: true, leftOut: null };
 }
 
 function raise(look: Uint8Array, which: Uint8Array | null | undefined, how: number): void {

@@ -2,9 +2,6 @@
 import type { Band } from "./bands.ts";
 import type { RowRun, Tile } from "./tiles.ts";
 
-/** Share of a row that may be held out: the rest has to tell its background. */
-const MOST_HELD_OUT = 0.7;
-
 export class Plane {
   rows = 0;
   columns = 0;
@@ -13,9 +10,8 @@ export class Plane {
   imag = new Float32Array(0);
   /** 0 a sample, 1 marked as outlying, 2 no sample */
   marks = new Uint8Array(0);
-  /** 0 where a sample tells the background, else not; and the same to begin with */
+  /** 0 where a sample tells the background, else not */
   held = new Uint8Array(0);
-  told = new Uint8Array(0);
   /** |V - background|^2, then over its noise, then as normal score */
   power = new Float32Array(0);
   /** the background */
@@ -33,7 +29,6 @@ export class Plane {
       this.imag = new Float32Array(size);
       this.marks = new Uint8Array(size);
       this.held = new Uint8Array(size);
-      this.told = new Uint8Array(size);
       this.power = new Float32Array(size);
       this.modelReal = new Float32Array(size);
       this.modelImag = new Float32Array(size);
@@ -41,40 +36,10 @@ export class Plane {
     if (this.usable.length < rows) this.usable = new Int32Array(rows);
   }
 
-  private holdOut(row: number, heldOut: Uint8Array, from: number): void {
-    const { columns, held } = this;
-    let out = 0;
-    for (let c = 0; c < columns; c++) out += heldOut[from + c]!;
-    if (out === 0 || out > MOST_HELD_OUT * columns) return;
-    for (let c = 0, i = row * columns; c < columns; c++, i++) {
-      if (held[i] === 0 && heldOut[from + c] === 1) held[i] = 1;
-    }
-  }
-
-  /**
-   * Hold out of the background what the screen shows to be strong.
-   *
-   * @param heldOut (slots x stride) 1 for it
-   */
-  holdOutStrong(
-    tile: Tile,
-    run: RowRun,
-    band: Band,
-    heldOut: Uint8Array,
-    slotRows: number,
-    stride: number,
-  ): void {
-    for (let row = 0; row < run.rows; row++) {
-      const slot = Math.floor(tile.number[tile.order[run.first + row]!]! / slotRows);
-      this.holdOut(row, heldOut, slot * stride + band.first);
-    }
-    this.told.set(this.held.subarray(0, this.rows * this.columns));
-  }
-
   /** Take a run's samples of one band and polarization out of the tile. */
   take(tile: Tile, run: RowRun, band: Band, polarization: number, polarizations: number): void {
     this.resize(run.rows, band.columns);
-    const { real, imag, marks, held, told, usable, columns } = this;
+    const { real, imag, marks, held, usable, columns } = this;
     for (let row = 0; row < run.rows; row++) {
       let from = tile.order[run.first + row]! * tile.rowSamples + band.first * polarizations + polarization;
       const start = row * columns;
@@ -85,7 +50,6 @@ export class Plane {
         const mark = tile.missing[from]!;
         marks[i] = mark;
         held[i] = mark;
-        told[i] = mark;
         if (mark === 0) count += 1;
       }
       usable[row] = count;

@@ -39,13 +39,13 @@ export async function* sharedTiles(
 }
 
 function setupOf({ dataset, measures, screen, ...survey }: Survey, choice: Choice): PassSetup {
-  const { cut, isWhole, leftOut, heldOut } = choice;
+  const { cut, isWhole, leftOut } = choice;
   // Of the levels tiles ask the noise alone.
   const sigma = sharedArray(survey.levels.sigma);
   const levels = { median: new Float32Array(0), sigma, count: new Uint32Array(0) };
   return {
     recipe: dataset.recipe!,
     survey: { ...survey, levels },
-    choice: { cut, isWhole, leftOut, heldOut },
+    choice: { cut, isWhole, leftOut },
   };
 }

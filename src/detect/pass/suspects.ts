@@ -14,8 +14,6 @@ const SPREAD = 50.9;
 const SIGNIFICANT = 6.5;
 const LONGEST_TIME = 64;
 const LONGEST_FREQUENCY = 16;
-/** Runs up to this long are of what is strong. */
-const STRONG_RUN = 4;
 /** A channel's typical excess over its neighbours, in its errors and in steps (4 % of power), to be always there. */
 const PERSISTENT_ERRORS = 6;
 const PERSISTENT_STEPS = 2;
@@ -33,15 +31,12 @@ export interface Suspects {
   readonly tiles: Uint8Array;
   /** (channels of all sub-bands) 1 where they do all the time */
   readonly persistent: Uint8Array;
-  /** (slots x channels of all sub-bands) 1 where they do so much that these samples tell no background */
-  readonly strong: Uint8Array;
 }
 
 export function suspectsOf({ dataset }: Survey, screen: Screened): Suspects {
   const { subbands, channels, polarizations } = dataset.shape;
   const tiles = new Uint8Array(screen.cut.tiles);
   const persistent = new Uint8Array(subbands * channels);
-  const strong = new Uint8Array(tiles.length * screen.cut.slotsPerTile * subbands * channels);
   const products: (number | null)[] = [...Array(polarizations).keys()];
   if (polarizations > 1) products.push(null);
   for (const band of bandsOf(dataset.shape)) {
@@ -50,12 +45,10 @@ export function suspectsOf({ dataset }: Survey, screen: Screened): Suspects {
       for (const tile of loudTiles(dataset.shape, screen, band, product, levelRows(plane))) tiles[tile] = 1;
       markPersistent(plane, persistent, band.first, screen.cut.slotsPerTile);
       standardise(plane);
-      const runs = findRuns(plane);
-      for (const slot of runs.slots) tiles[Math.floor(slot / screen.cut.slotsPerTile)] = 1;
-      keepStrong(runs.strong, plane.columns, strong, subbands * channels, band.first);
+      for (const slot of slotsOfRuns(plane)) tiles[Math.floor(slot / screen.cut.slotsPerTile)] = 1;
     }
   }
-  return { tiles, persistent, strong };
+  return { tiles, persistent };
 }
 
 interface SlotPlane {
@@ -192,16 +185,9 @@ function standardise({ slots, columns, scores, counts, marks, usual }: SlotPlane
   }
 }
 
-/**
- * Slots in which runs in time or frequency are significant, and (slots x columns) 1 in short ones. Uses up the scores: what
- * is found counts no more in longer runs.
- */
-function findRuns({ slots, columns, scores, marks }: SlotPlane): {
-  readonly slots: Set<number>;
-  readonly strong: Uint8Array;
-} {
+/** Slots in which runs in time or frequency are significant. Uses up the scores: what is found counts no more in longer runs. */
+function slotsOfRuns({ slots, columns, scores, marks }: SlotPlane): Set<number> {
   const found = new Set<number>();
-  const strong = new Uint8Array(scores.length);
   for (let i = 0; i < scores.length; i++) if (marks[i] !== 0) scores[i] = 0;
   const fresh = new Uint8Array(scores.length);
   for (let length = 1; length <= LONGEST_TIME; length *= 2) {
@@ -214,26 +200,11 @@ function findRuns({ slots, columns, scores, marks }: SlotPlane): {
     for (let i = 0; any && i < fresh.length; i++) {
       if (fresh[i] === 0) continue;
       found.add(Math.floor(i / columns));
-      if (length <= STRONG_RUN) strong[i] = 1;
       scores[i] = 0;
       fresh[i] = 0;
     }
   }
-  return { slots: found, strong };
-}
-
-/** Take over what is strong in a band, with what lies between or beside: a difference is of three channels. */
-function keepStrong(from: Uint8Array, columns: number, to: Uint8Array, stride: number, first: number): void {
-  for (let slot = 0; slot * columns < from.length; slot++) {
-    let before = -1;
-    for (let c = 0; c < columns; c++) {
-      if (from[slot * columns + c] === 0) continue;
-      const low = before >= 0 && c - before <= INSIDE ? before : Math.max(0, c - 1);
-      const high = Math.min(columns - 1, c + 1);
-      to.fill(1, slot * stride + first + low, slot * stride + first + high + 1);
-      before = c;
-    }
-  }
+  return found;
 }
 
 /** Mark runs along a line whose sum exceeds a limit. @returns whether there are any */

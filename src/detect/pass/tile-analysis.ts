@@ -150,9 +150,7 @@ export class TileAnalysis {
     const { plane, background, normaliser, survey } = this;
     const { tracks } = survey;
     const { polarizations } = survey.dataset.shape;
-    const { heldOut, cut } = this.choice;
     plane.take(tile, run, band, p, polarizations);
-    if (heldOut !== null) plane.holdOutStrong(tile, run, band, heldOut, cut.slotRows, this.form.columns);
     const noise = this.noise[(run.baseline * this.bands.length + b) * polarizations + p]!;
     const steepness = this.steepness[run.setup]!;
     const cellOf = (row: number) => tile.cell[tile.order[run.first + row]!]!;

@@ -24,8 +24,6 @@ export class Tile {
   readonly cell: Int32Array;
   readonly setup: Int32Array;
   readonly time: Float64Array;
-  /** (rows) number in the dataset */
-  readonly number: Float64Array;
   /** (rows x samples of a row); the imaginary part as from the lower to the higher antenna number */
   readonly real: Float32Array;
   readonly imag: Float32Array;
@@ -39,7 +37,6 @@ export class Tile {
     this.cell = new Int32Array(rows);
     this.setup = new Int32Array(rows);
     this.time = new Float64Array(rows);
-    this.number = new Float64Array(rows);
     this.real = new Float32Array(rows * rowSamples);
     this.imag = new Float32Array(rows * rowSamples);
     this.missing = new Uint8Array(rows * rowSamples);
@@ -97,7 +94,10 @@ export class TileReader {
     const { dataset } = this.survey;
     const { subbands, channels, polarizations } = dataset.shape;
     const { tileRows } = this.cut;
-    const capacity = Math.min(tileRows, dataset.rows);
+    const { tracks, others } = this.survey;
+    // Of very many baselines only a choice has cells, one a row where they are no bins.
+    const most = others !== undefined && tracks.binSeconds === 0 ? tracks.cells : dataset.rows;
+    const capacity = Math.min(tileRows, most);
     this.tile ??= new Tile(capacity, subbands * channels * polarizations);
     const { tile, places } = this;
     tile.rows = 0;
@@ -105,7 +105,7 @@ export class TileReader {
     for await (const block of dataset.blocks({ want: "samples", rows })) {
       for (let row = 0; row < block.rows; row++) {
         const baseline = places.baselineOf(block.antenna1[row]!, block.antenna2[row]!);
-        if (baseline < 0 || Number.isNaN(block.time[row]!)) continue;
+        if (baseline < 0 || !Number.isFinite(block.time[row]!)) continue;
         const seen = look[baseline] !== UNSEEN;
         if (!seen && other === null) continue;
         const cell = places.cellOfRow(baseline, block, row);
@@ -127,7 +127,6 @@ function takeRow(tile: Tile, block: SampleBlock, row: number, baseline: number, 
   tile.cell[to] = cell;
   tile.setup[to] = block.setup[row]!;
   tile.time[to] = block.time[row]!;
-  tile.number[to] = block.firstRow + row;
   const sign = block.antenna1[row]! > block.antenna2[row]! ? -1 : 1;
   const from = row * rowSamples;
   const at = to * rowSamples;

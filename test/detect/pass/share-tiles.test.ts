@@ -49,7 +49,6 @@ function choiceOf(baselines: number, leftOut: Uint8Array | null): Choice {
     looks,
     isWhole: false,
     leftOut,
-    heldOut: null,
   };
 }
 
