@@ -2,6 +2,7 @@
  * Whether a source is in all of the data alike: a ghost that some samples make is in those alone, and in the middle one
  * of the baselines, times or channels it is not there.
  */
+import { MAD_TO_SIGMA } from "../../util/statistics.ts";
 import type { Atoms } from "../samples/atoms.ts";
 import { Response, type Source, type Visibilities, WHOLE } from "./model.ts";
 
@@ -36,8 +37,12 @@ export function isConsistent(source: Source, rest: Visibilities, atoms: Atoms, d
   if (!(total > 0)) return false;
   const flux = all / total;
   const error = Number.isFinite(atoms.noise) ? Math.sqrt(atoms.noise / total) : 0;
-  const least = LEAST_SHARE * flux - SIGMAS * MEDIAN_ERROR * error;
-  return groupings.every((groups) => !(groups.median() < least));
+  return groupings.every((groups) => {
+    const { middle, scatter } = groups.median();
+    // What other sources, not known yet, put in scatters the groups: noise is not all.
+    const least = LEAST_SHARE * flux - SIGMAS * MEDIAN_ERROR * Math.max(error, scatter);
+    return !(middle < least);
+  });
 }
 
 class Groups {
@@ -57,21 +62,30 @@ class Groups {
     this.own[group]! += own;
   }
 
-  /** Of the fluxes of the groups, by their weight; NaN of one group, which tells nothing. */
-  median(): number {
-    const fluxes: { flux: number; own: number }[] = [];
+  /**
+   * Of the fluxes of the groups, by their weight, and the scatter of a mean of them about it; NaN of fewer than three,
+   * which tell nothing.
+   */
+  median(): { readonly middle: number; readonly scatter: number } {
+    const fluxes: { value: number; own: number }[] = [];
     this.product.forEach((product, i) => {
       const own = this.own[i]!;
-      if (own > 0) fluxes.push({ flux: product / own, own });
+      if (own > 0) fluxes.push({ value: product / own, own });
     });
-    if (fluxes.length < 3) return Number.NaN;
-    fluxes.sort((a, b) => a.flux - b.flux);
-    const half = fluxes.reduce((sum, { own }) => sum + own, 0) / 2;
-    let sum = 0;
-    for (const { flux, own } of fluxes) {
-      sum += own;
-      if (sum >= half) return flux;
-    }
-    return Number.NaN;
+    if (fluxes.length < 3) return { middle: Number.NaN, scatter: 0 };
+    const middle = weightedMedian(fluxes);
+    const off = fluxes.map(({ value, own }) => ({ value: Math.abs(value - middle), own }));
+    return { middle, scatter: (MAD_TO_SIGMA * weightedMedian(off)) / Math.sqrt(fluxes.length) };
   }
+}
+
+function weightedMedian(values: { value: number; own: number }[]): number {
+  values.sort((a, b) => a.value - b.value);
+  const half = values.reduce((sum, { own }) => sum + own, 0) / 2;
+  let sum = 0;
+  for (const { value, own } of values) {
+    sum += own;
+    if (sum >= half) return value;
+  }
+  return Number.NaN;
 }

@@ -14,11 +14,10 @@ import type { Cluster } from "./clusters.ts";
 import { findExtended } from "./extended.ts";
 import { type Imager, isExtended, nuisanceOf } from "./look.ts";
 import type { Source, Visibilities } from "./model.ts";
-import { withOutside } from "./outside.ts";
 import { beamMoments, gaussianOfMoments, momentsOfGaussian, type PixelGaussian, widthsOf } from "./patch.ts";
 import { mainLobe, readImageAs } from "./patches.ts";
-import { robustRms } from "./peel.ts";
 import { Projector } from "./residual.ts";
+import { completedFit, MOST_SOURCES } from "./search.ts";
 import { agreed, restOf, type Solved, solveSources } from "./solve-sources.ts";
 
 export interface Understanding extends Imager {
@@ -44,14 +43,6 @@ export interface Understanding extends Imager {
   /** rms that the noise of the data makes in the image; NaN unknown */
   readonly noise: number;
 }
-
-/** Sources that take part, at most. */
-const MOST_SOURCES = 16;
-/** How often the residual is searched for more of them. */
-const SEARCHES = 4;
-/** A pixel of the residual is worth a try as a source above this many robust sigmas, and so far above the lowest. */
-const SOURCE_SIGMAS = 6;
-const SOURCE_BALANCE = 1.3;
 
 export function understand(
   image: SkyImage,
@@ -136,43 +127,14 @@ function withoutSources(imager: Imager, sources: readonly Source[], held: boolea
   };
 }
 
-/** With the extended emission, and with the sources that show once the others are gone. */
-function completed(imager: Imager, solved: Solved, beam: number, shortest: number): Source[] {
-  const { atoms, frame } = imager;
-  const extended = findExtended(solved.fit, { ...imager, beam, shortest });
-  let sources = [...(extended ?? solved.fit).sources];
-  if (extended !== null) sources = [...agreed(sources, atoms, frame.declination, beam).sources];
-  for (let search = 0; search < SEARCHES && sources.length < MOST_SOURCES; search++) {
-    const more = brightPixel(imager, withoutSources(imager, sources, true).residual, sources);
-    if (more === null) break;
-    const points = [...sources.filter((source) => !isExtended(source)), more];
-    const all = [...points, ...sources.filter(isExtended)];
-    const next = agreed(all, atoms, frame.declination, beam).sources;
-    if (next.length <= sources.length) break;
-    sources = [...next];
-  }
-  return [...withOutside(imager, sources, beam)];
-}
-
-/** The brightest pixel of the residual, where it may be a source. */
-function brightPixel(
-  { image, frame, atoms }: Imager,
-  residual: Float64Array,
-  sources: readonly Source[],
-): Source | null {
-  let [high, low, at] = [0, 0, -1];
-  for (let i = 0; i < residual.length; i++) {
-    if (residual[i]! > high) {
-      high = residual[i]!;
-      at = i;
-    }
-    low = Math.min(low, residual[i]!);
-  }
-  const floor = Math.max(SOURCE_SIGMAS * robustRms(residual, image.known), -SOURCE_BALANCE * low);
-  if (at < 0 || high < floor || atoms.count === 0 || sources.length === 0) return null;
-  const [x, y] = [at % image.width, Math.floor(at / image.width)];
-  const [l, m] = skyOffset(frame, x - (image.width >> 1), y - (image.height >> 1));
-  return { flux: high, l, m, shape: [0, 0, 0] };
+/** With the sources that the image hid, and with the extended emission. */
+function completed(imager: Imager, solved: Solved, beam: number, shortest: number): readonly Source[] {
+  const points = completedFit(imager, solved.fit, beam);
+  const extended = findExtended(points, { ...imager, beam, shortest });
+  if (extended === null) return points.sources;
+  // With it in the model, some of what looked like points is gone, and others show.
+  const again = agreed(extended.sources, imager.atoms, imager.frame.declination, beam);
+  return completedFit(imager, again, beam).sources;
 }
 
 /** Where neither header nor image shows a beam: the resolution of the longest spacing. */

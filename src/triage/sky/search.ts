@@ -1,34 +1,43 @@
-/** Sources beyond the edge of the image: the data hold them, and their sidelobes reach into it. */
+/**
+ * Sources that the data hold besides those known: the brightest place of a field wider than the image, one after the
+ * other. Those outside the image are found as well: their sidelobes reach into it.
+ */
 import type { Atoms } from "../samples/atoms.ts";
 import { imageNoise } from "../uv/weighting.ts";
-import { type Imager, isInside } from "./look.ts";
+import type { DataFit } from "./fit-data.ts";
+import type { Imager } from "./look.ts";
 import type { Source, Visibilities } from "./model.ts";
+import { robustRms } from "./peel.ts";
 import { agreed, restOf } from "./solve-sources.ts";
 
 /** The field that is searched, in widths of the image. */
 const WIDER = 3;
-/** A source stands out by this many times the noise of the image, and the scatter of the wider one. */
-const LEAST_SIGMAS = 10;
-const LEAST_SCATTERS = 7;
-const MOST_FOUND = 3;
+/** A place is tried as a source this many times above the noise of the image, above the scatter, above the lowest. */
+const LEAST_SIGMAS = 7;
+const LEAST_SCATTERS = 5;
+const BALANCE = 1.2;
+/** Sources that take part, at most. */
+export const MOST_SOURCES = 16;
+/** A source takes away this share of the power that is left, at least. */
+const LEAST_GONE = 2e-4;
 
-/** @returns the sources with those outside the image after them; the same list where there are none */
-export function withOutside(imager: Imager, sources: readonly Source[], beam: number): readonly Source[] {
+/** The fit with the sources that it lacks; the extended ones stay last. */
+export function completedFit(imager: Imager, first: DataFit, beam: number): DataFit {
   const { atoms, frame } = imager;
-  let known = sources;
-  for (let i = 0; i < MOST_FOUND; i++) {
-    const found = brightestOutside(imager, known);
+  let fit = first;
+  while (fit.sources.length < MOST_SOURCES) {
+    const found = brightest(imager, restOf(atoms, fit.sources, frame.declination));
     if (found === null) break;
-    const next = agreed([...known, found], atoms, frame.declination, beam).sources;
-    if (next.length <= known.length) break;
-    known = next;
+    const next = agreed([found, ...fit.sources], atoms, frame.declination, beam);
+    // One that only takes the place of another, and no better, leads nowhere.
+    if (!(next.left < (1 - LEAST_GONE) * fit.left)) break;
+    fit = next;
   }
-  return known;
+  return fit;
 }
 
-function brightestOutside(imager: Imager, sources: readonly Source[]): Source | null {
+function brightest(imager: Imager, rest: Visibilities): Source | null {
   const { atoms, frame, transformer, weights } = imager;
-  const rest = restOf(atoms, sources, frame.declination);
   const { width, height } = transformer;
   const out = new Float64Array(width * height);
   // Pixels three times as large: the same transform sees a field three times as wide.
@@ -45,27 +54,35 @@ function brightestOutside(imager: Imager, sources: readonly Source[]): Source | 
     null,
     out,
   );
-  let at = -1;
-  let squares = 0;
+  let at = 0;
+  let low = 0;
   for (let i = 0; i < out.length; i++) {
-    squares += out[i]! ** 2;
-    const [x, y] = offsetOf(i, width, height);
-    const beyond = Math.abs(x) > width / WIDER / 2 || Math.abs(y) > height / WIDER / 2;
-    if (beyond && (at < 0 || out[i]! > out[at]!)) at = i;
+    if (out[i]! > out[at]!) at = i;
+    low = Math.min(low, out[i]!);
   }
-  const scatter = Math.sqrt(squares / out.length);
   const noise = imageNoise(atoms, weights) / used;
-  if (at < 0 || !(out[at]! > LEAST_SIGMAS * noise && out[at]! > LEAST_SCATTERS * scatter)) return null;
-  const [x, y] = offsetOf(at, width, height);
+  const scatter = robustRms(out, new Uint8Array(out.length).fill(1));
+  const floor = Math.max(LEAST_SIGMAS * noise || 0, LEAST_SCATTERS * scatter, -BALANCE * low);
+  if (!(out[at]! > floor)) return null;
+  const [x, y] = [(at % width) - (width >> 1), Math.floor(at / width) - (height >> 1)];
   const [a, b, c, d] = frame.matrix;
   const [l, m] = [frame.middle[0] + WIDER * (a * x + b * y), frame.middle[1] + WIDER * (c * x + d * y)];
-  const source = sharpened({ flux: out[at]!, l, m, shape: [0, 0, 0] }, imager, rest);
-  return Math.hypot(l, m) < 1 && !isInside(imager, source) ? source : null;
+  if (!(Math.hypot(l, m) < 0.9)) return null;
+  return sharpened({ flux: out[at]!, l, m, shape: [0, 0, 0] }, imager, rest);
+}
+
+/** Weight of the samples that the larger pixels still sample. */
+function usedWeight(cycles: Atoms["cycles"], weights: Float64Array): number {
+  let sum = 0;
+  for (let k = 0; k < weights.length; k++) {
+    if (Math.abs(cycles.x[k]!) < 0.5 && Math.abs(cycles.y[k]!) < 0.5) sum += weights[k]!;
+  }
+  return sum;
 }
 
 /** Steps of a search around a pixel of the wider field, to each side, and samples that take part. */
-const STEPS = 5;
-const MOST_SAMPLED = 20_000;
+const STEPS = 4;
+const MOST_SAMPLED = 8_000;
 
 /** A pixel of the wider field is as large as a beam: the brightest place near it, by direct sum. */
 function sharpened(source: Source, { atoms, weights, frame }: Imager, rest: Visibilities): Source {
@@ -87,17 +104,4 @@ function sharpened(source: Source, { atoms, weights, frame }: Imager, rest: Visi
     }
   }
   return best;
-}
-
-function offsetOf(at: number, width: number, height: number): [number, number] {
-  return [(at % width) - (width >> 1), Math.floor(at / width) - (height >> 1)];
-}
-
-/** Weight of the samples that the larger pixels still sample. */
-function usedWeight(cycles: Atoms["cycles"], weights: Float64Array): number {
-  let sum = 0;
-  for (let k = 0; k < weights.length; k++) {
-    if (Math.abs(cycles.x[k]!) < 0.5 && Math.abs(cycles.y[k]!) < 0.5) sum += weights[k]!;
-  }
-  return sum;
 }
