@@ -12,11 +12,12 @@ import { join } from "./join.ts";
 import { nightly } from "./nightly.ts";
 import { part } from "./part.ts";
 import { simulate } from "./simulate.ts";
+import { triage } from "./triage.ts";
 
 /** Could not be judged: bad usage, unreadable or malformed input. */
 const EXIT_NOT_JUDGED = 2;
 
-const COMMANDS = [check, apply, describe, explain, part, join, nightly, simulate].map(
+const COMMANDS = [check, apply, describe, explain, part, join, nightly, simulate, triage].map(
   ({ command }) => String(command).split(" ")[0]!,
 );
 
@@ -38,6 +39,7 @@ try {
     .command(join)
     .command(nightly)
     .command(simulate)
+    .command(triage)
     .demandCommand(1, "Name a command")
     .strictCommands()
     .strict()

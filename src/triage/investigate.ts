@@ -3,6 +3,7 @@ import { samplingOf } from "../imaging/sampling.ts";
 import type { Survey } from "../measure/survey-result.ts";
 import { InputError } from "../util/errors.ts";
 import { formatAngle } from "../util/units.ts";
+import { touchesOf } from "./causes/candidate.ts";
 import { type Ranking, rankCauses } from "./causes/rank.ts";
 import type { SkyImage } from "./image/sky-image.ts";
 import { gatherAtoms } from "./samples/atoms.ts";
@@ -39,9 +40,29 @@ export async function investigate(
     frequencies: image.plane,
     ...(onProgress === undefined ? {} : { onProgress: (share) => onProgress(share / 2) }),
   });
-  const seen = understand(image, sampling, frame, atoms);
+  let seen = understand(image, sampling, frame, atoms);
+  let ranking = rankCauses(seen);
   onProgress?.(0.75);
-  const ranking = rankCauses(seen);
+  const [fault] = ranking.sampleFaults;
+  if (fault !== undefined && fault.share < PLAIN_SHARE) {
+    // A strong fault spoils the sources, too: once more with those that the other samples give.
+    const touches = touchesOf(seen, fault.candidate);
+    const trusted = Uint8Array.from({ length: atoms.count }, (_, k) => (touches(k) ? 0 : 1));
+    const again = understand(image, sampling, frame, atoms, trusted);
+    const ranked = rankCauses(again);
+    if (again.held && accounted(ranked) > accounted(ranking)) {
+      seen = again;
+      ranking = ranked;
+    }
+  }
   onProgress?.(1);
   return { seen, ranking };
+}
+
+/** A single fault that accounts for this much leaves nothing to look at again for. */
+const PLAIN_SHARE = 0.9;
+
+/** What the first cause accounts for. */
+function accounted({ sampleFaults, imagerFaults }: Ranking): number {
+  return Math.max(0, ...[...sampleFaults, ...imagerFaults].map(({ share }) => Math.min(1, share)));
 }

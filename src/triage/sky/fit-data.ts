@@ -116,6 +116,7 @@ function solveStep(
       }
     }
     const weight = atoms.weight[k]!;
+    if (weight === 0) continue;
     const size = weight * (re * re + im * im);
     sizes.push(size);
     if (size > limit) continue;

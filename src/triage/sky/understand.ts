@@ -44,11 +44,13 @@ export interface Understanding extends Imager {
   readonly noise: number;
 }
 
+/** @param trusted (atoms) 1 where a sample may tell of the sources; null: all of them */
 export function understand(
   image: SkyImage,
   sampling: Sampling,
   frame: ImageFrame,
   gathered: Atoms,
+  trusted: Uint8Array | null = null,
 ): Understanding {
   if (gathered.count === 0) {
     throw new InputError(
@@ -65,14 +67,15 @@ export function understand(
     .filter(({ flux }) => flux > 0)
     .slice(0, MOST_SOURCES)
     .map((cluster) => sourceOf(cluster, image, frame));
-  const solved = solveSources(found, gathered, frame.declination, beam.major);
-  const first = { image, frame, transformer, atoms: solved.atoms, lobe, weights: reading.weights };
+  const only = (values: Float64Array) => values.map((value, k) => (trusted?.[k] === 0 ? 0 : value));
+  const solving = { ...gathered, weight: only(gathered.weight) };
+  const solved = solveSources(found, solving, frame.declination, beam.major);
+  const first = { image, frame, transformer, atoms: solved.atoms, lobe, weights: only(reading.weights) };
   const sources = solved.held ? completed(first, solved, beam.major, sampling.shortest) : found;
-  const rest = solved.held
-    ? restOf(solved.atoms, sources, frame.declination)
-    : { re: solved.atoms.re, im: solved.atoms.im };
-  const atoms = solved.held ? withLeastNoise(solved.atoms, rest) : solved.atoms;
-  const imager = { ...first, atoms };
+  const all = { ...solved.atoms, weight: gathered.weight };
+  const rest = solved.held ? restOf(all, sources, frame.declination) : { re: all.re, im: all.im };
+  const atoms = solved.held ? withLeastNoise(all, rest) : all;
+  const imager = { ...first, atoms, weights: reading.weights };
   return {
     ...imager,
     sampling,
