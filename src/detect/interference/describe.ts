@@ -4,6 +4,7 @@ import type { DetectedEvent } from "../event.ts";
 import { ELEVATED_SHARE } from "../pass/marks.ts";
 import type { DetectRequest } from "../request.ts";
 import { amplitudeOf } from "./amplitude.ts";
+import { usableOf } from "./extent.ts";
 import type { Feature } from "./features.ts";
 import type { Grid } from "./grid.ts";
 import { channelsOf } from "./group.ts";
@@ -22,6 +23,7 @@ export function eventOf(grid: Grid, request: DetectRequest, feature: Feature): D
     liesInProtected(grid.survey, request, feature);
   const { counts, significance } = feature;
   const amplitude = amplitudeOf(feature);
+  const samples = usableOf(grid, feature);
   const only = feature.who.kind === "listed" && feature.who.baselines === 1;
   return {
     kind: feature.kind,
@@ -34,12 +36,12 @@ export function eventOf(grid: Grid, request: DetectRequest, feature: Feature): D
     unit: "sigma",
     significance,
     confidence: doubtful ? DOUBTFUL_LINE : confidenceOf(significance, counts.elevated / counts.usable),
-    samples: counts.usable,
+    samples,
     // A burst that fills the band is in all of its samples, whatever each looks like.
     outlying:
       feature.amplitude === undefined
-        ? Math.round(aboveNoise(counts.elevated, counts.usable))
-        : counts.usable,
+        ? Math.round((samples / Math.max(1, counts.usable)) * aboveNoise(counts.elevated, counts.usable))
+        : samples,
     evidence: evidenceOf(grid, feature, amplitude, doubtful),
     repair: null,
   };
@@ -86,8 +88,11 @@ function shareWords(grid: Grid, { counts, raised }: Feature): string {
   if (grid.pass.marks === null) {
     return "; the samples are too many to keep a mark of each, so that only sums over all baselines were looked at";
   }
+  const looked = grid.pass.choice.isWhole
+    ? `their ${counts.usable} samples`
+    : `the ${counts.usable} samples looked at`;
   return (
-    `; ${percent(counts.elevated / counts.usable)} of their ${counts.usable} samples exceed what ` +
+    `; ${percent(counts.elevated / counts.usable)} of ${looked} exceed what ` +
     `${percent(ELEVATED_SHARE)} of noise does`
   );
 }

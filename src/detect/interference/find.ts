@@ -33,10 +33,12 @@ export interface Found {
 export class Finder {
   private readonly combined: CombinedScores;
   private readonly sampled: CombinedScores | null;
+  private readonly isWhole: boolean;
   private readonly room = new SumThresholdRoom();
 
-  constructor({ combined, sampled }: Pick<SecondPass, "combined" | "sampled">) {
+  constructor({ combined, sampled, choice }: Pick<SecondPass, "combined" | "sampled" | "choice">) {
     this.combined = combined;
+    this.isWhole = choice.isWhole;
     this.sampled = sampled;
   }
 
@@ -55,8 +57,9 @@ export class Finder {
       for (const product of products) {
         combined.fill(groups, band.first, columns, product, scores, marks, counts);
         this.level(scores, marks, counts, steps, columns);
-        if (this.sampled === null) markChannels(scores, marks, counts, steps, columns, persistent);
-        else this.markSampled(this.sampled, groups, band, product, persistent);
+        // Of a part of the time nothing can be said to be always there: that is told by the sample of all of it.
+        if (this.isWhole) markChannels(scores, marks, counts, steps, columns, persistent);
+        else if (this.sampled !== null) this.markSampled(this.sampled, groups, band, product, persistent);
         sumThreshold(
           scores,
           marks,

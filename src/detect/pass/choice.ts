@@ -67,12 +67,8 @@ export function choose(survey: Survey): Choice {
     if (!isPersistent) raise(look, odd.always, ALONE);
     return look.some((how) => how !== UNSEEN) ? look : null;
   });
-  return {
-    cut,
-    looks,
-    isWhole: looks.every((look) => look?.every((how) => how === SEEN) ?? false),
-    leftOut: isPersistent ? persistent : null,
-  };
+  const isWhole = looks.every((look) => look?.every((how) => how === SEEN) ?? false);
+  return { cut, looks, isWhole, leftOut: isPersistent && !isWhole ? persistent : null };
 }
 
 /** Whether most tiles have rows of most baselines. */
