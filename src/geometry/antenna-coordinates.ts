@@ -3,6 +3,11 @@
  * either) back to those of the antennas, by least squares.
  */
 
+import { DifferenceEquations } from "./many-antennas.ts";
+
+/** Of more antennas than this no matrix is made: it would take seconds, for each moment that is looked at. */
+const MOST_DENSE = 400;
+
 /** The baselines and antennas of one array, as indices. */
 export interface Graph {
   readonly antennas: number;
@@ -32,6 +37,10 @@ export function solveDifferences(
   }
   const used = Int32Array.from(degree.keys()).filter((i) => degree[i]! > 0);
   if (used.length < 2) return null;
+  if (used.length > MOST_DENSE) {
+    const equations = new DifferenceEquations(graph, weight, degree);
+    return equations.isConnected ? values.map((column) => equations.solve(column)) : null;
+  }
   const place = new Int32Array(antennas).fill(-1);
   used.forEach((antenna, i) => {
     place[antenna] = i;

@@ -43,9 +43,11 @@ export function antennaOffsets(
   const own = withoutCommon(offsets, positions);
   const distances = own.map(([x, y, z]) => Math.hypot(x, y, z));
   const size = Math.max(...positions.map(([x, y, z]) => Math.hypot(x, y, z)));
+  const sorted = [...distances].sort((a, b) => a - b);
+  const half = (sorted.length - 1) >> 1;
   return own.map((offset, i) => {
-    const others = distances.filter((_, j) => j !== i).sort((a, b) => a - b);
-    const middle = others.length === 0 ? 0 : others[others.length >> 1]!;
+    // The middle one of the others.
+    const middle = sorted[distances[i]! <= sorted[half]! ? half + 1 : half] ?? 0;
     const typical = Math.max(middle, size * ROUNDING, LEAST_TYPICAL);
     return { offset, distance: distances[i]!, significance: distances[i]! / typical };
   });

@@ -100,9 +100,17 @@ export interface AntennaW {
 
 /** The largest w of an antenna's baselines, and their mean loss by weight. */
 export function wByAntenna(baselines: readonly BaselineW[]): AntennaW[] {
-  const antennas = [...new Set(baselines.flatMap((b) => [b.antenna1, b.antenna2]))].sort((a, b) => a - b);
+  const byAntenna = new Map<number, BaselineW[]>();
+  for (const baseline of baselines) {
+    for (const antenna of [baseline.antenna1, baseline.antenna2]) {
+      const own = byAntenna.get(antenna);
+      if (own === undefined) byAntenna.set(antenna, [baseline]);
+      else own.push(baseline);
+    }
+  }
+  const antennas = [...byAntenna.keys()].sort((a, b) => a - b);
   return antennas.map((antenna) => {
-    const own = baselines.filter((b) => b.antenna1 === antenna || b.antenna2 === antenna);
+    const own = byAntenna.get(antenna)!;
     let [wMax, phase, loss, weight] = [Number.NaN, Number.NaN, 0, 0];
     for (const b of own) {
       if (!(wMax >= b.wMax) && !Number.isNaN(b.wMax)) wMax = b.wMax;

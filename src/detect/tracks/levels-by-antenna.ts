@@ -5,14 +5,19 @@
 import { median, robustSigma } from "../../util/statistics.ts";
 import type { Grid, Plane } from "./grid.ts";
 
-/** Mean power of a stretch of one baseline: of means over a few integrations, noise taken off. */
-interface Point {
-  readonly baseline: number;
-  readonly u: number;
-  readonly v: number;
-  readonly power: number;
+/**
+ * Mean powers of stretches of baselines: of means over a few integrations, noise taken off. Columns: of thousands of
+ * antennas there are hundreds of thousands.
+ */
+interface Points {
+  readonly count: number;
+  /** (count) ascending */
+  readonly baseline: Int32Array;
+  readonly u: Float64Array;
+  readonly v: Float64Array;
+  readonly power: Float64Array;
   /** of `power` when there is no signal */
-  readonly error: number;
+  readonly error: Float64Array;
 }
 
 export interface AntennaLevel {
@@ -41,7 +46,7 @@ const MOST_OWN = 80;
 const MOST_PLANES = 4;
 
 /** What there is to compare, by plane. */
-export type LevelPoints = readonly (readonly Point[])[];
+export type LevelPoints = readonly Points[];
 
 /** @param planes of one polarization */
 export function levelPoints(grid: Grid, planes: readonly Plane[]): LevelPoints {
@@ -62,43 +67,44 @@ export function levelsByAntenna(
 
 /** The points of one plane, ready to be asked by antenna. */
 interface PlanePoints {
-  /** in the order of the baselines */
-  readonly all: readonly Point[];
+  readonly all: Points;
   /** (baselines + 1) first point of each */
   readonly first: Int32Array;
-  /** of no ignored antenna, from which each antenna's others are taken; of very many an even choice */
-  readonly trusted: readonly Point[];
+  /** numbers of those of no ignored antenna, from which each antenna's others are taken; of very many an even choice */
+  readonly trusted: Int32Array;
 }
 
 /** Of more than this many, one choice of others serves all antennas. */
 const MOST_TRUSTED = 4000;
 
-function planePoints(grid: Grid, all: readonly Point[], ignore: ReadonlySet<number>): PlanePoints {
+function planePoints(grid: Grid, all: Points, ignore: ReadonlySet<number>): PlanePoints {
   const first = new Int32Array(grid.baselines + 1);
-  for (const { baseline } of all) first[baseline + 1]! += 1;
+  for (const baseline of all.baseline) first[baseline + 1]! += 1;
   for (let b = 0; b < grid.baselines; b++) first[b + 1]! += first[b]!;
+  const every = Int32Array.from({ length: all.count }, (_, i) => i);
   const trusted =
     ignore.size === 0
-      ? all
-      : all.filter(
-          ({ baseline }) => !ignore.has(grid.first[baseline]!) && !ignore.has(grid.second[baseline]!),
-        );
+      ? every
+      : every.filter((i) => {
+          const b = all.baseline[i]!;
+          return !ignore.has(grid.first[b]!) && !ignore.has(grid.second[b]!);
+        });
   return { all, first, trusted: trusted.length > MOST_TRUSTED ? thinned(trusted, MOST_OTHERS) : trusted };
 }
 
 function ownPoints(
   grid: Grid,
-  { all, first }: PlanePoints,
+  { first }: PlanePoints,
   antenna: number,
   ignore: ReadonlySet<number>,
-): Point[] {
-  const own: Point[] = [];
+): Int32Array {
+  const own: number[] = [];
   for (const b of grid.touching[antenna]!) {
     const other = grid.first[b] === antenna ? grid.second[b]! : grid.first[b]!;
     if (ignore.has(other)) continue;
-    for (let i = first[b]!; i < first[b + 1]!; i++) own.push(all[i]!);
+    for (let i = first[b]!; i < first[b + 1]!; i++) own.push(i);
   }
-  return own;
+  return Int32Array.from(own);
 }
 
 function levelOf(
@@ -112,20 +118,23 @@ function levelOf(
   const told = new Set<number>();
   for (const points of planes) {
     const own = thinned(ownPoints(grid, points, antenna, ignore), MOST_OWN);
-    const all = points.trusted.filter(
-      ({ baseline }) => grid.first[baseline] !== antenna && grid.second[baseline] !== antenna,
-    );
-    const others = thinned(all, MOST_OTHERS);
+    const { all } = points;
+    const free = points.trusted.filter((i) => {
+      const b = all.baseline[i]!;
+      return grid.first[b] !== antenna && grid.second[b] !== antenna;
+    });
+    const others = othersOf(all, thinned(free, MOST_OTHERS));
     const outer = outerLevel(others);
-    for (const point of own) {
-      const likely = likelyPower(point, others, outer);
+    for (const i of own) {
+      const likely = likelyPower(all.u[i]!, all.v[i]!, others, outer);
       if (!(likely > 0)) continue;
-      power += point.power;
+      const [ownPower, ownError] = [all.power[i]!, all.error[i]!];
+      power += ownPower;
       expected += likely;
-      variance += point.error ** 2;
-      if (point.power < Math.max(0.05 * likely, 4 * point.error)) silent += 1;
-      told.add(point.baseline);
-      ratios.push(Math.log(Math.max(point.power, point.error * 0.1) / likely) / 2);
+      variance += ownError ** 2;
+      if (ownPower < Math.max(0.05 * likely, 4 * ownError)) silent += 1;
+      told.add(all.baseline[i]!);
+      ratios.push(Math.log(Math.max(ownPower, ownError * 0.1) / likely) / 2);
     }
   }
   const error = Math.sqrt(variance);
@@ -142,7 +151,7 @@ function levelOf(
   };
 }
 
-function thinned(points: readonly Point[], most: number): readonly Point[] {
+function thinned(points: Int32Array, most: number): Int32Array {
   const stride = Math.ceil(points.length / most);
   return points.filter((_, i) => i % stride === 0);
 }
@@ -160,23 +169,36 @@ const FLAT = 0.3;
 /** Neighbours further apart than this factor in power tell nothing. */
 const MOST_SPREAD = 6;
 
-function outerLevel(others: readonly Point[]): Outer {
-  const sorted = [...others].sort((a, b) => Math.hypot(b.u, b.v) - Math.hypot(a.u, a.v));
+/** Columns of some points side by side. */
+interface Other {
+  readonly u: Float64Array;
+  readonly v: Float64Array;
+  readonly radius: Float64Array;
+  readonly power: Float64Array;
+}
+
+function othersOf(all: Points, which: Int32Array): Other {
+  const column = (values: Float64Array) => Float64Array.from(which, (i) => values[i]!);
+  const [u, v] = [column(all.u), column(all.v)];
+  return { u, v, radius: u.map((own, i) => Math.hypot(own, v[i]!)), power: column(all.power) };
+}
+
+function outerLevel({ radius, power }: Other): Outer {
+  const sorted = Array.from(radius.keys()).sort((a, b) => radius[b]! - radius[a]!);
   const far = sorted.slice(0, Math.max(1, Math.floor(OUTER_SHARE * sorted.length)));
-  const powers = (points: readonly Point[]) => median(points.map(({ power }) => power));
   return {
-    radius: sorted.length === 0 ? 0 : Math.hypot(sorted[0]!.u, sorted[0]!.v),
-    share: powers(far) / powers(others),
+    radius: sorted.length === 0 ? 0 : radius[sorted[0]!]!,
+    share: median(far.map((i) => power[i]!)) / median(power),
   };
 }
 
 /** NaN where the neighbours do not tell. */
-function likelyPower(point: Point, others: readonly Point[], outer: Outer): number {
-  const near = nearest(point, others);
-  const radius = Math.hypot(point.u, point.v);
-  const beyond = near.filter(({ u, v }) => Math.hypot(u, v) >= radius).length;
+function likelyPower(u: number, v: number, others: Other, outer: Outer): number {
+  const near = nearest(u, v, others);
+  const radius = Math.hypot(u, v);
+  const beyond = near.filter((i) => others.radius[i]! >= radius).length;
   if (beyond < 2 && !(outer.share > FLAT)) return Number.NaN;
-  const powers = near.map(({ power }) => power).sort((a, b) => a - b);
+  const powers = near.map((i) => others.power[i]!).sort((a, b) => a - b);
   if (powers.length === 0) return Number.NaN;
   // One of five may itself be at fault.
   const [low, high] = powers.length < 4 ? [0, powers.length - 1] : [1, powers.length - 1];
@@ -184,31 +206,37 @@ function likelyPower(point: Point, others: readonly Point[], outer: Outer): numb
   return median(powers);
 }
 
-function nearest(point: Point, others: readonly Point[]): Point[] {
-  const near: Point[] = [];
+/** Places in `others`. */
+function nearest(u: number, v: number, others: Other): number[] {
+  const near: number[] = [];
   const distances: number[] = [];
-  for (let i = 0; i < others.length; i++) {
-    const other = others[i]!;
+  let farthest = Number.POSITIVE_INFINITY;
+  for (let i = 0; i < others.u.length; i++) {
+    const [otherU, otherV] = [others.u[i]!, others.v[i]!];
     // Either way round: a visibility and its conjugate say the same.
-    const apart = (other.u - point.u) ** 2 + (other.v - point.v) ** 2;
-    const across = (other.u + point.u) ** 2 + (other.v + point.v) ** 2;
+    const apart = (otherU - u) ** 2 + (otherV - v) ** 2;
+    const across = (otherU + u) ** 2 + (otherV + v) ** 2;
     const distance = Math.min(apart, across);
-    if (near.length === NEIGHBOURS && !(distance < distances[NEIGHBOURS - 1]!)) continue;
+    if (near.length === NEIGHBOURS && !(distance < farthest)) continue;
     let at = Math.min(near.length, NEIGHBOURS - 1);
     for (; at > 0 && distances[at - 1]! > distance; at--) {
       distances[at] = distances[at - 1]!;
       near[at] = near[at - 1]!;
     }
     distances[at] = distance;
-    near[at] = other;
+    near[at] = i;
+    farthest = distances.at(-1)!;
   }
   return near;
 }
 
-function pointsOf(grid: Grid, plane: Plane, stretches: number): Point[] {
+function pointsOf(grid: Grid, plane: Plane, stretches: number): Points {
   const { baselines, times, cellOf, survey } = grid;
-  const points: Point[] = [];
   const length = Math.max(1, Math.ceil(times.length / stretches));
+  const room = baselines * Math.ceil(times.length / length);
+  const baseline = new Int32Array(room);
+  const [u, v, power, error] = Array.from({ length: 4 }, () => new Float64Array(room)) as Four;
+  let count = 0;
   for (let b = 0; b < baselines; b++) {
     for (let from = 0; from < times.length; from += length) {
       const point = pointOf(grid, plane, b, from, Math.min(times.length, from + length));
@@ -216,11 +244,26 @@ function pointsOf(grid: Grid, plane: Plane, stretches: number): Point[] {
       let cell = -1;
       for (let t = from; t < Math.min(times.length, from + length) && cell < 0; t++)
         cell = cellOf[t * baselines + b]!;
-      points.push({ ...point, baseline: b, u: survey.tracks.u[cell]!, v: survey.tracks.v[cell]! });
+      baseline[count] = b;
+      u[count] = survey.tracks.u[cell]!;
+      v[count] = survey.tracks.v[cell]!;
+      power[count] = point.power;
+      error[count] = point.error;
+      count += 1;
     }
   }
-  return points;
+  const used = (column: Float64Array) => column.subarray(0, count);
+  return {
+    count,
+    baseline: baseline.subarray(0, count),
+    u: used(u),
+    v: used(v),
+    power: used(power),
+    error: used(error),
+  };
 }
+
+type Four = [Float64Array, Float64Array, Float64Array, Float64Array];
 
 function pointOf(grid: Grid, plane: Plane, b: number, from: number, to: number) {
   const { baselines, segments } = grid;
