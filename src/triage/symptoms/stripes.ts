@@ -41,7 +41,7 @@ export function measureStripes(seen: Understanding, cells: UvCells): Symptom {
     uWavelengths: u,
     vWavelengths: v,
   };
-  const wave = `spacing ${formatAngle(spacing)}, crests ${formatNumber(direction)} deg from north through east apart, height ${formatNumber(sigmas)} sigma`;
+  const wave = `spacing ${formatAngle(spacing)} along ${formatNumber(direction)} deg (north through east), height ${formatNumber(sigmas)} sigma`;
   return {
     word: "stripes",
     present,
