@@ -95,9 +95,22 @@ function listsMeet<T>(a: readonly T[] | null, b: readonly T[] | null): boolean {
 function antennasMeet(a: Selection, b: Selection): boolean {
   if (!listsMeet(a.antennas, b.antennas)) return false;
   if (a.baselines !== null && b.baselines !== null) {
-    return listsMeet(a.baselines.map(pairKey), b.baselines.map(pairKey));
+    return pairsMeet(a.baselines, b.baselines);
   }
   return endsMeet(a.antennas, b.baselines) && endsMeet(b.antennas, a.baselines);
+}
+
+type Pairs = readonly (readonly [number, number])[];
+
+function pairsMeet(a: Pairs, b: Pairs): boolean {
+  // Tables of baselines are gone through pair by pair: no texts for two single ones.
+  if (a.length === 1 && b.length === 1) return samePair(a[0]!, b[0]!);
+  const known = new Set(b.map(pairKey));
+  return a.some((pair) => known.has(pairKey(pair)));
+}
+
+function samePair([a, b]: readonly [number, number], [c, d]: readonly [number, number]): boolean {
+  return (a === c && b === d) || (a === d && b === c);
 }
 
 function endsMeet(antennas: Selection["antennas"], baselines: Selection["baselines"]): boolean {

@@ -212,7 +212,8 @@ function nearest(u: number, v: number, others: Other): number[] {
   const distances: number[] = [];
   let farthest = Number.POSITIVE_INFINITY;
   for (let i = 0; i < others.u.length; i++) {
-    const [otherU, otherV] = [others.u[i]!, others.v[i]!];
+    const otherU = others.u[i]!;
+    const otherV = others.v[i]!;
     // Either way round: a visibility and its conjugate say the same.
     const apart = (otherU - u) ** 2 + (otherV - v) ** 2;
     const across = (otherU + u) ** 2 + (otherV + v) ** 2;
