@@ -10,6 +10,7 @@ import { triageText } from "../../src/triage/report/text.ts";
 import { writeTriage } from "../../src/triage/report/write.ts";
 import { symptomNamed } from "../../src/triage/symptoms/named.ts";
 import { CLEAN_STATEMENT, type Triage, triageImage, triageSymptom } from "../../src/triage/triage.ts";
+import { FAULTY } from "../support/scenarios.ts";
 import { CASES, imageOf } from "./support/cases.ts";
 import { writeImage } from "./support/image-file.ts";
 
@@ -98,9 +99,8 @@ describe("a clean image", () => {
 
 describe("a described symptom", () => {
   it("ranks the findings that make it", async () => {
-    const game = CASES[1]!.make(900);
     const request = { plan: {}, rules: await loadRules() };
-    const triage = await triageSymptom(game.simulated.dataset, "noise", request);
+    const triage = await triageSymptom(FAULTY.persistentLine().dataset, "noise", request);
     expect(triage.causes[0]).toMatchObject({ kind: "persistent-line" });
     expect(triage.image).toBeNull();
     expect(triageText(triage, { width: 80, colour: false })).toContain(

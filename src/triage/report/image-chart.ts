@@ -8,7 +8,7 @@ import { quantileOf } from "../../report/plots/quantile.ts";
 import { angleUnit, roundBelow } from "../../report/plots/ticks.ts";
 import { pixelOf } from "../sky/look.ts";
 import type { Understanding } from "../sky/understand.ts";
-import { pixelOffset } from "../uv/frame.ts";
+import { pixelOffset, skyOffset } from "../uv/frame.ts";
 
 export interface ImageChart {
   readonly svg: string;
@@ -40,7 +40,7 @@ export function imageChart(seen: Understanding, pixels: Float64Array, id: string
   const full = fullShade(sky);
   const { divisor, name } = angleUnit(reach * ARCSECONDS);
   const limit = (reach * ARCSECONDS) / divisor;
-  const [east, north] = frame.middle.map((value) => (value * ARCSECONDS) / divisor) as [number, number];
+  const [east, north] = centreOf(seen).map((value) => (value * ARCSECONDS) / divisor) as [number, number];
   const x = [east + limit, east - limit] as const;
   const y = [north - limit, north + limit] as const;
   const svg = drawChart({
@@ -60,14 +60,21 @@ export function imageChart(seen: Understanding, pixels: Float64Array, id: string
   return { svg, full };
 }
 
+/** Direction cosines of the middle of the window: between two pixels where their number is even. */
+function centreOf({ image, frame }: Understanding): [number, number] {
+  const { width, height } = image;
+  return skyOffset(frame, (width - 1) / 2 - (width >> 1), (height - 1) / 2 - (height >> 1));
+}
+
 /** (side x side), row 0 north, column 0 east; NaN outside the window. */
 function resampled(seen: Understanding, pixels: Float64Array, side: number, reach: number): Float64Array {
   const { image, frame } = seen;
   const out = new Float64Array(side * side).fill(Number.NaN);
+  const [east, north] = centreOf(seen);
   for (let row = 0, at = 0; row < side; row++) {
     for (let column = 0; column < side; column++, at++) {
-      const l = frame.middle[0] + reach * (1 - (2 * (column + 0.5)) / side);
-      const m = frame.middle[1] + reach * (1 - (2 * (row + 0.5)) / side);
+      const l = east + reach * (1 - (2 * (column + 0.5)) / side);
+      const m = north + reach * (1 - (2 * (row + 0.5)) / side);
       const [dx, dy] = pixelOffset(frame, l, m);
       const x = Math.round(dx + (image.width >> 1));
       const y = Math.round(dy + (image.height >> 1));

@@ -87,7 +87,8 @@ function outliersOf(power: Float64Array, expected: Float64Array): Uint32Array {
   const limit = Math.log(filled.length * ONE_IMAGE_IN);
   const found: number[] = [];
   for (let i = 0; i < power.length; i++) {
-    if (power[i]! > limit * Math.max(floor, expected[i]!)) found.push(i);
+    // Beside the samples the window of the image smears what is strong: that is nothing of its own.
+    if (expected[i]! > 0 && power[i]! > limit * Math.max(floor, expected[i]!)) found.push(i);
   }
   return Uint32Array.from(found.sort((a, b) => power[b]! - power[a]! || a - b));
 }
