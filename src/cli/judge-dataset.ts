@@ -16,7 +16,8 @@ import { loadRules } from "../rules/load.ts";
 import type { TableFormat } from "../util/column-table.ts";
 import { InputError, nearest } from "../util/errors.ts";
 import { plainText } from "../util/terminal.ts";
-import { type ResourceOptions, workersFor } from "./resources.ts";
+import type { ResourceOptions } from "./resources.ts";
+import { workersFor } from "./take-resources.ts";
 
 export interface JudgeOptions extends ResourceOptions {
   readonly plan: string | undefined;

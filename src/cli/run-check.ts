@@ -3,7 +3,7 @@ import { join } from "node:path";
 import { fieldNamed, fieldView } from "../dataset/field-view.ts";
 import { openDataset } from "../dataset/open.ts";
 import { type JudgeOptions, judgeDataset, understand } from "./judge-dataset.ts";
-import { memoryOf } from "./resources.ts";
+import { memoryOf } from "./take-resources.ts";
 
 export interface CheckOptions extends JudgeOptions {
   readonly dataset: readonly string[];

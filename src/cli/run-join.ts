@@ -4,7 +4,7 @@ import { openDataset } from "../dataset/open.ts";
 import { gatherParts, joinPartFiles } from "../measure/part-files.ts";
 import { InputError } from "../util/errors.ts";
 import { type JudgeOptions, judgeDataset, understand } from "./judge-dataset.ts";
-import { memoryOf } from "./resources.ts";
+import { memoryOf } from "./take-resources.ts";
 
 export interface JoinOptions extends JudgeOptions {
   readonly parts: readonly string[];

@@ -11,7 +11,8 @@ import { loadRules } from "../rules/load.ts";
 import { InputError } from "../util/errors.ts";
 import { plainText } from "../util/terminal.ts";
 import { parseDuration } from "../util/units.ts";
-import { memoryOf, type ResourceOptions, workersFor } from "./resources.ts";
+import type { ResourceOptions } from "./resources.ts";
+import { memoryOf, workersFor } from "./take-resources.ts";
 
 export interface NightlyOptions extends ResourceOptions {
   readonly dir: string;

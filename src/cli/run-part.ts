@@ -7,7 +7,8 @@ import { tool } from "../report/tool.ts";
 import { InputError } from "../util/errors.ts";
 import { plainText } from "../util/terminal.ts";
 import { formatCount } from "../util/units.ts";
-import { memoryOf, type ResourceOptions, workersFor } from "./resources.ts";
+import type { ResourceOptions } from "./resources.ts";
+import { memoryOf, workersFor } from "./take-resources.ts";
 
 export interface PartOptions extends ResourceOptions {
   readonly dataset: readonly string[];
