@@ -203,6 +203,8 @@ function sameWeighting(a: Weighting, b: Weighting): boolean {
 async function dropCost(image: GriddedImage, parts: ForecastParts): Promise<DropW | null> {
   const { plan, wTerm, baselines } = parts;
   if (plan.correctsW.value || !(wTerm.edgeLossFraction >= LEAST_W_LOSS)) return null;
+  // Where a choice of the baselines is looked at one by one, they can not all be named.
+  if (parts.sampling.survey.others !== undefined) return null;
   const far = baselines.filter((baseline) => baseline.phase > W_PHASE_LIMIT);
   const used = baselines.filter((baseline) => baseline.weightFraction > 0);
   if (far.length === used.length) return null;

@@ -1,8 +1,8 @@
 /** What visvet could not see in a dataset, said plainly in every report. */
 import { smallestJump } from "../detect/tracks/smallest-jump.ts";
 import type { Plan } from "../imaging/plan.ts";
-import type { Survey } from "../measure/survey-result.ts";
-import { formatNumber } from "../util/units.ts";
+import { baselinesMet, type Survey } from "../measure/survey-result.ts";
+import { formatCount, formatNumber } from "../util/units.ts";
 
 /** With fewer integrations nothing is said of the smallest jump: they are too few for any. */
 const FEWEST_INTEGRATIONS = 8;
@@ -57,6 +57,12 @@ function ofSamples(survey: Survey): string[] {
   if (times.length < FEWEST_INTEGRATIONS) {
     spots.push(
       `With ${times.length} integrations, phase jumps and changes of gain in time can hardly be told from noise.`,
+    );
+  }
+  if (survey.others !== undefined) {
+    const [chosen, all] = [survey.baselines.length, baselinesMet(survey)].map(formatCount);
+    spots.push(
+      `Of ${all} baselines an even choice of ${chosen} is looked at one by one: faults of single baselines, repeated rows and interference are not looked for on the others. Counts, beams, coverage and noise are of all.`,
     );
   }
   if (tracks.binSeconds > 0) {
