@@ -90,12 +90,14 @@ function card(cause: TriageCause, i: number): Markup {
 <div class="finding-head"><h3 id="${id}">${i + 1}. ${cause.title}</h3></div>
 ${cause.where !== "" && html`<p class="where">${upperFirst(cause.where)}</p>`}
 <p class="in-image">${upperFirst(weightText(cause))}</p>
+<div class="finding-grid" style="grid-template-columns:minmax(0,1fr)">
 <dl class="pairs">${row("Cure", html`<strong>${cause.cure}</strong>`)}${row("Test", cause.test)}${row(
     "Evidence",
     cause.evidence.map((text) => html`<p>${text}</p>`),
   )}${cause.flags.length > 0 && row("Flags", cause.flags.join(", "))}${
     cause.rules.length > 0 && row("Rules", html`<span class="code">${cause.rules.join(", ")}</span>`)
   }</dl>
+</div>
 </article>`;
 }
 
