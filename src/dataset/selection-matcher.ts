@@ -38,22 +38,26 @@ export function compileSelections(
   const baselineTests = selections.map(baselineTest);
   const matched = new Int32Array(selections.length);
   // Baselines are few and rows are many: which selections can concern a baseline is decided once for each.
-  const candidates = new Map<number, Map<number, Int32Array>>();
+  const candidates = new Map<number, (Int32Array | undefined)[]>();
+  // There may be millions of baselines, and hardly two kinds of them: each list is there once.
+  const lists = new Map<string, Int32Array>();
 
   const candidatesOf = (antenna1: number, antenna2: number): Int32Array => {
     let ofFirst = candidates.get(antenna1);
     if (ofFirst === undefined) {
-      ofFirst = new Map();
+      ofFirst = [];
       candidates.set(antenna1, ofFirst);
     }
-    let found = ofFirst.get(antenna2);
+    let found = ofFirst[antenna2];
     if (found === undefined) {
       const numbers: number[] = [];
       for (let s = 0; s < selections.length; s++) {
         if (runs[s]!.length > 0 && baselineTests[s]!(antenna1, antenna2)) numbers.push(s);
       }
-      found = Int32Array.from(numbers);
-      ofFirst.set(antenna2, found);
+      const key = numbers.join();
+      found = lists.get(key) ?? Int32Array.from(numbers);
+      lists.set(key, found);
+      ofFirst[antenna2] = found;
     }
     return found;
   };
