@@ -76,6 +76,8 @@ export type { PartIdentity } from "./measure/state/identity.ts";
 export { type SurveyOptions, surveyDataset, surveyDataset as survey } from "./measure/survey.ts";
 export type { Baseline, Levels, Survey, Totals, Tracks } from "./measure/survey-result.ts";
 export type { Column, Measure, Measures } from "./measure/table.ts";
+export { type NightlyRequest, type NightlyResult, runNightly } from "./nightly/nightly.ts";
+export { type PlanChoice, readPlanChoices } from "./nightly/plans.ts";
 export { type CheckRequest, checkDataset, checkDataset as check } from "./report/check.ts";
 export { describeText, describeText as describe } from "./report/describe.ts";
 export type { FieldCheck, FieldChecks } from "./report/fields.ts";
