@@ -39,12 +39,14 @@ export interface SecondPassOptions {
 export async function secondPass(survey: Survey, options: SecondPassOptions = {}): Promise<SecondPass> {
   const choice = options.choice ?? choose(survey);
   const { rows } = survey.dataset;
+  options.onProgress?.(0, rows);
   const sum = new PassSum(survey, choice);
   const numbers = tilesToRead(choice);
   for await (const result of tileResults(survey, choice, numbers, options.workers)) {
     sum.add(result);
     options.onProgress?.(Math.min(rows, (result.tile + 1) * choice.cut.tileRows), rows);
   }
+  options.onProgress?.(rows, rows);
   return sum.finish();
 }
 
