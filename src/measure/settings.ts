@@ -18,6 +18,8 @@ export interface SurveySettings {
   readonly thins: boolean;
   /** one sketch a baseline would not fit, not even with all its samples in it: antennas own the sketches */
   readonly sharedSketches: boolean;
+  /** the same for the noise: also where a baseline has too few differences between channels to tell its own */
+  readonly sharedNoise: boolean;
   /** 1 row in this many, a power of two, is asked for its noise: more would make it no better */
   readonly noiseEvery: number;
   /** of those 1 in this many, a power of two, is asked for the noise of each channel */
@@ -33,6 +35,9 @@ const ENOUGH_OF_CHANNEL = 1 << 13;
 /** The same for the comparison of spans, over all baselines. */
 const ENOUGH_OF_SPANS = 1 << 17;
 const MOST_SPARING = 64;
+/** Differences too few for a baseline's noise, and enough for an antenna's. */
+const FEW_OF_BASELINE = 5;
+const ENOUGH_OF_ANTENNA = 200;
 /** What the kernels' memory has room for beside the rest. */
 const MOST_SKETCH_BYTES = 800e6;
 /** Of the sketches of one baseline, of amplitudes and of noise, each with few pages. */
@@ -43,6 +48,11 @@ export function settleSurvey(dataset: Dataset, memory = surveyMemory(DEFAULT_MEM
   const antennas = Math.max(2, dataset.array.antennas.length);
   const baselines = Math.max(1, Math.min((antennas * (antennas - 1)) / 2, dataset.rows));
   const differences = dataset.rows * dataset.shape.channels;
+  const shared = baselines > MOST_BASELINES || baselines * LEAST_BYTES > memory / 2;
+  const { channels } = dataset.shape;
+  // Second differences, of which a row has two fewer than channels.
+  const told = dataset.rows * (channels < 3 ? channels - 1 : channels - 2);
+  const onlyAntennasTell = told < FEW_OF_BASELINE * baselines && told > ENOUGH_OF_ANTENNA * antennas;
   const noiseEvery = sparing(differences / baselines / ENOUGH_OF_BASELINE);
   return {
     sketchBytes: Math.min(memory / 2, MOST_SKETCH_BYTES),
@@ -50,7 +60,8 @@ export function settleSurvey(dataset: Dataset, memory = surveyMemory(DEFAULT_MEM
     baselines,
     antennas,
     thins: baselines > MOST_BASELINES,
-    sharedSketches: baselines > MOST_BASELINES || baselines * LEAST_BYTES > memory / 2,
+    sharedSketches: shared,
+    sharedNoise: shared || onlyAntennasTell,
     noiseEvery,
     channelEvery: sparing(dataset.rows / noiseEvery / ENOUGH_OF_CHANNEL),
     spansEvery: sparing(differences / noiseEvery / ENOUGH_OF_SPANS),

@@ -47,12 +47,14 @@ function keepsRows({ shape, rows }: Dataset, { thins, baselines, trackBytes }: S
   return least * rows * rowBytes <= trackBytes;
 }
 
-function gatherers(dataset: Dataset, settings: SurveySettings, owners: SketchOwners): Gathered {
+function gatherers(dataset: Dataset, settings: SurveySettings, index: BaselineIndex): Gathered {
   const { shape } = dataset;
   const { sketchBytes, trackBytes } = settings;
+  const owners = new SketchOwners(settings.sharedSketches, index);
+  const noiseOwners = new SketchOwners(settings.sharedNoise, index);
   return {
     amplitudes: new AmplitudeSketches(shape, AMPLITUDE_SHARE * sketchBytes, settings, owners),
-    noise: new NoiseSketches(shape, (1 - AMPLITUDE_SHARE) * sketchBytes, settings, owners),
+    noise: new NoiseSketches(shape, (1 - AMPLITUDE_SHARE) * sketchBytes, settings, noiseOwners),
     channels: new ChannelCounts(shape),
     baselines: new BaselineTally(shape),
     others: new OtherBaselines(shape),
@@ -82,7 +84,7 @@ export class SurveyPart {
     if (settings.thins && !this.thinsAsNeeded) {
       this.index.halvings = Math.ceil(Math.log2(settings.baselines / FEWEST_BASELINES));
     }
-    this.gathered = gatherers(dataset, settings, new SketchOwners(settings.sharedSketches, this.index));
+    this.gathered = gatherers(dataset, settings, this.index);
     this.accumulators = Object.values(this.gathered);
   }
 

@@ -17,6 +17,12 @@ describe("an array of 260 antennas", () => {
     expect(await detect(survey, { purpose: "continuum", lineChannels: [] })).toEqual([]);
   });
 
+  it("names a silent antenna in two integrations, of which no baseline alone could tell its noise", async () => {
+    const dataset = largeArray({ antennas: 120, integrations: 2, channels: 4, silent: [7] });
+    const found = await detect(await surveyDataset(dataset), { purpose: "continuum", lineChannels: [] });
+    expect(found.map(({ kind, scope }) => [kind, scope.antennas])).toEqual([["silent-antenna", [7]]]);
+  });
+
   it("keeps its levels where antennas own the sketches, that is, where memory holds none a baseline", async () => {
     const dataset = largeArray({ antennas: 60, integrations: 40, channels: 4, silent: [7] });
     const shared = await surveyDataset(dataset, { memory: 4e6 });
