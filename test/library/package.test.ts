@@ -72,8 +72,9 @@ describe("the package", () => {
       /^dist\/.+\.(js|d\.ts)$/,
       /^dist\/.+\.wasm$/,
       /^rules\/[a-z-]+\/[a-z0-9-]+\.yaml$/,
-      /^src\/report\/schema\/(report|flags)\.schema\.json$/,
+      /^src\/(report|triage)\/schema\/(report|flags|triage)\.schema\.json$/,
       /^(README\.md|package\.json|sample-inputs\/README\.md)$/,
+      /^sample-inputs\/batch\/(README\.md|[a-z-]+\.sh)$/,
     ];
     expect(paths.filter((path) => !expected.some((pattern) => pattern.test(path)))).toEqual([]);
     for (const needed of [
