@@ -1,6 +1,7 @@
 /** Of the memory that the user grants the program, what goes to a survey. */
 
 import type { Dataset } from "../dataset/dataset.ts";
+import { MOST_BASELINES } from "./even-choice.ts";
 import { CELL_BYTES, PRODUCT_BYTES } from "./track-columns.ts";
 
 /** Bytes that the program may take where the user says nothing. */
@@ -28,6 +29,8 @@ const THREADS_SHARE = 0.6;
 export function sketchBytesOf({ array, shape, rows }: Dataset, memory: number): number {
   const antennas = Math.max(2, array.antennas.length);
   const baselines = Math.min((antennas * (antennas - 1)) / 2, rows);
+  // Of thousands of antennas each thread also fills uv grids of millions of samples, and knows every baseline of a flag.
+  if (baselines > MOST_BASELINES) return surveyMemory(memory);
   const samples = shape.subbands * shape.channels * shape.polarizations;
   return Math.min(memory / 2, baselines * samples * SKETCH_BYTES);
 }
