@@ -1,3 +1,4 @@
+import { availableParallelism } from "node:os";
 import { fileURLToPath } from "node:url";
 import { defineConfig } from "vitest/config";
 
@@ -9,7 +10,9 @@ export default defineConfig({
     globalSetup: ["test/support/build-kernels.ts"],
     setupFiles: ["test/support/setup.ts"],
     reporters: ["default", "./test/support/summary-reporter.ts"],
-    testTimeout: 60_000,
-    hookTimeout: 60_000,
+    // All of the processors: by default one is left idle, which on two is half of them.
+    maxWorkers: availableParallelism(),
+    testTimeout: 120_000,
+    hookTimeout: 120_000,
   },
 });
