@@ -1,6 +1,7 @@
 /** `--jobs` and `--memory` understood: bytes, and the threads for a dataset. */
 import { availableParallelism } from "node:os";
 import type { Dataset } from "../dataset/dataset.ts";
+import { passBytesOf } from "../measure/memory.ts";
 import { InputError } from "../util/errors.ts";
 import { parseSize } from "../util/units.ts";
 import { Workers } from "../util/workers.ts";
@@ -48,6 +49,6 @@ function jobsOf(options: ResourceOptions, dataset: Dataset, share: number): numb
     share * dataset.bytes < SMALL_BYTES ? 1 : Math.min(availableParallelism(), MOST_JOBS_UNASKED);
   const memory = memoryOf(options);
   const room = THREADS_SHARE * memory;
-  const most = Math.floor(room / THREAD_BYTES);
+  const most = Math.floor(room / (THREAD_BYTES + passBytesOf(dataset)));
   return Math.max(1, Math.min(jobs ?? unasked, most));
 }

@@ -29,10 +29,17 @@ const THREADS_SHARE = 0.6;
 export function sketchBytesOf({ array, shape, rows }: Dataset, memory: number): number {
   const antennas = Math.max(2, array.antennas.length);
   const baselines = Math.min((antennas * (antennas - 1)) / 2, rows);
-  // Of thousands of antennas each thread also fills uv grids of millions of samples, and knows every baseline of a flag.
-  if (baselines > MOST_BASELINES) return surveyMemory(memory);
   const samples = shape.subbands * shape.channels * shape.polarizations;
   return Math.min(memory / 2, baselines * samples * SKETCH_BYTES);
+}
+
+/** Of each thread of passes over arrays of very many baselines: uv grids of as many cells, and which flags each meets. */
+const LARGE_ARRAY_BYTES = 250e6;
+
+/** What a thread of any pass takes beside its program and buffers, where that is much. */
+export function passBytesOf({ array, rows }: Dataset): number {
+  const antennas = Math.max(2, array.antennas.length);
+  return Math.min((antennas * (antennas - 1)) / 2, rows) > MOST_BASELINES ? LARGE_ARRAY_BYTES : 0;
 }
 
 /**
