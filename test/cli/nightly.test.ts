@@ -83,10 +83,10 @@ describe("visvet nightly", () => {
       unchanged: number;
     };
     expect(whole.unchanged).toBe(3);
-    for (let round = 0; round < 5; round++) {
+    for (let round = 0; round < 3; round++) {
       const child = spawn(process.execPath, [MAIN, ...night("killed")], { cwd: folder, stdio: "ignore" });
       const ended = new Promise((resolve) => child.on("close", resolve));
-      await Promise.race([ended, sleep(600 + 700 * round)]);
+      await Promise.race([ended, sleep(700 + 1300 * round)]);
       child.kill("SIGKILL");
       await ended;
     }

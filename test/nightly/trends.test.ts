@@ -38,7 +38,7 @@ describe("nights that do not change", () => {
   };
 
   it.each(Object.keys(shapes))("give no more false alarms than the charts promise: %s", (shape) => {
-    const repeats = 8;
+    const repeats = 5;
     let alarms = 0;
     for (let s = 0; s < SERIES * repeats; s++) {
       const random = Random.of(20260101, s, shape.length);
