@@ -1,6 +1,6 @@
 /** `visvet check`: survey, judge, print the text report, write the output files. */
 import { command } from "./command.ts";
-import { withResources } from "./resources.ts";
+import { withJudgement } from "./judge-options.ts";
 import type { CheckOptions } from "./run-check.ts";
 
 interface CheckArguments extends Omit<CheckOptions, "flagsAs"> {
@@ -17,14 +17,13 @@ export const check = command<CheckArguments>({
     ["check a.uvfits b.uvfits --out checks --strict", "several; a caution also exits with 1"],
   ],
   options: (yargs) =>
-    withResources(yargs)
+    withJudgement(yargs)
       .positional("dataset", {
         type: "string",
         array: true,
         demandOption: true,
         describe: "Files, folders or quoted globs: each is a dataset",
       })
-      .option("plan", { type: "string", requiresArg: true, describe: "The image you plan, a YAML file" })
       .option("out", {
         type: "string",
         requiresArg: true,
@@ -35,30 +34,11 @@ export const check = command<CheckArguments>({
         requiresArg: true,
         describe: "What the columns of tables hold, a YAML file [default: the one beside them, or a guess]",
       })
-      .option("rules", {
-        type: "string",
-        array: true,
-        requiresArg: true,
-        describe: "Folders of rule files that add to ours, or replace them by id",
-      })
       .option("field", {
         type: "string",
         requiresArg: true,
         describe: "Judge this field alone, by its id or name",
-      })
-      .option("flags-as", {
-        type: "string",
-        array: true,
-        requiresArg: true,
-        describe: "The flags in other formats too: csv, parquet, idi (a FITS-IDI FLAG table)",
-      })
-      .option("tables", {
-        choices: ["parquet", "arrow", "csv"] as const,
-        requiresArg: true,
-        describe: "Every measure as a table, in the folder tables of the output",
-      })
-      .option("strict", { type: "boolean", default: false, describe: "Exit with 1 for a caution too" })
-      .option("quiet", { type: "boolean", default: false, describe: "Print the verdict alone" }),
+      }),
   handler: async ({ "flags-as": flagsAs, ...given }) => {
     const { runCheck } = await import("./run-check.ts");
     process.exitCode = await runCheck({ ...given, flagsAs });
