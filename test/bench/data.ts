@@ -60,6 +60,8 @@ sky:
   return { path, bytes: statSync(path).size };
 }
 
+/** A file that was made here, with the truth beside it. */
 export function forget(path: string): void {
   rmSync(path, { force: true });
+  rmSync(path.replace(/\.uvfits$/, ".truth.json"), { force: true });
 }
